@@ -1,0 +1,5 @@
+"""`python -m energytrack`."""
+
+from energytrack.cli.app import main
+
+main()
