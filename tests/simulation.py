@@ -185,7 +185,7 @@ def _fill(kind: Use, used: Floats, rng: np.random.Generator) -> pd.DataFrame:
     for index, burnt in enumerate(used):
         low = level - burnt
         last = index == len(used) - 1
-        partial = rng.random() < kind.partial_share and low > 0.5 * kind.capacity and not last
+        partial = rng.random() < kind.partial_share and low > 0.4 * kind.capacity and not last
         if kind.readings:
             goal = kind.capacity * rng.choice([0.8, 0.85, 0.9, 0.95])
         elif partial:

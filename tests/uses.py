@@ -39,7 +39,7 @@ class Use:
     # how it is logged
     readings: bool = False  # charged to a chosen level which is read off, instead of filled to the full mark
     reading_share: float = 1.0  # of charges whose reading is written down
-    partial_share: float = 0.0
+    partial_share: float = 0.0  # of fillings, where the tank is not too low for one
     missed_share: float = 0.0
     temperature_logged: bool = True
     speed_logged: bool = True
@@ -50,7 +50,7 @@ STEADY_COMMUTE = Use("steady-commute")
 DRIFTING = Use("drifting", trip_percent=10.0, drift_weeks_percent=2.5, drift_seasons_percent=1.8)
 SLOPPY_FILLS = Use("sloppy-fills", level_error_percent=3.0, days_per_fill=(2, 4), fillings=150)
 PARTIAL_AND_MISSED = Use(
-    "partial-and-missed", days_per_fill=(2, 4), fillings=160, partial_share=0.25, missed_share=0.05, trip_percent=8.0
+    "partial-and-missed", days_per_fill=(2, 3), fillings=180, partial_share=0.25, missed_share=0.05, trip_percent=8.0
 )
 ELECTRIC = Use(
     "electric",
@@ -69,17 +69,18 @@ ELECTRIC = Use(
 )
 HOUSEHOLD = Use(
     "household",
+    capacity=55.0,
     b0=7.8,
     km_per_day=38.0,
-    km_spread=0.5,
-    days_per_fill=(8, 14),
+    km_spread=0.4,
+    days_per_fill=(6, 9),
     weekdays_only=False,
     speed_kmh=42.0,
     speed_spread=0.12,
     drag_share=0.15,
     accessory_share=0.15,
     heating=0.8,
-    trip_percent=32.0,
+    trip_percent=28.0,
     drift_weeks_percent=4.0,
     drift_seasons_percent=3.0,
     level_error_percent=2.0,

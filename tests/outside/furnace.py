@@ -18,13 +18,13 @@ FIRST = pd.Timestamp("2001-06-26")
 
 
 def furnace_entries() -> pd.DataFrame:
-    """102 entries: an opening reading without its amount, then one entry for each bill."""
+    """103 entries: an opening reading without its amount, then one entry for each bill."""
     bills = data("mosaicData", "Utilities2").iloc[:-1]
     bills = bills.assign(date=pd.to_datetime(bills[["year", "month", "day"]])).query("date >= @FIRST")
     gap = bills["date"].diff().dt.days
     missed = gap - bills["billingDays"] > 5
     days = np.where(missed | gap.isna(), gap.fillna(0), bills["billingDays"])
-    energy = bills["ccf"].astype(float).to_numpy()
+    energy = bills["ccf"].to_numpy(dtype=float, copy=True)
     energy[0] = np.nan
     return pd.DataFrame(
         {

@@ -40,5 +40,5 @@ def reference(id: str) -> Reference:
 
 
 def table(name: str) -> pd.DataFrame:
-    """A series the values were computed on: tridiag_logbook, ma1_logbook or synthetic_logbook (made for this project)."""
+    """A series made for this project: tridiag_logbook, ma1_logbook or synthetic_logbook."""
     return pd.read_csv(FOLDER / f"{name}.csv")
