@@ -22,7 +22,7 @@ class Use:
     # how it is driven
     km_per_day: float = 90.0
     km_spread: float = 0.08  # relative sd from day to day
-    days_per_fill: tuple[int, int] = (5, 7)  # driving days, least and most
+    days_per_fill: tuple[int, int] = (4, 6)  # driving days, least and most
     weekdays_only: bool = True
     speed_kmh: float = 65.0
     speed_spread: float = 0.04  # relative sd, half of its variance from tank to tank, half from day to day

@@ -21,7 +21,7 @@ STARTS = {"Before": pd.Timestamp("1960-10-02"), "After": pd.Timestamp("1961-10-0
 
 def whiteside() -> pd.DataFrame:
     """The data as published: Insul (Before, After), Temp, Gas."""
-    return data("MASS", "whiteside")[["Insul", "Temp", "Gas"]]
+    return pd.DataFrame(data("MASS", "whiteside"), columns=["Insul", "Temp", "Gas"])
 
 
 def whiteside_entries() -> pd.DataFrame:
