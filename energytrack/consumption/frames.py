@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 import math
+from collections import Counter
 from collections.abc import Callable, Sequence
 from pathlib import Path
 from types import MappingProxyType
@@ -12,10 +13,12 @@ from typing import Any, TypeVar
 import numpy as np
 import pandas as pd
 
+from energytrack.consumption.observations import Observations, observe
+from energytrack.consumption.segments import SegmentedLog, close_segments
 from energytrack.errors import ConsumptionError, UnknownNameError
 from energytrack.logbook.opening import Logbook
 from energytrack.logbook.opening import open_logbook as open_plain
-from energytrack.logbook.records import KINDS, Entry, Event, Modification, Vehicle, Weather
+from energytrack.logbook.records import KINDS, UNITS, Entry, Event, Modification, Vehicle, Weather
 
 ENTRY_COLUMNS = (
     *("vehicle", "date", "odometer_km", "energy", "kind", "full", "level_percent", "missed", "distance_km"),
@@ -28,6 +31,7 @@ MODIFICATION_COLUMNS = (
 EVENT_COLUMNS = ("vehicle", "date", "odometer_km", "what", "odometer_factor", "note")
 WEATHER_COLUMNS = ("date", "temperature_c")
 VEHICLE_COLUMNS = ("name", "carrier", "unit", "capacity", "distance_unit", "display", "note")
+MOST_PROBLEMS = 5  # named one by one in the notes
 DATES = ("date", "fitted_date", "removed_date")
 NUMBERS = (
     *("odometer_km", "energy", "level_percent", "distance_km", "cost", "temperature_c", "speed_kmh"),
@@ -160,6 +164,52 @@ def weather_from_frame(frame: pd.DataFrame) -> list[Weather]:
     _require(frame, "weather", "date", "temperature_c")
     days = zip(_dates(frame, "date", required=True), _numbers(frame, "temperature_c"), strict=True)
     return [Weather(day, temperature) for day, temperature in days if temperature is not None]
+
+
+def observe_frames(
+    entries: pd.DataFrame,
+    modifications: pd.DataFrame | None = None,
+    *,
+    events: pd.DataFrame | None = None,
+    weather: pd.DataFrame | None = None,
+    capacity: float | None = None,
+    unit: str = "L",
+    covariates: Sequence[str] | None = None,
+) -> tuple[Observations, tuple[str, ...]]:
+    """One vehicle's tables as arrays over its segments, and notes on what was estimated or set aside.
+
+    Raises ConsumptionError for missing columns, unreadable values, entries of several vehicles, or modification
+    periods that contradict each other; UnknownNameError for a covariate no entry has.
+    """
+    if unit not in UNITS:
+        raise ConsumptionError(f"unit {unit!r} is unknown; use one of {', '.join(UNITS)}")
+    logged = entries_from_frame(entries)
+    vehicle = the_vehicle(logged) if logged and "vehicle" in entries else None
+    segmented = close_segments(
+        logged, [] if events is None else events_from_frame(events, vehicle), capacity=capacity, unit=unit
+    )
+    observed = observe(
+        segmented,
+        [] if modifications is None else modifications_from_frame(modifications, vehicle),
+        tuple(covariates or ()),
+        [] if weather is None else weather_from_frame(weather),
+    )
+    return observed, _notes(segmented)
+
+
+def _notes(segmented: SegmentedLog) -> tuple[str, ...]:
+    notes = []
+    reasons = Counter(span.reason for span in segmented.void)
+    if reasons:
+        counted = ", ".join(f"{reason} ({count})" for reason, count in reasons.most_common())
+        spans = "1 span" if len(segmented.void) == 1 else f"{len(segmented.void)} spans"
+        notes.append(f"{spans} between known levels set aside: {counted}")
+    if segmented.capacity_is_estimated and any(entry.level_percent is not None for entry in segmented.entries):
+        notes.append(f"capacity is not given: {segmented.capacity:.1f} {segmented.unit} estimated from the purchases")
+    problems = [str(problem) for problem in segmented.problems]
+    if len(problems) > MOST_PROBLEMS:
+        problems[MOST_PROBLEMS:] = [f"and {len(problems) - MOST_PROBLEMS} more problems of this kind"]
+    return (*notes, *problems)
 
 
 def the_vehicle(entries: Sequence[Entry]) -> str:

@@ -9,7 +9,7 @@ from itertools import chain
 import numpy as np
 from numpy.typing import NDArray
 
-from energytrack.consumption.conditions import Array, distance_means, entry_conditions
+from energytrack.consumption.averages import Array, distance_means, entry_conditions
 from energytrack.consumption.segments import SegmentedLog
 from energytrack.consumption.shares import shares
 from energytrack.logbook.records import Modification, Weather
