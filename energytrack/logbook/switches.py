@@ -11,7 +11,7 @@ from energytrack.errors import EntryError
 from energytrack.logbook.records import Modification
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Switch:
     """A part fitted or removed, at an odometer value, on a date, or both."""
 
