@@ -8,8 +8,8 @@ from __future__ import annotations
 import math
 import re
 from contextlib import suppress
-from dataclasses import dataclass
 from types import MappingProxyType
+from typing import NamedTuple
 
 from energytrack.errors import EntryError
 from energytrack.logbook.records import Vehicle
@@ -34,8 +34,7 @@ ENERGY = MappingProxyType(  # unit as typed -> base unit, base units in one of i
 DISTANCE = MappingProxyType({"km": 1.0, "mi": KM_PER_MILE})
 
 
-@dataclass(frozen=True)
-class ConsumptionUnit:
+class ConsumptionUnit(NamedTuple):
     """One way to show energy per distance."""
 
     label: str
