@@ -40,6 +40,7 @@ class Form:
     energy: float = 1.0  # the vehicle's units in one unit of energy
     kmh: float = 1.0  # km/h in one unit of speed
     fahrenheit: bool = False
+    typed_units: Mapping[str, str] = field(default_factory=dict)  # our column -> its unit in the file, where not ours
     vehicle: str | None = None  # for rows that name none
     kinds: Mapping[str, str] = field(default_factory=dict)  # vehicle -> kind of rows that name none; "": any vehicle
     currency: str | None = None  # for costs without one

@@ -1,197 +1,232 @@
-"""Bringing the entries of a foreign table into a logbook: what is new, what is there already, what cannot be true."""
+"""Bringing a foreign table, or a folder of tables, into a logbook file: the whole of it or nothing, and only once."""
 
 from __future__ import annotations
 
-import csv
-import dataclasses
 import datetime as dt
-import math
-from bisect import bisect_left, bisect_right
-from collections import Counter
-from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import dataclass, field
+from collections.abc import Callable, Sequence
+from contextlib import contextmanager
+from dataclasses import dataclass, field, replace
 from pathlib import Path
+from typing import Any
 
-from energytrack.errors import EntryError, UnknownNameError
+from energytrack.errors import EntryError, LogbookError, UnknownNameError
+from energytrack.logbook import merging
 from energytrack.logbook.columns import Form
-from energytrack.logbook.csvfile import open_csv
-from energytrack.logbook.order import Row, driving_order, misfits, newest_first
-from energytrack.logbook.records import Entry, Problem, Vehicle
-from energytrack.logbook.tables import Reading, read_entries
+from energytrack.logbook.folder import Folder
+from energytrack.logbook.import_plan import ImportPlan, plan_import
+from energytrack.logbook.opening import open_logbook
+from energytrack.logbook.quantities import ENERGY
+from energytrack.logbook.records import Problem, Vehicle
+from energytrack.logbook.rejected import refusal, write_rejected
+from energytrack.logbook.store import Store
+from energytrack.logbook.tables import Reading, read_events, read_modifications, read_weather
 
-OVERFILL = 1.3  # energy above this many capacities is no single fill-up or charge
+OTHER_TABLES: dict[str, tuple[Callable[[Path, Form], Reading[Any]], Callable[[Any, Sequence[Any]], int]]] = {
+    "modifications": (read_modifications, merging.merge_modifications),
+    "events": (read_events, merging.merge_events),
+    "weather": (read_weather, merging.merge_weather),
+}
+
+
+@dataclass(frozen=True, slots=True)
+class Request:
+    """What is to be imported, and how it is written."""
+
+    path: Path
+    form: Form
+    table: str = "entries"  # or a key of OTHER_TABLES; a folder holds them all
+    vehicle: str | None = None  # of all rows
+    new_vehicle: Vehicle | None = None  # added where the logbook does not have it
+    kind: str | None = None  # of entries that do not say
+    energy_unit: str | None = None  # a key of quantities.ENERGY; None: the vehicle's unit
+    again: bool = False
+    skip_bad: Path | None = None  # new file for the bad rows; None: any bad row refuses the import
 
 
 @dataclass(slots=True)
-class ImportPlan:
-    """What an import would do, before anything is written."""
+class Outcome:
+    """What an import did."""
 
     file: str
-    new: list[Row] = field(default_factory=list)  # in driving order, vehicle by vehicle
-    known: list[Row] = field(default_factory=list)  # rows the logbook holds already
-    problems: list[Problem] = field(default_factory=list)  # by line
+    new: dict[str, int] = field(default_factory=dict)  # table -> rows added
+    already: dict[str, int] = field(default_factory=dict)  # table -> rows that were there
+    rejected: list[Problem] = field(default_factory=list)
+    rejected_file: Path | None = None
     notes: list[str] = field(default_factory=list)
 
-    @property
-    def bad_lines(self) -> list[int]:
-        return sorted({problem.line for problem in self.problems if problem.line is not None})
+    def count(self, table: str, new: int, rows: int) -> None:
+        self.new[table], self.already[table] = new, rows - new
+
+    def to_dict(self) -> dict[str, Any]:
+        return {
+            "file": self.file,
+            "new": self.new,
+            "already": self.already,
+            "rejected": [{"line": problem.line, "reason": problem.message} for problem in self.rejected],
+            "rejected_file": str(self.rejected_file) if self.rejected_file else None,
+            "notes": self.notes,
+        }
 
 
-def plan_import(
-    path: Path,
-    form: Form,
-    vehicles: Sequence[Vehicle],
-    recorded: Callable[[str], Iterable[Entry]],
-    standing: Callable[[str], Sequence[Entry]],
-    *,
-    today: dt.date,
-    again: bool = False,
-) -> ImportPlan:
-    """Read the table and hold it against the logbook.
+def run_import(request: Request, logbook: Path, today: dt.date) -> Outcome:
+    """Read, check and write; a logbook that does not exist is started where the request brings its vehicle.
 
-    `form.vehicle`: the vehicle of all rows. `recorded`: every entry of a vehicle ever written, so that a row amended or
-    struck since does not come back. `standing`: those that count. Raises EntryError where the table cannot be read,
-    UnknownNameError where it names vehicles the logbook lacks.
+    Raises EntryError listing every bad row, LogbookError, UnknownNameError; then nothing was written.
     """
-    reading = read_entries(path, form)
+    store = None if request.new_vehicle is not None and not logbook.exists() else open_logbook(logbook)
+    if isinstance(store, Folder):
+        store.refuse_writing()
+    if request.path.is_dir():
+        return _import_folder(request, _there(store, logbook), today)
+    if request.table == "entries":
+        return _import_entries(request, store, logbook, today)
+    return _import_other(request, _there(store, logbook))
+
+
+def _there(store: Store | None, logbook: Path) -> Store:
+    if store is None:
+        raise LogbookError(f"there is no logbook {logbook}; start it with 'new', or import its entries first")
+    return store
+
+
+def _import_entries(request: Request, store: Store | None, logbook: Path, today: dt.date) -> Outcome:
+    vehicles = store.vehicles() if store else []
+    added = _vehicle_to_add(request.new_vehicle, vehicles)
+    known = [*vehicles, *([added] if added else [])]
+    request = _with_defaults(request, known)
+    plan = _planned(request, request.path, store, known, today)
+    outcome = Outcome(str(request.path), rejected=plan.problems, notes=plan.notes + _unit_notes(request, plan, known))
+    with _rejects(request, request.path, plan.problems, outcome):
+        store = store or _created(logbook)
+        with store.transaction():
+            if added:
+                store.add_vehicle(added)
+            _add(store, plan, request, outcome)
+    return outcome
+
+
+def _import_folder(request: Request, store: Store, today: dt.date) -> Outcome:
+    folder = Folder(request.path)
+    names = {vehicle.name for vehicle in store.vehicles()}
+    known = [*store.vehicles(), *(vehicle for vehicle in folder.vehicles() if vehicle.name not in names)]
+    request = replace(_with_defaults(request, known), again=True)
+    entries = request.path / "entries.csv"
+    plan = _planned(request, entries, store, known, today)
+    outcome = Outcome(str(request.path), rejected=plan.problems, notes=plan.notes)
+    with _rejects(request, entries, plan.problems, outcome), store.transaction():
+        outcome.count("vehicles", merging.merge_vehicles(store, folder.vehicles()), len(folder.vehicles()))
+        _add(store, plan, request, outcome)
+        modifications = [row for vehicle in folder.vehicles() for row in folder.modifications(vehicle.name)]
+        outcome.count("modifications", merging.merge_modifications(store, modifications), len(modifications))
+        events = [row for vehicle in folder.vehicles() for row in folder.events(vehicle.name)]
+        outcome.count("events", merging.merge_events(store, events), len(events))
+        outcome.count("weather", merging.merge_weather(store, folder.weather()), len(folder.weather()))
+    return outcome
+
+
+def _import_other(request: Request, store: Store) -> Outcome:
+    read, merge = OTHER_TABLES[request.table]
+    vehicles = store.vehicles()
+    reading = read(request.path, _with_defaults(request, vehicles).form)
     if not reading.whole:
         raise EntryError(str(reading.problems[-1]))
-    by_name = {vehicle.name: vehicle for vehicle in vehicles}
-    rows_of = _by_vehicle(reading, form.vehicle, by_name)
-    plan = ImportPlan(reading.file, problems=list(reading.problems), notes=list(reading.notes))
-    refused = dict(reading.refused)
-    for name, rows in rows_of.items():
-        if any(entry.odometer_km is None for _, entry in rows) and newest_first(rows):
-            plan.notes.append("the newest entry stands first; read from the bottom up")
-        bad = _implausible(rows, by_name[name], reading.file, today)
-        blamed = {problem.line for problem in bad}
-        ordered, unordered = driving_order([row for row in rows if row[0] not in blamed], reading.file, again=again)
-        new, known = _unknown_rows(ordered, recorded(name))
-        unfit = misfits(new, standing(name), reading.file, again=again)
-        problems = bad + unordered + unfit
-        refused |= {problem.line: name for problem in problems if problem.line is not None}
-        unfitting = {problem.line for problem in unfit}
-        plan.new += [row for row in new if row[0] not in unfitting]
-        plan.known += known
-        plan.problems += problems
-    plan.problems.sort(key=lambda problem: problem.line or 0)
-    _mark_missed(plan, refused, form.vehicle, rows_of)
+    rows = [record for _, record in reading.rows]
+    if request.table != "weather":
+        if request.vehicle is not None:
+            rows = [replace(row, vehicle=request.vehicle) for row in rows]
+        for name in dict.fromkeys(row.vehicle for row in rows):
+            store.vehicle(name)
+    outcome = Outcome(str(request.path), rejected=reading.problems, notes=reading.notes)
+    with _rejects(request, request.path, reading.problems, outcome), store.transaction():
+        outcome.count(request.table, merge(store, rows), len(rows))
+    return outcome
+
+
+def _planned(
+    request: Request, path: Path, store: Store | None, known: Sequence[Vehicle], today: dt.date
+) -> ImportPlan:
+    held = {vehicle.name for vehicle in store.vehicles()} if store else set()
+    plan = plan_import(
+        path,
+        request.form,
+        known,
+        lambda name: store.first_entries(name) if store and name in held else [],
+        lambda name: store.entries(name) if store and name in held else [],
+        today=today,
+        named=request.vehicle,
+        again=request.again,
+    )
+    if request.energy_unit is not None:
+        base = ENERGY[request.energy_unit][0]
+        used = {entry.vehicle for _, entry in plan.new + plan.known}
+        if wrong := [vehicle for vehicle in known if vehicle.name in used and vehicle.unit != base]:
+            raise EntryError(f"energy of {wrong[0].name} is counted in {wrong[0].unit}, not in {request.energy_unit}")
     return plan
 
 
-def _by_vehicle(reading: Reading[Entry], named: str | None, known: Mapping[str, Vehicle]) -> dict[str, list[Row]]:
-    """The rows of each vehicle; all of them of the one that was named."""
-    names = list(dict.fromkeys(entry.vehicle for _, entry in reading.rows))
-    if named is not None and len(names) > 1:
-        raise EntryError(
-            f"{reading.file} holds several vehicles ({', '.join(names[:10])}); leave --vehicle out to import them all"
-        )
-    if named is not None and names:
-        if names != [named]:
-            reading.rows = [(line, dataclasses.replace(entry, vehicle=named)) for line, entry in reading.rows]
-        names = [named]
-    if lacking := [name for name in names if name not in known]:
-        have = ", ".join(known) or "none"
-        raise UnknownNameError(
-            f"the logbook has no vehicle {', '.join(map(repr, lacking[:10]))} (it has: {have}); add it with "
-            "'vehicle add', or import with --vehicle and --carrier to add it now"
-        )
-    rows: dict[str, list[Row]] = {name: [] for name in names}
-    for row in reading.rows:
-        rows[row[1].vehicle].append(row)
-    return rows
+def _add(store: Store, plan: ImportPlan, request: Request, outcome: Outcome) -> None:
+    pairs = [(entry, plan.typed.get(line, {})) for line, entry in plan.new]
+    added = store.add_entries(pairs, source=request.path.name)
+    outcome.count("entries", added, len(plan.new) + len(plan.known))
 
 
-def _implausible(rows: Sequence[Row], vehicle: Vehicle, file: str, today: dt.date) -> list[Problem]:
-    """Rows that cannot be true by themselves."""
-    problems = []
-    most = OVERFILL * vehicle.capacity if vehicle.capacity else math.inf
-    for line, entry in rows:
-        if entry.date > today:
-            problems.append(Problem(f"date {entry.date} lies in the future; correct it", file, line))
-        elif entry.energy > most:
-            problems.append(
-                Problem(
-                    f"energy {entry.energy:.6g} {vehicle.unit} is more than {OVERFILL} times the capacity of "
-                    f"{vehicle.name} ({vehicle.capacity:g} {vehicle.unit}); correct it, or the unit",
-                    file,
-                    line,
+def _vehicle_to_add(wanted: Vehicle | None, known: Sequence[Vehicle]) -> Vehicle | None:
+    if wanted is None:
+        return None
+    for vehicle in known:
+        if vehicle.name == wanted.name:
+            if vehicle.carrier != wanted.carrier:
+                raise EntryError(
+                    f"{wanted.name} is in the logbook already, with {vehicle.carrier}; leave --carrier out, or name another"
                 )
-            )
-    return problems
+            return None
+    return wanted
 
 
-def _unknown_rows(rows: Sequence[Row], recorded: Iterable[Entry]) -> tuple[list[Row], list[Row]]:
-    """The rows not recorded yet, and those that are; equal rows count as often as they occur."""
-    left = Counter(fingerprint(entry) for entry in recorded)
-    new: list[Row] = []
-    known: list[Row] = []
-    for row in rows:
-        mark = fingerprint(row[1])
-        if left[mark] > 0:
-            left[mark] -= 1
-            known.append(row)
-        else:
-            new.append(row)
-    return new, known
+def _with_defaults(request: Request, known: Sequence[Vehicle]) -> Request:
+    """The request with the vehicle and the kind of rows that name none."""
+    if request.vehicle is not None and request.vehicle not in {vehicle.name for vehicle in known}:
+        have = ", ".join(vehicle.name for vehicle in known) or "none"
+        raise UnknownNameError(
+            f"no vehicle {request.vehicle!r} in this logbook; it has: {have}. Give --carrier to add it with this import"
+        )
+    electric = {vehicle.name: "charge" for vehicle in known if vehicle.carrier == "electricity"}
+    only = known[0].name if len(known) == 1 else None
+    default = request.vehicle or only
+    kinds = {"": request.kind} if request.kind else electric | {"": electric.get(default or "", "fill-up")}
+    return replace(request, form=replace(request.form, vehicle=default, kinds=kinds))
 
 
-def fingerprint(entry: Entry) -> tuple[object, ...]:
-    """What makes an entry this entry: the moment and the amounts, not what was noted about them."""
-    amounts = (entry.odometer_km, entry.distance_km, entry.energy, entry.level_percent)
-    rounded = (None if value is None or math.isnan(value) else round(value, 6) for value in amounts)
-    return (entry.vehicle, entry.date, entry.kind, *rounded)
+def _unit_notes(request: Request, plan: ImportPlan, known: Sequence[Vehicle]) -> list[str]:
+    """Say what was assumed where the vehicle is usually logged in other units."""
+    used = {entry.vehicle for _, entry in plan.new}
+    notes = []
+    for vehicle in known:
+        if vehicle.name in used and vehicle.distance_unit != "km" and "odometer_km" not in request.form.typed_units:
+            notes.append(f"distances of {vehicle.name} were read as km; if they are miles, give --odometer-unit mi")
+        if vehicle.name in used and vehicle.typed_unit not in (None, vehicle.unit) and request.energy_unit is None:
+            notes.append(f"energy of {vehicle.name} was read as {vehicle.unit}; else give --energy-unit")
+    return notes
 
 
-def _mark_missed(
-    plan: ImportPlan, refused: Mapping[int, str | None], named: str | None, rows_of: Mapping[str, list[Row]]
-) -> None:
-    """An entry after a rejected row has an entry missing before it: without the mark its energy would look too low."""
-    if not refused:
-        return
-    following: set[int] = set()
-    for name, rows in rows_of.items():
-        backwards = newest_first(rows)
-        good = sorted(line for line, entry in plan.new + plan.known if entry.vehicle == name)
-        for line, of in refused.items():
-            if named is not None or of is None or of == name:
-                place = bisect_left(good, line) - 1 if backwards else bisect_right(good, line)
-                if 0 <= place < len(good):
-                    following.add(good[place])
-                else:
-                    plan.notes.append(f"line {line} is rejected and no new row of {name} follows it; see that the next "
-                                      "entry of this vehicle is logged with --missed")  # fmt: skip
-    marked = following.intersection(line for line, _ in plan.new)
-    plan.new = [(n, dataclasses.replace(entry, missed=True) if n in marked else entry) for n, entry in plan.new]
-    if marked:
-        plan.notes.append(f"entries after a rejected row, marked as having one missing before them: {len(marked)}")
+def _created(logbook: Path) -> Store:
+    store = open_logbook(logbook, create=True)
+    assert isinstance(store, Store)
+    return store
 
 
-def refusal(plan: ImportPlan) -> EntryError:
-    """All bad rows in one error, one a line."""
-    advice = "nothing was imported; mend the file, or keep the good rows with --skip-bad rejected.csv"
-    if len(plan.problems) == 1:
-        return EntryError(f"{plan.problems[0]} ({advice})")
-    lines = "".join(f"\n  {problem}" for problem in plan.problems)
-    return EntryError(f"{len(plan.bad_lines)} bad rows in {plan.file}: {advice}{lines}")
-
-
-def write_rejected(target: Path, path: Path, form: Form, problems: Sequence[Problem]) -> None:
-    """Copy the bad rows of `path` to the new file `target`, with their header and the column `reason`.
-
-    Never overwrites and follows no link. Raises EntryError.
-    """
-    reasons: dict[int, str] = {}
-    for problem in problems:
-        if problem.line is not None:
-            reasons[problem.line] = "; ".join(filter(None, (reasons.get(problem.line), problem.message)))
-    table = open_csv(path, delimiter=form.delimiter, encoding=form.encoding)
+@contextmanager
+def _rejects(request: Request, path: Path, problems: Sequence[Problem], outcome: Outcome) -> Any:
+    """Refuse bad rows or set them aside; the file of rejected rows goes again if the writing inside fails."""
+    if problems and request.skip_bad is None:
+        raise refusal(str(path), problems)
+    target = request.skip_bad if problems else None
+    if target is not None:
+        write_rejected(target, path, request.form, problems)
+        outcome.rejected_file = target
     try:
-        with target.open("x", encoding="utf-8", newline="") as file:
-            writer = csv.writer(file, delimiter=table.delimiter, lineterminator="\n")
-            writer.writerow([*table.header, "reason"])
-            writer.writerows([*cells, reasons[line]] for line, cells in table.rows() if line in reasons)
-    except FileExistsError:
-        raise EntryError(f"{target} exists already; name a new file for the rejected rows") from None
-    except OSError as error:
-        raise EntryError(f"{target} cannot be written: {error.strerror}; name another file") from None
+        yield
+    except BaseException:
+        if target is not None:
+            target.unlink(missing_ok=True)
+        raise

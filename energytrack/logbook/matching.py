@@ -33,6 +33,8 @@ def match_columns(
         forms = " ".join(f"--column {name}=..." for name in lacking)
         either = " (odometer_km or distance_km)" if "odometer_km" in lacking else ""
         raise _refused(table, f"has no {', '.join(lacking)}{either}; it has {_titles(table)}. Name them: {forms}")
+    if "vehicle" in readers and "vehicle" not in matched and form.vehicle is None:
+        raise _refused(table, "has no column vehicle; say with --vehicle whose rows these are")
     further = [name for name in matched if name not in readers]
     if further and not entries:
         raise _refused(table, f"{', '.join(further)}: no such column here; known are {', '.join(readers)}")

@@ -33,6 +33,7 @@ class Reading(Generic[Record]):
     rows: list[tuple[int, Record]] = field(default_factory=list)
     problems: list[Problem] = field(default_factory=list)
     notes: list[str] = field(default_factory=list)
+    typed: dict[int, dict[str, str]] = field(default_factory=dict)  # line -> what stood there in other units
     refused: dict[int, str | None] = field(default_factory=dict)  # line of a bad row -> the vehicle it names, if any
     whole: bool = True  # False: the table could not be read to its end, or not at all
 
@@ -137,6 +138,8 @@ def _read(
         width = len(table.header)
         for line, cells in table.rows():
             _read_row(reading, line, cells, width, wanted, build)
+            if form.typed_units:
+                reading.typed[line] = _typed(cells, wanted, form.typed_units)
     except UnreadableTableError as error:
         reading.problems.append(error.problem)
         reading.whole = False
@@ -172,6 +175,11 @@ def _read_row(
     if wrong:
         reading.problems.append(Problem("; ".join(wrong), reading.file, line))
         reading.refused[line] = values.get("vehicle")
+
+
+def _typed(cells: list[str], wanted: list[tuple[str, int, Reader]], units: Mapping[str, str]) -> dict[str, str]:
+    found = {name: cells[place].strip() for name, place, _ in wanted if name in units and place < len(cells)}
+    return {name: f"{text} {units[name]}" for name, text in found.items() if text}
 
 
 def _without_repeats(reading: Reading[Record], key: Callable[[Record], Any]) -> Reading[Record]:
