@@ -4,14 +4,31 @@ from __future__ import annotations
 
 import json
 from collections.abc import Sequence
+from pathlib import Path
 
 import typer
 
-from energytrack.logbook.importing import Outcome
+from energytrack.cli.app import LOGBOOK_VARIABLE
+from energytrack.errors import LogbookError
+from energytrack.logbook.importing import OTHER_TABLES, Outcome
 from energytrack.logbook.quantities import DISTANCE, ENERGY
-from energytrack.logbook.records import CARRIERS, UNIT_OF_CARRIER, Vehicle
+from energytrack.logbook.records import CARRIERS, KINDS, UNIT_OF_CARRIER, UNITS, Vehicle
 
-ENERGY_UNITS = tuple(ENERGY)
+
+def check_words(
+    table: str, odometer: str | None, energy: str | None, speed: str | None, temperature: str | None, kind: str | None
+) -> None:
+    """Raises typer.BadParameter for a word that is none of those an option takes."""
+    for option, value, words in (
+        ("--table", table, ("entries", *OTHER_TABLES)),
+        ("--odometer-unit", odometer, tuple(DISTANCE)),
+        ("--energy-unit", energy, tuple(ENERGY)),
+        ("--speed-unit", speed, ("km/h", "mph")),
+        ("--temperature-unit", temperature, ("C", "F")),
+        ("--kind", kind, KINDS),
+    ):
+        if value is not None:
+            one_of(option, value, words)
 
 
 def one_of(option: str, value: str, words: Sequence[str]) -> str:
@@ -19,6 +36,13 @@ def one_of(option: str, value: str, words: Sequence[str]) -> str:
     if value not in words:
         raise typer.BadParameter(f"{value!r} is not one of: {', '.join(words)}", param_hint=option)
     return value
+
+
+def logbook_path(context: typer.Context) -> Path:
+    """The logbook named on the command line or by the environment. Raises LogbookError."""
+    if context.obj is None:
+        raise LogbookError(f"no logbook named: give --logbook PATH before the command, or set {LOGBOOK_VARIABLE}")
+    return Path(context.obj)
 
 
 def columns(pairs: Sequence[str]) -> dict[str, str]:
@@ -42,20 +66,11 @@ def units(odometer: str | None, energy: str | None, speed: str | None, temperatu
         "distance_km": odometer,
         "fitted_km": odometer,
         "removed_km": odometer,
-        "energy": None if energy in (None, *UNIT_OF_CARRIER.values()) else energy,
+        "energy": None if energy in UNITS else energy,
         "speed_kmh": speed,
         "temperature_c": None if temperature == "C" else temperature,
     }
     return {name: unit for name, unit in told.items() if unit is not None}
-
-
-def factors(odometer: str | None, energy: str | None, speed: str | None) -> dict[str, float]:
-    """Factors into base units, as Form names them."""
-    return {
-        "km": DISTANCE[odometer or "km"],
-        "energy": ENERGY[energy][1] if energy else 1.0,
-        "kmh": DISTANCE["mi" if speed == "mph" else "km"],
-    }
 
 
 def new_vehicle(

@@ -122,7 +122,6 @@ def _unknown_rows(rows: Sequence[Row], recorded: Iterable[Entry]) -> tuple[list[
     """The rows not recorded yet, and those that are; equal rows count as often as they occur."""
     left = Counter(fingerprint(entry) for entry in recorded)
     new: list[Row] = []
-    typed: dict[int, dict[str, str]] = field(default_factory=dict)  # line -> what stood there, in the file's units
     known: list[Row] = []
     for row in rows:
         mark = fingerprint(row[1])
@@ -135,7 +134,7 @@ def _unknown_rows(rows: Sequence[Row], recorded: Iterable[Entry]) -> tuple[list[
 
 
 def fingerprint(entry: Entry) -> tuple[object, ...]:
-    """What makes an entry this entry, as the store counts it: the moment and the amounts, not what was noted of them."""
+    """What makes an entry this entry, as the store counts it: the moment and the amounts, no notes."""
     energy = None if math.isnan(entry.energy) else entry.energy
     return (entry.vehicle, entry.date, entry.odometer_km, entry.distance_km, energy)
 

@@ -150,7 +150,7 @@ def _planned(
         path,
         request.form,
         known,
-        lambda name: store.first_entries(name) if store and name in held else [],
+        lambda name: store.ever_logged(name) if store and name in held else [],
         lambda name: store.entries(name) if store and name in held else [],
         today=today,
         named=request.vehicle,
@@ -176,9 +176,8 @@ def _vehicle_to_add(wanted: Vehicle | None, known: Sequence[Vehicle]) -> Vehicle
     for vehicle in known:
         if vehicle.name == wanted.name:
             if vehicle.carrier != wanted.carrier:
-                raise EntryError(
-                    f"{wanted.name} is in the logbook already, with {vehicle.carrier}; leave --carrier out, or name another"
-                )
+                here = f"{wanted.name} is in the logbook already, with {vehicle.carrier}"
+                raise EntryError(f"{here}; leave --carrier out, or name another vehicle")
             return None
     return wanted
 

@@ -40,6 +40,18 @@ class Store(LogbookFile):
         """All standing entries in driving order: by date, on one day by odometer, then as logged."""
         return self._entries(vehicle_name, "ORDER BY date, odometer_km, id")
 
+    def ever_logged(self, vehicle_name: str) -> list[Entry]:
+        """Every entry as first logged, struck ones too, and every correction that changed its moment or amounts."""
+        amounts = [f"{{0}}.{column}" for column in ("date", "odometer_km", "distance_km", "energy")]
+        key = f"({', '.join(amounts)})"
+        select = (
+            f"SELECT {rows.ENTRY_COLUMNS} FROM entry AS this WHERE vehicle_id = ? AND NOT EXISTS (SELECT 1 FROM entry "
+            f"AS earlier WHERE earlier.id = this.supersedes AND {key.format('earlier')} IS {key.format('this')})"
+        )
+        found = self._rows(select, self._number(vehicle_name))
+        with self._guard():
+            return [rows.entry_of(vehicle_name, row) for row in found]
+
     def last_entries(self, vehicle_name: str, count: int) -> list[Entry]:
         """The newest `count` standing entries in driving order, at a cost that does not grow with the logbook."""
         newest_first = "ORDER BY date DESC, odometer_km DESC, id DESC LIMIT ?"
