@@ -8,12 +8,11 @@ from typing import Annotated
 
 import typer
 
-from energytrack.cli.app import app
+from energytrack.cli.context import logbook_path
 
 Text = str | None
 
 
-@app.command("import")
 def import_table(
     context: typer.Context,
     file: Annotated[Path, typer.Argument(help="CSV file, or a folder of tables as `export` writes it.")],
@@ -73,4 +72,6 @@ def import_table(
     )
     new = options.new_vehicle(vehicle, carrier, capacity, odometer_unit, energy_unit)
     request = Request(file, form, table, vehicle, new, kind, energy_unit, again, skip_bad)
-    options.tell(run_import(request, options.logbook_path(context), dt.date.today()), as_json)
+    with options.bad_rows_told():
+        outcome = run_import(request, logbook_path(context), dt.date.today())
+    options.tell(outcome, as_json)

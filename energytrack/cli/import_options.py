@@ -2,17 +2,18 @@
 
 from __future__ import annotations
 
-import json
-from collections.abc import Sequence
-from pathlib import Path
+import sys
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 
 import typer
 
-from energytrack.cli.app import LOGBOOK_VARIABLE
-from energytrack.errors import LogbookError
+from energytrack.cli.context import say, say_json
 from energytrack.logbook.importing import OTHER_TABLES, Outcome
 from energytrack.logbook.quantities import DISTANCE, ENERGY
 from energytrack.logbook.records import CARRIERS, KINDS, UNIT_OF_CARRIER, UNITS, Vehicle
+from energytrack.logbook.rejected import BadRowsError
+from energytrack.presentation.plain import plain_text
 
 
 def check_words(
@@ -36,13 +37,6 @@ def one_of(option: str, value: str, words: Sequence[str]) -> str:
     if value not in words:
         raise typer.BadParameter(f"{value!r} is not one of: {', '.join(words)}", param_hint=option)
     return value
-
-
-def logbook_path(context: typer.Context) -> Path:
-    """The logbook named on the command line or by the environment. Raises LogbookError."""
-    if context.obj is None:
-        raise LogbookError(f"no logbook named: give --logbook PATH before the command, or set {LOGBOOK_VARIABLE}")
-    return Path(context.obj)
 
 
 def columns(pairs: Sequence[str]) -> dict[str, str]:
@@ -91,18 +85,28 @@ def new_vehicle(
     return Vehicle(name, carrier, unit, capacity, odometer or "km", typed_unit=None if energy == unit else energy)
 
 
+@contextmanager
+def bad_rows_told() -> Iterator[None]:
+    """Every bad row as a line on stderr, above the refusal; a single one is told by the refusal itself."""
+    try:
+        yield
+    except BadRowsError as refusal:
+        if len({problem.line for problem in refusal.problems}) > 1:
+            for problem in refusal.problems:
+                print(plain_text(str(problem)), file=sys.stderr)
+        raise
+
+
 def tell(outcome: Outcome, as_json: bool) -> None:
     """Print what the import did."""
     if as_json:
-        print(json.dumps(outcome.to_dict(), indent=2, ensure_ascii=False))
+        say_json(outcome.to_dict())
         return
+    lines = []
     for table, new in outcome.new.items():
         name = outcome.file if len(outcome.new) == 1 else f"{outcome.file}, {table}"
-        print(f"{name}: {new} new, {outcome.already[table]} already there")
+        lines.append(f"{name}: {new} new, {outcome.already[table]} already there")
     if outcome.rejected_file:
-        lines = {problem.line for problem in outcome.rejected}
-        print(f"{len(lines)} bad rows written to {outcome.rejected_file}")
-    for note in outcome.notes:
-        print(f"note: {note}")
-
-
+        count = len({problem.line for problem in outcome.rejected})
+        lines.append(f"{count} bad {'row' if count == 1 else 'rows'} written to {outcome.rejected_file}")
+    say([*lines, *(f"note: {note}" for note in outcome.notes)])

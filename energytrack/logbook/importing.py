@@ -17,7 +17,7 @@ from energytrack.logbook.import_plan import ImportPlan, plan_import
 from energytrack.logbook.opening import open_logbook
 from energytrack.logbook.quantities import ENERGY
 from energytrack.logbook.records import Problem, Vehicle
-from energytrack.logbook.rejected import refusal, write_rejected
+from energytrack.logbook.rejected import BadRowsError, write_rejected
 from energytrack.logbook.store import Store
 from energytrack.logbook.tables import Reading, read_events, read_modifications, read_weather
 
@@ -218,7 +218,7 @@ def _created(logbook: Path) -> Store:
 def _rejects(request: Request, path: Path, problems: Sequence[Problem], outcome: Outcome) -> Any:
     """Refuse bad rows or set them aside; the file of rejected rows goes again if the writing inside fails."""
     if problems and request.skip_bad is None:
-        raise refusal(str(path), problems)
+        raise BadRowsError(str(path), problems)
     target = request.skip_bad if problems else None
     if target is not None:
         write_rejected(target, path, request.form, problems)
