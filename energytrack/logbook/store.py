@@ -57,6 +57,13 @@ class Store(LogbookFile):
         newest_first = "ORDER BY date DESC, odometer_km DESC, id DESC LIMIT ?"
         return self._entries(vehicle_name, newest_first, count)[::-1]
 
+    def entry(self, vehicle_name: str, number: int) -> Entry:
+        """The standing entry of that number. Raises UnknownNameError where there is none."""
+        found = self._entries(vehicle_name, "AND id = ?", number)
+        if not found:
+            raise UnknownNameError(f"{vehicle_name} has no entry {number}: `entries` lists them")
+        return found[0]
+
     def neighbours(self, entry: Entry) -> tuple[Entry | None, Entry | None]:
         """The standing entries just before and after the place of a new one: by odometer, or by date without one."""
         if entry.odometer_km is not None:
