@@ -78,6 +78,9 @@ class Folder:
         self.vehicle(vehicle_name)
         return []
 
+    def close(self) -> None:
+        """Nothing to let go of: tables are read whole."""
+
     def refuse_writing(self, *_: object, **__: object) -> NoReturn:
         """What every attempt to write meets."""
         raise LogbookError(

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass, field, replace
 from pathlib import Path
@@ -97,7 +97,7 @@ def _import_entries(request: Request, store: Store | None, logbook: Path, today:
     plan = _planned(request, request.path, store, known, today)
     outcome = Outcome(str(request.path), rejected=plan.problems, notes=plan.notes + _unit_notes(request, plan, known))
     with _rejects(request, request.path, plan.problems, outcome):
-        store = store or _created(logbook)
+        store = store or Store.create(logbook)
         with store.transaction():
             if added:
                 store.add_vehicle(added)
@@ -165,9 +165,9 @@ def _planned(
 
 
 def _add(store: Store, plan: ImportPlan, request: Request, outcome: Outcome) -> None:
-    pairs = [(entry, plan.typed.get(line, {})) for line, entry in plan.new]
-    added = store.add_entries(pairs, source=request.path.name)
-    outcome.count("entries", added, len(plan.new) + len(plan.known))
+    """Known rows too: the store counts equal ones, and it alone knows what was logged in the meantime."""
+    pairs = [(entry, plan.typed.get(line, {})) for line, entry in plan.known + plan.new]
+    outcome.count("entries", store.add_entries(pairs, source=request.path.name), len(pairs))
 
 
 def _vehicle_to_add(wanted: Vehicle | None, known: Sequence[Vehicle]) -> Vehicle | None:
@@ -208,14 +208,8 @@ def _unit_notes(request: Request, plan: ImportPlan, known: Sequence[Vehicle]) ->
     return notes
 
 
-def _created(logbook: Path) -> Store:
-    store = open_logbook(logbook, create=True)
-    assert isinstance(store, Store)
-    return store
-
-
 @contextmanager
-def _rejects(request: Request, path: Path, problems: Sequence[Problem], outcome: Outcome) -> Any:
+def _rejects(request: Request, path: Path, problems: Sequence[Problem], outcome: Outcome) -> Iterator[None]:
     """Refuse bad rows or set them aside; the file of rejected rows goes again if the writing inside fails."""
     if problems and request.skip_bad is None:
         raise BadRowsError(str(path), problems)
