@@ -116,9 +116,8 @@ def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) 
     store = "charge" if vehicle.unit == "kWh" else "tank"
     if index == 0:
         return f"first entry: consumption follows with the next full {store}"
-    legs = [leg for segment in segmented.segments for leg in segment.legs] + list(segmented.open_legs)
-    driven = math.fsum(leg.distance_km for leg in legs if leg.entry == index)
-    since = f"{distance_text(driven, vehicle)} since the last entry: " if driven > 0 else ""
+    driven = segmented.positions[index] - segmented.positions[index - 1]
+    since = f"{distance_text(driven, vehicle)} since the last entry: " if driven > 0 and not entry.missed else ""
     void = next((span for span in segmented.void if span.entry == index), None)
     if void is not None and (entry.full or entry.level_percent is not None):
         return f"{since}no consumption from this entry, {WHY_VOID[void.reason]}"
