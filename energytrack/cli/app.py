@@ -28,6 +28,7 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "mod": ("mod", "mod_commands"),
     "event": ("event", "event"),
     "entries": ("entries", "entries"),
+    "import": ("import_", "import_table"),
 }
 
 
