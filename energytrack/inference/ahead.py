@@ -1,0 +1,205 @@
+"""The road ahead: the log continued by the vehicle's own habit, and the information that would bring.
+
+Future segments are drawn from the recent ones (distance, days, speed); their temperature comes from the vehicle's
+yearly pattern at their dates. No consumption is needed: information depends on the design and the noise alone.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+
+from energytrack.consumption.conditions import Conditions
+from energytrack.inference.model import Model, stack
+from energytrack.inference.noise import Array, Scatter, products, structure
+from energytrack.inference.shift import contrast_variance
+
+RECENT = 40  # segments that make up the habit
+HORIZON_DAYS, HORIZON_KM = 3 * 365.25, 100_000.0  # whichever comes first: nobody plans a test beyond
+_MOST_SEGMENTS = 2_000
+_SHORTEST_DAYS = 0.1  # of an average future segment, for logs whose entries share one date
+
+Schedule = Callable[[int], Array]  # number of segments ahead -> share of each driven with the modification, (m,)
+
+
+def always_fitted(count: int) -> Array:
+    """One switch: the modification stays on."""
+    return np.ones(count)
+
+
+def alternating(every: int) -> Schedule:
+    """On for `every` segments, off for as many, and so on."""
+
+    def schedule(count: int) -> Array:
+        on: Array = (np.arange(count) // every % 2 == 0).astype(float)
+        return on
+
+    return schedule
+
+
+def off_first(without: int) -> Schedule:
+    """More baseline first: off for `without` segments, then on to the end."""
+
+    def schedule(count: int) -> Array:
+        on: Array = (np.arange(count) >= without).astype(float)
+        return on
+
+    return schedule
+
+
+@dataclass(frozen=True)
+class Road:
+    """A log of n segments and m more: arrays over n + m, in the model's relative units."""
+
+    past: int
+    distance: Array
+    day: Array
+    ends: Array  # days driven since the last segment of the log, at the end of each of the m segments
+    linked: np.ndarray[tuple[int], np.dtype[np.bool_]]
+    start_weight: Array
+    end_weight: Array
+    extra: Array
+    columns: Array  # (n + m, p) with the modification asked about in column 1
+    precision: Array  # (p,)
+    base: float
+    ratio: float
+    kilometre: float  # km per relative distance
+
+    @property
+    def ahead(self) -> int:
+        return len(self.distance) - self.past
+
+    def variance(self, count: int, theta: Array) -> float:
+        """Variance of the shift (as a ratio) once `count` of the segments ahead have been driven."""
+        n = self.past + count
+        shape = structure(
+            self.distance[:n],
+            self.day[:n],
+            self.linked[:n],
+            self.start_weight[:n],
+            self.end_weight[:n],
+            extra=self.extra[:n],
+        )
+        normal = products(shape, Scatter(*np.exp(theta)), self.columns[:n]).cross + np.diag(self.precision)
+        return contrast_variance(np.linalg.inv(normal)[:2, :2], self.base, self.ratio)
+
+
+@dataclass(frozen=True)
+class Reach:
+    """Where on the road the information suffices: km and days from now."""
+
+    distance_km: float
+    days: float
+
+
+def road(model: Model, schedule: Schedule, seed: int) -> Road:
+    """The log of `model`, continued to the horizon."""
+    habit = _habit(model, seed)
+    shares = schedule(len(habit.distance_km))
+    observed, scale = model.observed, model.scale
+    distance = np.concatenate([observed.distance_km, habit.distance_km]) / scale.distance_km
+    ahead = _columns_ahead(model, habit.conditions, shares) * (habit.distance_km / scale.distance_km)[:, None]
+    past = model.problem.columns
+    if model.modification is None:  # planning: nothing of the log was driven with it
+        past = np.insert(past, 1, 0.0, axis=1)
+    asked = model.modification is not None
+    return Road(
+        past=len(observed.distance_km),
+        distance=distance,
+        day=np.concatenate([observed.mid_day, habit.conditions.day]),
+        ends=habit.ends,
+        linked=np.concatenate([observed.linked, np.ones(len(shares), dtype=bool)]),
+        start_weight=np.concatenate([observed.start_weight, habit.start_weight]),
+        end_weight=np.concatenate([observed.end_weight, habit.end_weight]),
+        extra=np.concatenate([model.problem.shape.extra, np.zeros(len(shares))]),
+        columns=np.vstack([past, ahead]),
+        precision=model.problem.precision if asked else np.insert(model.problem.precision, 1, 0.0),
+        base=float(model.fit.coefficients[0]),
+        ratio=float(model.fit.coefficients[1] / model.fit.coefficients[0]) if asked else 0.0,
+        kilometre=scale.distance_km,
+    )
+
+
+def reach(ahead: Road, theta: Array, variance: float) -> Reach | None:
+    """The first point of the road at which the shift's variance has fallen to `variance`; None beyond the horizon."""
+    low, high = 0, ahead.ahead
+    at = {0: _variance_now(ahead, theta), high: ahead.variance(high, theta)}
+    if at[high] > variance:
+        return None
+    if at[low] <= variance:
+        return Reach(0.0, 0.0)
+    while high - low > 1:
+        middle = (low + high) // 2
+        at[middle] = ahead.variance(middle, theta)
+        low, high = (low, middle) if at[middle] <= variance else (middle, high)
+    part = _within(at[low], at[high], variance)
+    driven = np.concatenate([[0.0], np.cumsum(ahead.distance[ahead.past :]) * ahead.kilometre])
+    days = np.concatenate([[0.0], ahead.ends])
+    return Reach(
+        float(driven[low] + part * (driven[high] - driven[low])), float(days[low] + part * (days[high] - days[low]))
+    )
+
+
+def segments_within(ahead: Road, distance_km: float) -> int:
+    """How many of the segments ahead fit into a distance, at least one."""
+    driven = np.cumsum(ahead.distance[ahead.past :]) * ahead.kilometre
+    return max(1, int(np.searchsorted(driven, distance_km, side="right")))
+
+
+def _variance_now(ahead: Road, theta: Array) -> float:
+    """Infinite where nothing was driven with the modification yet."""
+    if not ahead.columns[: ahead.past, 1].any():
+        return float("inf")
+    return ahead.variance(0, theta)
+
+
+def _within(before: float, after: float, wanted: float) -> float:
+    """Share of a segment at which the information, linear in distance, reaches the wanted one."""
+    gained = 1 / after - (0.0 if np.isinf(before) else 1 / before)
+    missing = 1 / wanted - (0.0 if np.isinf(before) else 1 / before)
+    return float(np.clip(missing / gained, 0.0, 1.0)) if gained > 0 else 1.0
+
+
+@dataclass(frozen=True)
+class _Habit:
+    distance_km: Array
+    ends: Array
+    start_weight: Array
+    end_weight: Array
+    conditions: Conditions
+
+
+def _habit(model: Model, seed: int) -> _Habit:
+    rng = np.random.default_rng(seed)
+    observed = model.observed
+    recent = np.arange(max(0, len(observed.distance_km) - RECENT), len(observed.distance_km))
+    days_of = np.diff(observed.end_day, prepend=observed.end_day[0] - _mean_days(observed.end_day))[recent]
+    mean_km = float(observed.distance_km[recent].mean())
+    mean_days = max(float(days_of.mean()), _SHORTEST_DAYS)
+    count = int(min(HORIZON_DAYS / mean_days, HORIZON_KM / mean_km, _MOST_SEGMENTS)) + 1
+    drawn = rng.choice(recent, size=count)
+    days = np.maximum(days_of[drawn - recent[0]], _SHORTEST_DAYS)
+    ends = np.cumsum(days)
+    day = float(observed.end_day[-1]) + ends - days / 2
+    values = {name: value[drawn] for name, value in model.conditions.values.items()}
+    if "temperature_c" in values:
+        values["temperature_c"] = model.conditions.patterns["temperature_c"].at(day)
+    still = {name: np.zeros(count) for name in values}
+    start = np.concatenate([observed.end_weight[-1:], observed.end_weight[drawn[:-1]]])
+    ahead = Conditions(day, values, still, {}, {})
+    return _Habit(observed.distance_km[drawn], ends, start, observed.end_weight[drawn], ahead)
+
+
+def _mean_days(end_day: Array) -> float:
+    return float(end_day[-1] - end_day[0]) / max(len(end_day) - 1, 1)
+
+
+def _columns_ahead(model: Model, conditions: Conditions, shares: Array) -> Array:
+    """Per unit distance (m, p): other modifications stay as they are now."""
+    others = np.tile(
+        [model.observed.shares[-1, model.observed.names.index(n)] / model.levels[n] for n in model.others],
+        (len(shares), 1),
+    ).reshape(len(shares), len(model.others))
+    return stack(model.terms.columns(conditions), np.hstack([shares[:, None], others]), asked=True)

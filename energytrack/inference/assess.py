@@ -1,0 +1,189 @@
+"""Did the modification shift consumption, by how much, and was the distance enough to say so? Decided only here."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Sequence
+from dataclasses import replace
+from math import sqrt
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.observations import Observations
+from energytrack.errors import InferenceError, UnknownNameError
+from energytrack.inference import bounds
+from energytrack.inference.ahead import always_fitted
+from energytrack.inference.caveats import caveats
+from energytrack.inference.describe import covariates_of, expectation_of, noise_of
+from energytrack.inference.distance import Need, need, remedies
+from energytrack.inference.looks import FEWEST_BASELINE, Question, State, deciding, percent, shown, take_looks
+from energytrack.inference.model import fit_model
+from energytrack.inference.results import Assessment, Verdict
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+
+def assess(
+    entries: pd.DataFrame,
+    modifications: pd.DataFrame,
+    name: str,
+    *,
+    target_percent: float = 3.0,
+    confidence: float = 0.95,
+    power: float = 0.80,
+    capacity: float | None = None,
+    unit: str = "L",
+    covariates: Sequence[str] | None = None,
+    weather: pd.DataFrame | None = None,
+    events: pd.DataFrame | None = None,
+    every_look: bool = True,
+) -> Assessment:
+    """Answer the main question for one modification of one vehicle.
+
+    entries, modifications, weather, events: tables as in docs/reference.md, of one vehicle. `capacity` in `unit`
+    (L, kg, kWh) is estimated from the log where it is not given. `covariates` names numeric columns used besides
+    temperature and speed. `every_look=False` looks only once, at the end, as if nobody had looked before.
+
+    Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
+    not in the table, InferenceError for a target, confidence or power outside its range.
+    """
+    if not 0 < target_percent < 100:
+        raise InferenceError(f"the target must lie between 0 and 100 percent, not {target_percent:g}: 3 is usual")
+    question = Question(name, target_percent / 100, 1 - confidence, power, tuple(covariates or ()))
+    bounds.drift(question.alpha, power)  # refuses a confidence or power outside its range before any work
+    observed, notes = observe_frames(
+        entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
+    )
+    if name not in observed.names:
+        raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")
+    vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
+    states = take_looks(observed, question, every=every_look)
+    blank = _blank(vehicle, observed, question, notes)
+    return _answer(blank, observed, question, states) if states else _before_the_first_look(blank, observed, question)
+
+
+def _answer(blank: Assessment, observed: Observations, question: Question, states: list[State]) -> Assessment:
+    now, decision = states[-1], deciding(states)
+    shift, theta = now.shift, bounds.drift(question.alpha, question.power)
+    answer = replace(
+        blank,
+        shift_percent=100 * shift.ratio,
+        interval_percent=percent(now.interval),
+        standard_error_percent=100 * shift.standard_error,
+        degrees_of_freedom=shift.freedom,
+        information_fraction=now.share,
+        resolvable_now_percent=100 * shift.standard_error * theta,
+        noise=noise_of(now.model),
+        covariates=covariates_of(now.model),
+        looks=tuple(shown(state) for state in states),
+        expectation=expectation_of(now.model),
+        warnings=(*blank.warnings, *caveats(now.model)),
+    )
+    if decision is not None:
+        return _closed(answer, decision, question)
+    required = need(now.model, always_fitted, question.target, question.alpha, question.power)
+    ways = () if required.central else remedies(now.model, required, question.target, question.alpha, question.power)
+    return replace(_open(answer, required, theta), remedies=ways)
+
+
+def _before_the_first_look(blank: Assessment, observed: Observations, question: Question) -> Assessment:
+    """Without a baseline, or with nothing driven since the modification was fitted."""
+    share = observed.shares[:, observed.names.index(question.modification)]
+    if share.any() or len(share) < FEWEST_BASELINE:
+        return blank
+    model = fit_model(observed, None, covariates=question.covariates)
+    required = need(model, always_fitted, question.target, question.alpha, question.power)
+    answer = replace(
+        blank,
+        information_fraction=0.0,
+        noise=noise_of(model),
+        covariates=covariates_of(model),
+        expectation=expectation_of(model),
+    )
+    return _open(answer, required, bounds.drift(question.alpha, question.power))
+
+
+def _open(answer: Assessment, required: Need, theta: float) -> Assessment:
+    """The test goes on: how far, or why not."""
+    driven, central = answer.distance_modified_km, required.central
+    return replace(
+        answer,
+        verdict="out-of-reach" if central is None else "not-yet",
+        distance_needed_km=None if central is None else driven + central.distance_km,
+        distance_to_go_km=None if central is None else central.distance_km,
+        distance_to_go_interval_km=required.interval_km,
+        days_to_go=None if central is None else central.days,
+        distance_expected_km=None if required.expected_km is None else driven + required.expected_km,
+        resolvable_at_best_percent=100 * theta * sqrt(required.best_variance),
+    )
+
+
+def _closed(answer: Assessment, decision: State, question: Question) -> Assessment:
+    """The test is over: what it found, and where."""
+    then = decision.model.observed
+    return replace(
+        answer,
+        verdict=_finding(decision, question),
+        distance_needed_km=_driven_with(then, question.modification),
+        distance_to_go_km=0.0,
+        distance_to_go_interval_km=(0.0, 0.0),
+        days_to_go=0.0,
+        settled_at_km=float(then.end_km[-1]),
+        settled_on=dt.date.fromordinal(int(then.end_day[-1])).isoformat(),
+    )
+
+
+def _finding(decision: State, question: Question) -> Verdict:
+    if decision.crossed:
+        return "shifted"
+    low, high = decision.interval or (-float("inf"), float("inf"))
+    inside = -question.target <= low and high <= question.target
+    return "no-shift-of-target-size" if inside else "closed-unclear"
+
+
+def _blank(vehicle: str, observed: Observations, question: Question, notes: tuple[str, ...]) -> Assessment:
+    """What is known before any fit."""
+    share = np.abs(observed.shares[:, observed.names.index(question.modification)])
+    return Assessment(
+        vehicle=vehicle,
+        modification=question.modification,
+        unit=observed.unit,
+        verdict="no-baseline",
+        shift_percent=None,
+        interval_percent=None,
+        standard_error_percent=None,
+        degrees_of_freedom=None,
+        confidence=1 - question.alpha,
+        power=question.power,
+        target_percent=100 * question.target,
+        information_fraction=None,
+        distance_baseline_km=float(observed.distance_km[share == 0].sum()),
+        distance_modified_km=_driven_with(observed, question.modification),
+        segments_baseline=int((share == 0).sum()),
+        segments_modified=int((share > 0).sum()),
+        distance_needed_km=None,
+        distance_to_go_km=None,
+        distance_to_go_interval_km=None,
+        days_to_go=None,
+        distance_expected_km=None,
+        settled_at_km=None,
+        settled_on=None,
+        resolvable_now_percent=None,
+        resolvable_at_best_percent=None,
+        noise=None,
+        covariates={},
+        looks=(),
+        remedies=(),
+        expectation=None,
+        warnings=notes,
+    )
+
+
+def _driven_with(observed: Observations, modification: str) -> float:
+    """Distance driven with the modification fitted, at whatever level (km)."""
+    share = np.abs(observed.shares[:, observed.names.index(modification)])
+    highest = share.max(initial=0.0)
+    return float((observed.distance_km * share / highest).sum()) if highest > 0 else 0.0

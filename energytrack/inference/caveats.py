@@ -1,0 +1,87 @@
+"""What a careful reader of the answer should know: conditions that differ, values filled in, parts never apart."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from energytrack.consumption.conditions import SPEED, TEMPERATURE
+from energytrack.inference.model import Model
+from energytrack.inference.noise import Array
+
+_LITTLE = 0.3  # share of one phase's conditions met in the other, below which the comparison leans on the fitted curve
+_NEVER_APART = 0.98  # correlation of two modifications' shares
+_NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
+
+
+def caveats(model: Model) -> tuple[str, ...]:
+    """Warnings about an answer, most weighty first."""
+    return (*_never_apart(model), *_little_overlap(model), *_other_level(model), *_filled_in(model), *_no_weather(model))
+
+
+def _shares(model: Model, name: str) -> Array:
+    shares: Array = model.observed.shares[:, model.observed.names.index(name)]
+    return shares
+
+
+def _never_apart(model: Model) -> list[str]:
+    if model.modification is None:
+        return []
+    own = _shares(model, model.modification)
+    return [
+        f"{model.modification} and {other} were (nearly) always fitted together: the log cannot tell them apart. "
+        f"Drive some full tanks with only one of them, or log the two as one modification."
+        for other in model.others
+        if abs(np.corrcoef(own, _shares(model, other))[0, 1]) > _NEVER_APART
+    ]
+
+
+def _little_overlap(model: Model) -> list[str]:
+    if model.modification is None:
+        return []
+    fitted = np.abs(_shares(model, model.modification)) > 0
+    found = []
+    for condition, (plural, unit) in _NAMES.items():
+        value = model.conditions.values.get(condition)
+        if value is None:
+            continue
+        without, with_it = value[~fitted], value[fitted]
+        if _overlap(without, with_it) < _LITTLE:
+            found.append(
+                f"{plural} hardly overlap: {_span(without)} {unit} without the modification, "
+                f"{_span(with_it)} {unit} with it. Drive on into conditions both have seen."
+            )
+    return found
+
+
+def _overlap(one: Array, other: Array) -> float:
+    """Share of the second's values inside the range of the first, or the other way round, whichever is more."""
+    inside = ((other >= one.min()) & (other <= one.max())).mean()
+    outside = ((one >= other.min()) & (one <= other.max())).mean()
+    return float(max(inside, outside))
+
+
+def _span(values: Array) -> str:
+    low, high = round(float(values.min())), round(float(values.max()))
+    return f"{low}" if low == high else f"{low} to {high}"
+
+
+def _other_level(model: Model) -> list[str]:
+    if model.modification is None or model.levels[model.modification] in (0.0, 1.0):
+        return []
+    return [f"the shift is stated at level {model.levels[model.modification]:g}, in proportion for others"]
+
+
+def _filled_in(model: Model) -> list[str]:
+    used = {condition for condition in model.conditions.values}
+    return [
+        f"{_NAMES.get(name, (name, ''))[0]} of {count} of {len(model.observed.energy)} segments were not logged and "
+        f"are filled in from this vehicle's own record"
+        for name, count in model.conditions.filled.items()
+        if count and name in used
+    ]
+
+
+def _no_weather(model: Model) -> list[str]:
+    if TEMPERATURE in model.conditions.values:
+        return []
+    return ["no temperatures logged: the time of year stands in for them, which costs distance. Log the temperature."]

@@ -1,0 +1,124 @@
+"""Distance still needed, its range, and what would shorten it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from math import ceil, sqrt
+
+import numpy as np
+
+from energytrack.inference import bounds
+from energytrack.inference.ahead import (
+    Reach,
+    Road,
+    Schedule,
+    alternating,
+    always_fitted,
+    off_first,
+    reach,
+    road,
+    segments_within,
+)
+from energytrack.inference.model import Model
+from energytrack.inference.noise import Array
+from energytrack.inference.results import Design, Remedy
+
+_DRAWS = 40  # of the noise and the habit, for the 80 % range
+_LOW, _HIGH = 0.10, 0.90
+_WIDEST = 2.5  # standard deviations a draw of the noise may stray
+ALTERNATIONS = (1, 2, 4)  # fill-ups between swaps
+_ALTERNATING = tuple(
+    ("every fill-up" if every == 1 else f"every {every} fill-ups", alternating(every)) for every in ALTERNATIONS
+)
+_LONGER_BASELINE = tuple((f"{count} fill-ups without it first", off_first(count)) for count in (10, 20, 40, 80, 160))
+DISTANCES_KM = (1_000, 2_500, 5_000, 10_000)
+
+
+@dataclass(frozen=True)
+class Need:
+    """What it takes to reach a variance: the best guess and its 80 % range. None: beyond the horizon."""
+
+    central: Reach | None
+    interval_km: tuple[float, float | None] | None
+    expected_km: float | None  # until the test stops, if the true shift equals the target
+    best_variance: float  # at the horizon
+
+
+def need(model: Model, schedule: Schedule, target: float, alpha: float, power: float) -> Need:
+    """Distance ahead, under a schedule, until a shift of the target size (a ratio) can be resolved."""
+    theta = model.fit.theta
+    ahead = road(model, schedule, seed=0)
+    wanted = (target / bounds.drift(alpha, power)) ** 2
+    central = reach(ahead, theta, wanted)
+    sooner = reach(ahead, theta, wanted / bounds.expected_share(alpha, power))
+    return Need(
+        central=central,
+        interval_km=_interval(model, schedule, wanted),
+        expected_km=None if sooner is None else sooner.distance_km,
+        best_variance=ahead.variance(ahead.ahead, theta),
+    )
+
+
+def _interval(model: Model, schedule: Schedule, wanted: float) -> tuple[float, float | None] | None:
+    """10th and 90th percentile over the noise's own uncertainty and the habit's."""
+    reached = [reach(road(model, schedule, seed), theta, wanted) for seed, theta in enumerate(_thetas(model), start=1)]
+    ordered = sorted(float("inf") if r is None else r.distance_km for r in reached)
+    low, high = (ordered[round(q * (len(ordered) - 1))] for q in (_LOW, _HIGH))
+    if low == float("inf"):
+        return None
+    return low, None if high == float("inf") else high
+
+
+def _thetas(model: Model) -> Array:
+    """Draws of the log standard deviations (draws, 4) from their normal approximation."""
+    rng = np.random.default_rng(20)
+    factor = np.linalg.cholesky(model.fit.theta_covariance)
+    strays = np.clip(rng.standard_normal((_DRAWS, 4)), -_WIDEST, _WIDEST)
+    draws: Array = model.fit.theta + strays @ factor.T
+    return draws
+
+
+def design(model: Model, every: int | None, target: float, alpha: float, power: float) -> Design:
+    """One way to run the test from here: one switch (`every` None), or alternating every so many fill-ups."""
+    schedule = always_fitted if every is None else alternating(every)
+    required = need(model, schedule, target, alpha, power)
+    ahead = road(model, schedule, seed=0)
+    theta, z = model.fit.theta, bounds.drift(alpha, power)
+    resolvable = {
+        str(km): 100 * z * sqrt(ahead.variance(segments_within(ahead, km), theta)) for km in DISTANCES_KM
+    }
+    return Design(
+        name="one-switch" if every is None else "alternate",
+        every_fillups=every,
+        swaps=_swaps(ahead, every, required.central),
+        distance_km=None if required.central is None else required.central.distance_km,
+        distance_interval_km=required.interval_km,
+        days=None if required.central is None else required.central.days,
+        resolvable_percent=resolvable,
+    )
+
+
+def _swaps(ahead: Road, every: int | None, central: Reach | None) -> int | None:
+    """Times the part goes on or comes off, the first fitting included."""
+    if every is None:
+        return 1
+    if central is None:
+        return None
+    return ceil((segments_within(ahead, central.distance_km) + 1) / every)
+
+
+def remedies(model: Model, required: Need, target: float, alpha: float, power: float) -> tuple[Remedy, ...]:
+    """What would bring an out-of-reach target within reach: each option that does, with its distance."""
+    theta = model.fit.theta
+    variance = (target / bounds.drift(alpha, power)) ** 2
+    best = 100 * bounds.drift(alpha, power) * sqrt(required.best_variance)
+    larger = ceil(best * 1.15 * 2) / 2  # a little above the limit, which itself is never reached; in half percents
+    wider = reach(road(model, always_fitted, seed=0), theta, variance * (larger / 100 / target) ** 2)
+    found = [Remedy("larger-target", f"{larger:g} %", larger, None if wider is None else wider.distance_km)]
+    for what, options in (("alternate", _ALTERNATING), ("longer-baseline", _LONGER_BASELINE)):
+        reached = [(reach(road(model, schedule, seed=0), theta, variance), detail) for detail, schedule in options]
+        within = [(r.distance_km, detail) for r, detail in reached if r is not None]
+        if within:
+            distance, detail = min(within)
+            found.append(Remedy(what, detail, 100 * target, distance))
+    return tuple(found)

@@ -1,0 +1,114 @@
+"""One look after every closed segment, and the first that settles the question."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from energytrack.consumption.observations import Observations
+from energytrack.inference import bounds
+from energytrack.inference.model import Model, fit_model
+from energytrack.inference.noise import Array
+from energytrack.inference.results import Look
+from energytrack.inference.shift import Shift, shift_of
+
+FEWEST_BASELINE = 5  # segments without the modification before anything is said
+_EACH = 80  # looks taken one by one; then ever more sparsely, so that the cost stays linear in the log
+_SPARSER = 1.05
+
+
+@dataclass(frozen=True)
+class Question:
+    """What is asked of a log."""
+
+    modification: str
+    target: float  # the shift worth knowing about, as a ratio
+    alpha: float
+    power: float
+    covariates: tuple[str, ...] = ()
+
+    @property
+    def information(self) -> float:
+        """Information at which a shift of the target size is found with the stated power."""
+        return (bounds.drift(self.alpha, self.power) / self.target) ** 2
+
+
+@dataclass(frozen=True)
+class State:
+    """The test after one look."""
+
+    segments: int  # of the log, up to this look
+    model: Model
+    shift: Shift
+    share: float  # of the information needed
+    bound: float | None
+    interval: tuple[float, float] | None
+
+    @property
+    def crossed(self) -> bool:
+        return self.bound is not None and self.interval is not None and abs(self.shift.z) > self.bound
+
+    @property
+    def complete(self) -> bool:
+        return self.share >= 1.0
+
+
+def take_look(observed: Observations, question: Question, start: Array | None) -> State:
+    """Fit what is known so far and hold the shift against its bound."""
+    model = fit_model(observed, question.modification, covariates=question.covariates, start=start)
+    shift = shift_of(model.fit)
+    share = min(1.0, 1 / shift.standard_error**2 / question.information)
+    bound = bounds.critical(share, shift.freedom, question.alpha)
+    return State(len(observed.energy), model, shift, share, bound, shift.interval(bound, model.fit))
+
+
+def take_looks(observed: Observations, question: Question, *, every: bool) -> list[State]:
+    """States in driving order; only the last one where `every` is False. Empty without a baseline or a test phase."""
+    counts = look_points(observed, question.modification)
+    states: list[State] = []
+    for count in counts if every else counts[-1:]:
+        start = states[-1].model.fit.theta if states else None
+        states.append(take_look(observed.head(count), question, start))
+    return states
+
+
+def look_points(observed: Observations, modification: str) -> list[int]:
+    """Numbers of segments at which to look: from the first one driven with the modification, given a baseline."""
+    share = np.abs(observed.shares[:, observed.names.index(modification)])
+    fitted = share > 0
+    ready = np.flatnonzero((np.cumsum(~fitted) >= FEWEST_BASELINE) & (np.cumsum(fitted) >= 1))
+    if ready.size == 0:
+        return []
+    counts = (ready + 1).tolist()
+    points, step = counts[:_EACH], 1.0
+    position = float(len(points))
+    while position < len(counts):
+        points.append(counts[int(position)])
+        step *= _SPARSER
+        position += step
+    return points if points[-1] == counts[-1] else [*points, counts[-1]]
+
+
+def deciding(states: Sequence[State]) -> State | None:
+    """The first look that crossed its bound or completed the information: it closes the test."""
+    return next((state for state in states if state.crossed or state.complete), None)
+
+
+def shown(state: State) -> Look:
+    """A look as a result."""
+    last = state.model.observed
+    return Look(
+        odometer_km=float(last.end_km[-1]),
+        date=dt.date.fromordinal(int(last.end_day[-1])).isoformat(),
+        information_fraction=state.share,
+        shift_percent=100 * state.shift.ratio,
+        interval_percent=percent(state.interval),
+        bound=state.bound,
+    )
+
+
+def percent(interval: tuple[float, float] | None) -> tuple[float, float] | None:
+    return None if interval is None else (100 * interval[0], 100 * interval[1])

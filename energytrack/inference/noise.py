@@ -1,0 +1,146 @@
+"""Four sources of scatter in one covariance, and its restricted likelihood in linear time.
+
+Relative units throughout: distance in mean segments, energy in mean segment energies, so that every standard
+deviation is a fraction of the consumption of an average segment.
+
+    u_i = trip_i + level_i - level_(i-1) + d_i (weeks(t_i) + seasons(t_i))
+
+Trips are independent with variance proportional to distance; a level error is shared by the two segments that meet
+there; the drifts are Ornstein-Uhlenbeck processes, whose precision matrix is tri-diagonal (Rue and Held, 2005). Given
+drifts and levels the segments are independent, so the n x n covariance is never formed: the posterior precision of
+(weeks, seasons, level), taken segment by segment, is a band of width three, factored by LAPACK's dpbtrf.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.linalg import lapack
+
+Array = NDArray[np.float64]
+
+HALF_LIFE_DAYS = (21.0, 180.0)  # of the drift of weeks and of the drift of seasons
+_SAME_DAY = 0.02  # days; closer dates are taken as this far apart, so that the drift's precision stays finite
+_LATENT = 3  # weeks, seasons, level: the unknowns that come with each segment
+
+
+class Scatter(NamedTuple):
+    """Standard deviations of the four sources, in relative units."""
+
+    trip: float
+    level: float
+    weeks: float
+    seasons: float
+
+
+@dataclass(frozen=True)
+class Structure:
+    """What is known of the scatter before its sizes are: n segments in driving order, arrays of shape (n,)."""
+
+    distance: Array  # relative
+    trip_shape: Array  # trip variance per trip^2: the distance itself for independent trips
+    linked: NDArray[np.bool_]  # shares its start level with the segment before
+    start_weight: Array  # sd of the level at the start, relative to a full fill
+    end_weight: Array
+    extra: Array  # further known variance, such as that of a filled-in temperature
+    drift: tuple[tuple[Array, Array], ...]  # diagonal (n,) and off-diagonal (n-1,) of each unit drift's precision
+    drift_log_det: float  # of all drift precisions together
+
+
+def structure(
+    distance: Array,
+    day: Array,
+    linked: NDArray[np.bool_],
+    start_weight: Array,
+    end_weight: Array,
+    *,
+    extra: Array | None = None,
+    trip_shape: Array | None = None,
+) -> Structure:
+    """The structure of n segments: relative distance, day (float) of the middle of each, and the levels they share."""
+    gaps = np.maximum(np.diff(day), _SAME_DAY)
+    drift, log_det = [], 0.0
+    for half_life in HALF_LIFE_DAYS:
+        kept = np.exp2(-gaps / half_life)
+        lost = -np.expm1(-2 * np.log(2) * gaps / half_life)  # 1 - kept^2
+        diagonal = np.ones(len(distance))
+        diagonal[1:] = 1 / lost
+        diagonal[:-1] += kept**2 / lost
+        drift.append((diagonal, -kept / lost))
+        log_det -= float(np.log(lost).sum())
+    return Structure(
+        distance=distance,
+        trip_shape=distance if trip_shape is None else trip_shape,
+        linked=linked,
+        start_weight=start_weight,
+        end_weight=end_weight,
+        extra=np.zeros(len(distance)) if extra is None else extra,
+        drift=tuple(drift),
+        drift_log_det=log_det,
+    )
+
+
+class Products(NamedTuple):
+    """V^-1 taken between the columns of a matrix, and log det V."""
+
+    cross: Array  # (q, q)
+    log_det: float
+
+
+def products(shape: Structure, scatter: Scatter, columns: Array) -> Products:
+    """B' V^-1 B for B of shape (n, q), and log det V, in O(n q).
+
+    Woodbury: V = R + A Q^-1 A', so V^-1 = R^-1 - R^-1 A M^-1 A' R^-1 with M = Q + A' R^-1 A banded.
+    """
+    own, shared, remainder = _loadings(shape, scatter)
+    band = _posterior_precision(shape, own, shared, remainder)
+    factor, fault = lapack.dpbtrf(band, lower=1)
+    if fault:
+        raise FloatingPointError("the precision of drift and levels is not positive definite")
+    weighted = columns / remainder[:, None]
+    projected = np.empty((shape.distance.size, _LATENT, columns.shape[1]))
+    projected[:] = own[:, :, None] * weighted[:, None, :]
+    projected[:-1, 2] += shared[1:, None] * weighted[1:]
+    flat = projected.reshape(-1, columns.shape[1])
+    solved, _ = lapack.dpbtrs(factor, flat, lower=1)
+    cross = columns.T @ weighted - flat.T @ solved
+    log_det = float(np.log(remainder).sum() + 2 * np.log(factor[0]).sum()) - shape.drift_log_det
+    return Products((cross + cross.T) / 2, log_det)
+
+
+def _loadings(shape: Structure, scatter: Scatter) -> tuple[Array, Array, Array]:
+    """Of each segment on its own latents (n, 3) and on the level before it (n,), and what is independent (n,)."""
+    own = np.empty((shape.distance.size, _LATENT))
+    own[:, 0] = scatter.weeks * shape.distance
+    own[:, 1] = scatter.seasons * shape.distance
+    own[:, 2] = scatter.level * shape.end_weight
+    start = scatter.level * shape.start_weight
+    shared = np.where(shape.linked, -start, 0.0)
+    remainder = scatter.trip**2 * shape.trip_shape + shape.extra + np.where(shape.linked, 0.0, start**2)
+    return own, shared, remainder
+
+
+def _posterior_precision(shape: Structure, own: Array, shared: Array, remainder: Array) -> Array:
+    """M in LAPACK's lower band storage (4, 3 n)."""
+    band = np.zeros((_LATENT + 1, shape.distance.size, _LATENT))
+    (weeks, weeks_off), (seasons, seasons_off) = shape.drift
+    scaled = own / remainder[:, None]
+    passed = shared / remainder
+    band[0] = own * scaled
+    band[0, :, 0] += weeks
+    band[0, :, 1] += seasons
+    band[0, :, 2] += 1.0
+    band[0, :-1, 2] += shared[1:] * passed[1:]
+    band[1, :, 0] = own[:, 0] * scaled[:, 1]
+    band[1, :, 1] = own[:, 1] * scaled[:, 2]
+    band[1, :-1, 2] = passed[1:] * own[1:, 0]
+    band[2, :, 0] = own[:, 0] * scaled[:, 2]
+    band[2, :-1, 2] = passed[1:] * own[1:, 1]
+    band[3, :-1, 0] = weeks_off
+    band[3, :-1, 1] = seasons_off
+    band[3, :-1, 2] = passed[1:] * own[1:, 2]
+    return band.reshape(_LATENT + 1, -1)
+
