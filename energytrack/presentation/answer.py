@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from energytrack.inference.results import Assessment, Look, Remedy
 from energytrack.presentation import figures
-from energytrack.presentation.text import clean
+from energytrack.presentation.harmless import clean
 
 USUAL_BASELINE_KM = 3200.0  # four working weeks of a 160 km commute; common practice, no source
 
@@ -107,7 +107,8 @@ def _not_yet(a: Assessment, unit: str) -> str:
     else:
         go = f"about {figures.distance(a.distance_to_go_km, unit)} more with {clean(a.modification)}"
         go += "" if a.days_to_go is None else f", about {figures.days(a.days_to_go)} of your driving"
-    return f"Not yet: {go}, at the target of {figures.target(a.target_percent)}. So far {so_far(a)}."
+    now = "Nothing measured with it so far" if a.shift_percent is None else f"So far {so_far(a)}"
+    return f"Not yet: {go}, at the target of {figures.target(a.target_percent)}. {now}."
 
 
 def _out_of_reach(a: Assessment, unit: str) -> str:
@@ -117,9 +118,16 @@ def _out_of_reach(a: Assessment, unit: str) -> str:
     else:
         best = figures.percent(a.resolvable_at_best_percent)
         limit = f"driving on with {name} can show a shift of {best} at best, not {target}, however far."
-    within = next((r for r in a.remedies if r.distance_km is not None), None)
+    within = _best_remedy(a)
     hint = "" if within is None else f" Within reach: {remedy(within, unit)}."
-    return f"Out of reach: {limit}{hint} So far {so_far(a)}."
+    now = "" if a.shift_percent is None else f" So far {so_far(a)}."
+    return f"Out of reach: {limit}{hint}{now}"
+
+
+def _best_remedy(a: Assessment) -> Remedy | None:
+    """The shortest way that keeps the target; only without one, a larger target."""
+    within = [(r.what == "larger-target", r.distance_km, r) for r in a.remedies if r.distance_km is not None]
+    return min(within, key=lambda way: way[:2])[2] if within else None
 
 
 def _no_baseline(a: Assessment, unit: str) -> str:

@@ -4,11 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
+from energytrack.consumption.terms import COOLING_ABOVE_C, HEATING_BELOW_C
 from energytrack.inference.results import Covariate
 from energytrack.presentation import figures
-from energytrack.presentation.text import clean, join
-
-_COLD, _HOT = 18.0, 22.0  # °C, where the heating and the cooling branch begin
+from energytrack.presentation.harmless import clean
+from energytrack.presentation.text import join
 
 
 def rows(covariates: Mapping[str, Covariate], unit: str) -> list[tuple[str, str]]:
@@ -16,9 +16,11 @@ def rows(covariates: Mapping[str, Covariate], unit: str) -> list[tuple[str, str]
     said: dict[str, str] = {}
     for name, found in covariates.items():
         if name == "heating":
-            said["cold"] = _branch(found, f"below {_COLD:.0f} °C", found.low, min(found.high, _COLD))
+            below = min(found.high, HEATING_BELOW_C)
+            said["cold"] = _branch(found, f"below {HEATING_BELOW_C:.0f} °C", found.low, below)
         elif name == "cooling":
-            said["heat"] = _branch(found, f"above {_HOT:.0f} °C", max(found.low, _HOT), found.high)
+            above = max(found.low, COOLING_ABOVE_C)
+            said["heat"] = _branch(found, f"above {COOLING_ABOVE_C:.0f} °C", above, found.high)
         elif found.condition == "speed_kmh":
             said["speed"] = _speed(found, unit)
         elif found.condition == "season":

@@ -9,7 +9,8 @@ from rich.text import Text
 from energytrack.inference.results import Assessment
 from energytrack.presentation import advice, bar, conditions, figures, picture, scatter
 from energytrack.presentation.answer import count, sentence, so_far
-from energytrack.presentation.text import bullets, clean, labelled, wrap
+from energytrack.presentation.harmless import clean
+from energytrack.presentation.text import bullets, labelled, wrap
 
 Row = tuple[str, str]
 

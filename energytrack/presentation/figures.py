@@ -5,9 +5,8 @@ from __future__ import annotations
 import math
 
 from energytrack.inference.results import Range
+from energytrack.logbook.quantities import DISTANCE
 from energytrack.presentation.text import join
-
-KM_PER_UNIT = {"km": 1.0, "mi": 1.609344}  # international mile, exact (NIST SP 811)
 
 
 def exists(value: float | None) -> bool:
@@ -17,7 +16,7 @@ def exists(value: float | None) -> bool:
 
 def in_unit(km: float, unit: str) -> float:
     """A distance or speed in km (km/h) as km or mi (mi/h)."""
-    return km / KM_PER_UNIT[unit]
+    return km / DISTANCE[unit]
 
 
 def significant(value: float, digits: int) -> str:

@@ -2,17 +2,20 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import io
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 
 from rich.console import Console
 from rich.table import Table
 from rich.text import Text
 
 from energytrack.inference.results import Design, Plan
+from energytrack.logbook.records import Modification
 from energytrack.presentation import figures
 from energytrack.presentation.answer import USUAL_BASELINE_KM, count
-from energytrack.presentation.text import bullets, clean, join, labelled, wrap
+from energytrack.presentation.harmless import clean
+from energytrack.presentation.text import bullets, join, labelled, wrap
 
 _ABOUT_AS_SHORT = 1.1
 
@@ -68,6 +71,22 @@ def _name(design: Design) -> str:
         return "one switch"
     every = design.every_fillups
     return "off and on at every fill-up" if every == 1 else f"off and on every {every} fill-ups"
+
+
+def periods(modifications: Iterable[Modification], unit: str) -> list[str]:
+    """Where each modification already logged was on: a phrase for each period."""
+    said = []
+    for m in modifications:
+        still_on = m.removed_km is None and m.removed_date is None
+        end = "still on" if still_on else f"to {_moment(m.removed_km, m.removed_date, unit)}"
+        said.append(f"{m.name}: from {_moment(m.fitted_km, m.fitted_date, unit)}, {end}")
+    return said
+
+
+def _moment(km: float | None, date: dt.date | None, unit: str) -> str:
+    if km is not None:
+        return figures.driven(km, unit)
+    return "the start" if date is None else date.isoformat()
 
 
 def _one_switch(p: Plan) -> Design | None:

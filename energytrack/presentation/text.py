@@ -1,4 +1,4 @@
-"""Words on a terminal: user text made harmless, lines broken between words and never inside a figure."""
+"""Lines on a terminal: broken between words, never inside a figure."""
 
 from __future__ import annotations
 
@@ -8,17 +8,6 @@ from rich.cells import cell_len, chop_cells
 
 HARD_SPACE = "\u00a0"  # joins a figure to its unit while a line is broken; printed as a plain space
 LABEL_WIDTH = 22
-
-
-def clean(text: str) -> str:
-    """User text without anything a terminal obeys: controls, escapes and direction marks become visible codes."""
-    return "".join(_visible(character) for character in text)
-
-
-def _visible(character: str) -> str:
-    if character.isprintable():
-        return character
-    return " " if character == HARD_SPACE else character.encode("unicode_escape").decode("ascii")
 
 
 def join(figure: str) -> str:
