@@ -15,9 +15,9 @@ import numpy as np
 from energytrack.errors import InferenceError
 from energytrack.inference.noise import Array, Scatter, Structure, products
 
-_STEP = 0.005  # of the stencil, in log standard deviation: its corners are one-sided, so it must be short
+_STEP = 0.02  # of the stencil, in log standard deviation
 _LONGEST = 1.5  # of one Newton step
-_CLOSE = 0.02  # a step shorter than this ends the search
+_CLOSE = 0.01  # a step shorter than this ends the search
 _ROUNDS = 40
 _FLATTEST = 0.05  # curvature taken at least, so that a flat direction cannot throw the search away
 _SMALLEST, _LARGEST = np.log(1e-6), np.log(20.0)
@@ -123,10 +123,9 @@ def _stencil(problem: Problem, theta: Array, here: Point) -> tuple[Array, Array,
     curvature = np.diag((np.array(ahead) + np.array(behind) - 2 * here.cost) / _STEP**2)
     for i in range(count):
         for j in range(i):
-            corner = evaluate(problem, _moved(theta, (free[i], free[j]), +1)).cost
-            bend = 0.5 * (curvature[i, i] + curvature[j, j]) * _STEP**2
-            mixed = (corner - here.cost - (slope[i] + slope[j]) * _STEP - bend) / _STEP**2
-            curvature[i, j] = curvature[j, i] = mixed
+            corners = sum(evaluate(problem, _moved(theta, (free[i], free[j]), sign)).cost for sign in (+1, -1))
+            bend = curvature[i, i] + curvature[j, j]
+            curvature[i, j] = curvature[j, i] = ((corners - 2 * here.cost) / _STEP**2 - bend) / 2
     return slope, curvature, gradient
 
 
