@@ -11,7 +11,7 @@ import typer
 
 from energytrack.cli.app import LOGBOOK_VARIABLE, ExitStatus
 from energytrack.errors import EnergytrackError, LogbookError, UnknownNameError
-from energytrack.presentation.harmless import clean
+from energytrack.presentation.plain import plain_text
 
 if TYPE_CHECKING:
     from energytrack.logbook.opening import Logbook
@@ -31,7 +31,7 @@ class Question:
     target_percent: float
 
     def __str__(self) -> str:
-        return f"{clean(self.vehicle.name)}, {clean(self.modification)}"
+        return f"{plain_text(self.vehicle.name)}, {plain_text(self.modification)}"
 
 
 def opened(context: typer.Context) -> Logbook:
@@ -62,8 +62,8 @@ def questions(logbook: Logbook, vehicles: Iterable[Vehicle], name: str | None, t
         )
     chosen = [question for question in every if name in (None, question.modification)]
     if not chosen:
-        names = ", ".join(dict.fromkeys(clean(question.modification) for question in every))
-        raise UnknownNameError(f"no modification named {clean(name or '')!r}; logged: {names}")
+        names = ", ".join(dict.fromkeys(plain_text(question.modification) for question in every))
+        raise UnknownNameError(f"no modification named {plain_text(name or '')!r}; logged: {names}")
     return chosen
 
 

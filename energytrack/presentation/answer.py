@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from energytrack.inference.results import Assessment, Look, Remedy
 from energytrack.presentation import figures
-from energytrack.presentation.harmless import clean
+from energytrack.presentation.plain import plain_text
 
 USUAL_BASELINE_KM = 3200.0  # four working weeks of a 160 km commute; common practice, no source
 
@@ -56,7 +56,7 @@ def so_far(a: Assessment) -> str:
 
 def remedy(r: Remedy, unit: str) -> str:
     """One way to bring the target within reach, with its distance."""
-    detail = clean(r.detail)
+    detail = plain_text(r.detail)
     target = figures.target(r.target_percent)
     what = {
         "larger-target": f"settle for a target of {target}",
@@ -70,12 +70,13 @@ def remedy(r: Remedy, unit: str) -> str:
 
 
 def _shifted(a: Assessment, unit: str) -> str:
+    name = plain_text(a.modification)
     at = "" if a.settled_at_km is None else f" at {figures.driven(a.settled_at_km, unit)}"
     if contradicted(a):
         look = settling_look(a)
         size = "" if look is None else f" of {figures.percent(look.shift_percent, signed=True)}"
         return (
-            f"Doubtful: a shift{size} from {clean(a.modification)} was settled{at}, but what was driven since does not "
+            f"Doubtful: a shift{size} from {name} was settled{at}, but what was driven since does not "
             f"bear it out: now {so_far(a)}."
         )
     shift, error, span = a.shift_percent or 0.0, a.standard_error_percent, figures.bounded(a.interval_percent)
@@ -85,34 +86,35 @@ def _shifted(a: Assessment, unit: str) -> str:
         low, high = sorted(abs(end) for end in span)
         within = f" (look-proof range {figures.percent_range((low, high), error, signed=False)})"
     settled = f", settled{at}" if at else ""
-    return f"Yes: {clean(a.modification)} {verb} consumption by {figures.percent(abs(shift), error)}{within}{settled}."
+    return f"Yes: {name} {verb} consumption by {figures.percent(abs(shift), error)}{within}{settled}."
 
 
 def _no_shift(a: Assessment, unit: str) -> str:
+    name, target = plain_text(a.modification), figures.target(a.target_percent)
     if contradicted(a):
         at = "" if a.settled_at_km is None else f" at {figures.driven(a.settled_at_km, unit)}"
         return (
-            f"Doubtful: a shift of {figures.target(a.target_percent)} from {clean(a.modification)} was ruled out{at}, "
+            f"Doubtful: a shift of {target} from {name} was ruled out{at}, "
             f"but what was driven since does not bear it out: now {so_far(a)}."
         )
     return (
-        f"No: any shift from {clean(a.modification)} is smaller than the target of {figures.target(a.target_percent)}. "
+        f"No: any shift from {name} is smaller than the target of {target}. "
         f"Measured {so_far(a)}, after {figures.driven(a.distance_modified_km, unit)} with it."
     )
 
 
 def _not_yet(a: Assessment, unit: str) -> str:
     if a.distance_to_go_km is None:
-        go = f"how much further with {clean(a.modification)} cannot be foreseen yet"
+        go = f"how much further with {plain_text(a.modification)} cannot be foreseen yet"
     else:
-        go = f"about {figures.distance(a.distance_to_go_km, unit)} more with {clean(a.modification)}"
+        go = f"about {figures.distance(a.distance_to_go_km, unit)} more with {plain_text(a.modification)}"
         go += "" if a.days_to_go is None else f", about {figures.days(a.days_to_go)} of your driving"
     now = "Nothing measured with it so far" if a.shift_percent is None else f"So far {so_far(a)}"
     return f"Not yet: {go}, at the target of {figures.target(a.target_percent)}. {now}."
 
 
 def _out_of_reach(a: Assessment, unit: str) -> str:
-    name, target = clean(a.modification), figures.target(a.target_percent)
+    name, target = plain_text(a.modification), figures.target(a.target_percent)
     if a.resolvable_at_best_percent is None:
         limit = f"this log of {name} cannot show a shift of {target}, however far you drive on like this."
     else:
@@ -131,7 +133,7 @@ def _best_remedy(a: Assessment) -> Remedy | None:
 
 
 def _no_baseline(a: Assessment, unit: str) -> str:
-    name = clean(a.modification)
+    name = plain_text(a.modification)
     have = f"{figures.driven(a.distance_baseline_km, unit)} in {count(a.segments_baseline, 'measured stretch')}"
     have = have if a.segments_baseline else "nothing measured"
     return (
@@ -150,7 +152,7 @@ def baseline_to_drive(a: Assessment) -> float:
 def _unclear(a: Assessment, unit: str) -> str:
     return (
         f"Unclear: the distance for a target of {figures.target(a.target_percent)} is driven, yet a shift of that size "
-        f"from {clean(a.modification)} is neither shown nor ruled out. Measured {so_far(a)}."
+        f"from {plain_text(a.modification)} is neither shown nor ruled out. Measured {so_far(a)}."
     )
 
 

@@ -7,7 +7,7 @@ from collections.abc import Mapping
 from energytrack.consumption.terms import COOLING_ABOVE_C, HEATING_BELOW_C
 from energytrack.inference.results import Covariate
 from energytrack.presentation import figures
-from energytrack.presentation.harmless import clean
+from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import join
 
 
@@ -27,7 +27,7 @@ def rows(covariates: Mapping[str, Covariate], unit: str) -> list[tuple[str, str]
             worth = join(f"{found.effect_percent:.0f} %")
             said["season"] = f"worth {worth} between the best and the worst time of year (by date alone)"
         else:
-            said[clean(name)] = _column(found)
+            said[plain_text(name)] = _column(found)
     return list(said.items())
 
 

@@ -9,7 +9,7 @@ from rich.text import Text
 from energytrack.inference.results import Assessment
 from energytrack.presentation import advice, bar, conditions, figures, picture, scatter
 from energytrack.presentation.answer import count, sentence, so_far
-from energytrack.presentation.harmless import clean
+from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, labelled, wrap
 
 Row = tuple[str, str]
@@ -21,7 +21,8 @@ def render(
     """Lines of at most `width` cells; distances in `unit` (km or mi); `draw` adds the picture of all looks."""
     lines: list[Text] = []
     if title:
-        lines += [Text(line, style="underline") for line in wrap(f"{clean(a.vehicle)}: {clean(a.modification)}", width)]
+        heading = f"{plain_text(a.vehicle)}: {plain_text(a.modification)}"
+        lines += [Text(line, style="underline") for line in wrap(heading, width)]
     lines += [Text(line, style="bold") for line in wrap(sentence(a, unit), width)]
     for block in _blocks(a, unit, width, draw):
         if block:
@@ -39,7 +40,7 @@ def _blocks(a: Assessment, unit: str, width: int, draw: bool) -> list[list[str]]
             "what the conditions do",
             labelled([("  " + label, value) for label, value in conditions.rows(a.covariates, unit)], width),
         ),
-        bullets(map(clean, a.warnings), "! ", width),
+        bullets(map(plain_text, a.warnings), "! ", width),
         bullets(advice.next_steps(a, unit), "> ", width),
     ]
 

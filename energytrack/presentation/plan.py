@@ -14,7 +14,7 @@ from energytrack.inference.results import Design, Plan
 from energytrack.logbook.records import Modification
 from energytrack.presentation import figures
 from energytrack.presentation.answer import USUAL_BASELINE_KM, count
-from energytrack.presentation.harmless import clean
+from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, join, labelled, wrap
 
 _ABOUT_AS_SHORT = 1.1
@@ -24,7 +24,7 @@ def render(
     p: Plan, *, unit: str = "km", width: int = 80, title: bool = False, fitted: Sequence[str] = ()
 ) -> list[Text]:
     """Lines of at most `width` cells; `fitted`: where entries of modified periods lie, a phrase each."""
-    lines = [Text(line, style="underline") for line in wrap(clean(p.vehicle), width)] if title else []
+    lines = [Text(line, style="underline") for line in wrap(plain_text(p.vehicle), width)] if title else []
     lines += [Text(line, style="bold") for line in wrap(sentence(p, unit), width)]
     for block in _blocks(p, unit, width, fitted):
         if block:
@@ -105,12 +105,12 @@ def _best_alternating(p: Plan) -> Design | None:
 def _blocks(p: Plan, unit: str, width: int, fitted: Sequence[str]) -> list[list[str]]:
     stretches = count(p.segments_baseline, "stretch")
     baseline = [("log so far", f"{figures.driven(p.distance_baseline_km, unit)} in {stretches} between entries")]
-    baseline += [("modified in it" if i == 0 else "", clean(phrase)) for i, phrase in enumerate(fitted)]
+    baseline += [("modified in it" if i == 0 else "", plain_text(phrase)) for i, phrase in enumerate(fitted)]
     tables = [_distances(p, unit, width), _resolvable(p, unit, width)] if p.designs else []
     return [
         *tables,
         labelled(baseline, width),
-        bullets(map(clean, p.warnings), "! ", width),
+        bullets(map(plain_text, p.warnings), "! ", width),
         bullets(_next_steps(p), "> ", width),
     ]
 
