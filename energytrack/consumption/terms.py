@@ -60,6 +60,11 @@ TERMS: Mapping[str, tuple[str, Function]] = MappingProxyType(
 )  # term -> the condition behind it ("season" is the day ordinal) and its function
 
 
-def term(name: str) -> tuple[str, Function]:
-    """Condition and function of a term; any name not in TERMS is a condition taken as it is."""
-    return TERMS.get(name, (name, itself))
+def condition_of(name: str) -> str:
+    """The condition behind a term; a name not in TERMS is a condition itself."""
+    return TERMS[name][0] if name in TERMS else name
+
+
+def term(name: str, value: Any) -> Any:
+    """A term at a value of its condition (float, or array of any shape)."""
+    return TERMS[name][1](value) if name in TERMS else value
