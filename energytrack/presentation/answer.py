@@ -5,6 +5,7 @@ from __future__ import annotations
 from energytrack.inference.results import Assessment, Look, Remedy
 from energytrack.presentation import figures
 from energytrack.presentation.plain import plain_text
+from energytrack.presentation.text import join
 
 USUAL_BASELINE_KM = 3200.0  # four working weeks of a 160 km commute; common practice, no source
 
@@ -59,13 +60,15 @@ def remedy(r: Remedy, unit: str) -> str:
     detail = plain_text(r.detail)
     target = figures.target(r.target_percent)
     what = {
-        "larger-target": f"settle for a target of {target}",
+        "larger-target": f"be content with a target of {target}",
         "alternate": f"take it off and on {detail}".rstrip(),
         "longer-baseline": f"a longer baseline: {detail}" if detail else "a longer baseline",
     }[r.what]
     goal = "" if r.what == "larger-target" else f" for {target}"
     if r.distance_km is None:
         return f"{what}, though{goal} even that takes longer than can be foreseen"
+    if r.distance_km < 1:
+        return f"{what}{goal}, which is driven already"
     return f"{what}, about {figures.distance(r.distance_km, unit)} more{goal}"
 
 
@@ -134,7 +137,7 @@ def _best_remedy(a: Assessment) -> Remedy | None:
 
 def _no_baseline(a: Assessment, unit: str) -> str:
     name = plain_text(a.modification)
-    have = f"{figures.driven(a.distance_baseline_km, unit)} in {count(a.segments_baseline, 'measured stretch')}"
+    have = f"only {figures.driven(a.distance_baseline_km, unit)} in {count(a.segments_baseline, 'segment')}"
     have = have if a.segments_baseline else "nothing measured"
     return (
         f"No baseline: there is {have} without {name}, too little to compare with. "
@@ -158,5 +161,4 @@ def _unclear(a: Assessment, unit: str) -> str:
 
 def count(number: int, noun: str) -> str:
     """A number of things."""
-    plural = noun + ("es" if noun.endswith("ch") else "s")
-    return f"{number:,} {noun if number == 1 else plural}"
+    return join(f"{number:,} {noun}") + ("" if number == 1 else "s")

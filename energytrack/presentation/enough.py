@@ -35,7 +35,7 @@ def _blocks(a: Assessment, unit: str, width: int, draw: bool) -> list[list[str]]
         bar.lines(a, width),
         picture.lines(a, unit, width) if draw else [],
         labelled(_distances(a, unit) + _shift(a), width),
-        _headed("scatter of one stretch between entries", labelled(scatter.rows(a), width)),
+        _headed("scatter of one segment, from one known level to the next", labelled(scatter.rows(a), width)),
         _headed(
             "what the conditions do",
             labelled([("  " + label, value) for label, value in conditions.rows(a.covariates, unit)], width),
@@ -51,8 +51,8 @@ def _headed(heading: str, body: list[str]) -> list[str]:
 
 def _distances(a: Assessment, unit: str) -> list[Row]:
     rows = [
-        ("without it", _stretches(a.distance_baseline_km, a.segments_baseline, unit)),
-        ("with it fitted", _stretches(a.distance_modified_km, a.segments_modified, unit)),
+        ("without it", _covered(a.distance_baseline_km, a.segments_baseline, unit)),
+        ("with it fitted", _covered(a.distance_modified_km, a.segments_modified, unit)),
     ]
     if a.distance_needed_km is not None:
         label = "needed" if a.is_open else "answered after"
@@ -65,8 +65,8 @@ def _distances(a: Assessment, unit: str) -> list[Row]:
     return rows
 
 
-def _stretches(km: float, segments: int, unit: str) -> str:
-    return f"{figures.driven(km, unit)} in {count(segments, 'stretch')} between entries"
+def _covered(km: float, segments: int, unit: str) -> str:
+    return f"{figures.driven(km, unit)} in {count(segments, 'segment')}"
 
 
 def _to_go(a: Assessment, unit: str) -> str:

@@ -75,8 +75,9 @@ def percent(value: float, standard_error: float | None = None, *, signed: bool =
 
 
 def percent_range(span: Range, standard_error: float | None = None, *, signed: bool = True) -> str:
-    """A range of percentages, low to high."""
-    low, high = (bare(value, standard_error, signed=signed) for value in span)
+    """A range of percentages, low to high; whole ones where it is as wide as 20."""
+    error = max(standard_error or 0.0, 10.0) if span[1] - span[0] >= 20 else standard_error
+    low, high = (bare(value, error, signed=signed) for value in span)
     return join(f"{low} to {high} %")
 
 

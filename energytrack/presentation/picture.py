@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from math import ceil
 
 from energytrack.inference.results import Assessment, Look
 from energytrack.presentation import figures
@@ -10,6 +11,7 @@ from energytrack.presentation import figures
 ROWS = 10
 _MARGIN = 13  # for the odometer
 _FEWEST = 2
+_CLEAR = 6  # columns between no shift and the target from which both can be labelled
 _LEGEND = "every look at its odometer value: o estimate, (---) look-proof range, : target"
 
 
@@ -39,7 +41,7 @@ class _Scale:
 def _reach(a: Assessment) -> float:
     last = a.looks[-1]
     ends = [abs(end) for end in figures.bounded(last.interval_percent) or (last.shift_percent,)]
-    return 1.4 * max(a.target_percent, *ends)
+    return float(ceil(1.4 * max(a.target_percent, *ends)))
 
 
 def _chosen(a: Assessment) -> Sequence[Look]:
@@ -79,8 +81,12 @@ def _note(look: Look, a: Assessment) -> str:
 
 
 def _axis(scale: _Scale, target: float) -> str:
+    """The ends of the picture, no shift, and the target where it stands clear of no shift."""
     cells = [" "] * (scale.columns + 6)
-    for percent, text in ((-target, f"-{target:g}"), (0.0, "0"), (target, f"+{target:g} %")):
-        start = scale.column(percent) - (len(text.split(" ")[0]) - 1)
+    labels = [(-scale.reach, f"-{scale.reach:.0f}"), (0.0, "0"), (scale.reach, f"+{scale.reach:.0f} %")]
+    if scale.column(target) - scale.column(0.0) >= _CLEAR:
+        labels += [(-target, f"-{target:g}"), (target, f"+{target:g}")]
+    for percent, text in labels:
+        start = max(0, scale.column(percent) - len(text.split(" ")[0]) + 1)
         cells[start : start + len(text)] = text
     return "".join(cells)

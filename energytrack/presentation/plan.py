@@ -38,7 +38,7 @@ def sentence(p: Plan, unit: str = "km") -> str:
     if not p.designs:
         missing = max(USUAL_BASELINE_KM - p.distance_baseline_km, USUAL_BASELINE_KM / 4)
         return (
-            f"No plan yet: {count(p.segments_baseline, 'stretch')} between entries say too little about the scatter. "
+            f"No plan yet: {count(p.segments_baseline, 'segment')} between known levels tell too little about the scatter. "
             f"Drive about {figures.distance(missing, unit)} as usual first, logging every entry."
         )
     one, other = _one_switch(p), _best_alternating(p)
@@ -103,8 +103,8 @@ def _best_alternating(p: Plan) -> Design | None:
 
 
 def _blocks(p: Plan, unit: str, width: int, fitted: Sequence[str]) -> list[list[str]]:
-    stretches = count(p.segments_baseline, "stretch")
-    baseline = [("log so far", f"{figures.driven(p.distance_baseline_km, unit)} in {stretches} between entries")]
+    segments = count(p.segments_baseline, "segment")
+    baseline = [("log so far", f"{figures.driven(p.distance_baseline_km, unit)} in {segments}")]
     baseline += [("modified in it" if i == 0 else "", plain_text(phrase)) for i, phrase in enumerate(fitted)]
     tables = [_distances(p, unit, width), _resolvable(p, unit, width)] if p.designs else []
     return [
@@ -133,7 +133,7 @@ def _range(d: Design, unit: str) -> str:
     if d.distance_interval_km is None:
         return "-"
     low, high = d.distance_interval_km
-    return figures.distance_range(low, high, unit) if high is not None else f"from {figures.distance(low, unit)}"
+    return figures.distance_range(low, high, unit) if high is not None else f"{figures.distance(low, unit, digits=2)} or more"
 
 
 def _resolvable(p: Plan, unit: str, width: int) -> list[str]:

@@ -1,4 +1,4 @@
-"""The scatter of one measured stretch, split into its four sources."""
+"""The scatter of one segment, split into its four sources."""
 
 from __future__ import annotations
 
@@ -14,7 +14,7 @@ class Source:
     """One source of scatter: its size, and its share of the variance where that can be told."""
 
     label: str
-    percent: float | None  # sd, percent of the consumption of an average stretch
+    percent: float | None  # sd, percent of the consumption of an average segment
     detail: str
     share: float | None
 
@@ -42,7 +42,7 @@ def sources(a: Assessment) -> list[Source]:
 
 
 def _filling_percent(a: Assessment) -> float | None:
-    """Two levels bound a stretch, so its error is sqrt(2) times that of one."""
+    """Two levels bound a segment, so its error is sqrt(2) times that of one."""
     segments = a.segments_baseline + a.segments_modified
     if a.noise is None or a.expectation is None or not segments:
         return None
