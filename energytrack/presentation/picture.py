@@ -7,6 +7,7 @@ from math import ceil
 
 from energytrack.inference.results import Assessment, Look
 from energytrack.presentation import figures
+from energytrack.presentation.text import wrap
 
 ROWS = 10
 _MARGIN = 13  # for the odometer
@@ -24,7 +25,7 @@ def lines(a: Assessment, unit: str, width: int) -> list[str]:
     drawn = [_row(look, scale, marks) for look in _chosen(a)]
     said = [_label(look, unit) + row + _note(look, a) for look, row in zip(_chosen(a), drawn, strict=True)]
     axis = " " * _MARGIN + _axis(scale, a.target_percent)
-    return [_LEGEND, axis.rstrip(), *map(str.rstrip, said)]
+    return [*wrap(_LEGEND, width), axis.rstrip(), *map(str.rstrip, said)]
 
 
 class _Scale:

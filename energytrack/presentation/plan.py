@@ -18,6 +18,7 @@ from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, join, labelled, wrap
 
 _ABOUT_AS_SHORT = 1.1
+_AMPLE = 240  # columns
 
 
 def render(
@@ -37,8 +38,9 @@ def sentence(p: Plan, unit: str = "km") -> str:
     target = figures.target(p.target_percent)
     if not p.designs:
         missing = max(USUAL_BASELINE_KM - p.distance_baseline_km, USUAL_BASELINE_KM / 4)
+        segments = count(p.segments_baseline, "segment")
         return (
-            f"No plan yet: {count(p.segments_baseline, 'segment')} between known levels tell too little about the scatter. "
+            f"No plan yet: {segments} between known levels tell too little about the scatter. "
             f"Drive about {figures.distance(missing, unit)} as usual first, logging every entry."
         )
     one, other = _one_switch(p), _best_alternating(p)
@@ -106,7 +108,7 @@ def _blocks(p: Plan, unit: str, width: int, fitted: Sequence[str]) -> list[list[
     segments = count(p.segments_baseline, "segment")
     baseline = [("log so far", f"{figures.driven(p.distance_baseline_km, unit)} in {segments}")]
     baseline += [("modified in it" if i == 0 else "", plain_text(phrase)) for i, phrase in enumerate(fitted)]
-    tables = [_distances(p, unit, width), _resolvable(p, unit, width)] if p.designs else []
+    tables = [_distances(p, unit), _resolvable(p, unit)] if p.designs else []
     return [
         *tables,
         labelled(baseline, width),
@@ -115,7 +117,7 @@ def _blocks(p: Plan, unit: str, width: int, fitted: Sequence[str]) -> list[list[
     ]
 
 
-def _distances(p: Plan, unit: str, width: int) -> list[str]:
+def _distances(p: Plan, unit: str) -> list[str]:
     table = _table([f"to show {p.target_percent:g} %", "distance", "80 % range", "days", "swaps"])
     for d in p.designs:
         reached = d.distance_km is not None
@@ -126,37 +128,39 @@ def _distances(p: Plan, unit: str, width: int) -> list[str]:
             figures.days(d.days).split("\u00a0")[0] if d.days is not None else "-",
             f"{d.swaps:,}" if d.swaps is not None else "-",
         )
-    return _lines(table, width)
+    return _lines(table)
 
 
 def _range(d: Design, unit: str) -> str:
     if d.distance_interval_km is None:
         return "-"
     low, high = d.distance_interval_km
-    return figures.distance_range(low, high, unit) if high is not None else f"{figures.distance(low, unit, digits=2)} or more"
+    if high is None:
+        return f"{figures.distance(low, unit, digits=2)} or more"
+    return figures.distance_range(low, high, unit)
 
 
-def _resolvable(p: Plan, unit: str, width: int) -> list[str]:
+def _resolvable(p: Plan, unit: str) -> list[str]:
     """The smallest shift each way can show after so much further driving."""
     distances = list(p.designs[0].resolvable_percent)
     table = _table(["smallest shift within", *(figures.distance(float(km), unit) for km in distances)])
     for d in p.designs:
         shifts = [d.resolvable_percent.get(km) for km in distances]
         table.add_row(_name(d), *("-" if shift is None else figures.percent(shift) for shift in shifts))
-    return _lines(table, width)
+    return _lines(table)
 
 
 def _table(headings: Sequence[str]) -> Table:
     table = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0), show_header=True)
     for place, heading in enumerate(headings):
-        table.add_column(Text(heading), justify="left" if place == 0 else "right", no_wrap=True, overflow="fold")
+        table.add_column(Text(heading), justify="left" if place == 0 else "right", no_wrap=True)
     return table
 
 
-def _lines(table: Table, width: int) -> list[str]:
-    """A table as plain lines, wide enough for every figure."""
+def _lines(table: Table) -> list[str]:
+    """A table as plain lines, as wide as its figures: a screen too narrow wraps them, and none is cut."""
     out = io.StringIO()
-    Console(file=out, width=width, color_system=None, markup=False, emoji=False, highlight=False).print(table)
+    Console(file=out, width=_AMPLE, color_system=None, markup=False, emoji=False, highlight=False).print(table)
     return [line.rstrip().replace("\u00a0", " ") for line in out.getvalue().splitlines()]
 
 
