@@ -2,23 +2,22 @@
 
 from __future__ import annotations
 
-import datetime as dt
 import math
 from collections import Counter
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from pathlib import Path
-from types import MappingProxyType
-from typing import Any, TypeVar
+from typing import Any
 
 import numpy as np
 import pandas as pd
 
+from energytrack.consumption.columns import dates, flags, kinds, numbers, texts
 from energytrack.consumption.observations import Observations, observe
 from energytrack.consumption.segments import SegmentedLog, close_segments
 from energytrack.errors import ConsumptionError, UnknownNameError
 from energytrack.logbook.opening import Logbook
 from energytrack.logbook.opening import open_logbook as open_plain
-from energytrack.logbook.records import KINDS, UNITS, Entry, Event, Modification, Vehicle, Weather
+from energytrack.logbook.records import UNITS, Entry, Event, Modification, Vehicle, Weather
 
 ENTRY_COLUMNS = (
     *("vehicle", "date", "odometer_km", "energy", "kind", "full", "level_percent", "missed", "distance_km"),
@@ -37,12 +36,6 @@ NUMBERS = (
     *("odometer_km", "energy", "level_percent", "distance_km", "cost", "temperature_c", "speed_kmh"),
     *("fitted_km", "removed_km", "level", "target_percent", "odometer_factor", "capacity"),
 )
-FLAGS = MappingProxyType(
-    {"yes": True, "y": True, "true": True, "1": True, "no": False, "n": False, "false": False, "0": False}
-)
-
-Value = TypeVar("Value")
-
 
 class FramedLogbook:
     """A logbook whose tables are data frames with the columns of the CSV tables."""
@@ -103,21 +96,21 @@ def entries_from_frame(frame: pd.DataFrame, vehicle: str | None = None) -> list[
     if "odometer_km" not in rows and "distance_km" not in rows:
         raise ConsumptionError("entries have neither a column 'odometer_km' nor 'distance_km'; give one of them")
     columns = zip(
-        _texts(rows, "vehicle", vehicle or "vehicle"),
-        _dates(rows, "date", required=True),
-        [math.nan if value is None else value for value in _numbers(rows, "energy")],
-        _numbers(rows, "odometer_km"),
-        _kinds(rows),
-        _flags(rows, "full", True),
-        _numbers(rows, "level_percent"),
-        _flags(rows, "missed", False),
-        _numbers(rows, "distance_km"),
-        _numbers(rows, "cost"),
-        [text or None for text in _texts(rows, "currency", "")],
-        _numbers(rows, "temperature_c"),
-        _numbers(rows, "speed_kmh"),
-        _texts(rows, "place", ""),
-        _texts(rows, "note", ""),
+        texts(rows, "vehicle", vehicle or "vehicle"),
+        dates(rows, "date", required=True),
+        [math.nan if value is None else value for value in numbers(rows, "energy")],
+        numbers(rows, "odometer_km"),
+        kinds(rows),
+        flags(rows, "full", True),
+        numbers(rows, "level_percent"),
+        flags(rows, "missed", False),
+        numbers(rows, "distance_km"),
+        numbers(rows, "cost"),
+        [text or None for text in texts(rows, "currency", "")],
+        numbers(rows, "temperature_c"),
+        numbers(rows, "speed_kmh"),
+        texts(rows, "place", ""),
+        texts(rows, "note", ""),
         _extras(rows),
         strict=True,
     )
@@ -129,15 +122,15 @@ def modifications_from_frame(frame: pd.DataFrame, vehicle: str | None = None) ->
     rows = _rows_of(frame, vehicle)
     _require(rows, "modifications", "name")
     columns = zip(
-        _texts(rows, "vehicle", vehicle or "vehicle"),
-        _texts(rows, "name", ""),
-        _dates(rows, "fitted_date"),
-        _numbers(rows, "fitted_km"),
-        _dates(rows, "removed_date"),
-        _numbers(rows, "removed_km"),
-        _numbers(rows, "level"),
-        _numbers(rows, "target_percent"),
-        _texts(rows, "note", ""),
+        texts(rows, "vehicle", vehicle or "vehicle"),
+        texts(rows, "name", ""),
+        dates(rows, "fitted_date"),
+        numbers(rows, "fitted_km"),
+        dates(rows, "removed_date"),
+        numbers(rows, "removed_km"),
+        numbers(rows, "level"),
+        numbers(rows, "target_percent"),
+        texts(rows, "note", ""),
         strict=True,
     )
     return [Modification(*values) for values in columns]
@@ -148,12 +141,12 @@ def events_from_frame(frame: pd.DataFrame, vehicle: str | None = None) -> list[E
     rows = _rows_of(frame, vehicle)
     _require(rows, "events", "date", "what")
     columns = zip(
-        _texts(rows, "vehicle", vehicle or "vehicle"),
-        _dates(rows, "date", required=True),
-        _texts(rows, "what", ""),
-        _numbers(rows, "odometer_km"),
-        _numbers(rows, "odometer_factor"),
-        _texts(rows, "note", ""),
+        texts(rows, "vehicle", vehicle or "vehicle"),
+        dates(rows, "date", required=True),
+        texts(rows, "what", ""),
+        numbers(rows, "odometer_km"),
+        numbers(rows, "odometer_factor"),
+        texts(rows, "note", ""),
         strict=True,
     )
     return [Event(*values) for values in columns]
@@ -162,7 +155,7 @@ def events_from_frame(frame: pd.DataFrame, vehicle: str | None = None) -> list[E
 def weather_from_frame(frame: pd.DataFrame) -> list[Weather]:
     """Days with a temperature. Raises ConsumptionError for a missing column or a value that cannot be read."""
     _require(frame, "weather", "date", "temperature_c")
-    days = zip(_dates(frame, "date", required=True), _numbers(frame, "temperature_c"), strict=True)
+    days = zip(dates(frame, "date", required=True), numbers(frame, "temperature_c"), strict=True)
     return [Weather(day, temperature) for day, temperature in days if temperature is not None]
 
 
@@ -247,77 +240,11 @@ def _require(frame: pd.DataFrame, table: str, *columns: str) -> None:
         raise ConsumptionError(f"{table} lack the column {missing[0]!r}; columns found: {there}")
 
 
-def _numbers(frame: pd.DataFrame, name: str) -> list[float | None]:
-    if name not in frame:
-        return [None] * len(frame)
-    try:
-        values = pd.to_numeric(frame[name]).to_numpy(dtype=np.float64, na_value=math.nan)
-    except (ValueError, TypeError) as problem:
-        raise ConsumptionError(f"column {name!r} has a value that is not a number: {problem}") from problem
-    return [None if value != value else value for value in values.tolist()]
-
-
-def _texts(frame: pd.DataFrame, name: str, default: str) -> list[str]:
-    return _converted(frame, name, lambda value: value if isinstance(value, str) else str(value), default)
-
-
-def _dates(frame: pd.DataFrame, name: str, *, required: bool = False) -> list[Any]:
-    dates = _converted(frame, name, _date, None)
-    if required and None in dates:
-        row = frame.index[dates.index(None)]
-        raise ConsumptionError(f"row {row} has no {name}; every row needs one, written as 2026-05-03")
-    return dates
-
-
-def _flags(frame: pd.DataFrame, name: str, default: bool) -> list[bool]:
-    return _converted(frame, name, _flag, default)
-
-
-def _kinds(frame: pd.DataFrame) -> list[str]:
-    kinds = _texts(frame, "kind", KINDS[0])
-    wrong = set(kinds) - set(KINDS)
-    if wrong:
-        raise ConsumptionError(f"kind {min(wrong)!r} is unknown; write {' or '.join(KINDS)}")
-    return kinds
-
-
-def _converted(frame: pd.DataFrame, name: str, convert: Callable[[Any], Value], default: Value) -> list[Value]:
-    """Convert a column value by value; an absent column or an empty value gives the default."""
-    if name not in frame:
-        return [default] * len(frame)
-    column = frame[name]
-    empty = (column.isna() | (column == "")).tolist()
-    try:
-        return [
-            default if missing else convert(value) for missing, value in zip(empty, column.tolist(), strict=True)
-        ]
-    except (ValueError, TypeError) as problem:
-        raise ConsumptionError(f"column {name!r}: {problem}") from problem
-
-
-def _date(value: Any) -> dt.date:
-    if isinstance(value, dt.datetime):  # a pandas Timestamp is one
-        return value.date()
-    if isinstance(value, dt.date):
-        return value
-    text = str(value).strip()
-    return dt.date.fromisoformat(text) if len(text) <= 10 else dt.datetime.fromisoformat(text).date()
-
-
-def _flag(value: Any) -> bool:
-    if isinstance(value, bool):
-        return value
-    text = f"{value:g}" if isinstance(value, (int, float)) else str(value).strip().lower()
-    if text not in FLAGS:
-        raise ValueError(f"{value!r} is neither yes nor no")
-    return FLAGS[text]
-
-
 def _extras(frame: pd.DataFrame) -> list[dict[str, float]]:
     names = [name for name in frame if name not in ENTRY_COLUMNS and pd.api.types.is_numeric_dtype(frame[name])]
     extras: list[dict[str, float]] = [{} for _ in range(len(frame))]
     for name in names:
-        for extra, value in zip(extras, _numbers(frame, str(name)), strict=True):
+        for extra, value in zip(extras, numbers(frame, str(name)), strict=True):
             if value is not None:
                 extra[str(name)] = value
     return extras

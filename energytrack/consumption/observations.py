@@ -24,7 +24,7 @@ class Observations:
     mid_day: Array  # (n,) date ordinal of the middle of the segment
     start_km: Array  # (n,) position on the log's own scale
     end_km: Array  # (n,)
-    end_day: NDArray[np.int64]  # (n,) date ordinal
+    end_day: Array  # (n,) date ordinal
     linked: NDArray[np.bool_]  # (n,) shares its start level with the segment before it
     start_weight: Array  # (n,) sd of the level at each end, relative to a fill to the click-off
     end_weight: Array  # (n,)
@@ -69,8 +69,8 @@ def observe(
     names = tuple(dict.fromkeys(row.name for row in modifications))
     columns = [shares(segmented, [row for row in modifications if row.name == name]) for name in names]
     conditions, known_share = _conditions(segmented, covariates, weather)
-    start_day = np.array([segment.start_day for segment in segments], dtype=np.int64)
-    end_day = np.array([segment.end_day for segment in segments], dtype=np.int64)
+    start_day = _column(segment.start_day for segment in segments)
+    end_day = _column(segment.end_day for segment in segments)
     return Observations(
         distance_km=_column(segment.distance_km for segment in segments),
         energy=_column(segment.energy for segment in segments),
