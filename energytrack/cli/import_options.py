@@ -2,16 +2,34 @@
 
 from __future__ import annotations
 
-import json
-from collections.abc import Sequence
+import sys
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 
 import typer
 
-from energytrack.logbook.importing import Outcome
+from energytrack.cli.context import say, say_json
+from energytrack.logbook.importing import OTHER_TABLES, Outcome
 from energytrack.logbook.quantities import DISTANCE, ENERGY
-from energytrack.logbook.records import CARRIERS, UNIT_OF_CARRIER, Vehicle
+from energytrack.logbook.records import CARRIERS, KINDS, UNIT_OF_CARRIER, UNITS, Vehicle
+from energytrack.logbook.rejected import BadRowsError
+from energytrack.presentation.plain import plain_text
 
-ENERGY_UNITS = tuple(ENERGY)
+
+def check_words(
+    table: str, odometer: str | None, energy: str | None, speed: str | None, temperature: str | None, kind: str | None
+) -> None:
+    """Raises typer.BadParameter for a word that is none of those an option takes."""
+    for option, value, words in (
+        ("--table", table, ("entries", *OTHER_TABLES)),
+        ("--odometer-unit", odometer, tuple(DISTANCE)),
+        ("--energy-unit", energy, tuple(ENERGY)),
+        ("--speed-unit", speed, ("km/h", "mph")),
+        ("--temperature-unit", temperature, ("C", "F")),
+        ("--kind", kind, KINDS),
+    ):
+        if value is not None:
+            one_of(option, value, words)
 
 
 def one_of(option: str, value: str, words: Sequence[str]) -> str:
@@ -42,20 +60,11 @@ def units(odometer: str | None, energy: str | None, speed: str | None, temperatu
         "distance_km": odometer,
         "fitted_km": odometer,
         "removed_km": odometer,
-        "energy": None if energy in (None, *UNIT_OF_CARRIER.values()) else energy,
+        "energy": None if energy in UNITS else energy,
         "speed_kmh": speed,
         "temperature_c": None if temperature == "C" else temperature,
     }
     return {name: unit for name, unit in told.items() if unit is not None}
-
-
-def factors(odometer: str | None, energy: str | None, speed: str | None) -> dict[str, float]:
-    """Factors into base units, as Form names them."""
-    return {
-        "km": DISTANCE[odometer or "km"],
-        "energy": ENERGY[energy][1] if energy else 1.0,
-        "kmh": DISTANCE["mi" if speed == "mph" else "km"],
-    }
 
 
 def new_vehicle(
@@ -76,18 +85,28 @@ def new_vehicle(
     return Vehicle(name, carrier, unit, capacity, odometer or "km", typed_unit=None if energy == unit else energy)
 
 
+@contextmanager
+def bad_rows_told() -> Iterator[None]:
+    """Every bad row as a line on stderr, above the refusal; a single one is told by the refusal itself."""
+    try:
+        yield
+    except BadRowsError as refusal:
+        if len({problem.line for problem in refusal.problems}) > 1:
+            for problem in refusal.problems:
+                print(plain_text(str(problem)), file=sys.stderr)
+        raise
+
+
 def tell(outcome: Outcome, as_json: bool) -> None:
     """Print what the import did."""
     if as_json:
-        print(json.dumps(outcome.to_dict(), indent=2, ensure_ascii=False))
+        say_json(outcome.to_dict())
         return
+    lines = []
     for table, new in outcome.new.items():
         name = outcome.file if len(outcome.new) == 1 else f"{outcome.file}, {table}"
-        print(f"{name}: {new} new, {outcome.already[table]} already there")
+        lines.append(f"{name}: {new} new, {outcome.already[table]} already there")
     if outcome.rejected_file:
-        lines = {problem.line for problem in outcome.rejected}
-        print(f"{len(lines)} bad rows written to {outcome.rejected_file}")
-    for note in outcome.notes:
-        print(f"note: {note}")
-
-
+        count = len({problem.line for problem in outcome.rejected})
+        lines.append(f"{count} bad {'row' if count == 1 else 'rows'} written to {outcome.rejected_file}")
+    say([*lines, *(f"note: {note}" for note in outcome.notes)])

@@ -8,16 +8,16 @@ from typing import Any
 
 from energytrack.errors import EntryError
 from energytrack.logbook.cells import CellError, date_reader, number_reader, shown, text_of, yes_or_no
+from energytrack.logbook.quantities import CONSUMPTION, DISTANCE, ENERGY, celsius
 from energytrack.logbook.records import CARRIERS, KINDS, UNITS
 
 Reader = Callable[[str], Any]
-DISTANCE_UNITS = ("km", "mi")
 
 ENTRIES = (
     "vehicle", "date", "odometer_km", "energy", "kind", "full", "level_percent", "missed", "distance_km",
     "cost", "currency", "temperature_c", "speed_kmh", "place", "note",
 )  # fmt: skip
-VEHICLES = ("vehicle", "carrier", "unit", "capacity", "distance_unit", "display", "note")
+VEHICLES = ("vehicle", "carrier", "unit", "capacity", "distance_unit", "display", "typed_unit", "note")
 MODIFICATIONS = (
     "vehicle", "name", "fitted_date", "fitted_km", "removed_date", "removed_km", "level", "target_percent", "note",
 )  # fmt: skip
@@ -85,8 +85,9 @@ def vehicle_readers(form: Form) -> dict[str, Reader]:
         "carrier": _one_of(CARRIERS),
         "unit": _one_of(UNITS),
         "capacity": _positive(number, "a capacity"),
-        "distance_unit": _one_of(DISTANCE_UNITS),
-        "display": text_of,
+        "distance_unit": _one_of(tuple(DISTANCE)),
+        "display": _one_of(tuple(CONSUMPTION)),
+        "typed_unit": _one_of(tuple(ENERGY)),
         "note": text_of,
     }
 
@@ -165,7 +166,7 @@ def _temperature(form: Form, number: Reader) -> Reader:
     """The outside temperatures met on Earth lie between -90 and 60 degrees Celsius."""
 
     def read(text: str) -> float:
-        value: float = (number(text) - 32) / 1.8 if form.fahrenheit else number(text)
+        value: float = celsius(number(text)) if form.fahrenheit else number(text)
         if not -90 <= value <= 60:
             remedy = "correct it" if form.fahrenheit else "correct it, or import with --temperature-unit F"
             raise CellError(f"{shown(text)} is no outside temperature; {remedy}")

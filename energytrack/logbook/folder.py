@@ -78,13 +78,17 @@ class Folder:
         self.vehicle(vehicle_name)
         return []
 
-    def _refuse(self, *_: object, **__: object) -> NoReturn:
+    def close(self) -> None:
+        """Nothing to let go of: tables are read whole."""
+
+    def refuse_writing(self, *_: object, **__: object) -> NoReturn:
+        """What every attempt to write meets."""
         raise LogbookError(
             f"{self.path} is a folder of tables and read-only; to write, bring it into a logbook file: "
             f"energytrack --logbook my.logbook new, then energytrack --logbook my.logbook import {self.path}"
         )
 
-    add_vehicle = add_entry = add_entries = fit = remove = add_event = add_weather = keep_assessment = _refuse
+    add_vehicle = add_entry = add_entries = fit = remove = add_event = add_weather = keep_assessment = refuse_writing
 
     def _of_vehicle(self, name: str, file: str, read: Callable[[Path, Form], Reading[Any]]) -> list[Any]:
         self.vehicle(name)

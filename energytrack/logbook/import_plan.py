@@ -12,12 +12,11 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from energytrack.errors import EntryError, UnknownNameError
+from energytrack.logbook.checks import check_date, check_values
 from energytrack.logbook.columns import Form
-from energytrack.logbook.order import Row, driving_order, misfits, newest_first
+from energytrack.logbook.order import Row, driving_order, jumps, misfits, newest_first
 from energytrack.logbook.records import Entry, Problem, Vehicle
 from energytrack.logbook.tables import Reading, read_entries
-
-OVERFILL = 1.3  # energy above this many capacities is no single fill-up or charge
 
 
 @dataclass(slots=True)
@@ -64,7 +63,7 @@ def plan_import(
         blamed = {problem.line for problem in bad}
         ordered, unordered = driving_order([row for row in rows if row[0] not in blamed], reading.file, again=again)
         new, known = _unknown_rows(ordered, recorded(name))
-        unfit = misfits(new, standing(name), reading.file, again=again)
+        unfit = misfits(new, standing(name), reading.file, again=again) + jumps(new, standing(name), reading.file)
         problems = bad + unordered + unfit
         refused |= {problem.line: name for problem in problems if problem.line is not None}
         unfitting = {problem.line for problem in unfit}
@@ -100,21 +99,16 @@ def _by_vehicle(reading: Reading[Entry], named: str | None, known: Mapping[str, 
 
 
 def _implausible(rows: Sequence[Row], vehicle: Vehicle, file: str, today: dt.date) -> list[Problem]:
-    """Rows that cannot be true by themselves."""
+    """Rows that cannot be true by themselves; an amount that is not known is no fault."""
     problems = []
-    most = OVERFILL * vehicle.capacity if vehicle.capacity else math.inf
     for line, entry in rows:
-        if entry.date > today:
-            problems.append(Problem(f"date {entry.date} lies in the future; correct it", file, line))
-        elif entry.energy > most:
-            problems.append(
-                Problem(
-                    f"energy {entry.energy:.6g} {vehicle.unit} is more than {OVERFILL} times the capacity of "
-                    f"{vehicle.name} ({vehicle.capacity:g} {vehicle.unit}); correct it, or the unit",
-                    file,
-                    line,
-                )
-            )
+        try:
+            if math.isnan(entry.energy):
+                check_date(entry.date, today)
+            else:
+                check_values(entry, vehicle, today)
+        except EntryError as error:
+            problems.append(Problem(str(error), file, line))
     return problems
 
 
@@ -122,7 +116,6 @@ def _unknown_rows(rows: Sequence[Row], recorded: Iterable[Entry]) -> tuple[list[
     """The rows not recorded yet, and those that are; equal rows count as often as they occur."""
     left = Counter(fingerprint(entry) for entry in recorded)
     new: list[Row] = []
-    typed: dict[int, dict[str, str]] = field(default_factory=dict)  # line -> what stood there, in the file's units
     known: list[Row] = []
     for row in rows:
         mark = fingerprint(row[1])
@@ -135,7 +128,7 @@ def _unknown_rows(rows: Sequence[Row], recorded: Iterable[Entry]) -> tuple[list[
 
 
 def fingerprint(entry: Entry) -> tuple[object, ...]:
-    """What makes an entry this entry, as the store counts it: the moment and the amounts, not what was noted of them."""
+    """What makes an entry this entry, as the store counts it: the moment and the amounts, no notes."""
     energy = None if math.isnan(entry.energy) else entry.energy
     return (entry.vehicle, entry.date, entry.odometer_km, entry.distance_km, energy)
 

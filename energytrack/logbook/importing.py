@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass, field, replace
 from pathlib import Path
@@ -17,7 +17,7 @@ from energytrack.logbook.import_plan import ImportPlan, plan_import
 from energytrack.logbook.opening import open_logbook
 from energytrack.logbook.quantities import ENERGY
 from energytrack.logbook.records import Problem, Vehicle
-from energytrack.logbook.rejected import refusal, write_rejected
+from energytrack.logbook.rejected import BadRowsError, write_rejected
 from energytrack.logbook.store import Store
 from energytrack.logbook.tables import Reading, read_events, read_modifications, read_weather
 
@@ -97,7 +97,7 @@ def _import_entries(request: Request, store: Store | None, logbook: Path, today:
     plan = _planned(request, request.path, store, known, today)
     outcome = Outcome(str(request.path), rejected=plan.problems, notes=plan.notes + _unit_notes(request, plan, known))
     with _rejects(request, request.path, plan.problems, outcome):
-        store = store or _created(logbook)
+        store = store or Store.create(logbook)
         with store.transaction():
             if added:
                 store.add_vehicle(added)
@@ -150,7 +150,7 @@ def _planned(
         path,
         request.form,
         known,
-        lambda name: store.first_entries(name) if store and name in held else [],
+        lambda name: store.ever_logged(name) if store and name in held else [],
         lambda name: store.entries(name) if store and name in held else [],
         today=today,
         named=request.vehicle,
@@ -165,9 +165,9 @@ def _planned(
 
 
 def _add(store: Store, plan: ImportPlan, request: Request, outcome: Outcome) -> None:
-    pairs = [(entry, plan.typed.get(line, {})) for line, entry in plan.new]
-    added = store.add_entries(pairs, source=request.path.name)
-    outcome.count("entries", added, len(plan.new) + len(plan.known))
+    """Known rows too: the store counts equal ones, and it alone knows what was logged in the meantime."""
+    pairs = [(entry, plan.typed.get(line, {})) for line, entry in plan.known + plan.new]
+    outcome.count("entries", store.add_entries(pairs, source=request.path.name), len(pairs))
 
 
 def _vehicle_to_add(wanted: Vehicle | None, known: Sequence[Vehicle]) -> Vehicle | None:
@@ -176,9 +176,8 @@ def _vehicle_to_add(wanted: Vehicle | None, known: Sequence[Vehicle]) -> Vehicle
     for vehicle in known:
         if vehicle.name == wanted.name:
             if vehicle.carrier != wanted.carrier:
-                raise EntryError(
-                    f"{wanted.name} is in the logbook already, with {vehicle.carrier}; leave --carrier out, or name another"
-                )
+                here = f"{wanted.name} is in the logbook already, with {vehicle.carrier}"
+                raise EntryError(f"{here}; leave --carrier out, or name another vehicle")
             return None
     return wanted
 
@@ -209,17 +208,11 @@ def _unit_notes(request: Request, plan: ImportPlan, known: Sequence[Vehicle]) ->
     return notes
 
 
-def _created(logbook: Path) -> Store:
-    store = open_logbook(logbook, create=True)
-    assert isinstance(store, Store)
-    return store
-
-
 @contextmanager
-def _rejects(request: Request, path: Path, problems: Sequence[Problem], outcome: Outcome) -> Any:
+def _rejects(request: Request, path: Path, problems: Sequence[Problem], outcome: Outcome) -> Iterator[None]:
     """Refuse bad rows or set them aside; the file of rejected rows goes again if the writing inside fails."""
     if problems and request.skip_bad is None:
-        raise refusal(str(path), problems)
+        raise BadRowsError(str(path), problems)
     target = request.skip_bad if problems else None
     if target is not None:
         write_rejected(target, path, request.form, problems)

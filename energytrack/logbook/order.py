@@ -8,6 +8,7 @@ from collections.abc import Callable, Sequence
 from itertools import pairwise
 from typing import Any
 
+from energytrack.logbook.checks import FARTHEST_DAY_KM
 from energytrack.logbook.records import Entry, Problem
 
 Row = tuple[int, Entry]
@@ -107,6 +108,24 @@ def misfits(rows: Sequence[Row], standing: Sequence[Entry], file: str = "", *, a
         low = known[bisect_left(dates, entry.date) - 1] if bisect_left(dates, entry.date) else None
         high = known[place] if (place := bisect_right(dates, entry.date)) < len(known) else None
         problems += _beyond(entry, line, file, low, high, again)
+    return problems
+
+
+def jumps(rows: Sequence[Row], standing: Sequence[Entry], file: str = "") -> list[Problem]:
+    """Rows farther from the entry before them, here or in the logbook, than any vehicle drives in that time."""
+    merged: list[tuple[int | None, Entry]] = [(None, entry) for entry in standing]
+    merged += rows
+    measured = [row for row in merged if row[1].odometer_km is not None]
+    measured.sort(key=lambda row: (row[1].odometer_km, row[1].date))
+    problems = []
+    for (line, entry), (next_line, after) in pairwise(measured):
+        farthest = FARTHEST_DAY_KM * (abs((after.date - entry.date).days) + 1)
+        distance = (after.odometer_km or 0) - (entry.odometer_km or 0)
+        blamed = next_line if next_line is not None else line
+        if distance > farthest and blamed is not None:
+            span = f"{distance:.10g} km between {entry.date} and {after.date}"
+            message = f"{span} is a jump no vehicle drives; correct odometer or date"
+            problems.append(Problem(message, file, blamed))
     return problems
 
 

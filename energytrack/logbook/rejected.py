@@ -11,14 +11,21 @@ from energytrack.logbook.columns import Form
 from energytrack.logbook.csvfile import open_csv
 from energytrack.logbook.records import Problem
 
+_ADVICE = "nothing was imported; mend the file, or keep the good rows with --skip-bad rejected.csv"
 
-def refusal(file: str, problems: Sequence[Problem]) -> EntryError:
-    """All bad rows in one error, a line each."""
-    advice = "nothing was imported; mend the file, or keep the good rows with --skip-bad rejected.csv"
-    if len(problems) == 1:
-        return EntryError(f"{problems[0]} ({advice})")
-    lines = "".join(f"\n  {problem}" for problem in problems)
-    return EntryError(f"{len({problem.line for problem in problems})} bad rows in {file}: {advice}{lines}")
+
+class BadRowsError(EntryError):
+    """Rows that cannot be imported, each with its line; nothing was written."""
+
+    def __init__(self, file: str, problems: Sequence[Problem]) -> None:
+        self.problems = tuple(problems)
+        lines = list(dict.fromkeys(str(problem.line) for problem in problems))
+        if len(lines) == 1:
+            told = "; ".join(problem.message for problem in problems)
+            super().__init__(f"{file}:{lines[0]}: {told} ({_ADVICE})")
+        else:
+            shown = ", ".join(lines[:20]) + (", ..." if len(lines) > 20 else "")
+            super().__init__(f"{file}: {len(lines)} bad rows, in lines {shown}; {_ADVICE}")
 
 
 def write_rejected(target: Path, path: Path, form: Form, problems: Sequence[Problem]) -> None:
