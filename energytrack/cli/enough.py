@@ -8,15 +8,18 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from energytrack.cli.app import ExitStatus, app
+from energytrack.cli import options
+from energytrack.cli import questions as asking
+from energytrack.cli.app import ExitStatus
+from energytrack.cli.context import readable, say_json
+from energytrack.errors import EnergytrackError
+from energytrack.logbook.store import Store
 
 if TYPE_CHECKING:
-    from energytrack.cli.questions import Question
     from energytrack.inference.results import Assessment
     from energytrack.logbook.opening import Logbook
 
 
-@app.command()
 def enough(
     context: typer.Context,
     name: Annotated[str | None, typer.Argument(help="The modification; all of them if left out.")] = None,
@@ -30,13 +33,13 @@ def enough(
         list[str] | None, typer.Option(metavar="COLUMN", help="A further numeric column to allow for; repeatable.")
     ] = None,
     picture: Annotated[bool, typer.Option("--picture", help="Draw how the range narrowed with distance.")] = False,
-    json: Annotated[bool, typer.Option("--json", help="Print the answers as JSON.")] = False,
+    json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
 ) -> None:
     """Has the modification shifted consumption, by how much, and is the distance covered enough to say so?"""
-    from energytrack.cli import questions as asking
-
-    logbook = asking.opened(context)
+    if name is not None and name.startswith("-"):
+        raise typer.BadParameter(f"no such option: {name}")
+    logbook = readable(context)
     asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
     answers, refusals = asking.answered(
         asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate))
@@ -49,13 +52,12 @@ def enough(
 
 
 def _assess(
-    logbook: Logbook, question: Question, confidence: float, power: float, covariates: list[str] | None
+    logbook: Logbook, question: asking.Question, confidence: float, power: float, covariates: list[str] | None
 ) -> Assessment:
-    from energytrack.cli.questions import tables
     from energytrack.inference.assess import assess
 
     answer = assess(
-        **tables(logbook, question.vehicle),
+        **asking.tables(logbook, question.vehicle),
         name=question.modification,
         target_percent=question.target_percent,
         confidence=confidence,
@@ -66,12 +68,12 @@ def _assess(
 
 
 def _print_json(answers: list[Assessment]) -> None:
-    from energytrack.presentation.as_json import dumps
+    from energytrack.presentation.as_json import without_nan
 
-    print(dumps({"assessments": [answer.to_dict() for answer in answers]}))
+    say_json(without_nan({"assessments": [answer.to_dict() for answer in answers]}))
 
 
-def _print(answers: list[tuple[Question, Assessment]], picture: bool) -> None:
+def _print(answers: list[tuple[asking.Question, Assessment]], picture: bool) -> None:
     from energytrack.presentation import terminal
     from energytrack.presentation.enough import render
 
@@ -83,13 +85,11 @@ def _print(answers: list[tuple[Question, Assessment]], picture: bool) -> None:
         terminal.show(render(answer, unit=unit, width=screen.width, title=several, draw=picture), screen)
 
 
-def _keep(logbook: Logbook, question: Question, answer: Assessment) -> None:
+def _keep(logbook: Logbook, question: asking.Question, answer: Assessment) -> None:
     """Keep the answer for the echo of later entries; that it cannot be kept never hides it."""
-    from energytrack.errors import EnergytrackError
-    from energytrack.logbook.store import Store
     from energytrack.presentation.as_json import without_nan
 
-    if not (logbook.writable and isinstance(logbook, Store)):
+    if not isinstance(logbook, Store) or not logbook.writable:
         return
     result = without_nan(answer.to_dict())
     del result["looks"]

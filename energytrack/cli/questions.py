@@ -9,7 +9,8 @@ from typing import TYPE_CHECKING, Any, TypeVar
 
 import typer
 
-from energytrack.cli.app import LOGBOOK_VARIABLE, ExitStatus
+from energytrack.cli.app import ExitStatus
+from energytrack.cli.context import the_vehicles
 from energytrack.errors import EnergytrackError, LogbookError, UnknownNameError
 from energytrack.presentation.plain import plain_text
 
@@ -34,20 +35,9 @@ class Question:
         return f"{plain_text(self.vehicle.name)}, {plain_text(self.modification)}"
 
 
-def opened(context: typer.Context) -> Logbook:
-    """The logbook named before the command or by the environment. Raises LogbookError."""
-    from energytrack.logbook.opening import open_logbook
-
-    if context.obj is None:
-        raise LogbookError(f"no logbook named: put --logbook PATH before the command, or set {LOGBOOK_VARIABLE}")
-    return open_logbook(context.obj)
-
-
 def vehicles_asked(logbook: Logbook, name: str | None) -> list[Vehicle]:
     """The vehicle named, or all. Raises UnknownNameError, or LogbookError where there is none."""
-    if name is not None:
-        return [logbook.vehicle(name)]
-    vehicles = logbook.vehicles()
+    vehicles = the_vehicles(logbook, name)
     if not vehicles:
         raise LogbookError("the logbook has no vehicle yet: energytrack vehicle add NAME --carrier diesel")
     return vehicles
@@ -68,10 +58,12 @@ def questions(logbook: Logbook, vehicles: Iterable[Vehicle], name: str | None, t
 
 
 def _of_vehicle(logbook: Logbook, vehicle: Vehicle, target: float | None) -> list[Question]:
-    targets: dict[str, float | None] = {}
+    """The target asked for comes first, then the one last logged with the modification, then the usual one."""
+    targets: dict[str, float] = {}
     for period in logbook.modifications(vehicle.name):
-        targets[period.name] = period.target_percent or targets.get(period.name)
-    return [Question(vehicle, name, target or own or USUAL_TARGET) for name, own in targets.items()]
+        usual = targets.get(period.name, USUAL_TARGET)
+        targets[period.name] = usual if period.target_percent is None else period.target_percent
+    return [Question(vehicle, name, own if target is None else target) for name, own in targets.items()]
 
 
 def tables(logbook: Logbook, vehicle: Vehicle) -> dict[str, Any]:
@@ -107,6 +99,6 @@ def answered(asked: Iterable[Asked], answer: Callable[[Asked], Answer]) -> tuple
 def leave(refusals: list[str], status: ExitStatus = ExitStatus.DONE) -> None:
     """Say what could not be answered, and end with the status that tells it."""
     for refusal in refusals:
-        print(f"energytrack: {refusal}", file=sys.stderr)
+        print(f"energytrack: {plain_text(refusal)}", file=sys.stderr)
     if refusals or status is not ExitStatus.DONE:
         raise typer.Exit(ExitStatus.REFUSED if refusals else status)

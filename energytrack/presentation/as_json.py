@@ -1,8 +1,7 @@
-"""Answers as JSON that every reader accepts: a figure that does not exist is null."""
+"""Answers as values every JSON reader accepts: a figure that does not exist is null."""
 
 from __future__ import annotations
 
-import json
 import math
 from collections.abc import Mapping
 from typing import Any
@@ -15,8 +14,3 @@ def without_nan(value: Any) -> Any:
     if isinstance(value, (list, tuple)):
         return [without_nan(item) for item in value]
     return None if isinstance(value, float) and not math.isfinite(value) else value
-
-
-def dumps(value: Any) -> str:
-    """Indented JSON, ASCII only, so that no terminal acts on a name."""
-    return json.dumps(without_nan(value), indent=2, allow_nan=False)

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import sys
 from collections.abc import Iterable
 
 from rich.console import Console
@@ -13,9 +12,7 @@ _NARROWEST, _WIDEST = 60, 100
 
 
 def console() -> Console:
-    """Standard output. NO_COLOR and a pipe both turn styles off; what the encoding lacks becomes `?`."""
-    if hasattr(sys.stdout, "reconfigure"):
-        sys.stdout.reconfigure(errors="replace")
+    """Standard output: colours off with NO_COLOR, no styles at all in a pipe."""
     found = Console(markup=False, highlight=False, emoji=False)
     found.width = min(max(found.width, _NARROWEST), _WIDEST) if found.is_terminal else PIPED_WIDTH
     return found

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 import json
+import math
 import os
 import random
 import subprocess
@@ -22,31 +23,35 @@ FITTED_KM = 12_000.0
 STEP_KM = 500.0
 
 
-def run(logbook: Path | None, *words: str) -> subprocess.CompletedProcess[str]:
+def run(logbook: Path | None, *words: str, encoding: str = "utf-8") -> subprocess.CompletedProcess[str]:
     named = [] if logbook is None else ["--logbook", str(logbook)]
     environment = {key: value for key, value in os.environ.items() if key != "ENERGYTRACK_LOGBOOK"}
     return subprocess.run(
         [sys.executable, "-m", "energytrack", *named, *words],
         cwd=ROOT,
-        env=environment | {"PYTHONIOENCODING": "utf-8"},
+        env=environment | {"PYTHONIOENCODING": encoding},
         capture_output=True,
         text=True,
-        encoding="utf-8",
+        encoding=encoding,
         timeout=300,
     )
 
 
-def drive(book: Store, vehicle: str, tanks: int, shift: float, sloppy: float, seed: int) -> None:
+def drive(
+    book: Store, vehicle: str, tanks: int, shift: float, sloppy: float, seed: int, extra: tuple[str, ...] = ()
+) -> None:
     """Full tanks of 500 km at 8 L/100 km; from FITTED_KM on, consumption is shifted (a ratio)."""
     rng = random.Random(seed)
     start = dt.date(2025, 3, 1)
     entries = []
     for i in range(tanks):
         km = STEP_KM * i
-        rate = 0.08 * (1 + shift * (km > FITTED_KM)) * (1 + 0.01 * rng.gauss(0, 1))
+        temperature = 12 + 10 * math.sin(i / 4)
+        cold = 0.006 * max(0.0, 18 - temperature)
+        rate = 0.08 * (1 + shift * (km > FITTED_KM) + cold + 0.01 * rng.gauss(0, 1))
         energy = STEP_KM * rate + sloppy * rng.gauss(0, 1)
         day = start + dt.timedelta(days=4 * i)
-        entries.append((Entry(vehicle, day, energy, km, temperature_c=20.0), {}))
+        entries.append((Entry(vehicle, day, energy, km, temperature_c=temperature, extra={name: rng.random() for name in extra}), {}))
     book.add_entries(entries, source="test")
 
 
@@ -164,19 +169,57 @@ def test_an_empty_logbook_says_what_to_log(tmp_path: Path) -> None:
     assert len(unmodified.stderr.splitlines()) == 1
 
 
-def test_one_vehicle_without_entries_does_not_hide_the_answer_of_another(tmp_path: Path) -> None:
+def test_a_vehicle_that_cannot_be_answered_for_does_not_hide_the_answer_of_another(tmp_path: Path) -> None:
     book = open_logbook(tmp_path / "two.logbook", create=True)
     assert isinstance(book, Store)
     book.add_vehicle(Vehicle("van", "diesel", "L", 70.0))
     book.add_vehicle(Vehicle("bus", "diesel", "L"))
-    drive(book, "van", 60, -0.12, 0.3, seed=1)
+    drive(book, "van", 60, -0.12, 0.3, seed=1, extra=("payload",))
+    drive(book, "bus", 40, 0.0, 0.3, seed=2)
     book.fit("van", "side skirts", None, FITTED_KM)
     book.fit("bus", "side skirts", None, FITTED_KM)
     book.close()
-    done = run(book.path, "enough", "side skirts", "--json")
+    done = run(book.path, "enough", "side skirts", "--covariate", "payload", "--json")
     assert [a["vehicle"] for a in answers(done)] == ["van"]
     assert done.returncode == 1
     assert done.stderr.startswith("energytrack: bus, side skirts: ")
+
+
+def test_a_terminal_without_the_degree_sign_still_gets_the_answer(logbook: Path) -> None:
+    assert "per degree below 18 ?C" in run(logbook, "enough", "side skirts", encoding="ascii").stdout
+
+
+def test_hostile_names_reach_no_terminal(tmp_path: Path) -> None:
+    book = open_logbook(tmp_path / "odd.logbook", create=True)
+    assert isinstance(book, Store)
+    name = "\x1b[2J[red]\u202e"
+    book.add_vehicle(Vehicle("van", "diesel", "L"))
+    drive(book, "van", 40, -0.12, 0.3, seed=1)
+    book.fit("van", name, None, FITTED_KM)
+    book.close()
+    for words in (["enough"], ["plan"], ["enough", "--json"], ["enough", "no such part"]):
+        done = run(book.path, *words)
+        assert "[red]" in done.stdout + done.stderr
+        assert "\x1b" not in done.stdout + done.stderr
+        assert "\u202e" not in done.stdout + done.stderr
+
+
+def test_a_mistyped_option_is_wrong_usage(logbook: Path) -> None:
+    assert run(logbook, "enough", "--jsno").returncode == 2
+    assert run(logbook, "plan", "--jsno").returncode == 2
+
+
+def test_a_vehicle_without_entries_is_told_what_to_drive(tmp_path: Path) -> None:
+    book = open_logbook(tmp_path / "new.logbook", create=True)
+    assert isinstance(book, Store)
+    book.add_vehicle(Vehicle("van", "diesel", "L"))
+    book.fit("van", "side skirts", None, FITTED_KM)
+    book.close()
+    done = run(book.path, "enough")
+    assert done.returncode == 0
+    assert done.stdout.startswith("No baseline: there is nothing measured without side skirts")
+    assert "Drive about 3,200 km without it" in done.stdout.replace("\n", " ")
+    assert run(book.path, "plan").stdout.startswith("No plan yet: 0 segments")
 
 
 def test_no_logbook_named() -> None:

@@ -54,10 +54,6 @@ def test_a_pipe_gets_plain_80_columns_whatever_the_terminal_is() -> None:
     assert text.replace(os.linesep, "\n") == expected
 
 
-def test_an_encoding_without_the_degree_sign_still_gets_the_answer() -> None:
-    assert b"below 18 ?C" in piped(PYTHONIOENCODING="ascii")
-
-
 def test_a_terminal_gets_weight_and_no_color_turns_colours_off() -> None:
     assert "\x1b[1mNot yet" in on_a_terminal()
     assert "\x1b[3" not in on_a_terminal(NO_COLOR="1")
