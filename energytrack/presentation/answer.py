@@ -79,8 +79,8 @@ def _shifted(a: Assessment, unit: str) -> str:
         look = settling_look(a)
         size = "" if look is None else f" of {figures.percent(look.shift_percent, signed=True)}"
         return (
-            f"Doubtful: a shift{size} from {name} was settled{at}, but what was driven since does not "
-            f"bear it out: now {so_far(a)}."
+            f"Doubtful: a shift{size} from {name} was settled{at}, but with what was driven since "
+            f"{_what_changed(a)}: now {so_far(a)}."
         )
     shift, error, span = a.shift_percent or 0.0, a.standard_error_percent, figures.bounded(a.interval_percent)
     verb = "lowered" if shift < 0 else "raised"
@@ -92,13 +92,18 @@ def _shifted(a: Assessment, unit: str) -> str:
     return f"Yes: {name} {verb} consumption by {figures.percent(abs(shift), error)}{within}{settled}."
 
 
+def _what_changed(a: Assessment) -> str:
+    span = a.interval_percent
+    return "its range reaches zero again" if span is None or span[0] <= 0 <= span[1] else "it points the other way"
+
+
 def _no_shift(a: Assessment, unit: str) -> str:
     name, target = plain_text(a.modification), figures.target(a.target_percent)
     if contradicted(a):
         at = "" if a.settled_at_km is None else f" at {figures.driven(a.settled_at_km, unit)}"
         return (
             f"Doubtful: a shift of {target} from {name} was ruled out{at}, "
-            f"but what was driven since does not bear it out: now {so_far(a)}."
+            f"but what was driven since shows one: now {so_far(a)}."
         )
     return (
         f"No: any shift from {name} is smaller than the target of {target}. "

@@ -51,7 +51,8 @@ def drive(
         rate = 0.08 * (1 + shift * (km > FITTED_KM) + cold + 0.01 * rng.gauss(0, 1))
         energy = STEP_KM * rate + sloppy * rng.gauss(0, 1)
         day = start + dt.timedelta(days=4 * i)
-        entries.append((Entry(vehicle, day, energy, km, temperature_c=temperature, extra={name: rng.random() for name in extra}), {}))
+        columns = {name: rng.random() for name in extra}
+        entries.append((Entry(vehicle, day, energy, km, temperature_c=temperature, extra=columns), {}))
     book.add_entries(entries, source="test")
 
 
