@@ -12,6 +12,7 @@ from energytrack.presentation.text import wrap
 ROWS = 10
 _MARGIN = 13  # for the odometer
 _FEWEST = 2
+_TARGETS_SHOWN = 4  # at most so many times the target to either side, unless the shift itself lies further
 _CLEAR = 6  # columns between no shift and the target from which both can be labelled
 _LEGEND = "every look at its odometer value: o estimate, (---) look-proof range, : target"
 
@@ -40,9 +41,11 @@ class _Scale:
 
 
 def _reach(a: Assessment) -> float:
+    """Percent to either side: the present range, but never so far that the target is lost to sight."""
     last = a.looks[-1]
-    ends = [abs(end) for end in figures.bounded(last.interval_percent) or (last.shift_percent,)]
-    return float(ceil(1.4 * max(a.target_percent, *ends)))
+    ends = [abs(end) for end in figures.bounded(last.interval_percent) or (0.0,)]
+    near = max(_TARGETS_SHOWN * a.target_percent, abs(last.shift_percent))
+    return float(ceil(1.4 * min(max(a.target_percent, abs(last.shift_percent), *ends), near)))
 
 
 def _chosen(a: Assessment) -> Sequence[Look]:
