@@ -10,7 +10,6 @@ import typer
 
 from energytrack.cli import options
 from energytrack.cli.context import distance_unit, kilometres, say, say_json, the_vehicle, writable
-from energytrack.cli.entries import entry_columns
 from energytrack.cli.prompts import ask, on_terminal
 from energytrack.cli.typed import Typed, as_typed, check_kind, entry_from, unit_of
 from energytrack.errors import EntryError
@@ -112,6 +111,8 @@ def _echo(store: Store, vehicle: Vehicle, entry: Entry, json: bool) -> None:
 
     lines = echo_lines(store, vehicle, entry)
     if json:
+        from energytrack.cli.entries import entry_columns
+
         say_json({**entry_columns(entry), "meaning": lines})
     else:
         say(lines)
