@@ -38,6 +38,7 @@ class Vehicle:
     distance_unit: str = "km"  # km or mi: how odometer values are typed and shown
     display: str | None = None  # consumption unit shown, a key of quantities.CONSUMPTION; None: the carrier's usual one
     note: str = ""
+    typed_unit: str | None = None  # unit of amounts typed without one, a key of quantities.ENERGY; None: `unit`
 
 
 @dataclass(frozen=True, slots=True)

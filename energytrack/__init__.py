@@ -1,0 +1,27 @@
+"""Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
+
+The Python interface: open_logbook, assess, plan. Each is loaded when it is first used, so that importing the package
+costs nothing.
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import Any
+
+_HOMES = {
+    "open_logbook": "energytrack.consumption.frames",
+    "assess": "energytrack.inference.assess",
+    "plan": "energytrack.inference.designs",
+}
+
+
+def __getattr__(name: str) -> Any:
+    home = _HOMES.get(name)
+    if home is None:
+        raise AttributeError(f"module 'energytrack' has no attribute {name!r}; it offers {', '.join(_HOMES)}")
+    return getattr(import_module(home), name)
+
+
+def __dir__() -> list[str]:
+    return sorted([*globals(), *_HOMES])

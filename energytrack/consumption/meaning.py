@@ -1,0 +1,272 @@
+"""What one entry meant: distance, consumption, what was expected, and what is left to go. No heavy libraries."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable, Mapping, Sequence
+from itertools import pairwise
+from typing import Any, Protocol
+
+from energytrack.consumption.segments import Segment, SegmentedLog, close_segments
+from energytrack.consumption.shares import fitted_periods, shares
+from energytrack.consumption.terms import condition_of, term
+from energytrack.errors import ConsumptionError
+from energytrack.logbook.quantities import consumption_text, distance_text, energy_text, from_base, to_base
+from energytrack.logbook.records import Entry, Event, Modification, Vehicle
+
+RECENT_ENTRIES = 60  # looked at for one echo, however long the log is
+FEWEST_SEGMENTS = 5  # before a vehicle has a record to compare with
+WITHIN_SD = 2.0  # usual scatter: about 19 of 20 segments
+UNUSUAL_SD = 4.0
+MAD_TO_SD = 1.4826  # for a normal distribution (Rousseeuw and Croux 1993)
+LEAST_SCATTER = 0.01  # of consumption; a shorter record can look steadier than it is
+
+WHY_VOID = {
+    "missed entry": "an entry is missing before it",
+    "no distance": "the distance since the last entry is unknown",
+    "no amount": "an amount is missing since the last known level",
+    "no known level": "the level at its start is unknown",
+    "no energy used": "more energy is left than was bought; check amount and level",
+    "not driven": "no distance was driven since the last known level",
+}
+
+
+class EchoLogbook(Protocol):
+    """What an echo needs to read."""
+
+    def last_entries(self, vehicle_name: str, count: int) -> list[Entry]: ...
+    def modifications(self, vehicle_name: str) -> list[Modification]: ...
+    def events(self, vehicle_name: str) -> list[Event]: ...
+    def assessments(self, vehicle_name: str) -> list[dict[str, Any]]: ...
+
+
+def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str]:
+    """What `entry`, already in the logbook, meant: one to four lines in the vehicle's units."""
+    recent = logbook.last_entries(vehicle.name, RECENT_ENTRIES)
+    segmented = close_segments(recent, logbook.events(vehicle.name), capacity=vehicle.capacity, unit=vehicle.unit)
+    index = _index_of(segmented, entry)
+    if index is None:
+        return ["kept among the older entries"]
+    kept = logbook.assessments(vehicle.name)
+    rows = logbook.modifications(vehicle.name)
+    which = next((k for k, segment in enumerate(segmented.segments) if segment.legs[-1].entry == index), None)
+    if which is None:
+        lines = [_without_consumption(segmented, vehicle, index)]
+    else:
+        lines = [_with_consumption(segmented.segments[which], vehicle)]
+        lines += _compared(segmented, which, vehicle, kept, rows)
+    return lines + _still_to_go(segmented, vehicle, index, kept, rows)
+
+
+def unusual(segments: Sequence[Segment]) -> list[bool]:
+    """Which segments' consumption lies beyond 4 robust standard deviations of their own record.
+
+    Deviations of segments shorter than the median one are scaled down by their length: there the level error, which
+    does not grow with distance, weighs more. With fewer than 5 segments none is unusual.
+    """
+    if len(segments) < FEWEST_SEGMENTS:
+        return [False] * len(segments)
+    _, deviations, sd = _record(segments)
+    return [abs(deviation) > UNUSUAL_SD * sd for deviation in deviations]
+
+
+def _record(segments: Sequence[Segment]) -> tuple[float, list[float], float]:
+    """Median consumption, each segment's deviation from it, and their robust sd, in energy per km."""
+    consumption = [segment.energy / segment.distance_km for segment in segments]
+    usual = _median(consumption)
+    usual_km = _median([segment.distance_km for segment in segments])
+    deviations = [
+        (value - usual) * min(1.0, segment.distance_km / usual_km)
+        for value, segment in zip(consumption, segments, strict=True)
+    ]
+    sd = MAD_TO_SD * _median([abs(deviation) for deviation in deviations])
+    return usual, deviations, max(sd, LEAST_SCATTER * usual)
+
+
+def _median(values: Iterable[float]) -> float:
+    ordered = sorted(values)
+    middle = len(ordered) // 2
+    return ordered[middle] if len(ordered) % 2 else (ordered[middle - 1] + ordered[middle]) / 2
+
+
+def _index_of(segmented: SegmentedLog, entry: Entry) -> int | None:
+    for index in range(len(segmented.entries) - 1, -1, -1):
+        other = segmented.entries[index]
+        if other == entry or (entry.id is not None and other.id == entry.id):
+            return index
+    return None
+
+
+def _with_consumption(segment: Segment, vehicle: Vehicle) -> str:
+    figure = consumption_text(segment.energy / segment.distance_km, vehicle)
+    last = segment.legs[-1].entry
+    entries = 1 + last - segment.legs[0].entry
+    if entries == 1:
+        return f"{distance_text(segment.distance_km, vehicle)} since the last entry: {figure}"
+    driven = math.fsum(leg.distance_km for leg in segment.legs if leg.entry == last)
+    whole = f"{distance_text(segment.distance_km, vehicle)} over {entries} entries"
+    return f"{distance_text(driven, vehicle)} since the last entry; {whole} since the last known level: {figure}"
+
+
+def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) -> str:
+    entry = segmented.entries[index]
+    store = "charge" if vehicle.unit == "kWh" else "tank"
+    if index == 0:
+        return f"first entry: consumption follows with the next full {store}"
+    legs = [leg for segment in segmented.segments for leg in segment.legs] + list(segmented.open_legs)
+    driven = math.fsum(leg.distance_km for leg in legs if leg.entry == index)
+    since = f"{distance_text(driven, vehicle)} since the last entry: " if driven > 0 else ""
+    void = next((span for span in segmented.void if span.entry == index), None)
+    if void is not None and (entry.full or entry.level_percent is not None):
+        return f"{since}no consumption from this entry, {WHY_VOID[void.reason]}"
+    return f"{since}partial fill, consumption follows with the next full {store}"
+
+
+def _compared(
+    segmented: SegmentedLog,
+    which: int,
+    vehicle: Vehicle,
+    kept: Sequence[Mapping[str, Any]],
+    rows: Sequence[Modification],
+) -> list[str]:
+    """How the segment compares with what was expected, and a flag where it is unusual."""
+    segment = segmented.segments[which]
+    others = [*segmented.segments[:which], *segmented.segments[which + 1 :]]
+    figure = segment.energy / segment.distance_km
+    expected, sd, basis = None, math.nan, "at these conditions"
+    latest = _latest_expectation(kept)
+    if latest is not None:
+        expected = _expected(segmented, which, latest, rows)
+        sd = latest["expectation"]["sd_percent"]
+    elif len(others) >= FEWEST_SEGMENTS:
+        expected, _, spread = _record(others)
+        sd, basis = 100 * spread / expected, "from its recent record"
+    if expected is None or expected <= 0:
+        return []
+    percent = 100 * (figure / expected - 1)
+    verdict = "within" if abs(percent) <= WITHIN_SD * sd else "outside"
+    lines = [
+        f"expected {basis}: {consumption_text(expected, vehicle)}; used {abs(percent):.1f} % "
+        f"{'more' if percent >= 0 else 'less'}, {verdict} the usual scatter (+/- {WITHIN_SD * sd:.0f} %)"
+    ]
+    if unusual(segmented.segments)[which]:
+        lines.append("unusual for this vehicle: kept; check the amount and the odometer")
+        lines += _digit_swap(segmented, segment, vehicle, expected, sd / 100 * expected)
+    return lines
+
+
+def _latest_expectation(kept: Sequence[Mapping[str, Any]]) -> Mapping[str, Any] | None:
+    told = [answer for answer in kept if answer.get("expectation")]
+    return max(told, key=lambda answer: answer.get("at_km") or 0.0, default=None)
+
+
+def _expected(
+    segmented: SegmentedLog, which: int, answer: Mapping[str, Any], rows: Sequence[Modification]
+) -> float | None:
+    """Energy per km the kept model expects of a segment; a condition that is unknown counts as the reference one."""
+    expectation = answer["expectation"]
+    percent = 0.0
+    for name, slope in expectation["terms"].items():
+        value = _condition(segmented, segmented.segments[which], condition_of(name))
+        if value is not None:
+            percent += slope * (term(name, value) - expectation["centres"][name])
+    own = [row for row in rows if row.name == answer.get("modification")]
+    try:
+        highest = max((abs(row.level) for row in own if row.level), default=1.0)  # the shift is that of this level
+        percent += (expectation["shift_percent"] or 0.0) * shares(segmented, own)[which] / highest
+    except ConsumptionError:
+        return None  # the rows of the modification contradict each other; said under what is left to go
+    return float(expectation["consumption"] * (1 + percent / 100))
+
+
+def _condition(segmented: SegmentedLog, segment: Segment, name: str) -> float | None:
+    """Distance-weighted condition of a segment, None where unknown on more than half of its distance."""
+    if name == "season":
+        return (segment.start_day + segment.end_day) / 2
+    total = known = 0.0
+    for leg in segment.legs:
+        entry = segmented.entries[leg.entry]
+        value = getattr(entry, name) if name in ("temperature_c", "speed_kmh") else entry.extra.get(name)
+        if value is not None:
+            total += value * leg.distance_km
+            known += leg.distance_km
+    return total / known if known > 0 and known >= segment.distance_km / 2 else None
+
+
+def _digit_swap(
+    segmented: SegmentedLog, segment: Segment, vehicle: Vehicle, expected: float, sd: float
+) -> list[str]:
+    """The swap of two neighbouring digits that brings the segment closest to what was expected, if one does."""
+    entry = segmented.entries[segment.legs[-1].entry]
+    fits = []
+    if entry.odometer_km is not None:
+        for typed in _swapped(f"{from_base(entry.odometer_km, vehicle.distance_unit):.0f}"):
+            other = to_base(float(typed), vehicle.distance_unit)
+            distance = segment.distance_km + other - entry.odometer_km
+            if other > segment.legs[-1].start_km and distance > 0:
+                said = f"odometer {distance_text(other, vehicle)}"
+                fits.append((abs(segment.energy / distance - expected), said))
+    for typed in _swapped(f"{entry.energy:.2f}"):
+        energy = segment.energy + float(typed) - entry.energy
+        fits.append((abs(energy / segment.distance_km - expected), f"amount {energy_text(float(typed), vehicle)}"))
+    gap, said = min(fits, default=(math.inf, ""))
+    return [f"two digits swapped? {said} would fit"] if gap <= WITHIN_SD * sd else []
+
+
+def _swapped(typed: str) -> list[str]:
+    """All numbers that differ from `typed` by one swap of neighbouring digits."""
+    digits = [place for place, sign in enumerate(typed) if sign.isdigit()]
+    swaps = []
+    for left, right in pairwise(digits):
+        if typed[left] != typed[right]:
+            letters = list(typed)
+            letters[left], letters[right] = letters[right], letters[left]
+            swaps.append("".join(letters))
+    return swaps
+
+
+def _still_to_go(
+    segmented: SegmentedLog,
+    vehicle: Vehicle,
+    index: int,
+    kept: Sequence[Mapping[str, Any]],
+    rows: Sequence[Modification],
+) -> list[str]:
+    answers = {answer.get("modification"): answer for answer in kept}
+    lines = []
+    for name in dict.fromkeys(row.name for row in rows if row.removed_km is None and row.removed_date is None):
+        answer = answers.get(name)
+        if answer is None:
+            lines.append(f"{name}: run `energytrack enough` to see how far there is to go")
+        elif answer.get("verdict") in ("not-yet", "out-of-reach", "no-baseline"):
+            own = [row for row in rows if row.name == name]
+            lines.append(f"{name}: {_left(segmented, vehicle, index, answer, own)}")
+    return lines
+
+
+def _left(
+    segmented: SegmentedLog, vehicle: Vehicle, index: int, answer: Mapping[str, Any], rows: Sequence[Modification]
+) -> str:
+    """What is left of the distance to go, less what was driven with the part fitted since that answer was kept."""
+    target = f"the {answer['target_percent']:g} % target"
+    to_go, at = answer.get("distance_to_go_km"), answer.get("at_km")
+    if to_go is None:
+        why = "no baseline yet" if answer["verdict"] == "no-baseline" else f"{target} is out of reach as it is driven"
+        return f"{why} (run `energytrack enough` for what would help)"
+    if at is None or all(entry.odometer_km is None for entry in segmented.entries):
+        return f"about {_about(to_go, vehicle)} to go at {target} when last looked at (`energytrack enough`)"
+    here = segmented.positions[index]
+    try:
+        periods = fitted_periods(segmented, rows)
+    except ConsumptionError as contradiction:
+        return str(contradiction)
+    driven = math.fsum(max(0.0, min(removed, here) - max(fitted, at)) for fitted, removed, _ in periods)
+    if driven >= to_go:
+        return f"the distance asked for at {target} is covered (run `energytrack enough` to look)"
+    return f"about {_about(to_go - driven, vehicle)} to go at {target} (run `energytrack enough` to look)"
+
+
+def _about(km: float, vehicle: Vehicle) -> str:
+    """Rounded up to tens of the vehicle's distance unit."""
+    tens = math.ceil(from_base(km, vehicle.distance_unit) / 10) * 10
+    return distance_text(to_base(tens, vehicle.distance_unit), vehicle)

@@ -1,0 +1,112 @@
+"""Segments as arrays: what the inference sees of a log."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass, fields, replace
+from itertools import chain
+
+import numpy as np
+from numpy.typing import NDArray
+
+from energytrack.consumption.averages import Array, distance_means, entry_conditions
+from energytrack.consumption.segments import SegmentedLog
+from energytrack.consumption.shares import shares
+from energytrack.logbook.records import Modification, Weather
+
+
+@dataclass(frozen=True)
+class Observations:
+    """Arrays over n segments in driving order; m modifications by name."""
+
+    distance_km: Array  # (n,) true km
+    energy: Array  # (n,) used, in `unit`
+    mid_day: Array  # (n,) date ordinal of the middle of the segment
+    start_km: Array  # (n,) position on the log's own scale
+    end_km: Array  # (n,)
+    end_day: Array  # (n,) date ordinal
+    linked: NDArray[np.bool_]  # (n,) shares its start level with the segment before it
+    start_weight: Array  # (n,) sd of the level at each end, relative to a fill to the click-off
+    end_weight: Array  # (n,)
+    conditions: Mapping[str, Array]  # (n,) distance-weighted; NaN where unknown on more than half of the distance
+    known_share: Mapping[str, Array]  # (n,) share of the distance with a known value
+    shares: Array  # (n, m) share of the distance with each modification fitted, times level
+    names: tuple[str, ...]  # of the modifications, in order of first appearance
+    unit: str
+    capacity: float | None
+
+    def __len__(self) -> int:
+        return len(self.distance_km)
+
+    def head(self, count: int) -> Observations:
+        """The first `count` segments, as views: what was known after that many."""
+        shortened = {
+            field.name: getattr(self, field.name)[:count]
+            for field in fields(self)
+            if isinstance(getattr(self, field.name), np.ndarray)
+        }
+        return replace(
+            self,
+            **shortened,
+            conditions={name: values[:count] for name, values in self.conditions.items()},
+            known_share={name: values[:count] for name, values in self.known_share.items()},
+        )
+
+
+def observe(
+    segmented: SegmentedLog,
+    modifications: Sequence[Modification] = (),
+    covariates: Sequence[str] = (),
+    weather: Sequence[Weather] = (),
+) -> Observations:
+    """Arrays over the segments of one vehicle's log.
+
+    modifications: the vehicle's rows, of any names. covariates: further numeric columns to average; temperature and
+    speed always are. weather fills in temperatures that entries lack. Raises ConsumptionError for a modification
+    without a fitting or overlapping itself, UnknownNameError for a covariate no entry has.
+    """
+    segments = segmented.segments
+    names = tuple(dict.fromkeys(row.name for row in modifications))
+    columns = [shares(segmented, [row for row in modifications if row.name == name]) for name in names]
+    conditions, known_share = _conditions(segmented, covariates, weather)
+    start_day = _column(segment.start_day for segment in segments)
+    end_day = _column(segment.end_day for segment in segments)
+    return Observations(
+        distance_km=_column(segment.distance_km for segment in segments),
+        energy=_column(segment.energy for segment in segments),
+        mid_day=(start_day + end_day) / 2,
+        start_km=_column(segment.start_km for segment in segments),
+        end_km=_column(segment.end_km for segment in segments),
+        end_day=end_day,
+        linked=np.array([segment.linked for segment in segments], dtype=np.bool_),
+        start_weight=_column(segment.start_weight for segment in segments),
+        end_weight=_column(segment.end_weight for segment in segments),
+        conditions=conditions,
+        known_share=known_share,
+        shares=np.array(columns, dtype=np.float64).reshape(len(names), len(segments)).T,
+        names=names,
+        unit=segmented.unit,
+        capacity=segmented.capacity,
+    )
+
+
+def _conditions(
+    segmented: SegmentedLog, covariates: Sequence[str], weather: Sequence[Weather]
+) -> tuple[dict[str, Array], dict[str, Array]]:
+    by_entry = entry_conditions(segmented, covariates, weather)
+    if not segmented.segments:
+        nothing = {name: np.empty(0) for name in by_entry}
+        return nothing, dict(nothing)
+    legs = list(chain.from_iterable(segment.legs for segment in segmented.segments))
+    weights = _column(leg.distance_km for leg in legs)
+    entry = np.array([leg.entry for leg in legs], dtype=np.intp)
+    sizes = np.array([len(segment.legs) for segment in segmented.segments], dtype=np.intp)
+    starts = np.concatenate([[0], np.cumsum(sizes)[:-1]]).astype(np.intp)
+    means, known = {}, {}
+    for name, values in by_entry.items():
+        means[name], known[name] = distance_means(values[entry], weights, starts)
+    return means, known
+
+
+def _column(values: Iterable[float]) -> Array:
+    return np.fromiter(values, dtype=np.float64)

@@ -1,0 +1,74 @@
+"""Rows of the logbook file as records, and records as rows."""
+
+from __future__ import annotations
+
+import datetime as dt
+import json
+import math
+import sqlite3
+from collections.abc import Mapping
+from types import MappingProxyType
+from typing import Any
+
+from energytrack.logbook.records import Entry, Event, Vehicle
+from energytrack.logbook.switches import Switch
+
+VEHICLE_COLUMNS = "name, carrier, unit, capacity, distance_unit, display, note, typed_unit"
+ENTRY_COLUMNS = (
+    "date, energy, odometer_km, kind, full, level_percent, missed, distance_km, cost, currency, "
+    "temperature_c, speed_kmh, place, note, extra, id"
+)
+SWITCH_COLUMNS = "modification, action, date, odometer_km, level, target_percent, note"
+EVENT_COLUMNS = "date, what, odometer_km, odometer_factor, note"
+
+
+def vehicle_of(row: tuple[Any, ...]) -> Vehicle:
+    return Vehicle(*row)
+
+
+def entry_of(vehicle: str, row: tuple[Any, ...]) -> Entry:
+    values = dict(zip(ENTRY_COLUMNS.split(", "), row, strict=True))
+    values["date"] = dt.date.fromisoformat(values["date"])
+    values["energy"] = math.nan if values["energy"] is None else values["energy"]
+    values["full"], values["missed"] = bool(values["full"]), bool(values["missed"])
+    values["extra"] = MappingProxyType(json.loads(values["extra"]))
+    return Entry(vehicle, **values)
+
+
+def switch_of(row: tuple[Any, ...]) -> Switch:
+    name, action, date, km, level, target, note = row
+    return Switch(name, action == "fitted", dt.date.fromisoformat(date) if date else None, km, level, target, note)
+
+
+def event_of(vehicle: str, row: tuple[Any, ...]) -> Event:
+    date, what, odometer, factor, note = row
+    return Event(vehicle, dt.date.fromisoformat(date), what, odometer, factor, note)
+
+
+def entry_values(entry: Entry) -> dict[str, Any]:
+    """Column -> value; an amount that is not known is null."""
+    return {
+        "date": entry.date.isoformat(),
+        "odometer_km": entry.odometer_km,
+        "distance_km": entry.distance_km,
+        "energy": None if math.isnan(entry.energy) else entry.energy,
+        "kind": entry.kind,
+        "full": int(entry.full),
+        "level_percent": entry.level_percent,
+        "missed": int(entry.missed),
+        "cost": entry.cost,
+        "currency": entry.currency,
+        "temperature_c": entry.temperature_c,
+        "speed_kmh": entry.speed_kmh,
+        "place": entry.place,
+        "note": entry.note,
+        "extra": json.dumps(dict(entry.extra)),
+    }
+
+
+def insert(connection: sqlite3.Connection, table: str, values: Mapping[str, Any]) -> int:
+    """Append one row, stamped with the time of recording (UTC); its number. Table and columns are ours, never typed."""
+    stamped = {**values, "recorded_at": dt.datetime.now(dt.UTC).isoformat(timespec="seconds")}
+    marks = ", ".join(f":{column}" for column in stamped)
+    cursor = connection.execute(f"INSERT INTO {table} ({', '.join(stamped)}) VALUES ({marks})", stamped)
+    return cursor.lastrowid or 0

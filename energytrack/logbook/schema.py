@@ -1,0 +1,178 @@
+"""The tables of a logbook file, as the steps that lead from one version to the next.
+
+What was logged is never overwritten. A correction is a further row that supersedes the earlier one; striking an entry
+is such a row with `struck` set. `supersedes` is unique, so that each row has one successor at most.
+"""
+
+from __future__ import annotations
+
+import sqlite3
+from collections.abc import Iterator
+
+from energytrack.errors import LogbookError
+
+APPLICATION_ID = 0x656E7472  # "entr", in the file's header: tells a logbook from any other SQLite file
+
+
+def _append_only(table: str) -> str:
+    """The rows that stand, and guards: no UPDATE, no DELETE, no INSERT in the place of an earlier row."""
+    refuse = f"BEGIN SELECT RAISE(ABORT, 'rows of {table} are never changed: add one that supersedes it'); END;"
+    return f"""
+CREATE VIEW standing_{table} AS
+    SELECT * FROM {table} AS this
+    WHERE struck = 0 AND NOT EXISTS (SELECT 1 FROM {table} AS later WHERE later.supersedes = this.id);
+CREATE TRIGGER {table}_kept_as_written BEFORE UPDATE ON {table} {refuse}
+CREATE TRIGGER {table}_kept BEFORE DELETE ON {table} {refuse}
+CREATE TRIGGER {table}_not_replaced BEFORE INSERT ON {table}
+    WHEN EXISTS (SELECT 1 FROM {table} WHERE id = NEW.id OR supersedes = NEW.supersedes) {refuse}
+"""
+
+
+_VERSION_1 = f"""
+CREATE TABLE vehicle (
+    id INTEGER PRIMARY KEY,
+    name TEXT NOT NULL UNIQUE CHECK (name <> ''),
+    carrier TEXT NOT NULL,
+    unit TEXT NOT NULL CHECK (unit IN ('L', 'kg', 'kWh')),
+    capacity REAL CHECK (capacity > 0),
+    distance_unit TEXT NOT NULL CHECK (distance_unit IN ('km', 'mi')),
+    display TEXT,
+    note TEXT NOT NULL,
+    typed_unit TEXT,
+    recorded_at TEXT NOT NULL
+) STRICT;
+
+CREATE TABLE entry (
+    id INTEGER PRIMARY KEY,
+    vehicle_id INTEGER NOT NULL REFERENCES vehicle (id),
+    date TEXT NOT NULL,
+    odometer_km REAL,
+    distance_km REAL,
+    energy REAL,                 -- in the vehicle's unit; null: the receipt has no amount
+    kind TEXT NOT NULL CHECK (kind IN ('fill-up', 'charge')),
+    full INTEGER NOT NULL CHECK (full IN (0, 1)),
+    level_percent REAL CHECK (level_percent BETWEEN 0 AND 100),
+    missed INTEGER NOT NULL CHECK (missed IN (0, 1)),
+    cost REAL,
+    currency TEXT,
+    temperature_c REAL,
+    speed_kmh REAL,
+    place TEXT NOT NULL,
+    note TEXT NOT NULL,
+    extra TEXT NOT NULL,         -- JSON: further numeric columns
+    typed TEXT NOT NULL,         -- JSON: what was typed, values with their units
+    source TEXT NOT NULL,        -- where it came from: the terminal, or the name of a file
+    recorded_at TEXT NOT NULL,   -- UTC
+    supersedes INTEGER UNIQUE REFERENCES entry (id),
+    struck INTEGER NOT NULL DEFAULT 0 CHECK (struck IN (0, 1)),
+    CHECK (struck = 0 OR supersedes IS NOT NULL)
+) STRICT;
+
+CREATE INDEX entry_in_driving_order ON entry (vehicle_id, date, odometer_km, id);
+CREATE INDEX entry_by_odometer ON entry (vehicle_id, odometer_km, date);
+
+{_append_only("entry")}
+
+CREATE TABLE switch (
+    id INTEGER PRIMARY KEY,
+    vehicle_id INTEGER NOT NULL REFERENCES vehicle (id),
+    modification TEXT NOT NULL CHECK (modification <> ''),
+    action TEXT NOT NULL CHECK (action IN ('fitted', 'removed')),
+    date TEXT,
+    odometer_km REAL,
+    level REAL,
+    target_percent REAL,
+    note TEXT NOT NULL,
+    recorded_at TEXT NOT NULL,
+    supersedes INTEGER UNIQUE REFERENCES switch (id),
+    struck INTEGER NOT NULL DEFAULT 0 CHECK (struck IN (0, 1)),
+    CHECK (date IS NOT NULL OR odometer_km IS NOT NULL),
+    CHECK (struck = 0 OR supersedes IS NOT NULL)
+) STRICT;
+
+CREATE INDEX switch_of_vehicle ON switch (vehicle_id, modification);
+
+{_append_only("switch")}
+
+CREATE TABLE event (
+    id INTEGER PRIMARY KEY,
+    vehicle_id INTEGER NOT NULL REFERENCES vehicle (id),
+    date TEXT NOT NULL,
+    odometer_km REAL,
+    what TEXT NOT NULL,
+    odometer_factor REAL CHECK (odometer_factor > 0),
+    note TEXT NOT NULL,
+    recorded_at TEXT NOT NULL,
+    supersedes INTEGER UNIQUE REFERENCES event (id),
+    struck INTEGER NOT NULL DEFAULT 0 CHECK (struck IN (0, 1)),
+    CHECK (struck = 0 OR supersedes IS NOT NULL)
+) STRICT;
+
+CREATE INDEX event_of_vehicle ON event (vehicle_id, date);
+
+{_append_only("event")}
+
+CREATE TABLE weather (
+    date TEXT PRIMARY KEY,
+    temperature_c REAL NOT NULL
+) STRICT, WITHOUT ROWID;
+
+CREATE TABLE assessment (
+    id INTEGER PRIMARY KEY,
+    vehicle_id INTEGER NOT NULL REFERENCES vehicle (id),
+    modification TEXT NOT NULL,
+    result TEXT NOT NULL,        -- JSON, without its looks
+    recorded_at TEXT NOT NULL
+) STRICT;
+
+CREATE INDEX assessment_latest ON assessment (vehicle_id, modification, id);
+"""
+
+MIGRATIONS: tuple[str, ...] = (_VERSION_1,)  # step n leads from version n to n + 1; never change one that was released
+
+
+def version_of(connection: sqlite3.Connection) -> int:
+    """The version of the tables in this file; 0 for none."""
+    version: int = connection.execute("PRAGMA user_version").fetchone()[0]
+    return version
+
+
+def migrate(connection: sqlite3.Connection, steps: tuple[str, ...] | None = None) -> None:
+    """Bring the tables to the newest version, wholly or not at all.
+
+    Raises LogbookError where the file was written by a newer version of this program.
+    """
+    steps = MIGRATIONS if steps is None else steps
+    version = version_of(connection)
+    if version > len(steps):
+        raise LogbookError(
+            f"the logbook has tables of version {version}, this program knows versions up to {len(steps)}: "
+            "install the newer energytrack"
+        )
+    if version < len(steps):
+        _apply(connection, steps)
+
+
+def _apply(connection: sqlite3.Connection, steps: tuple[str, ...]) -> None:
+    """All missing steps in one transaction; the version is read again under the lock, another process may be first."""
+    connection.execute("BEGIN EXCLUSIVE")
+    try:
+        for step in steps[version_of(connection) :]:
+            for statement in _statements(step):
+                connection.execute(statement)
+        connection.execute(f"PRAGMA application_id = {APPLICATION_ID}")
+        connection.execute(f"PRAGMA user_version = {len(steps)}")
+        connection.execute("COMMIT")
+    except BaseException:
+        connection.execute("ROLLBACK")
+        raise
+
+
+def _statements(script: str) -> Iterator[str]:
+    """The statements of a script one by one: `executescript` would commit before it starts."""
+    statement = ""
+    for line in script.splitlines(keepends=True):
+        statement += line
+        if sqlite3.complete_statement(statement):
+            yield statement
+            statement = ""

@@ -1,0 +1,224 @@
+"""A logbook in one SQLite file. Each change is one transaction; what was logged is never overwritten."""
+
+from __future__ import annotations
+
+import datetime as dt
+import json
+from collections import Counter
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+from energytrack.errors import LogbookError, UnknownNameError
+from energytrack.logbook import rows
+from energytrack.logbook.file import LogbookFile
+from energytrack.logbook.records import Entry, Event, Modification, Vehicle, Weather
+from energytrack.logbook.switches import Switch, check_switch, pair
+
+TYPED = "terminal"  # source of entries that were typed
+
+
+class Store(LogbookFile):
+    """A logbook file, open for reading and writing. Every method raises LogbookError where the file fails it."""
+
+    writable = True
+
+    # Reading
+
+    def vehicles(self) -> list[Vehicle]:
+        """All vehicles, in the order they were added."""
+        found = self._rows(f"SELECT {rows.VEHICLE_COLUMNS} FROM vehicle ORDER BY id")
+        return [rows.vehicle_of(row) for row in found]
+
+    def vehicle(self, name: str) -> Vehicle:
+        """The vehicle of that name. Raises UnknownNameError with those that exist."""
+        found = self._rows(f"SELECT {rows.VEHICLE_COLUMNS} FROM vehicle WHERE name = ?", name)
+        if not found:
+            raise self._unknown(name)
+        return rows.vehicle_of(found[0])
+
+    def entries(self, vehicle_name: str) -> list[Entry]:
+        """All standing entries in driving order: by date, on one day by odometer, then as logged."""
+        return self._entries(vehicle_name, "ORDER BY date, odometer_km, id")
+
+    def last_entries(self, vehicle_name: str, count: int) -> list[Entry]:
+        """The newest `count` standing entries in driving order, at a cost that does not grow with the logbook."""
+        newest_first = "ORDER BY date DESC, odometer_km DESC, id DESC LIMIT ?"
+        return self._entries(vehicle_name, newest_first, count)[::-1]
+
+    def neighbours(self, entry: Entry) -> tuple[Entry | None, Entry | None]:
+        """The standing entries just before and after the place of a new one: by odometer, or by date without one."""
+        if entry.odometer_km is not None:
+            before = "AND odometer_km <= ? ORDER BY odometer_km DESC, date DESC LIMIT 1"
+            after = "AND odometer_km > ? ORDER BY odometer_km, date LIMIT 1"
+            place: float | str = entry.odometer_km
+        else:
+            before = "AND date <= ? ORDER BY date DESC, odometer_km DESC, id DESC LIMIT 1"
+            after = "AND date > ? ORDER BY date, odometer_km, id LIMIT 1"
+            place = entry.date.isoformat()
+        found = [self._entries(entry.vehicle, part, place) for part in (before, after)]
+        return next(iter(found[0]), None), next(iter(found[1]), None)
+
+    def twin(self, entry: Entry) -> Entry | None:
+        """A standing entry of the same day and odometer; without an odometer, of the same day, distance and amount."""
+        part = "AND date = ? AND odometer_km IS ? LIMIT 1"
+        values: list[Any] = [entry.date.isoformat(), entry.odometer_km]
+        if entry.odometer_km is None:
+            part = f"AND distance_km IS ? AND energy = ? {part}"
+            values = [entry.distance_km, entry.energy, *values]
+        found = self._entries(entry.vehicle, part, *values)
+        return found[0] if found else None
+
+    def modifications(self, vehicle_name: str) -> list[Modification]:
+        """The periods in which each part was fitted."""
+        return pair(vehicle_name, self._switches(vehicle_name))
+
+    def events(self, vehicle_name: str) -> list[Event]:
+        """All standing events by date."""
+        select = f"SELECT {rows.EVENT_COLUMNS} FROM standing_event WHERE vehicle_id = ? ORDER BY date, odometer_km, id"
+        with self._guard():
+            return [rows.event_of(vehicle_name, row) for row in self._rows(select, self._number(vehicle_name))]
+
+    def weather(self) -> list[Weather]:
+        """Mean outside temperature by date."""
+        found = self._rows("SELECT date, temperature_c FROM weather ORDER BY date")
+        with self._guard():
+            return [Weather(dt.date.fromisoformat(date), temperature) for date, temperature in found]
+
+    def assessments(self, vehicle_name: str) -> list[dict[str, Any]]:
+        """The last answer kept for each modification, as `Assessment.to_dict()` without its looks."""
+        newest = "SELECT max(id) FROM assessment WHERE vehicle_id = ? GROUP BY modification"
+        select = f"SELECT result FROM assessment WHERE id IN ({newest}) ORDER BY id"
+        found = self._rows(select, self._number(vehicle_name))
+        with self._guard():
+            return [json.loads(row[0]) for row in found]
+
+    # Writing
+
+    def add_vehicle(self, vehicle: Vehicle) -> None:
+        """Add a vehicle; its name must be new."""
+        with self.transaction(), self._guard():
+            if self._rows("SELECT 1 FROM vehicle WHERE name = ?", vehicle.name):
+                raise LogbookError(f"there is a vehicle {vehicle.name!r} already: choose another name")
+            columns = rows.VEHICLE_COLUMNS.split(", ")
+            rows.insert(self._db, "vehicle", {column: getattr(vehicle, column) for column in columns})
+
+    def add_entry(self, entry: Entry, typed: Mapping[str, Any]) -> int:
+        """Append one entry with what was typed for it; its number."""
+        with self.transaction():
+            return self._append(self._number(entry.vehicle), entry, typed, TYPED)
+
+    def add_entries(self, entries: Sequence[tuple[Entry, Mapping[str, Any]]], source: str) -> int:
+        """Append the entries that were never logged before, in one transaction; how many they are.
+
+        An entry was logged before where vehicle, day, odometer, distance and amount agree; struck and corrected ones
+        count, so that the same file adds nothing the second time. Of n equal ones, those missing are added.
+        """
+        added = 0
+        met: Counter[tuple[Any, ...]] = Counter()
+        numbers: dict[str, int] = {}
+        with self.transaction():
+            for entry, typed in entries:
+                if entry.vehicle not in numbers:
+                    numbers[entry.vehicle] = self._number(entry.vehicle)
+                number = numbers[entry.vehicle]
+                values = rows.entry_values(entry)
+                key = (number, *(values[name] for name in ("date", "odometer_km", "distance_km", "energy")))
+                if key not in met:
+                    met[key] = -self._times_logged(key)
+                met[key] += 1
+                if met[key] > 0:
+                    self._append(number, entry, typed, source)
+                    added += 1
+        return added
+
+    def fit(
+        self,
+        vehicle: str,
+        name: str,
+        date: dt.date | None,
+        km: float | None,
+        target: float | None = None,
+        level: float | None = None,
+        note: str = "",
+    ) -> None:
+        """Log a part as fitted. Raises EntryError where it is on already at this level."""
+        self._switch(vehicle, Switch(name, True, date, km, level, target, note))
+
+    def remove(self, vehicle: str, name: str, date: dt.date | None, km: float | None) -> None:
+        """Log a part as removed. Raises EntryError where it is not on, with what is."""
+        self._switch(vehicle, Switch(name, False, date, km))
+
+    def add_event(self, event: Event) -> None:
+        """Append one event."""
+        values = {name: getattr(event, name) for name in ("what", "odometer_km", "odometer_factor", "note")}
+        with self.transaction(), self._guard():
+            number = self._number(event.vehicle)
+            rows.insert(self._db, "event", {"vehicle_id": number, "date": event.date.isoformat(), **values})
+
+    def add_weather(self, weather: Sequence[Weather]) -> None:
+        """Keep temperatures by day; a day given again replaces the earlier value."""
+        values = [(day.date.isoformat(), day.temperature_c) for day in weather]
+        with self.transaction(), self._guard():
+            self._db.executemany("INSERT OR REPLACE INTO weather (date, temperature_c) VALUES (?, ?)", values)
+
+    def keep_assessment(self, vehicle: str, modification: str, result: Mapping[str, Any]) -> None:
+        """Keep an answer, without its looks, for the echo of the entries to come."""
+        kept = json.dumps({key: value for key, value in result.items() if key != "looks"}, allow_nan=False)
+        with self.transaction(), self._guard():
+            values = {"vehicle_id": self._number(vehicle), "modification": modification, "result": kept}
+            rows.insert(self._db, "assessment", values)
+
+    # Inside
+
+    def _number(self, vehicle_name: str) -> int:
+        found = self._rows("SELECT id FROM vehicle WHERE name = ?", vehicle_name)
+        if not found:
+            raise self._unknown(vehicle_name)
+        number: int = found[0][0]
+        return number
+
+    def _unknown(self, name: str) -> UnknownNameError:
+        names = ", ".join(vehicle.name for vehicle in self.vehicles())
+        known = f"there are: {names}" if names else "there are none yet, add one with `vehicle add`"
+        return UnknownNameError(f"no vehicle {name!r} in this logbook; {known}")
+
+    def _entries(self, vehicle_name: str, part: str, *values: Any) -> list[Entry]:
+        select = f"SELECT {rows.ENTRY_COLUMNS} FROM standing_entry WHERE vehicle_id = ? {part}"
+        found = self._rows(select, self._number(vehicle_name), *values)
+        with self._guard():
+            return [rows.entry_of(vehicle_name, row) for row in found]
+
+    def _append(self, number: int, entry: Entry, typed: Mapping[str, Any], source: str) -> int:
+        values = rows.entry_values(entry)
+        with self._guard():
+            kept = {"vehicle_id": number, **values, "typed": json.dumps(dict(typed)), "source": source}
+            return rows.insert(self._db, "entry", kept)
+
+    def _times_logged(self, key: tuple[Any, ...]) -> int:
+        select = (
+            "SELECT count(*) FROM entry WHERE vehicle_id = ? AND date = ? AND odometer_km IS ? "
+            "AND distance_km IS ? AND energy IS ? AND supersedes IS NULL"
+        )
+        times: int = self._rows(select, *key)[0][0]
+        return times
+
+    def _switches(self, vehicle_name: str) -> list[Switch]:
+        select = f"SELECT {rows.SWITCH_COLUMNS} FROM standing_switch WHERE vehicle_id = ? ORDER BY id"
+        found = self._rows(select, self._number(vehicle_name))
+        with self._guard():
+            return [rows.switch_of(row) for row in found]
+
+    def _switch(self, vehicle: str, switch: Switch) -> None:
+        with self.transaction(), self._guard():
+            check_switch(vehicle, self._switches(vehicle), switch)
+            values = {
+                "vehicle_id": self._number(vehicle),
+                "modification": switch.modification,
+                "action": "fitted" if switch.fitted else "removed",
+                "date": switch.date.isoformat() if switch.date else None,
+                "odometer_km": switch.km,
+                "level": switch.level,
+                "target_percent": switch.target_percent,
+                "note": switch.note,
+            }
+            rows.insert(self._db, "switch", values)
