@@ -47,9 +47,10 @@ def rows_of(title: str) -> list[str]:
 
 
 def every_command(command: Any, name: str) -> Iterator[str]:
+    """A command's name and those of all below it; commands may be built only when asked for."""
     yield name
-    for part, inner in sorted(getattr(command, "commands", {}).items()):
-        yield from every_command(inner, f"{name} {part}")
+    for part in command.list_commands(None) if hasattr(command, "list_commands") else ():
+        yield from every_command(command.get_command(None, part), f"{name} {part}")
 
 
 @pytest.mark.skipif(sys.platform == "win32", reason="the documents show a POSIX shell")
