@@ -83,7 +83,8 @@ class Road:
             extra=self.extra[:n],
         )
         normal = products(shape, Scatter(*np.exp(theta)), self.columns[:n]).cross + np.diag(self.precision)
-        return contrast_variance(np.linalg.inv(normal)[:2, :2], self.base, self.ratio)
+        covariance: Array = np.linalg.inv(normal).astype(np.float64)
+        return contrast_variance(covariance, self.base, self.ratio)
 
 
 @dataclass(frozen=True)

@@ -7,7 +7,7 @@ the continuous limit of O'Brien and Fleming (1979): looking at any number of mom
 from __future__ import annotations
 
 from functools import lru_cache
-from math import exp, expm1, pi, sin, sqrt
+from math import exp, expm1, fsum, pi, sin, sqrt
 
 from scipy.optimize import brentq
 from scipy.special import log_ndtr, ndtr, stdtrit
@@ -26,7 +26,7 @@ def level(alpha: float) -> float:
 
 
 def _crossing(b: float) -> float:
-    inside = sum((-1) ** k / (2 * k + 1) * exp(-((pi * (2 * k + 1) / b) ** 2) / 8) for k in range(_SERIES))
+    inside = fsum((-1) ** k / (2 * k + 1) * exp(-((pi * (2 * k + 1) / b) ** 2) / 8) for k in range(_SERIES))
     return 1 - 4 / pi * inside
 
 

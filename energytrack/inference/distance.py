@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import ceil, sqrt
+from typing import Literal
 
 import numpy as np
 
@@ -31,6 +32,7 @@ _ALTERNATING = tuple(
     ("every fill-up" if every == 1 else f"every {every} fill-ups", alternating(every)) for every in ALTERNATIONS
 )
 _LONGER_BASELINE = tuple((f"{count} fill-ups without it first", off_first(count)) for count in (10, 20, 40, 80, 160))
+_Options = tuple[tuple[str, Schedule], ...]
 DISTANCES_KM = (1_000, 2_500, 5_000, 10_000)
 
 
@@ -115,7 +117,11 @@ def remedies(model: Model, required: Need, target: float, alpha: float, power: f
     larger = ceil(best * 1.15 * 2) / 2  # a little above the limit, which itself is never reached; in half percents
     wider = reach(road(model, always_fitted, seed=0), theta, variance * (larger / 100 / target) ** 2)
     found = [Remedy("larger-target", f"{larger:g} %", larger, None if wider is None else wider.distance_km)]
-    for what, options in (("alternate", _ALTERNATING), ("longer-baseline", _LONGER_BASELINE)):
+    ways: tuple[tuple[Literal["alternate", "longer-baseline"], _Options], ...] = (
+        ("alternate", _ALTERNATING),
+        ("longer-baseline", _LONGER_BASELINE),
+    )
+    for what, options in ways:
         reached = [(reach(road(model, schedule, seed=0), theta, variance), detail) for detail, schedule in options]
         within = [(r.distance_km, detail) for r, detail in reached if r is not None]
         if within:

@@ -111,4 +111,4 @@ def shown(state: State) -> Look:
 
 
 def percent(interval: tuple[float, float] | None) -> tuple[float, float] | None:
-    return None if interval is None else (100 * interval[0], 100 * interval[1])
+    return None if interval is None else (100 * float(interval[0]), 100 * float(interval[1]))

@@ -69,7 +69,7 @@ class Fit:
 
     @property
     def scatter(self) -> Scatter:
-        return Scatter(*np.exp(self.theta))
+        return Scatter(*np.exp(self.theta).tolist())
 
 
 def evaluate(problem: Problem, theta: Array) -> Point:
@@ -89,7 +89,7 @@ def evaluate(problem: Problem, theta: Array) -> Point:
 
 def fit(problem: Problem, start: Array) -> Fit:
     """Newton's method from `start` (4,). InferenceError where the columns cannot be told apart."""
-    theta = np.array(start, dtype=float)
+    theta: Array = np.array(start, dtype=np.float64)
     try:
         here = evaluate(problem, theta)
         for _ in range(_ROUNDS):
@@ -142,7 +142,7 @@ def _convex(curvature: Array) -> Array:
 
 
 def _newton_step(slope: Array, curvature: Array) -> Array:
-    step: Array = -np.linalg.solve(_convex(curvature), slope)
+    step: Array = -np.linalg.solve(_convex(curvature), slope).astype(np.float64)
     longest = float(np.abs(step).max())
     return step if longest <= _LONGEST else step * (_LONGEST / longest)
 
@@ -154,7 +154,7 @@ def _descend(problem: Problem, theta: Array, here: Point, step: Array) -> tuple[
             break
         there = theta.copy()
         there[list(problem.free)] += step
-        there = np.clip(there, _SMALLEST, _LARGEST)
+        np.clip(there, _SMALLEST, _LARGEST, out=there)
         point = evaluate(problem, there)
         if point.cost < here.cost:
             return there, point, float(np.abs(step).max())
