@@ -90,11 +90,14 @@ def _median(values: Iterable[float]) -> float:
 
 
 def _index_of(segmented: SegmentedLog, entry: Entry) -> int | None:
-    for index in range(len(segmented.entries) - 1, -1, -1):
-        other = segmented.entries[index]
-        if other == entry or (entry.id is not None and other.id == entry.id):
-            return index
-    return None
+    """Where the entry stands: by its number, or by what it says where it has none yet. The latest of twins."""
+
+    def same(other: Entry) -> bool:
+        if entry.id is not None:
+            return other.id == entry.id
+        return (other.date, other.odometer_km, other.energy) == (entry.date, entry.odometer_km, entry.energy)
+
+    return next((index for index in range(len(segmented.entries) - 1, -1, -1) if same(segmented.entries[index])), None)
 
 
 def _with_consumption(segment: Segment, vehicle: Vehicle) -> str:
@@ -113,9 +116,8 @@ def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) 
     store = "charge" if vehicle.unit == "kWh" else "tank"
     if index == 0:
         return f"first entry: consumption follows with the next full {store}"
-    legs = [leg for segment in segmented.segments for leg in segment.legs] + list(segmented.open_legs)
-    driven = math.fsum(leg.distance_km for leg in legs if leg.entry == index)
-    since = f"{distance_text(driven, vehicle)} since the last entry: " if driven > 0 else ""
+    driven = segmented.positions[index] - segmented.positions[index - 1]
+    since = f"{distance_text(driven, vehicle)} since the last entry: " if driven > 0 and not entry.missed else ""
     void = next((span for span in segmented.void if span.entry == index), None)
     if void is not None and (entry.full or entry.level_percent is not None):
         return f"{since}no consumption from this entry, {WHY_VOID[void.reason]}"
@@ -206,9 +208,11 @@ def _digit_swap(
             if other > segment.legs[-1].start_km and distance > 0:
                 said = f"odometer {distance_text(other, vehicle)}"
                 fits.append((abs(segment.energy / distance - expected), said))
-    for typed in _swapped(f"{entry.energy:.2f}"):
-        energy = segment.energy + float(typed) - entry.energy
-        fits.append((abs(energy / segment.distance_km - expected), f"amount {energy_text(float(typed), vehicle)}"))
+    unit = vehicle.typed_unit or vehicle.unit
+    for typed in _swapped(f"{from_base(entry.energy, unit):.2f}"):
+        amount = to_base(float(typed), unit)
+        energy = segment.energy + amount - entry.energy
+        fits.append((abs(energy / segment.distance_km - expected), f"amount {energy_text(amount, vehicle)}"))
     gap, said = min(fits, default=(math.inf, ""))
     return [f"two digits swapped? {said} would fit"] if gap <= WITHIN_SD * sd else []
 

@@ -47,6 +47,14 @@ class Problem:
     def stacked(self) -> Array:
         return np.column_stack([self.columns, self.energy])
 
+    @property
+    def prior_precision(self) -> Array:
+        """Of theta (4, 4), from the priors alone."""
+        directions = np.array([prior.direction for prior in self.priors], dtype=np.float64).reshape(-1, 4)
+        widths = np.array([prior.log_sd for prior in self.priors])
+        precision: Array = directions.T @ (directions / widths[:, None] ** 2)
+        return precision
+
 
 @dataclass(frozen=True)
 class Point:
