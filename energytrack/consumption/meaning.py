@@ -34,6 +34,7 @@ WHY_VOID = {
 class EchoLogbook(Protocol):
     """What an echo needs to read."""
 
+    def entries(self, vehicle_name: str) -> list[Entry]: ...
     def last_entries(self, vehicle_name: str, count: int) -> list[Entry]: ...
     def modifications(self, vehicle_name: str) -> list[Modification]: ...
     def events(self, vehicle_name: str) -> list[Event]: ...
@@ -43,9 +44,11 @@ class EchoLogbook(Protocol):
 def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str]:
     """What `entry`, already in the logbook, meant: one to four lines in the vehicle's units."""
     recent = logbook.last_entries(vehicle.name, RECENT_ENTRIES)
+    if len(recent) == RECENT_ENTRIES and all(row.odometer_km is None for row in recent):
+        recent = logbook.entries(vehicle.name)  # without an odometer, positions count from the first entry
     segmented = close_segments(recent, logbook.events(vehicle.name), capacity=vehicle.capacity, unit=vehicle.unit)
     index = _index_of(segmented, entry)
-    if index is None:
+    if index is None or (index == 0 and len(recent) >= RECENT_ENTRIES):
         return ["kept among the older entries"]
     kept = logbook.assessments(vehicle.name)
     rows = logbook.modifications(vehicle.name)
@@ -74,13 +77,19 @@ def _record(segments: Sequence[Segment]) -> tuple[float, list[float], float]:
     """Median consumption, each segment's deviation from it, and their robust sd, in energy per km."""
     consumption = [segment.energy / segment.distance_km for segment in segments]
     usual = _median(consumption)
-    usual_km = _median([segment.distance_km for segment in segments])
+    usual_km = _median(segment.distance_km for segment in segments)
     deviations = [
         (value - usual) * min(1.0, segment.distance_km / usual_km)
         for value, segment in zip(consumption, segments, strict=True)
     ]
-    sd = MAD_TO_SD * _median([abs(deviation) for deviation in deviations])
+    sd = MAD_TO_SD * _median(abs(deviation) for deviation in deviations)
     return usual, deviations, max(sd, LEAST_SCATTER * usual)
+
+
+def _relative_length(segment: Segment, others: Sequence[Segment]) -> float:
+    """Length of a segment relative to the usual one, at most 1: shorter ones scatter more."""
+    usual_km = _median(other.distance_km for other in others) if others else segment.distance_km
+    return min(1.0, segment.distance_km / usual_km)
 
 
 def _median(values: Iterable[float]) -> float:
@@ -146,10 +155,11 @@ def _compared(
     if expected is None or expected <= 0:
         return []
     percent = 100 * (figure / expected - 1)
-    verdict = "within" if abs(percent) <= WITHIN_SD * sd else "outside"
+    scatter = WITHIN_SD * sd / _relative_length(segment, others)
+    verdict = "within" if abs(percent) <= scatter else "outside"
     lines = [
         f"expected {basis}: {consumption_text(expected, vehicle)}; used {abs(percent):.1f} % "
-        f"{'more' if percent >= 0 else 'less'}, {verdict} the usual scatter (+/- {WITHIN_SD * sd:.0f} %)"
+        f"{'more' if percent >= 0 else 'less'}, {verdict} the usual scatter (+/- {scatter:.0f} %)"
     ]
     if unusual(segmented.segments)[which]:
         lines.append("unusual for this vehicle: kept; check the amount and the odometer")
@@ -257,7 +267,7 @@ def _left(
     if to_go is None:
         why = "no baseline yet" if answer["verdict"] == "no-baseline" else f"{target} is out of reach as it is driven"
         return f"{why} (run `energytrack enough` for what would help)"
-    if at is None or all(entry.odometer_km is None for entry in segmented.entries):
+    if at is None:
         return f"about {_about(to_go, vehicle)} to go at {target} when last looked at (`energytrack enough`)"
     here = segmented.positions[index]
     try:

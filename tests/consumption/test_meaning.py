@@ -166,6 +166,32 @@ def test_unusual_without_a_fitting_swap_names_none(book):
     assert logged(book, fill(30, 5000, 66.6))[-1] == "unusual for this vehicle: kept; check the amount and the odometer"
 
 
+def test_short_tank_is_allowed_its_larger_scatter(book):
+    # 50 km are a tenth of a usual tank: the +/- 4 % of the record become +/- 37 %
+    lines = logged(book, fill(30, 4550, 4.9))
+    assert lines[1].endswith("used 21.6 % more, within the usual scatter (+/- 37 %)")
+    assert len(lines) == 2
+
+
+def test_log_without_odometer_counts_from_its_first_entry(tmp_path):
+    store = open_logbook(tmp_path / "my.logbook", create=True)
+    store.add_vehicle(VAN)
+    rows = [fill(n, None, 40 + WOBBLE[n % 8], distance_km=500) for n in range(90)]  # ends at 45,000 km
+    store.add_entries([(row, {}) for row in rows], "test")
+    store.fit("van", "skirts", None, 44_000.0, 3.0, None, "")
+    store.keep_assessment("van", "skirts", {**KEPT, "at_km": 44_500.0})
+    lines = logged(store, fill(100, None, 40, distance_km=500))
+    assert lines[0] == "500 km since the last entry: 8.00 L/100 km"
+    assert "expected at these conditions: 7.84 L/100 km" in lines[1]  # 2 % below 8, fitted throughout
+    assert lines[2].startswith("skirts: about 1,000 km to go")
+
+
+def test_receipt_older_than_the_recent_ones_is_kept_without_a_comparison(book):
+    for number in range(70):
+        book.add_entry(fill(40 + number, 5000 + 500 * number, 40), {})
+    assert logged(book, fill(1, 1200, 16)) == ["kept among the older entries"]
+
+
 def test_unusual_flags_one_of_many_and_spares_short_segments():
     entries = [fill(n, 1000 + 500 * n, 40 + WOBBLE[n % 8] + (20 if n == 12 else 0)) for n in range(20)]
     entries.append(fill(21, 10_510, 1.2))  # a top-up after 10 km: 12 L/100 km, all of it the filling error
