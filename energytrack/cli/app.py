@@ -2,17 +2,54 @@
 
 from __future__ import annotations
 
+import io
 import os
+import signal
 import sys
 from enum import IntEnum
+from importlib import import_module
 from pathlib import Path
-from typing import Annotated
+from typing import Annotated, Any
 
 import typer
+import typer.core
+import typer.main
 
+from energytrack.cli.context import LOGBOOK_VARIABLE
+from energytrack.cli.options import NUMBERS_MAY_BE_NEGATIVE
 from energytrack.errors import EnergytrackError
+from energytrack.presentation.plain import plain_text
 
-LOGBOOK_VARIABLE = "ENERGYTRACK_LOGBOOK"
+COMMANDS = {  # name -> module of energytrack.cli, and the function or group of commands in it
+    "new": ("new", "new"),
+    "vehicle": ("vehicle", "vehicle_commands"),
+    "fillup": ("fillup", "fillup"),
+    "charge": ("fillup", "charge"),
+    "mod": ("mod", "mod_commands"),
+    "event": ("event", "event"),
+    "entries": ("entries", "entries"),
+    "import": ("import_", "import_table"),
+}
+
+
+class LazyCommands(typer.core.TyperGroup):
+    """Imports and builds only the command that is run: building all of them takes longer than `fillup` does."""
+
+    def list_commands(self, ctx: Any) -> list[str]:
+        return list(COMMANDS)
+
+    def get_command(self, ctx: Any, cmd_name: str) -> Any:
+        if cmd_name not in COMMANDS:
+            return None
+        module, attribute = COMMANDS[cmd_name]
+        found = getattr(import_module(f"energytrack.cli.{module}"), attribute)
+        if not isinstance(found, typer.Typer):
+            alone = typer.Typer(add_completion=False, rich_markup_mode=None)
+            alone.command(cmd_name, context_settings=NUMBERS_MAY_BE_NEGATIVE)(found)
+            found = alone
+        command = typer.main.get_command(found)
+        command.name = cmd_name
+        return command
 
 
 class ExitStatus(IntEnum):
@@ -26,6 +63,7 @@ class ExitStatus(IntEnum):
 
 app = typer.Typer(
     name="energytrack",
+    cls=LazyCommands,
     add_completion=False,
     no_args_is_help=True,
     rich_markup_mode=None,  # plain help: rich costs 50 ms on every command
@@ -49,8 +87,19 @@ def choose_logbook(
 
 def main() -> None:
     """Run a command; a refusal is one line on stderr and exit status 1."""
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="replace")  # a terminal without some character shows ? for it
     try:
-        app()
-    except EnergytrackError as refusal:
-        print(f"energytrack: {refusal}", file=sys.stderr)
+        try:
+            app(prog_name="energytrack")
+        finally:
+            sys.stdout.flush()
+    except BrokenPipeError:  # whoever read the output has seen enough; the interpreter must not flush again
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         sys.exit(ExitStatus.REFUSED)
+    except (EnergytrackError, OSError) as refusal:
+        print(f"energytrack: {plain_text(str(refusal))}", file=sys.stderr)
+        sys.exit(ExitStatus.REFUSED)
+    except KeyboardInterrupt:
+        sys.exit(128 + signal.SIGINT)

@@ -18,12 +18,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from energytrack.consumption.observations import Observations
-from energytrack.consumption.terms import condition_of, term
+from energytrack.consumption.terms import YEAR_DAYS, condition_of, term
 
 Array = NDArray[np.float64]
 
 TEMPERATURE, SPEED, SEASON = "temperature_c", "speed_kmh", "season"
-_YEAR = 365.2425
 _FEW = 4  # segments a branch needs
 _KNOWN = 6  # segments with a known value before a condition is used
 _STILL = 0.005  # spread of the speed, relative to its mean, below which it explains nothing
@@ -166,11 +165,11 @@ def _pattern(day: Array, value: Array, *, yearly: bool) -> Pattern:
         return Pattern(np.array([value.mean(), 0.0, 0.0]), float(value.var(ddof=1)))
     noise = max(float(value.var()) / 4, 1.0)
     held = np.diag([0.0, *([noise / _TEMPERATURE_SWING**2] * 2)])
-    coefficients = np.linalg.solve(columns.T @ columns + held, columns.T @ value)
+    coefficients: Array = np.linalg.solve(columns.T @ columns + held, columns.T @ value).astype(np.float64)
     residual = value - columns @ coefficients
     return Pattern(coefficients, float((residual**2).sum() / max(len(value) - 3, 1)))
 
 
 def _yearly(day: Array) -> Array:
-    angle = 2 * np.pi * day / _YEAR
+    angle = 2 * np.pi * day / YEAR_DAYS
     return np.column_stack([np.ones(len(day)), np.cos(angle), np.sin(angle)])

@@ -19,6 +19,7 @@ from energytrack.inference.shift import contrast_variance
 RECENT = 40  # segments that make up the habit
 HORIZON_DAYS, HORIZON_KM = 3 * 365.25, 100_000.0  # whichever comes first: nobody plans a test beyond
 _MOST_SEGMENTS = 2_000
+_STEP = 0.02  # in log standard deviation, for the freedom's derivative
 _SHORTEST_DAYS = 0.1  # of an average future segment, for logs whose entries share one date
 
 Schedule = Callable[[int], Array]  # number of segments ahead -> share of each driven with the modification, (m,)
@@ -66,6 +67,13 @@ class Road:
     base: float
     ratio: float
     kilometre: float  # km per relative distance
+    noise_known: Array  # (4, 4) precision of theta that the log gave
+    noise_prior: Array  # (4, 4) precision of theta that the priors gave
+
+    @property
+    def has_begun(self) -> bool:
+        """Something was driven with the modification already."""
+        return bool(self.columns[: self.past, 1].any())
 
     @property
     def ahead(self) -> int:
@@ -83,7 +91,19 @@ class Road:
             extra=self.extra[:n],
         )
         normal = products(shape, Scatter(*np.exp(theta)), self.columns[:n]).cross + np.diag(self.precision)
-        return contrast_variance(np.linalg.inv(normal)[:2, :2], self.base, self.ratio)
+        covariance: Array = np.linalg.inv(normal).astype(np.float64)
+        return contrast_variance(covariance, self.base, self.ratio)
+
+    def freedom(self, count: int, theta: Array) -> float:
+        """Satterthwaite degrees of freedom by then: what the log told of the noise grows with its length."""
+        slope = np.array(
+            [
+                (self.variance(count, theta + step) - self.variance(count, theta - step)) / (2 * _STEP)
+                for step in _STEP * np.eye(4)
+            ]
+        )
+        precision = self.noise_prior + self.noise_known * (self.past + count) / self.past
+        return max(1.0, float(2 * self.variance(count, theta) ** 2 / (slope @ np.linalg.solve(precision, slope))))
 
 
 @dataclass(frozen=True)
@@ -119,20 +139,25 @@ def road(model: Model, schedule: Schedule, seed: int) -> Road:
         base=float(model.fit.coefficients[0]),
         ratio=float(model.fit.coefficients[1] / model.fit.coefficients[0]) if asked else 0.0,
         kilometre=scale.distance_km,
+        noise_known=np.linalg.inv(model.fit.theta_covariance) - model.problem.prior_precision,
+        noise_prior=model.problem.prior_precision,
     )
 
 
-def reach(ahead: Road, theta: Array, variance: float) -> Reach | None:
-    """The first point of the road at which the shift's variance has fallen to `variance`; None beyond the horizon."""
+def reach(ahead: Road, variance_after: Callable[[int], float], variance: float) -> Reach | None:
+    """The first point of the road at which a variance has fallen to `variance`; None beyond the horizon.
+
+    `variance_after` gives it for any number of the segments ahead. It falls as they grow: found by bisection.
+    """
     low, high = 0, ahead.ahead
-    at = {0: _variance_now(ahead, theta), high: ahead.variance(high, theta)}
+    at = {0: variance_after(0) if ahead.has_begun else float("inf"), high: variance_after(high)}
     if at[high] > variance:
         return None
     if at[low] <= variance:
         return Reach(0.0, 0.0)
     while high - low > 1:
         middle = (low + high) // 2
-        at[middle] = ahead.variance(middle, theta)
+        at[middle] = variance_after(middle)
         low, high = (low, middle) if at[middle] <= variance else (middle, high)
     part = _within(at[low], at[high], variance)
     driven = np.concatenate([[0.0], np.cumsum(ahead.distance[ahead.past :]) * ahead.kilometre])
@@ -146,13 +171,6 @@ def segments_within(ahead: Road, distance_km: float) -> int:
     """How many of the segments ahead fit into a distance, at least one."""
     driven = np.cumsum(ahead.distance[ahead.past :]) * ahead.kilometre
     return max(1, int(np.searchsorted(driven, distance_km, side="right")))
-
-
-def _variance_now(ahead: Road, theta: Array) -> float:
-    """Infinite where nothing was driven with the modification yet."""
-    if not ahead.columns[: ahead.past, 1].any():
-        return float("inf")
-    return ahead.variance(0, theta)
 
 
 def _within(before: float, after: float, wanted: float) -> float:

@@ -12,14 +12,15 @@ import numpy as np
 
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
-from energytrack.errors import InferenceError, UnknownNameError
+from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import Need, need, remedies
-from energytrack.inference.looks import FEWEST_BASELINE, Question, State, deciding, percent, shown, take_looks
+from energytrack.inference.looks import FEWEST_BASELINE, State, deciding, percent, shown, take_looks
 from energytrack.inference.model import fit_model
+from energytrack.inference.question import Question
 from energytrack.inference.results import Assessment, Verdict
 
 if TYPE_CHECKING:
@@ -50,8 +51,6 @@ def assess(
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
     not in the table, InferenceError for a target, confidence or power outside its range.
     """
-    if not 0 < target_percent < 100:
-        raise InferenceError(f"the target must lie between 0 and 100 percent, not {target_percent:g}: 3 is usual")
     question = Question(name, target_percent / 100, 1 - confidence, power, tuple(covariates or ()))
     bounds.drift(question.alpha, power)  # refuses a confidence or power outside its range before any work
     observed, notes = observe_frames(
@@ -75,7 +74,7 @@ def _answer(blank: Assessment, observed: Observations, question: Question, state
         standard_error_percent=100 * shift.standard_error,
         degrees_of_freedom=shift.freedom,
         information_fraction=now.share,
-        resolvable_now_percent=100 * shift.standard_error * theta,
+        resolvable_now_percent=100 * theta * shift.standard_error * bounds.price(shift.freedom, question.alpha),
         noise=noise_of(now.model),
         covariates=covariates_of(now.model),
         looks=tuple(shown(state) for state in states),
@@ -84,8 +83,8 @@ def _answer(blank: Assessment, observed: Observations, question: Question, state
     )
     if decision is not None:
         return _closed(answer, decision, question)
-    required = need(now.model, always_fitted, question.target, question.alpha, question.power)
-    ways = () if required.central else remedies(now.model, required, question.target, question.alpha, question.power)
+    required = need(now.model, always_fitted, question)
+    ways = () if required.central else remedies(now.model, required, question)
     return replace(_open(answer, required, theta), remedies=ways)
 
 
@@ -95,7 +94,7 @@ def _before_the_first_look(blank: Assessment, observed: Observations, question: 
     if share.any() or len(share) < FEWEST_BASELINE:
         return blank
     model = fit_model(observed, None, covariates=question.covariates)
-    required = need(model, always_fitted, question.target, question.alpha, question.power)
+    required = need(model, always_fitted, question)
     answer = replace(
         blank,
         information_fraction=0.0,

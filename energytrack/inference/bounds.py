@@ -2,19 +2,27 @@
 
 The estimate's standardised path over the information gathered is a Brownian motion (Lan and Wittes, 1988). The bound is
 the continuous limit of O'Brien and Fleming (1979): looking at any number of moments keeps the error below alpha.
+
+The noise is estimated too. Its sizes are known as log-normal quantities (reml.py), so the standardised estimate is a
+normal with a log-normal variance; quantiles are taken from that mixture. Student's t with the same Satterthwaite
+degrees of freedom assumes an inverse chi-square variance, whose tail is longer: docs/evidence.md compares the two.
 """
 
 from __future__ import annotations
 
 from functools import lru_cache
-from math import exp, expm1, pi, sin, sqrt
+from math import exp, expm1, fsum, pi, sin, sqrt
 
+import numpy as np
 from scipy.optimize import brentq
-from scipy.special import log_ndtr, ndtr, stdtrit
+from scipy.special import log_ndtr, ndtr, ndtri
 
 from energytrack.errors import InferenceError
 
 _SERIES = 200
+_SMALLEST_TAIL = 1e-200
+_NODES, _WEIGHTS = np.polynomial.hermite_e.hermegauss(81)
+_WEIGHTS = _WEIGHTS / _WEIGHTS.sum()
 
 
 @lru_cache
@@ -26,7 +34,7 @@ def level(alpha: float) -> float:
 
 
 def _crossing(b: float) -> float:
-    inside = sum((-1) ** k / (2 * k + 1) * exp(-((pi * (2 * k + 1) / b) ** 2) / 8) for k in range(_SERIES))
+    inside = fsum((-1) ** k / (2 * k + 1) * exp(-((pi * (2 * k + 1) / b) ** 2) / 8) for k in range(_SERIES))
     return 1 - 4 / pi * inside
 
 
@@ -48,13 +56,32 @@ def drift(alpha: float, power: float) -> float:
 def critical(information: float, freedom: float, alpha: float) -> float | None:
     """Look-proof bound on |estimate| / standard error at a share of the information; None beyond any number.
 
-    The normal bound b / sqrt(share) is turned into a tail probability and read off Student's t with `freedom` degrees.
+    The normal bound b / sqrt(share) is turned into a tail probability and read off the mixture for `freedom`.
     """
     tail = float(ndtr(-level(alpha) / sqrt(information))) if information > 0 else 0.0
-    if tail < 1e-300:
-        return None
-    bound = -float(stdtrit(freedom, tail))
-    return bound if bound < 1e6 else None
+    return mixture_quantile(tail, freedom) if tail > _SMALLEST_TAIL else None
+
+
+def price(freedom: float, alpha: float) -> float:
+    """Factor by which not knowing the noise widens the final bound: 1 when it is known."""
+    return mixture_quantile(float(ndtr(-level(alpha))), freedom) / level(alpha)
+
+
+def mixture_quantile(tail: float, freedom: float) -> float:
+    """c with P(Z > c) = tail for Z normal with variance exp(sqrt(2 / freedom) N), N standard normal.
+
+    2 / freedom is the variance of a log variance as Satterthwaite (1946) matches it.
+    """
+    half = sqrt(2 / freedom) / 2
+    known = -float(ndtri(tail))
+
+    def excess(c: float) -> float:
+        return float(_WEIGHTS @ ndtr(-c * np.exp(-half * _NODES))) - tail
+
+    upper = known
+    while excess(upper) > 0:
+        upper *= 1.5
+    return float(brentq(excess, known / 2, upper, xtol=1e-10))
 
 
 @lru_cache

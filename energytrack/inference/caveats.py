@@ -15,7 +15,8 @@ _NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
 
 def caveats(model: Model) -> tuple[str, ...]:
     """Warnings about an answer, most weighty first."""
-    return (*_never_apart(model), *_little_overlap(model), *_other_level(model), *_filled_in(model), *_no_weather(model))
+    found = (_never_apart, _little_overlap, _other_level, _filled_in, _no_weather)
+    return tuple(caveat for find in found for caveat in find(model))
 
 
 def _shares(model: Model, name: str) -> Array:
@@ -72,12 +73,11 @@ def _other_level(model: Model) -> list[str]:
 
 
 def _filled_in(model: Model) -> list[str]:
-    used = {condition for condition in model.conditions.values}
     return [
         f"{_NAMES.get(name, (name, ''))[0]} of {count} of {len(model.observed.energy)} segments were not logged and "
         f"are filled in from this vehicle's own record"
         for name, count in model.conditions.filled.items()
-        if count and name in used
+        if count
     ]
 
 

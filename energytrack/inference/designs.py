@@ -6,12 +6,11 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from energytrack.consumption.frames import observe_frames
-from energytrack.errors import InferenceError
-from energytrack.inference import bounds
 from energytrack.inference.describe import noise_of
 from energytrack.inference.distance import ALTERNATIONS, design
 from energytrack.inference.looks import FEWEST_BASELINE
 from energytrack.inference.model import fit_model
+from energytrack.inference.question import Question
 from energytrack.inference.results import Plan
 
 if TYPE_CHECKING:
@@ -35,17 +34,14 @@ def plan(
 
     Tables and errors as for `assess`. Modifications already logged are allowed for, and stay as they are now.
     """
-    if not 0 < target_percent < 100:
-        raise InferenceError(f"the target must lie between 0 and 100 percent, not {target_percent:g}: 3 is usual")
-    alpha, target = 1 - confidence, target_percent / 100
-    bounds.drift(alpha, power)
+    question = Question("", target_percent / 100, 1 - confidence, power, tuple(covariates or ()))
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     ready = len(observed.energy) >= FEWEST_BASELINE
-    model = fit_model(observed, None, covariates=tuple(covariates or ())) if ready else None
-    ways = () if model is None else (None, *ALTERNATIONS)
+    model = fit_model(observed, None, covariates=question.covariates) if ready else None
+    ways = (None, *ALTERNATIONS)
     return Plan(
         vehicle=vehicle,
         unit=observed.unit,
@@ -55,6 +51,6 @@ def plan(
         distance_baseline_km=float(observed.distance_km.sum()),
         segments_baseline=len(observed.energy),
         noise=None if model is None else noise_of(model),
-        designs=tuple(design(model, every, target, alpha, power) for every in ways) if model is not None else (),
+        designs=() if model is None else tuple(design(model, every, question) for every in ways),
         warnings=notes,
     )

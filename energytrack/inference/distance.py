@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from functools import cache, partial
 from math import ceil, sqrt
+from typing import Literal
 
 import numpy as np
 
@@ -21,6 +24,7 @@ from energytrack.inference.ahead import (
 )
 from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
+from energytrack.inference.question import Question
 from energytrack.inference.results import Design, Remedy
 
 _DRAWS = 40  # of the noise and the habit, for the 80 % range
@@ -31,6 +35,7 @@ _ALTERNATING = tuple(
     ("every fill-up" if every == 1 else f"every {every} fill-ups", alternating(every)) for every in ALTERNATIONS
 )
 _LONGER_BASELINE = tuple((f"{count} fill-ups without it first", off_first(count)) for count in (10, 20, 40, 80, 160))
+_Options = tuple[tuple[str, Schedule], ...]
 DISTANCES_KM = (1_000, 2_500, 5_000, 10_000)
 
 
@@ -44,24 +49,40 @@ class Need:
     best_variance: float  # at the horizon
 
 
-def need(model: Model, schedule: Schedule, target: float, alpha: float, power: float) -> Need:
-    """Distance ahead, under a schedule, until a shift of the target size (a ratio) can be resolved."""
-    theta = model.fit.theta
+def need(model: Model, schedule: Schedule, question: Question) -> Need:
+    """Distance ahead, under a schedule, until a shift of the target size can be resolved."""
     ahead = road(model, schedule, seed=0)
-    wanted = (target / bounds.drift(alpha, power)) ** 2
-    central = reach(ahead, theta, wanted)
-    sooner = reach(ahead, theta, wanted / bounds.expected_share(alpha, power))
+    priced = _priced_variance(model, ahead, question)
+    wanted = 1 / question.information
+    central = reach(ahead, priced, wanted)
+    sooner = reach(ahead, priced, wanted / bounds.expected_share(question.alpha, question.power))
+    last = priced(ahead.ahead)
+    price = last / ahead.variance(ahead.ahead, model.fit.theta)
     return Need(
         central=central,
-        interval_km=_interval(model, schedule, wanted),
+        interval_km=_interval(model, schedule, wanted / price),
         expected_km=None if sooner is None else sooner.distance_km,
-        best_variance=ahead.variance(ahead.ahead, theta),
+        best_variance=last,
     )
+
+
+def _priced_variance(model: Model, ahead: Road, question: Question) -> Callable[[int], float]:
+    """Variance of the shift after so many segments, raised by the price of not knowing the noise by then."""
+    theta = model.fit.theta
+
+    @cache
+    def priced(count: int) -> float:
+        return ahead.variance(count, theta) * bounds.price(ahead.freedom(count, theta), question.alpha) ** 2
+
+    return priced
 
 
 def _interval(model: Model, schedule: Schedule, wanted: float) -> tuple[float, float | None] | None:
     """10th and 90th percentile over the noise's own uncertainty and the habit's."""
-    reached = [reach(road(model, schedule, seed), theta, wanted) for seed, theta in enumerate(_thetas(model), start=1)]
+    reached = []
+    for seed, theta in enumerate(_thetas(model), start=1):
+        ahead = road(model, schedule, seed)
+        reached.append(reach(ahead, partial(ahead.variance, theta=theta), wanted))
     ordered = sorted(float("inf") if r is None else r.distance_km for r in reached)
     low, high = (ordered[round(q * (len(ordered) - 1))] for q in (_LOW, _HIGH))
     if low == float("inf"):
@@ -78,15 +99,13 @@ def _thetas(model: Model) -> Array:
     return draws
 
 
-def design(model: Model, every: int | None, target: float, alpha: float, power: float) -> Design:
+def design(model: Model, every: int | None, question: Question) -> Design:
     """One way to run the test from here: one switch (`every` None), or alternating every so many fill-ups."""
     schedule = always_fitted if every is None else alternating(every)
-    required = need(model, schedule, target, alpha, power)
+    required = need(model, schedule, question)
     ahead = road(model, schedule, seed=0)
-    theta, z = model.fit.theta, bounds.drift(alpha, power)
-    resolvable = {
-        str(km): 100 * z * sqrt(ahead.variance(segments_within(ahead, km), theta)) for km in DISTANCES_KM
-    }
+    priced = _priced_variance(model, ahead, question)
+    z = bounds.drift(question.alpha, question.power)
     return Design(
         name="one-switch" if every is None else "alternate",
         every_fillups=every,
@@ -94,7 +113,7 @@ def design(model: Model, every: int | None, target: float, alpha: float, power: 
         distance_km=None if required.central is None else required.central.distance_km,
         distance_interval_km=required.interval_km,
         days=None if required.central is None else required.central.days,
-        resolvable_percent=resolvable,
+        resolvable_percent={str(km): 100 * z * sqrt(priced(segments_within(ahead, km))) for km in DISTANCES_KM},
     )
 
 
@@ -107,18 +126,26 @@ def _swaps(ahead: Road, every: int | None, central: Reach | None) -> int | None:
     return ceil((segments_within(ahead, central.distance_km) + 1) / every)
 
 
-def remedies(model: Model, required: Need, target: float, alpha: float, power: float) -> tuple[Remedy, ...]:
+def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, ...]:
     """What would bring an out-of-reach target within reach: each option that does, with its distance."""
-    theta = model.fit.theta
-    variance = (target / bounds.drift(alpha, power)) ** 2
-    best = 100 * bounds.drift(alpha, power) * sqrt(required.best_variance)
+    best = 100 * bounds.drift(question.alpha, question.power) * sqrt(required.best_variance)
     larger = ceil(best * 1.15 * 2) / 2  # a little above the limit, which itself is never reached; in half percents
-    wider = reach(road(model, always_fitted, seed=0), theta, variance * (larger / 100 / target) ** 2)
-    found = [Remedy("larger-target", f"{larger:g} %", larger, None if wider is None else wider.distance_km)]
-    for what, options in (("alternate", _ALTERNATING), ("longer-baseline", _LONGER_BASELINE)):
-        reached = [(reach(road(model, schedule, seed=0), theta, variance), detail) for detail, schedule in options]
-        within = [(r.distance_km, detail) for r, detail in reached if r is not None]
+    wider = _distance(model, always_fitted, replace(question, target=larger / 100))
+    found = [Remedy("larger-target", f"{larger:g} %", larger, wider)]
+    ways: tuple[tuple[Literal["alternate", "longer-baseline"], _Options], ...] = (
+        ("alternate", _ALTERNATING),
+        ("longer-baseline", _LONGER_BASELINE),
+    )
+    for what, options in ways:
+        reached = [(_distance(model, schedule, question), detail) for detail, schedule in options]
+        within = [(distance, detail) for distance, detail in reached if distance is not None]
         if within:
             distance, detail = min(within)
-            found.append(Remedy(what, detail, 100 * target, distance))
+            found.append(Remedy(what, detail, 100 * question.target, distance))
     return tuple(found)
+
+
+def _distance(model: Model, schedule: Schedule, question: Question) -> float | None:
+    ahead = road(model, schedule, seed=0)
+    found = reach(ahead, _priced_variance(model, ahead, question), 1 / question.information)
+    return None if found is None else found.distance_km

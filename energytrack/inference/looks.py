@@ -12,6 +12,7 @@ from energytrack.consumption.observations import Observations
 from energytrack.inference import bounds
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
+from energytrack.inference.question import Question
 from energytrack.inference.results import Look
 from energytrack.inference.shift import Shift, shift_of
 
@@ -21,29 +22,13 @@ _SPARSER = 1.05
 
 
 @dataclass(frozen=True)
-class Question:
-    """What is asked of a log."""
-
-    modification: str
-    target: float  # the shift worth knowing about, as a ratio
-    alpha: float
-    power: float
-    covariates: tuple[str, ...] = ()
-
-    @property
-    def information(self) -> float:
-        """Information at which a shift of the target size is found with the stated power."""
-        return (bounds.drift(self.alpha, self.power) / self.target) ** 2
-
-
-@dataclass(frozen=True)
 class State:
     """The test after one look."""
 
     segments: int  # of the log, up to this look
     model: Model
     shift: Shift
-    share: float  # of the information needed
+    share: float  # of the information needed, counted after the price of not knowing the noise
     bound: float | None
     interval: tuple[float, float] | None
 
@@ -60,7 +45,8 @@ def take_look(observed: Observations, question: Question, start: Array | None) -
     """Fit what is known so far and hold the shift against its bound."""
     model = fit_model(observed, question.modification, covariates=question.covariates, start=start)
     shift = shift_of(model.fit)
-    share = min(1.0, 1 / shift.standard_error**2 / question.information)
+    priced = shift.standard_error * bounds.price(shift.freedom, question.alpha)
+    share = min(1.0, 1 / priced**2 / question.information)
     bound = bounds.critical(share, shift.freedom, question.alpha)
     return State(len(observed.energy), model, shift, share, bound, shift.interval(bound, model.fit))
 
@@ -111,4 +97,4 @@ def shown(state: State) -> Look:
 
 
 def percent(interval: tuple[float, float] | None) -> tuple[float, float] | None:
-    return None if interval is None else (100 * interval[0], 100 * interval[1])
+    return None if interval is None else (100 * float(interval[0]), 100 * float(interval[1]))

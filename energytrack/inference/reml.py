@@ -47,6 +47,14 @@ class Problem:
     def stacked(self) -> Array:
         return np.column_stack([self.columns, self.energy])
 
+    @property
+    def prior_precision(self) -> Array:
+        """Of theta (4, 4), from the priors alone."""
+        directions = np.array([prior.direction for prior in self.priors], dtype=np.float64).reshape(-1, 4)
+        widths = np.array([prior.log_sd for prior in self.priors])
+        precision: Array = directions.T @ (directions / widths[:, None] ** 2)
+        return precision
+
 
 @dataclass(frozen=True)
 class Point:
@@ -69,7 +77,7 @@ class Fit:
 
     @property
     def scatter(self) -> Scatter:
-        return Scatter(*np.exp(self.theta))
+        return Scatter(*np.exp(self.theta).tolist())
 
 
 def evaluate(problem: Problem, theta: Array) -> Point:
@@ -89,7 +97,7 @@ def evaluate(problem: Problem, theta: Array) -> Point:
 
 def fit(problem: Problem, start: Array) -> Fit:
     """Newton's method from `start` (4,). InferenceError where the columns cannot be told apart."""
-    theta = np.array(start, dtype=float)
+    theta: Array = np.array(start, dtype=np.float64)
     try:
         here = evaluate(problem, theta)
         for _ in range(_ROUNDS):
@@ -142,7 +150,7 @@ def _convex(curvature: Array) -> Array:
 
 
 def _newton_step(slope: Array, curvature: Array) -> Array:
-    step: Array = -np.linalg.solve(_convex(curvature), slope)
+    step: Array = -np.linalg.solve(_convex(curvature), slope).astype(np.float64)
     longest = float(np.abs(step).max())
     return step if longest <= _LONGEST else step * (_LONGEST / longest)
 
@@ -154,7 +162,7 @@ def _descend(problem: Problem, theta: Array, here: Point, step: Array) -> tuple[
             break
         there = theta.copy()
         there[list(problem.free)] += step
-        there = np.clip(there, _SMALLEST, _LARGEST)
+        np.clip(there, _SMALLEST, _LARGEST, out=there)
         point = evaluate(problem, there)
         if point.cost < here.cost:
             return there, point, float(np.abs(step).max())

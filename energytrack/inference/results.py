@@ -110,7 +110,7 @@ class Assessment:
         return self.verdict in ("not-yet", "out-of-reach", "no-baseline")
 
     def to_dict(self) -> dict[str, Any]:
-        return plain(asdict(self))
+        return {name: plain(value) for name, value in asdict(self).items()}
 
 
 @dataclass(frozen=True)
@@ -142,7 +142,7 @@ class Plan:
     warnings: tuple[str, ...]
 
     def to_dict(self) -> dict[str, Any]:
-        return plain(asdict(self))
+        return {name: plain(value) for name, value in asdict(self).items()}
 
 
 def plain(value: Any) -> Any:

@@ -15,6 +15,11 @@ from energytrack.logbook.records import Entry, Event, Modification, Vehicle, Wea
 from energytrack.logbook.switches import Switch, check_switch, pair
 
 TYPED = "terminal"  # source of entries that were typed
+_NO_REPEAT = (  # of a chain of corrections, those that changed what makes an entry this entry, and the first
+    "NOT EXISTS (SELECT 1 FROM entry AS earlier WHERE earlier.id = this.supersedes "
+    "AND (earlier.date, earlier.odometer_km, earlier.distance_km, earlier.energy) "
+    "IS (this.date, this.odometer_km, this.distance_km, this.energy))"
+)
 
 
 class Store(LogbookFile):
@@ -40,10 +45,24 @@ class Store(LogbookFile):
         """All standing entries in driving order: by date, on one day by odometer, then as logged."""
         return self._entries(vehicle_name, "ORDER BY date, odometer_km, id")
 
+    def ever_logged(self, vehicle_name: str) -> list[Entry]:
+        """Every entry as first logged, struck ones too, and every correction that changed its moment or amounts."""
+        select = f"SELECT {rows.ENTRY_COLUMNS} FROM entry AS this WHERE vehicle_id = ? AND {_NO_REPEAT}"
+        found = self._rows(select, self._number(vehicle_name))
+        with self._guard():
+            return [rows.entry_of(vehicle_name, row) for row in found]
+
     def last_entries(self, vehicle_name: str, count: int) -> list[Entry]:
         """The newest `count` standing entries in driving order, at a cost that does not grow with the logbook."""
         newest_first = "ORDER BY date DESC, odometer_km DESC, id DESC LIMIT ?"
         return self._entries(vehicle_name, newest_first, count)[::-1]
+
+    def entry(self, vehicle_name: str, number: int) -> Entry:
+        """The standing entry of that number. Raises UnknownNameError where there is none."""
+        found = self._entries(vehicle_name, "AND id = ?", number)
+        if not found:
+            raise UnknownNameError(f"{vehicle_name} has no entry {number}: `entries` lists them")
+        return found[0]
 
     def neighbours(self, entry: Entry) -> tuple[Entry | None, Entry | None]:
         """The standing entries just before and after the place of a new one: by odometer, or by date without one."""
@@ -111,7 +130,8 @@ class Store(LogbookFile):
         """Append the entries that were never logged before, in one transaction; how many they are.
 
         An entry was logged before where vehicle, day, odometer, distance and amount agree; struck and corrected ones
-        count, so that the same file adds nothing the second time. Of n equal ones, those missing are added.
+        count, and corrections, so that the same file adds nothing the second time, nor does the logbook's own export.
+        Of n equal ones, those missing are added.
         """
         added = 0
         met: Counter[tuple[Any, ...]] = Counter()
@@ -196,8 +216,8 @@ class Store(LogbookFile):
 
     def _times_logged(self, key: tuple[Any, ...]) -> int:
         select = (
-            "SELECT count(*) FROM entry WHERE vehicle_id = ? AND date = ? AND odometer_km IS ? "
-            "AND distance_km IS ? AND energy IS ? AND supersedes IS NULL"
+            "SELECT count(*) FROM entry AS this WHERE vehicle_id = ? AND date = ? AND odometer_km IS ? "
+            f"AND distance_km IS ? AND energy IS ? AND {_NO_REPEAT}"
         )
         times: int = self._rows(select, *key)[0][0]
         return times

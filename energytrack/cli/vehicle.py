@@ -1,0 +1,112 @@
+"""`vehicle`: the vehicles of a logbook."""
+
+from __future__ import annotations
+
+from typing import Annotated
+
+import typer
+
+from energytrack.cli import options
+from energytrack.cli.context import distance_unit, readable, say, say_json, writable
+from energytrack.errors import EntryError
+from energytrack.logbook.quantities import (
+    CONSUMPTION,
+    ENERGY,
+    base_unit,
+    consumption_unit,
+    energy_text,
+    parse_number,
+    to_base,
+)
+from energytrack.logbook.records import CARRIERS, UNIT_OF_CARRIER, Vehicle
+from energytrack.presentation.columns import aligned
+
+vehicle_commands = typer.Typer(
+    no_args_is_help=True, add_completion=False, rich_markup_mode=None, help="Add and list vehicles."
+)
+_USUAL_DISPLAY_IN_MILES = {"gal-us": "mpg-us", "gal-imp": "mpg-imp", "kg": "mi/kg", "kWh": "mi/kWh"}
+
+
+@vehicle_commands.command("add", context_settings=options.NUMBERS_MAY_BE_NEGATIVE)
+def add(
+    context: typer.Context,
+    name: Annotated[str, typer.Argument(help="What you call it.")],
+    carrier: Annotated[str, typer.Option(help=", ".join(CARRIERS))],
+    capacity: Annotated[str | None, typer.Option(help="Tank or usable battery capacity, in --unit.")] = None,
+    unit: Annotated[str | None, typer.Option(help=f"Unit amounts are typed in: {', '.join(ENERGY)}.")] = None,
+    distance_unit_typed: Annotated[
+        str, typer.Option("--distance-unit", metavar="km|mi", help="Unit the odometer counts.")
+    ] = "km",
+    display: Annotated[str | None, typer.Option(help=f"Consumption shown as: {', '.join(CONSUMPTION)}.")] = None,
+    note: options.Note = "",
+    json: options.Json = False,
+) -> None:
+    """Add a vehicle."""
+    vehicle = _vehicle(name, carrier, capacity, unit, distance_unit_typed, display, note)
+    writable(context).add_vehicle(vehicle)
+    if json:
+        say_json(_columns(vehicle))
+    else:
+        say([f"added {'  '.join(cell for cell in _cells(vehicle) if cell)}"])
+
+
+@vehicle_commands.command("list")
+def list_vehicles(context: typer.Context, json: options.Json = False) -> None:
+    """List the vehicles."""
+    vehicles = readable(context).vehicles()
+    if json:
+        say_json({"vehicles": [_columns(vehicle) for vehicle in vehicles]})
+    elif vehicles:
+        header = ("vehicle", "carrier", "capacity", "odometer in", "shown as", "note")
+        say(aligned([header, *(_cells(vehicle) for vehicle in vehicles)], right=(2,)))
+    else:
+        say(["no vehicles yet: add one with `vehicle add`"])
+
+
+def _vehicle(
+    name: str, carrier: str, capacity: str | None, unit: str | None, distance: str, display: str | None, note: str
+) -> Vehicle:
+    if not name.strip() or not name.isprintable():
+        raise EntryError("a vehicle needs a name of printable characters")
+    if carrier not in CARRIERS:
+        raise EntryError(f"unknown carrier {carrier!r}: use one of {', '.join(CARRIERS)}")
+    typed_unit = unit or UNIT_OF_CARRIER[carrier]
+    if typed_unit not in ENERGY:
+        raise EntryError(f"unknown unit {typed_unit!r}: use one of {', '.join(ENERGY)}")
+    base = base_unit(typed_unit)
+    if (base == "kWh") != (carrier == "electricity"):
+        raise EntryError(f"{carrier} is not measured in {typed_unit}: use another --unit")
+    room = None if capacity is None else to_base(parse_number(capacity, "capacity"), typed_unit)
+    if room is not None and room <= 0:
+        raise EntryError(f"capacity {capacity} must be more than 0: type what tank or battery holds")
+    if display is None and distance == "mi":
+        display = _USUAL_DISPLAY_IN_MILES.get(typed_unit)
+    vehicle = Vehicle(name.strip(), carrier, base, room, distance, display, note, typed_unit)
+    _check_shown(vehicle)
+    return vehicle
+
+
+def _check_shown(vehicle: Vehicle) -> None:
+    distance_unit(None, vehicle)
+    fitting = [key for key, shown in CONSUMPTION.items() if base_unit(shown.energy) == vehicle.unit]
+    if vehicle.display is not None and vehicle.display not in fitting:
+        raise EntryError(f"cannot show consumption in {vehicle.unit} as {vehicle.display!r}: use {', '.join(fitting)}")
+
+
+def _cells(vehicle: Vehicle) -> tuple[str, ...]:
+    capacity = "" if vehicle.capacity is None else energy_text(vehicle.capacity, vehicle)
+    shown = consumption_unit(vehicle).label
+    return (vehicle.name, vehicle.carrier, capacity, vehicle.distance_unit, shown, vehicle.note)
+
+
+def _columns(vehicle: Vehicle) -> dict[str, object]:
+    return {
+        "vehicle": vehicle.name,
+        "carrier": vehicle.carrier,
+        "unit": vehicle.unit,
+        "capacity": vehicle.capacity,
+        "distance_unit": vehicle.distance_unit,
+        "display": vehicle.display,
+        "typed_unit": vehicle.typed_unit,
+        "note": vehicle.note,
+    }

@@ -1,0 +1,131 @@
+"""One cell of a table: text to number, date or yes/no. A CellError says what to write instead."""
+
+from __future__ import annotations
+
+import datetime as dt
+import math
+import re
+import unicodedata
+from collections.abc import Callable
+from functools import lru_cache
+
+_NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]{1,3})?")
+_ISO = re.compile(r"([0-9]{4})-([0-9]{2})-([0-9]{2})(?:[T ][0-9]{2}:[0-9]{2}\S*)?")
+_PARTS = re.compile(r"([0-9]{1,2})([./-])([0-9]{1,2})\2([0-9]{4})(?:[T ][0-9]{1,2}:[0-9]{2}\S*)?")
+_YES = frozenset(("yes", "y", "true", "1"))
+_NO = frozenset(("no", "n", "false", "0"))
+
+
+class CellError(ValueError):
+    """What is wrong with the text of a cell and what to write instead."""
+
+
+def shown(text: str) -> str:
+    """The text as a message may show it: short, one line, nothing a terminal would obey."""
+    return repr(text if len(text) <= 40 else text[:40] + "...")
+
+
+def text_of(text: str) -> str:
+    """Free text without control characters and line breaks."""
+    if text.isprintable():
+        return text
+    return "".join(" " if unicodedata.category(c) in ("Cc", "Zl", "Zp") else c for c in text).strip()
+
+
+def yes_or_no(text: str) -> bool:
+    """yes/no, y/n, true/false, 1/0."""
+    word = text.lower()
+    if word in _YES:
+        return True
+    if word in _NO:
+        return False
+    raise CellError(f"{shown(text)} is neither yes nor no; write yes or no")
+
+
+def number(text: str) -> float:
+    """A finite number with a decimal point."""
+    if _NUMBER.fullmatch(text) is None:
+        raise CellError(_number_advice(text))
+    value = float(text)
+    if not math.isfinite(value):
+        raise CellError(f"{shown(text)} is beyond any number that can be kept; write a finite one")
+    return value
+
+
+def _number_advice(text: str) -> str:
+    if re.fullmatch(r"[+-]?[0-9]+,[0-9]+", text):
+        return f"{shown(text)} has a comma; write {text.replace(',', '.')}, or import with --decimal-comma"
+    if re.fullmatch(r"[+-]?[0-9]{1,3}([, '.\u00a0\u202f][0-9]{3})+([.,][0-9]*)?", text):
+        return f"{shown(text)} has thousands separators; write the plain number, or name the mark with --thousands"
+    return f"{shown(text)} is not a number; write digits with a decimal point and no unit, such as 41.32"
+
+
+def number_reader(decimal_comma: bool = False, thousands: str | None = None) -> Callable[[str], float]:
+    """A reader of numbers written with the given marks; without any, `number` itself."""
+    if not decimal_comma and thousands is None:
+        return number
+    mark = "," if decimal_comma else "."
+    spaces = thousands == " "
+    group = "[ \u00a0\u202f]" if spaces else re.escape(thousands or "")
+    whole = rf"[0-9]+|[0-9]{{1,3}}(?:{group}[0-9]{{3}})+" if thousands else "[0-9]+"
+    form = re.compile(rf"[+-]?(?:(?:{whole})(?:{re.escape(mark)}[0-9]*)?|{re.escape(mark)}[0-9]+)(?:[eE][+-]?[0-9]+)?")
+    drop = re.compile(group) if thousands else None
+
+    def read(text: str) -> float:
+        if form.fullmatch(text) is None:
+            stated = f"decimal mark {mark!r}" + (f", thousands mark {thousands!r}" if thousands else "")
+            raise CellError(f"{shown(text)} is not a number as stated for this file ({stated})")
+        plain = drop.sub("", text) if drop else text
+        return number(plain.replace(",", ".") if decimal_comma else plain)
+
+    return read
+
+
+def date_reader(day_first: bool = False, date_format: str | None = None) -> Callable[[str], dt.date]:
+    """A reader of dates: ISO 8601 always; with day and month in another order where that is stated or beyond doubt."""
+    if date_format is not None:
+        _check_format(date_format)
+
+    @lru_cache(maxsize=4096)
+    def read(text: str) -> dt.date:
+        if date_format is not None:
+            try:
+                return dt.datetime.strptime(text, date_format).date()
+            except (ValueError, re.error):
+                raise CellError(f"{shown(text)} is not a date of the form {date_format}") from None
+        if iso := _ISO.fullmatch(text):
+            return _date(text, int(iso[1]), int(iso[2]), int(iso[3]))
+        if parts := _PARTS.fullmatch(text):
+            return _date(text, int(parts[4]), *_month_and_day(text, int(parts[1]), int(parts[3]), day_first))
+        raise CellError(f"{shown(text)} is not a date; write it as 2026-05-03, or import with --date-format")
+
+    return read
+
+
+def _month_and_day(text: str, first: int, second: int, day_first: bool) -> tuple[int, int]:
+    if day_first:
+        return second, first
+    if first <= 12 and second <= 12 and first != second:
+        raise CellError(
+            f"{shown(text)} can be read two ways; import with --day-first, or with --date-format %m/%d/%Y"
+        )
+    return (first, second) if first <= 12 else (second, first)
+
+
+def _date(text: str, year: int, month: int, day: int) -> dt.date:
+    try:
+        return dt.date(year, month, day)
+    except ValueError:
+        read = f"year {year}, month {month}, day {day}"
+        raise CellError(f"{shown(text)} is not a day of the calendar (read as {read})") from None
+
+
+def _check_format(date_format: str) -> None:
+    """A usable format brings any date back. Raises CellError."""
+    probe = dt.date(2026, 12, 31)
+    try:
+        fits = dt.datetime.strptime(probe.strftime(date_format), date_format).date() == probe
+    except (ValueError, re.error):
+        fits = False
+    if not fits:
+        raise CellError(f"{shown(date_format)} does not describe a date; write one like %d.%m.%Y, %m/%d/%y or %Y%m%d")

@@ -1,0 +1,152 @@
+"""Rules for a new entry against itself and its neighbours. Pure functions; each refusal is one EntryError."""
+
+from __future__ import annotations
+
+import datetime as dt
+import math
+import re
+
+from energytrack.errors import EntryError
+from energytrack.logbook.quantities import distance_text, energy_text, speed_text
+from energytrack.logbook.records import Entry, Vehicle
+
+FARTHEST_DAY_KM = 2000.0  # what drivers taking turns can do in a day
+LARGEST_ODOMETER_KM = 10_000_000.0
+OVERFILL = 1.3  # a filling may exceed the stated capacity: filler neck, charging losses, a rounded capacity
+LARGEST_AMOUNT = 20_000.0  # L, kg or kWh: beyond the tanks and batteries of road vehicles
+COLDEST_C, HOTTEST_C = -90.0, 60.0  # beyond any outside temperature met on Earth
+FASTEST_KMH = 500.0
+EARLIEST_YEAR = 1900
+
+_ISO_DATE = re.compile(r"[0-9]{4}-[0-9]{2}-[0-9]{2}")
+
+
+def parse_date(text: str) -> dt.date:
+    """A day written as 2026-05-03. Raises EntryError."""
+    try:
+        if _ISO_DATE.fullmatch(text.strip()):
+            return dt.date.fromisoformat(text.strip())
+    except ValueError:
+        pass
+    raise EntryError(f"date {text!r} is not a day of the calendar written as year-month-day, such as 2026-05-03")
+
+
+def check_date(date: dt.date, today: dt.date) -> None:
+    """Refuse days to come, and years no log reaches back to. Raises EntryError."""
+    if date > today:
+        raise EntryError(f"date {date} lies in the future (today is {today}): correct it")
+    if date.year < EARLIEST_YEAR:
+        raise EntryError(f"date {date} lies before {EARLIEST_YEAR}: correct the year")
+
+
+def check_odometer(odometer_km: float, vehicle: Vehicle) -> None:
+    """Refuse a value that no odometer shows. Raises EntryError."""
+    if not 0 <= odometer_km <= LARGEST_ODOMETER_KM:
+        shown = distance_text(odometer_km, vehicle)
+        raise EntryError(f"odometer {shown} is no odometer value: type what the instrument shows")
+
+
+def check_values(entry: Entry, vehicle: Vehicle, today: dt.date) -> None:
+    """What can be said of an entry alone. Raises EntryError."""
+    check_date(entry.date, today)
+    if entry.odometer_km is not None:
+        check_odometer(entry.odometer_km, vehicle)
+    if entry.distance_km is not None and not 0 < entry.distance_km <= LARGEST_ODOMETER_KM:
+        shown = distance_text(entry.distance_km, vehicle)
+        raise EntryError(f"distance {shown} since the last entry is not possible: correct it")
+    _check_energy(entry, vehicle)
+    if entry.level_percent is not None and not 0 <= entry.level_percent <= 100:
+        raise EntryError(f"level {entry.level_percent:g} is outside 0 to 100 %: type the reading after the entry")
+    if entry.temperature_c is not None and not COLDEST_C <= entry.temperature_c <= HOTTEST_C:
+        raise EntryError(
+            f"temperature {entry.temperature_c:g} °C is no outside temperature: mark degrees Fahrenheit, such as 54F"
+        )
+    if entry.speed_kmh is not None and not 0 < entry.speed_kmh <= FASTEST_KMH:
+        raise EntryError(f"speed {speed_text(entry.speed_kmh, vehicle)} is no mean speed of a road vehicle: correct it")
+    if entry.cost is not None and not (entry.cost >= 0 and math.isfinite(entry.cost)):
+        raise EntryError(f"cost {entry.cost:g} must not be below 0: correct it")
+
+
+def check_place(
+    entry: Entry,
+    vehicle: Vehicle,
+    before: Entry | None,
+    after: Entry | None,
+    twin: Entry | None,
+    *,
+    again: bool = False,
+) -> None:
+    """Whether an entry fits between its neighbours in driving order.
+
+    `before` and `after` stand next to it by odometer, or by date where it has none; `twin` is an entry like it.
+    `again` insists on a twin. Raises EntryError.
+    """
+    if twin is not None and not again:
+        raise EntryError(f"{_what(twin, vehicle)} is logged already: add --again if this is another one")
+    if entry.odometer_km is None:
+        if entry.distance_km is not None and before is not None:
+            _check_jump(entry.distance_km, before.date, entry.date, vehicle)
+        return
+    if twin is None and before is not None and before.odometer_km == entry.odometer_km:
+        raise EntryError(f"odometer stands still: {_stood(before, vehicle)}; type what the instrument shows now")
+    check_reading(entry.date, entry.odometer_km, vehicle, before, after)
+
+
+def check_reading(
+    date: dt.date, odometer_km: float, vehicle: Vehicle, before: Entry | None, after: Entry | None
+) -> None:
+    """Whether a day and an odometer value fit between the entries next to it by odometer. Raises EntryError."""
+    shown = distance_text(odometer_km, vehicle)
+    if after is not None and after.date < date:
+        raise EntryError(
+            f"odometer goes back: {shown} on {date}, but {_stood(after, vehicle)}; "
+            "correct it, or give the date of a forgotten receipt with --date"
+        )
+    if before is not None and before.date > date:
+        raise EntryError(f"{shown} on {date} does not fit: {_stood(before, vehicle)}; correct the odometer or the date")
+    if before is not None and before.odometer_km is not None:
+        _check_jump(odometer_km - before.odometer_km, before.date, date, vehicle)
+    if after is not None and after.odometer_km is not None:
+        _check_jump(after.odometer_km - odometer_km, date, after.date, vehicle)
+
+
+def check_measure(entry: Entry, last: Entry | None) -> None:
+    """One vehicle is logged by odometer or by distance, not both. Raises EntryError."""
+    if entry.odometer_km is None and entry.distance_km is None:
+        raise EntryError("the odometer value is missing: type it, or --distance for a vehicle without an odometer")
+    if last is None:
+        return
+    if (entry.odometer_km is None) != (last.odometer_km is None):
+        needed = "--distance" if last.odometer_km is None else "an odometer value"
+        raise EntryError(f"the entries of {entry.vehicle} so far have {needed}: type that for this one too")
+
+
+def _check_energy(entry: Entry, vehicle: Vehicle) -> None:
+    if not (entry.energy > 0 and math.isfinite(entry.energy)):
+        raise EntryError(f"amount {entry.energy:g} must be more than 0: type what was bought")
+    if entry.energy > LARGEST_AMOUNT:
+        raise EntryError(f"amount {entry.energy:g} {vehicle.unit} is more than any vehicle holds: correct it")
+    if vehicle.capacity is not None and entry.energy > OVERFILL * vehicle.capacity:
+        raise EntryError(
+            f"amount {energy_text(entry.energy, vehicle)} is more than {OVERFILL:g} times the capacity of "
+            f"{vehicle.name}, {energy_text(vehicle.capacity, vehicle)}: correct it, or log each filling by itself"
+        )
+
+
+def _check_jump(distance_km: float, start: dt.date, end: dt.date, vehicle: Vehicle) -> None:
+    """A date is known to the day only: two days next to each other may hold almost two days of driving."""
+    days = (end - start).days + 1
+    if distance_km > FARTHEST_DAY_KM * days:
+        raise EntryError(
+            f"{distance_text(distance_km, vehicle)} between {start} and {end} is a jump no vehicle drives: "
+            "correct odometer, distance or date"
+        )
+
+
+def _stood(entry: Entry, vehicle: Vehicle) -> str:
+    return f"{distance_text(entry.odometer_km or 0.0, vehicle)} stood on {entry.date}"
+
+
+def _what(entry: Entry, vehicle: Vehicle) -> str:
+    place = f" at {distance_text(entry.odometer_km, vehicle)}" if entry.odometer_km is not None else ""
+    return f"a {entry.kind} of {energy_text(entry.energy, vehicle)} on {entry.date}{place}"
