@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import math
+from dataclasses import dataclass
 from typing import Annotated, Any
 
 import typer
 
 from energytrack.cli import options
 from energytrack.cli.context import readable, say, say_json, the_vehicles
-from energytrack.logbook.quantities import distance_text, energy_text
+from energytrack.logbook.opening import Logbook
+from energytrack.logbook.quantities import consumption_text, distance_text, energy_text
 from energytrack.logbook.records import Entry, Vehicle
 from energytrack.logbook.rows import entry_values
 from energytrack.presentation.columns import aligned
@@ -25,12 +27,39 @@ def entries(
 ) -> None:
     """List the newest entries of each vehicle, oldest first, with what is special about them."""
     logbook = readable(context)
-    found = {each.name: logbook.last_entries(each.name, last) for each in the_vehicles(logbook, vehicle)}
+    vehicles = the_vehicles(logbook, vehicle)
+    listed = [(each, _newest(logbook, each, last)) for each in vehicles]
     if json:
-        say_json({"entries": [entry_columns(entry) for own in found.values() for entry in own]})
+        say_json({"entries": [_columns(line) for _, lines in listed for line in lines]})
         return
-    for each in the_vehicles(logbook, vehicle):
-        say(_table(each, found[each.name], last))
+    for each, lines in listed:
+        say(_table(each, lines, last))
+    if not vehicles:
+        say(["no vehicles yet: add one with `vehicle add`"])
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """An entry, and the consumption of the segment it closes: energy per km, None where it closes none."""
+
+    entry: Entry
+    consumption: float | None
+    is_unusual: bool
+
+
+def _newest(logbook: Logbook, vehicle: Vehicle, last: int) -> list[Line]:
+    """The newest `last` entries, judged by the record of those before them too."""
+    from energytrack.consumption.meaning import RECENT_ENTRIES, unusual
+    from energytrack.consumption.segments import close_segments
+
+    recent = logbook.last_entries(vehicle.name, last + RECENT_ENTRIES)
+    segmented = close_segments(recent, logbook.events(vehicle.name), capacity=vehicle.capacity, unit=vehicle.unit)
+    closed = {
+        segment.legs[-1].entry: (segment.energy / segment.distance_km, flag)
+        for segment, flag in zip(segmented.segments, unusual(segmented.segments), strict=True)
+    }
+    lines = [Line(entry, *closed.get(index, (None, False))) for index, entry in enumerate(segmented.entries)]
+    return lines[-last:]
 
 
 def entry_columns(entry: Entry) -> dict[str, Any]:
@@ -41,17 +70,22 @@ def entry_columns(entry: Entry) -> dict[str, Any]:
     return {"id": entry.id, "vehicle": entry.vehicle, **values, **yes_or_no, **entry.extra}
 
 
-def _table(vehicle: Vehicle, found: list[Entry], last: int) -> list[str]:
-    if not found:
+def _columns(line: Line) -> dict[str, Any]:
+    return {**entry_columns(line.entry), "energy_per_km": line.consumption, "unusual": line.is_unusual}
+
+
+def _table(vehicle: Vehicle, lines: list[Line], last: int) -> list[str]:
+    if not lines:
         return [f"{vehicle.name}: no entries yet"]
-    title = vehicle.name + (f", the newest {last} (--last N for more)" if len(found) == last else "")
-    rows = [_cells(vehicle, entry) for entry in found]
-    return [title, *aligned(rows, right=(1, 2))]
+    title = vehicle.name + (f", the newest {last} (--last N for more)" if len(lines) == last else "")
+    return [title, *aligned([_cells(vehicle, line) for line in lines], right=(1, 2, 3))]
 
 
-def _cells(vehicle: Vehicle, entry: Entry) -> tuple[str, ...]:
+def _cells(vehicle: Vehicle, line: Line) -> tuple[str, ...]:
+    entry = line.entry
     amount = "no amount" if math.isnan(entry.energy) else energy_text(entry.energy, vehicle)
-    return entry.date.isoformat(), _place(vehicle, entry), amount, ", ".join(_flags(entry))
+    consumption = "" if line.consumption is None else consumption_text(line.consumption, vehicle)
+    return entry.date.isoformat(), _place(vehicle, entry), amount, consumption, ", ".join(_flags(line))
 
 
 def _place(vehicle: Vehicle, entry: Entry) -> str:
@@ -60,8 +94,10 @@ def _place(vehicle: Vehicle, entry: Entry) -> str:
     return "" if entry.distance_km is None else f"+{distance_text(entry.distance_km, vehicle)}"
 
 
-def _flags(entry: Entry) -> list[str]:
+def _flags(line: Line) -> list[str]:
+    entry = line.entry
+    unlike = ["unusual"] if line.is_unusual else []
     level = [] if entry.level_percent is None else [f"level {entry.level_percent:g} %"]
     partial = ["partial"] if not entry.full and entry.level_percent is None else []
     missed = ["entries missing before"] if entry.missed else []
-    return [*level, *partial, *missed, *([entry.note] if entry.note else [])]
+    return [*unlike, *level, *partial, *missed, *([entry.note] if entry.note else [])]

@@ -12,7 +12,7 @@ from energytrack.logbook.quantities import ENERGY, base_unit, parse_number, pars
 from energytrack.logbook.records import Entry, Vehicle
 
 
-@dataclass(slots=True)
+@dataclass
 class Typed:
     """The texts of one entry, as typed; None: not typed."""
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 import math
-import re
+from contextlib import suppress
 
 from energytrack.errors import EntryError
 from energytrack.logbook.quantities import distance_text, energy_text, speed_text
@@ -18,16 +18,13 @@ COLDEST_C, HOTTEST_C = -90.0, 60.0  # beyond any outside temperature met on Eart
 FASTEST_KMH = 500.0
 EARLIEST_YEAR = 1900
 
-_ISO_DATE = re.compile(r"[0-9]{4}-[0-9]{2}-[0-9]{2}")
-
 
 def parse_date(text: str) -> dt.date:
     """A day written as 2026-05-03. Raises EntryError."""
-    try:
-        if _ISO_DATE.fullmatch(text.strip()):
-            return dt.date.fromisoformat(text.strip())
-    except ValueError:
-        pass
+    day = text.strip()
+    with suppress(ValueError):
+        if len(day) == 10 and day[4::3] == "--":  # fromisoformat takes other forms of ISO 8601 too
+            return dt.date.fromisoformat(day)
     raise EntryError(f"date {text!r} is not a day of the calendar written as year-month-day, such as 2026-05-03")
 
 

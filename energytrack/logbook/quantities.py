@@ -7,8 +7,9 @@ from __future__ import annotations
 
 import math
 import re
-from dataclasses import dataclass
+from contextlib import suppress
 from types import MappingProxyType
+from typing import NamedTuple
 
 from energytrack.errors import EntryError
 from energytrack.logbook.records import Vehicle
@@ -33,8 +34,7 @@ ENERGY = MappingProxyType(  # unit as typed -> base unit, base units in one of i
 DISTANCE = MappingProxyType({"km": 1.0, "mi": KM_PER_MILE})
 
 
-@dataclass(frozen=True, slots=True)
-class ConsumptionUnit:
+class ConsumptionUnit(NamedTuple):
     """One way to show energy per distance."""
 
     label: str
@@ -58,31 +58,34 @@ CONSUMPTION = MappingProxyType(
     }
 )
 
-_DIGITS = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
-_DECIMAL_COMMA = re.compile(r"[+-]?[0-9]+,[0-9]+")
-_GROUPED = re.compile(r"[+-]?[0-9]{1,3}(?:[ ,.'_\u00a0\u202f][0-9]{3})+(?:[.,][0-9]+)?")
-_TEMPERATURE = re.compile(r"(.*?)\s*°?\s*([CcFf])")
+_NUMERIC = frozenset("0123456789+-.eE")  # float() also takes nan, inf, 1_000 and the digits of other scripts
+_DECIMAL_COMMA = r"[+-]?[0-9]+,[0-9]+"
+_GROUPED = r"[+-]?[0-9]{1,3}(?:[ ,.'_\u00a0\u202f][0-9]{3})+(?:[.,][0-9]+)?"
 
 
 def parse_number(text: str, what: str) -> float:
     """A finite number as typed. Raises EntryError naming `what` and how to write it."""
     text = text.strip()
-    if _DIGITS.fullmatch(text) and math.isfinite(value := float(text)):
+    value = math.nan
+    with suppress(ValueError):
+        value = float(text) if _NUMERIC.issuperset(text) else math.nan
+    if math.isfinite(value):
         return value
-    if _DECIMAL_COMMA.fullmatch(text):
+    if re.fullmatch(_DECIMAL_COMMA, text):
         raise EntryError(f"{what} has a decimal comma: write {text.replace(',', '.')}, not {text}")
-    if _GROUPED.fullmatch(text):
+    if re.fullmatch(_GROUPED, text):
         raise EntryError(f"{what} {text!r} has thousands separators: write digits and a decimal point only")
     raise EntryError(f"{what} {text!r} is not a number: write digits with a decimal point, such as 41.32")
 
 
 def parse_temperature(text: str) -> float:
     """Degrees Celsius from `12`, `12C` or `54F`. Raises EntryError."""
-    marked = _TEMPERATURE.fullmatch(text.strip())
-    if marked is None:
+    text = text.strip()
+    unit = text[-1:].upper()
+    if unit not in ("C", "F"):
         return parse_number(text, "temperature")
-    value = parse_number(marked[1], "temperature")
-    return celsius(value) if marked[2] in "Ff" else value
+    value = parse_number(text[:-1].rstrip().removesuffix("°"), "temperature")
+    return celsius(value) if unit == "F" else value
 
 
 def celsius(fahrenheit: float) -> float:
