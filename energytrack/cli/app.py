@@ -29,6 +29,8 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "event": ("event", "event"),
     "entries": ("entries", "entries"),
     "import": ("import_", "import_table"),
+    "enough": ("enough", "enough"),
+    "plan": ("plan", "plan"),
 }
 
 

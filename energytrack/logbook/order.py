@@ -70,25 +70,26 @@ def _around(rows: list[Row], kept: list[int], place: int, say: Callable[[Entry],
 
 
 def _rising(values: Sequence[Any], again: bool) -> list[int]:
-    """Positions of a longest increasing run (non-decreasing if `again`), O(n log n); Schensted (1961)."""
+    """Positions of a longest increasing run (non-decreasing if `again`), O(n log n); Schensted (1961).
+
+    Worked from the end, so that of two runs of one length the later value that goes back is left out.
+    """
     find = bisect_right if again else bisect_left
-    tails: list[Any] = []
-    ends: list[int] = []
-    before: list[int] = []
-    for position, value in enumerate(values):
-        place = find(tails, value)
-        before.append(ends[place - 1] if place else -1)
-        if place == len(tails):
-            tails.append(value)
-            ends.append(position)
-        elif value != tails[place]:
-            tails[place], ends[place] = value, position
+    rank = {value: -place for place, value in enumerate(sorted(set(values)))}
+    heads: list[int] = []
+    starts: list[int] = []
+    following = [-1] * len(values)
+    for position in range(len(values) - 1, -1, -1):
+        place = find(heads, rank[values[position]])
+        following[position] = starts[place - 1] if place else -1
+        heads[place : place + 1] = [rank[values[position]]]
+        starts[place : place + 1] = [position]
     kept: list[int] = []
-    position = ends[-1] if ends else -1
+    position = starts[-1] if starts else -1
     while position >= 0:
         kept.append(position)
-        position = before[position]
-    return kept[::-1]
+        position = following[position]
+    return kept
 
 
 def misfits(rows: Sequence[Row], standing: Sequence[Entry], file: str = "", *, again: bool = False) -> list[Problem]:

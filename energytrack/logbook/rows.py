@@ -6,7 +6,7 @@ import datetime as dt
 import json
 import math
 import sqlite3
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from types import MappingProxyType
 from typing import Any
 
@@ -62,13 +62,27 @@ def entry_values(entry: Entry) -> dict[str, Any]:
         "speed_kmh": entry.speed_kmh,
         "place": entry.place,
         "note": entry.note,
-        "extra": json.dumps(dict(entry.extra)),
+        "extra": json.dumps(dict(entry.extra)) if entry.extra else "{}",
     }
 
 
 def insert(connection: sqlite3.Connection, table: str, values: Mapping[str, Any]) -> int:
     """Append one row, stamped with the time of recording (UTC); its number. Table and columns are ours, never typed."""
-    stamped = {**values, "recorded_at": dt.datetime.now(dt.UTC).isoformat(timespec="seconds")}
-    marks = ", ".join(f":{column}" for column in stamped)
-    cursor = connection.execute(f"INSERT INTO {table} ({', '.join(stamped)}) VALUES ({marks})", stamped)
-    return cursor.lastrowid or 0
+    stamped = _stamped([values])[0]
+    return connection.execute(_statement(table, stamped), stamped).lastrowid or 0
+
+
+def insert_all(connection: sqlite3.Connection, table: str, values: Sequence[Mapping[str, Any]]) -> None:
+    """Append many rows of the same columns, like `insert`."""
+    if values:
+        stamped = _stamped(values)
+        connection.executemany(_statement(table, stamped[0]), stamped)
+
+
+def _stamped(values: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
+    now = dt.datetime.now(dt.UTC).isoformat(timespec="seconds")
+    return [{**row, "recorded_at": now} for row in values]
+
+
+def _statement(table: str, columns: Mapping[str, Any]) -> str:
+    return f"INSERT INTO {table} ({', '.join(columns)}) VALUES ({', '.join(f':{column}' for column in columns)})"

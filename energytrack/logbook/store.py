@@ -123,8 +123,8 @@ class Store(LogbookFile):
 
     def add_entry(self, entry: Entry, typed: Mapping[str, Any]) -> int:
         """Append one entry with what was typed for it; its number."""
-        with self.transaction():
-            return self._append(self._number(entry.vehicle), entry, typed, TYPED)
+        with self.transaction(), self._guard():
+            return rows.insert(self._db, "entry", self._written(self._number(entry.vehicle), entry, typed, TYPED))
 
     def add_entries(self, entries: Sequence[tuple[Entry, Mapping[str, Any]]], source: str) -> int:
         """Append the entries that were never logged before, in one transaction; how many they are.
@@ -133,23 +133,22 @@ class Store(LogbookFile):
         count, and corrections, so that the same file adds nothing the second time, nor does the logbook's own export.
         Of n equal ones, those missing are added.
         """
-        added = 0
-        met: Counter[tuple[Any, ...]] = Counter()
+        left: Counter[tuple[Any, ...]] = Counter()
         numbers: dict[str, int] = {}
-        with self.transaction():
+        new = []
+        with self.transaction(), self._guard():
             for entry, typed in entries:
                 if entry.vehicle not in numbers:
                     numbers[entry.vehicle] = self._number(entry.vehicle)
-                number = numbers[entry.vehicle]
-                values = rows.entry_values(entry)
-                key = (number, *(values[name] for name in ("date", "odometer_km", "distance_km", "energy")))
-                if key not in met:
-                    met[key] = -self._times_logged(key)
-                met[key] += 1
-                if met[key] > 0:
-                    self._append(number, entry, typed, source)
-                    added += 1
-        return added
+                    left.update(self._logged(numbers[entry.vehicle]))
+                values = self._written(numbers[entry.vehicle], entry, typed, source)
+                key = tuple(values[name] for name in ("vehicle_id", "date", "odometer_km", "distance_km", "energy"))
+                if left[key] > 0:
+                    left[key] -= 1
+                else:
+                    new.append(values)
+            rows.insert_all(self._db, "entry", new)
+        return len(new)
 
     def fit(
         self,
@@ -208,19 +207,14 @@ class Store(LogbookFile):
         with self._guard():
             return [rows.entry_of(vehicle_name, row) for row in found]
 
-    def _append(self, number: int, entry: Entry, typed: Mapping[str, Any], source: str) -> int:
-        values = rows.entry_values(entry)
-        with self._guard():
-            kept = {"vehicle_id": number, **values, "typed": json.dumps(dict(typed)), "source": source}
-            return rows.insert(self._db, "entry", kept)
+    def _written(self, number: int, entry: Entry, typed: Mapping[str, Any], source: str) -> dict[str, Any]:
+        kept = json.dumps(dict(typed)) if typed else "{}"
+        return {"vehicle_id": number, **rows.entry_values(entry), "typed": kept, "source": source}
 
-    def _times_logged(self, key: tuple[Any, ...]) -> int:
-        select = (
-            "SELECT count(*) FROM entry AS this WHERE vehicle_id = ? AND date = ? AND odometer_km IS ? "
-            f"AND distance_km IS ? AND energy IS ? AND {_NO_REPEAT}"
-        )
-        times: int = self._rows(select, *key)[0][0]
-        return times
+    def _logged(self, number: int) -> list[tuple[Any, ...]]:
+        """What makes each entry of a vehicle this entry, those corrected or struck since among them."""
+        columns = "vehicle_id, date, odometer_km, distance_km, energy"
+        return self._rows(f"SELECT {columns} FROM entry AS this WHERE vehicle_id = ? AND {_NO_REPEAT}", number)
 
     def _switches(self, vehicle_name: str) -> list[Switch]:
         select = f"SELECT {rows.SWITCH_COLUMNS} FROM standing_switch WHERE vehicle_id = ? ORDER BY id"

@@ -105,10 +105,11 @@ def test_one_bad_row_and_nothing_is_imported(tmp_path: Path, logbook: Path) -> N
         "2027-01-01,2600,40",  # 8: after today
         "2026-05-08,99999,40",  # 9: a typing error blames itself, not all that follow
         "2026-05-09,3000,40",
-        "2026-05-10,3000,41",  # 11: standing still
+        "2026-05-10,3500,40",
+        "2026-05-11,3500,41",  # 12: standing still
     )
     told = _bad(logbook, path)
-    assert sorted(told, key=str) == sorted([3, 5, 6, 8, 9, 11], key=str)
+    assert sorted(told, key=str) == sorted([3, 5, 6, 8, 9, 12], key=str)
     assert "does not fit after 1400 km on 2026-05-03 (line 4) and before 2200 km on 2026-05-06 (line 7)" in told[5]
     assert "1.3 times the capacity" in told[6]  # the tank of the van holds 70 L
     assert "future" in told[8]

@@ -1,0 +1,101 @@
+"""`enough`: has the modification shifted consumption, and was the distance enough to say so?"""
+
+from __future__ import annotations
+
+import sys
+from dataclasses import replace
+from typing import TYPE_CHECKING, Annotated
+
+import typer
+
+from energytrack.cli import options
+from energytrack.cli import questions as asking
+from energytrack.cli.app import ExitStatus
+from energytrack.cli.context import readable, say_json
+from energytrack.errors import EnergytrackError
+from energytrack.logbook.store import Store
+
+if TYPE_CHECKING:
+    from energytrack.inference.results import Assessment
+    from energytrack.logbook.opening import Logbook
+
+
+def enough(
+    context: typer.Context,
+    name: Annotated[str | None, typer.Argument(help="The modification; all of them if left out.")] = None,
+    vehicle: Annotated[str | None, typer.Option(help="The vehicle; all of them if left out.")] = None,
+    target: Annotated[
+        float | None, typer.Option(help="Smallest shift worth knowing about, in percent. Otherwise as logged, or 3.")
+    ] = None,
+    confidence: Annotated[float, typer.Option(help="Of the range and the verdict.")] = 0.95,
+    power: Annotated[float, typer.Option(help="Chance that a shift of the target size is found.")] = 0.80,
+    covariate: Annotated[
+        list[str] | None, typer.Option(metavar="COLUMN", help="A further numeric column to allow for; repeatable.")
+    ] = None,
+    picture: Annotated[bool, typer.Option("--picture", help="Draw how the range narrowed with distance.")] = False,
+    json: options.Json = False,
+    exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
+) -> None:
+    """Has the modification shifted consumption, by how much, and is the distance covered enough to say so?"""
+    if name is not None and name.startswith("-"):
+        raise typer.BadParameter(f"no such option: {name}")
+    logbook = readable(context)
+    asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
+    answers, refusals = asking.answered(
+        asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate))
+    )
+    _print_json([a for _, a in answers]) if json else _print(answers, picture)
+    for question, answer in answers:
+        _keep(logbook, question, answer)
+    waiting = exit_code and any(answer.verdict == "not-yet" for _, answer in answers)
+    asking.leave(refusals, ExitStatus.NOT_YET if waiting else ExitStatus.DONE)
+
+
+def _assess(
+    logbook: Logbook, question: asking.Question, confidence: float, power: float, covariates: list[str] | None
+) -> Assessment:
+    from energytrack.inference.assess import assess
+
+    answer = assess(
+        **asking.tables(logbook, question.vehicle),
+        name=question.modification,
+        target_percent=question.target_percent,
+        confidence=confidence,
+        power=power,
+        covariates=covariates or None,
+    )
+    return replace(answer, vehicle=question.vehicle.name)
+
+
+def _print_json(answers: list[Assessment]) -> None:
+    from energytrack.presentation.as_json import without_nan
+
+    say_json(without_nan({"assessments": [answer.to_dict() for answer in answers]}))
+
+
+def _print(answers: list[tuple[asking.Question, Assessment]], picture: bool) -> None:
+    from energytrack.presentation import terminal
+    from energytrack.presentation.enough import render
+
+    screen = terminal.console()
+    for place, (question, answer) in enumerate(answers):
+        unit, several = question.vehicle.distance_unit, len(answers) > 1
+        if place:
+            screen.print()
+        terminal.show(render(answer, unit=unit, width=screen.width, title=several, draw=picture), screen)
+
+
+def _keep(logbook: Logbook, question: asking.Question, answer: Assessment) -> None:
+    """Keep the answer for the echo of later entries; that it cannot be kept never hides it."""
+    from energytrack.presentation.as_json import without_nan
+
+    if not isinstance(logbook, Store) or not logbook.writable:
+        return
+    result = without_nan(answer.to_dict())
+    del result["looks"]
+    try:
+        last = logbook.last_entries(question.vehicle.name, 1)
+        result["at_km"] = last[0].odometer_km if last else None
+        logbook.keep_assessment(question.vehicle.name, question.modification, result)
+    except EnergytrackError as refusal:
+        print(f"energytrack: the answer was not kept: {refusal}", file=sys.stderr)

@@ -1,0 +1,104 @@
+"""What a command that answers is asked about: the logbook, its vehicles, their tables."""
+
+from __future__ import annotations
+
+import sys
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any, TypeVar
+
+import typer
+
+from energytrack.cli.app import ExitStatus
+from energytrack.cli.context import the_vehicles
+from energytrack.errors import EnergytrackError, LogbookError, UnknownNameError
+from energytrack.presentation.plain import plain_text
+
+if TYPE_CHECKING:
+    from energytrack.logbook.opening import Logbook
+    from energytrack.logbook.records import Vehicle
+
+Asked = TypeVar("Asked")
+Answer = TypeVar("Answer")
+USUAL_TARGET = 3.0  # percent
+
+
+@dataclass(frozen=True)
+class Question:
+    """One modification of one vehicle, and the shift worth knowing about."""
+
+    vehicle: Vehicle
+    modification: str
+    target_percent: float
+
+    def __str__(self) -> str:
+        return f"{plain_text(self.vehicle.name)}, {plain_text(self.modification)}"
+
+
+def vehicles_asked(logbook: Logbook, name: str | None) -> list[Vehicle]:
+    """The vehicle named, or all. Raises UnknownNameError, or LogbookError where there is none."""
+    vehicles = the_vehicles(logbook, name)
+    if not vehicles:
+        raise LogbookError("the logbook has no vehicle yet: energytrack vehicle add NAME --carrier diesel")
+    return vehicles
+
+
+def questions(logbook: Logbook, vehicles: Iterable[Vehicle], name: str | None, target: float | None) -> list[Question]:
+    """One question for each modification, or for the one named. Raises UnknownNameError, LogbookError for none."""
+    every = [question for vehicle in vehicles for question in _of_vehicle(logbook, vehicle, target)]
+    if not every:
+        raise LogbookError(
+            'no modification is logged: say when one was fitted with energytrack mod fitted "NAME" ODOMETER'
+        )
+    chosen = [question for question in every if name in (None, question.modification)]
+    if not chosen:
+        names = ", ".join(dict.fromkeys(plain_text(question.modification) for question in every))
+        raise UnknownNameError(f"no modification named {plain_text(name or '')!r}; logged: {names}")
+    return chosen
+
+
+def _of_vehicle(logbook: Logbook, vehicle: Vehicle, target: float | None) -> list[Question]:
+    """The target asked for comes first, then the one last logged with the modification, then the usual one."""
+    targets: dict[str, float] = {}
+    for period in logbook.modifications(vehicle.name):
+        usual = targets.get(period.name, USUAL_TARGET)
+        targets[period.name] = usual if period.target_percent is None else period.target_percent
+    return [Question(vehicle, name, own if target is None else target) for name, own in targets.items()]
+
+
+def tables(logbook: Logbook, vehicle: Vehicle) -> dict[str, Any]:
+    """The vehicle's tables as data frames, and its own figures: what `assess` and `plan` take by name."""
+    from energytrack.consumption.frames import FramedLogbook
+
+    framed = FramedLogbook(logbook)
+    weather = framed.weather()
+    return {
+        "entries": framed.entries(vehicle.name),
+        "modifications": framed.modifications(vehicle.name),
+        "events": framed.events(vehicle.name),
+        "weather": None if weather.empty else weather,
+        "capacity": vehicle.capacity,
+        "unit": vehicle.unit,
+    }
+
+
+def answered(asked: Iterable[Asked], answer: Callable[[Asked], Answer]) -> tuple[list[Answer], list[str]]:
+    """Every answer there is, and why the others have none. Raises the refusal where only one question was asked."""
+    answers, refusals = [], []
+    every = list(asked)
+    for question in every:
+        try:
+            answers.append(answer(question))
+        except EnergytrackError as refusal:
+            if len(every) == 1:
+                raise
+            refusals.append(f"{question}: {refusal}")
+    return answers, refusals
+
+
+def leave(refusals: list[str], status: ExitStatus = ExitStatus.DONE) -> None:
+    """Say what could not be answered, and end with the status that tells it."""
+    for refusal in refusals:
+        print(f"energytrack: {plain_text(refusal)}", file=sys.stderr)
+    if refusals or status is not ExitStatus.DONE:
+        raise typer.Exit(ExitStatus.REFUSED if refusals else status)

@@ -1,0 +1,169 @@
+"""The answer in one or two plain sentences, said before anything else."""
+
+from __future__ import annotations
+
+from energytrack.inference.results import Assessment, Look, Remedy
+from energytrack.presentation import figures
+from energytrack.presentation.plain import plain_text
+from energytrack.presentation.text import join
+
+USUAL_BASELINE_KM = 3200.0  # four working weeks of a 160 km commute; common practice, no source
+
+
+def sentence(a: Assessment, unit: str = "km") -> str:
+    """The answer to "has it shifted consumption, and was the distance enough?"; distances in `unit` (km or mi)."""
+    say = {
+        "shifted": _shifted,
+        "no-shift-of-target-size": _no_shift,
+        "not-yet": _not_yet,
+        "out-of-reach": _out_of_reach,
+        "no-baseline": _no_baseline,
+        "closed-unclear": _unclear,
+    }[a.verdict]
+    return say(a, unit)
+
+
+def contradicted(a: Assessment) -> bool:
+    """What was settled does not hold with what was driven since: a shift's range spans zero or its sign has turned,
+    or a shift below the target has grown past it.
+    """
+    span = a.interval_percent
+    if a.verdict == "no-shift-of-target-size" and span is not None:
+        return span[1] < -a.target_percent or span[0] > a.target_percent
+    if a.verdict != "shifted" or a.shift_percent is None:
+        return False
+    spans_zero = span is None or span[0] <= 0 <= span[1]
+    settled = settling_look(a)
+    return spans_zero or (settled is not None and settled.shift_percent * a.shift_percent < 0)
+
+
+def settling_look(a: Assessment) -> Look | None:
+    """The look that settled the verdict, where the looks are at hand."""
+    if a.settled_at_km is None:
+        return None
+    return next((look for look in a.looks if abs(look.odometer_km - a.settled_at_km) < 0.5), None)
+
+
+def so_far(a: Assessment) -> str:
+    """The present estimate with its range, or that there is none."""
+    if a.shift_percent is None:
+        return "no figure yet"
+    shift = figures.percent(a.shift_percent, a.standard_error_percent, signed=True)
+    span = figures.bounded(a.interval_percent)
+    if span is None:
+        return f"{shift}, look-proof range still open at both ends"
+    return f"{shift}, look-proof range {figures.percent_range(span, a.standard_error_percent)}"
+
+
+def remedy(r: Remedy, unit: str) -> str:
+    """One way to bring the target within reach, with its distance."""
+    detail = plain_text(r.detail)
+    target = figures.target(r.target_percent)
+    what = {
+        "larger-target": f"be content with a target of {target}",
+        "alternate": f"take it off and on {detail}".rstrip(),
+        "longer-baseline": f"a longer baseline: {detail}" if detail else "a longer baseline",
+    }[r.what]
+    goal = "" if r.what == "larger-target" else f" for {target}"
+    if r.distance_km is None:
+        return f"{what}, though{goal} even that takes longer than can be foreseen"
+    if r.distance_km < 1:
+        return f"{what}{goal}, which is driven already"
+    return f"{what}, about {figures.distance(r.distance_km, unit)} more{goal}"
+
+
+def _shifted(a: Assessment, unit: str) -> str:
+    name = plain_text(a.modification)
+    at = "" if a.settled_at_km is None else f" at {figures.driven(a.settled_at_km, unit)}"
+    if contradicted(a):
+        look = settling_look(a)
+        size = "" if look is None else f" of {figures.percent(look.shift_percent, signed=True)}"
+        return (
+            f"Doubtful: a shift{size} from {name} was settled{at}, but with what was driven since "
+            f"{_what_changed(a)}: now {so_far(a)}."
+        )
+    shift, error, span = a.shift_percent or 0.0, a.standard_error_percent, figures.bounded(a.interval_percent)
+    verb = "lowered" if shift < 0 else "raised"
+    within = ""
+    if span is not None:
+        low, high = sorted(abs(end) for end in span)
+        within = f" (look-proof range {figures.percent_range((low, high), error, signed=False)})"
+    settled = f", settled{at}" if at else ""
+    return f"Yes: {name} {verb} consumption by {figures.percent(abs(shift), error)}{within}{settled}."
+
+
+def _what_changed(a: Assessment) -> str:
+    span = a.interval_percent
+    return "its range reaches zero again" if span is None or span[0] <= 0 <= span[1] else "it points the other way"
+
+
+def _no_shift(a: Assessment, unit: str) -> str:
+    name, target = plain_text(a.modification), figures.target(a.target_percent)
+    if contradicted(a):
+        at = "" if a.settled_at_km is None else f" at {figures.driven(a.settled_at_km, unit)}"
+        return (
+            f"Doubtful: a shift of {target} from {name} was ruled out{at}, "
+            f"but what was driven since shows one: now {so_far(a)}."
+        )
+    return (
+        f"No: any shift from {name} is smaller than the target of {target}. "
+        f"Measured {so_far(a)}, after {figures.driven(a.distance_modified_km, unit)} with it."
+    )
+
+
+def _not_yet(a: Assessment, unit: str) -> str:
+    if a.distance_to_go_km is None:
+        go = f"how much further with {plain_text(a.modification)} cannot be foreseen yet"
+    else:
+        go = f"about {figures.distance(a.distance_to_go_km, unit)} more with {plain_text(a.modification)}"
+        go += "" if a.days_to_go is None else f", about {figures.days(a.days_to_go)} of your driving"
+    now = "Nothing measured with it so far" if a.shift_percent is None else f"So far {so_far(a)}"
+    return f"Not yet: {go}, at the target of {figures.target(a.target_percent)}. {now}."
+
+
+def _out_of_reach(a: Assessment, unit: str) -> str:
+    name, target = plain_text(a.modification), figures.target(a.target_percent)
+    if a.resolvable_at_best_percent is None:
+        limit = f"this log of {name} cannot show a shift of {target}, however far you drive on like this."
+    else:
+        best = figures.percent(a.resolvable_at_best_percent)
+        limit = f"driving on with {name} can show a shift of {best} at best, not {target}, however far."
+    within = _best_remedy(a)
+    hint = "" if within is None else f" Within reach: {remedy(within, unit)}."
+    now = "" if a.shift_percent is None else f" So far {so_far(a)}."
+    return f"Out of reach: {limit}{hint}{now}"
+
+
+def _best_remedy(a: Assessment) -> Remedy | None:
+    """The shortest way that keeps the target; only without one, a larger target."""
+    within = [(r.what == "larger-target", r.distance_km, r) for r in a.remedies if r.distance_km is not None]
+    return min(within, key=lambda way: way[:2])[2] if within else None
+
+
+def _no_baseline(a: Assessment, unit: str) -> str:
+    name = plain_text(a.modification)
+    have = f"only {figures.driven(a.distance_baseline_km, unit)} in {count(a.segments_baseline, 'segment')}"
+    have = have if a.segments_baseline else "nothing measured"
+    return (
+        f"No baseline: there is {have} without {name}, too little to compare with. "
+        f"Drive about {figures.distance(baseline_to_drive(a), unit)} without it, then ask again."
+    )
+
+
+def baseline_to_drive(a: Assessment) -> float:
+    """Kilometres of baseline to drive: what the assessment says, else what is usual less what is there."""
+    if a.distance_to_go_km is not None:
+        return a.distance_to_go_km
+    return max(USUAL_BASELINE_KM - a.distance_baseline_km, USUAL_BASELINE_KM / 4)
+
+
+def _unclear(a: Assessment, unit: str) -> str:
+    return (
+        f"Unclear: the distance for a target of {figures.target(a.target_percent)} is driven, yet a shift of that size "
+        f"from {plain_text(a.modification)} is neither shown nor ruled out. Measured {so_far(a)}."
+    )
+
+
+def count(number: int, noun: str) -> str:
+    """A number of things."""
+    return join(f"{number:,} {noun}") + ("" if number == 1 else "s")

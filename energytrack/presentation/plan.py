@@ -1,0 +1,178 @@
+"""Ways to run a test, compared in distance: sentence, tables, what to do next."""
+
+from __future__ import annotations
+
+import datetime as dt
+import io
+from collections.abc import Iterable, Sequence
+
+from rich.console import Console
+from rich.table import Table
+from rich.text import Text
+
+from energytrack.inference.results import Design, Plan
+from energytrack.logbook.records import Modification
+from energytrack.presentation import figures
+from energytrack.presentation.answer import USUAL_BASELINE_KM, count
+from energytrack.presentation.plain import plain_text
+from energytrack.presentation.text import bullets, join, labelled, wrap
+
+_ABOUT_AS_SHORT = 1.1
+_AMPLE = 240  # columns
+
+
+def render(
+    p: Plan, *, unit: str = "km", width: int = 80, title: bool = False, fitted: Sequence[str] = ()
+) -> list[Text]:
+    """Lines of at most `width` cells; `fitted`: where entries of modified periods lie, a phrase each."""
+    lines = [Text(line, style="underline") for line in wrap(plain_text(p.vehicle), width)] if title else []
+    lines += [Text(line, style="bold") for line in wrap(sentence(p, unit), width)]
+    for block in _blocks(p, unit, width, fitted):
+        if block:
+            lines += [Text(), *map(Text, block)]
+    return lines
+
+
+def sentence(p: Plan, unit: str = "km") -> str:
+    """Which way is shorter, and by how much; distances in `unit` (km or mi)."""
+    target = figures.target(p.target_percent)
+    if not p.designs:
+        missing = max(USUAL_BASELINE_KM - p.distance_baseline_km, USUAL_BASELINE_KM / 4)
+        segments = count(p.segments_baseline, "segment")
+        return (
+            f"No plan yet: {segments} between known levels tell too little about the scatter. "
+            f"Drive about {figures.distance(missing, unit)} as usual first, logging every entry."
+        )
+    one, other = _one_switch(p), _best_alternating(p)
+    if one is None and other is None:
+        return f"Out of reach: no way of testing shows {target} with this log, however far you drive."
+    if one is None or one.distance_km is None:
+        return f"One switch cannot show {target} with this log, however far you drive; {_takes(other, unit)}."
+    if other is None or other.distance_km is None:
+        return f"To show {target}, {_takes(one, unit)}; taking it off and on does not get there."
+    second = _takes(other, unit).replace(" takes", "", 1)
+    return f"To show {target}, {_takes(one, unit)}, {second}: {_difference(one, other, unit)}."
+
+
+def _difference(one: Design, other: Design, unit: str) -> str:
+    saved = (one.distance_km or 0.0) - (other.distance_km or 0.0)
+    if abs(saved) < 0.02 * (one.distance_km or 0.0):
+        return "no difference to speak of"
+    return f"{figures.distance(abs(saved), unit, digits=2)} {'less' if saved > 0 else 'more'}"
+
+
+def _takes(design: Design | None, unit: str) -> str:
+    assert design is not None
+    assert design.distance_km is not None
+    time = "" if design.days is None else f" ({figures.days(design.days)})"
+    return f"{_name(design)} takes about {figures.distance(design.distance_km, unit)}{time}"
+
+
+def _name(design: Design) -> str:
+    if design.every_fillups is None:
+        return "one switch"
+    every = design.every_fillups
+    return "off and on at every fill-up" if every == 1 else f"off and on every {every} fill-ups"
+
+
+def periods(modifications: Iterable[Modification], unit: str) -> list[str]:
+    """Where each modification already logged was on: a phrase for each period."""
+    said = []
+    for m in modifications:
+        still_on = m.removed_km is None and m.removed_date is None
+        end = "still on" if still_on else f"to {_moment(m.removed_km, m.removed_date, unit)}"
+        said.append(f"{m.name}: from {_moment(m.fitted_km, m.fitted_date, unit)}, {end}")
+    return said
+
+
+def _moment(km: float | None, date: dt.date | None, unit: str) -> str:
+    if km is not None:
+        return figures.driven(km, unit)
+    return "the start" if date is None else date.isoformat()
+
+
+def _one_switch(p: Plan) -> Design | None:
+    return next((d for d in p.designs if d.name == "one-switch" and d.distance_km is not None), None)
+
+
+def _best_alternating(p: Plan) -> Design | None:
+    """The way with the fewest swaps among those about as short as the shortest."""
+    within = [(d.distance_km, d) for d in p.designs if d.name == "alternate" and d.distance_km is not None]
+    if not within:
+        return None
+    limit = _ABOUT_AS_SHORT * min(km for km, _ in within)
+    return max((d for km, d in within if km <= limit), key=lambda d: d.every_fillups or 0)
+
+
+def _blocks(p: Plan, unit: str, width: int, fitted: Sequence[str]) -> list[list[str]]:
+    segments = count(p.segments_baseline, "segment")
+    baseline = [("log so far", f"{figures.driven(p.distance_baseline_km, unit)} in {segments}")]
+    baseline += [("modified in it" if i == 0 else "", plain_text(phrase)) for i, phrase in enumerate(fitted)]
+    tables = [_distances(p, unit), _resolvable(p, unit)] if p.designs else []
+    return [
+        *tables,
+        labelled(baseline, width),
+        bullets(map(plain_text, p.warnings), "! ", width),
+        bullets(_next_steps(p), "> ", width),
+    ]
+
+
+def _distances(p: Plan, unit: str) -> list[str]:
+    table = _table([f"to show {p.target_percent:g} %", "distance", "80 % range", "days", "swaps"])
+    for d in p.designs:
+        reached = d.distance_km is not None
+        table.add_row(
+            _name(d),
+            figures.distance(d.distance_km, unit) if d.distance_km is not None else "out of reach",
+            _range(d, unit) if reached else "-",
+            figures.days(d.days).split("\u00a0")[0] if d.days is not None else "-",
+            f"{d.swaps:,}" if d.swaps is not None else "-",
+        )
+    return _lines(table)
+
+
+def _range(d: Design, unit: str) -> str:
+    if d.distance_interval_km is None:
+        return "-"
+    low, high = d.distance_interval_km
+    if high is None:
+        return f"{figures.distance(low, unit, digits=2)} or more"
+    return figures.distance_range(low, high, unit)
+
+
+def _resolvable(p: Plan, unit: str) -> list[str]:
+    """The smallest shift each way can show after so much further driving."""
+    distances = list(p.designs[0].resolvable_percent)
+    table = _table(["smallest shift within", *(figures.distance(float(km), unit) for km in distances)])
+    for d in p.designs:
+        shifts = [d.resolvable_percent.get(km) for km in distances]
+        table.add_row(_name(d), *("-" if shift is None else figures.percent(shift) for shift in shifts))
+    return _lines(table)
+
+
+def _table(headings: Sequence[str]) -> Table:
+    table = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0), show_header=True)
+    for place, heading in enumerate(headings):
+        table.add_column(Text(heading), justify="left" if place == 0 else "right", no_wrap=True)
+    return table
+
+
+def _lines(table: Table) -> list[str]:
+    """A table as plain lines, as wide as its figures: a screen too narrow wraps them, and none is cut."""
+    out = io.StringIO()
+    Console(file=out, width=_AMPLE, color_system=None, markup=False, emoji=False, highlight=False).print(table)
+    return [line.rstrip().replace("\u00a0", " ") for line in out.getvalue().splitlines()]
+
+
+def _next_steps(p: Plan) -> list[str]:
+    one, other = _one_switch(p), _best_alternating(p)
+    if not p.designs:
+        return ["Record the outside temperature with each entry: weather is the largest thing to tell apart."]
+    if one is None and other is None:
+        return ["Ask for a larger shift: " + join(f"energytrack plan --target {2 * p.target_percent:g}")]
+    steps = []
+    if other is not None and (one is None or (other.distance_km or 0.0) < (one.distance_km or 0.0)):
+        steps.append("Swap only what comes off and on quickly and safely, parked, as its maker says.")
+    commands = f"{join('energytrack mod fitted')}, {join('energytrack mod removed')}"
+    steps.append(f"Log each change at its odometer value: {commands}")
+    return [*steps, f"Then ask after any entry: {join('energytrack enough')}"]

@@ -1,0 +1,62 @@
+"""The scatter of one segment, split into its four sources."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from math import sqrt
+
+from energytrack.inference.results import Assessment
+from energytrack.presentation.text import join
+
+
+@dataclass(frozen=True)
+class Source:
+    """One source of scatter: its size, and its share of the variance where that can be told."""
+
+    label: str
+    percent: float | None  # sd, percent of the consumption of an average segment
+    detail: str
+    share: float | None
+
+
+def sources(a: Assessment) -> list[Source]:
+    """Trip to trip, filling, drift over weeks, drift over seasons; [] where the noise is unknown."""
+    noise = a.noise
+    if noise is None:
+        return []
+    electric = a.unit == "kWh"
+    filling = _filling_percent(a)
+    detail = f"{join(f'{noise.level_error:.2g} {a.unit}')} a {'charge' if electric else 'filling'}"
+    found = [
+        ("from trip to trip", noise.trip_percent, ""),
+        ("charge level" if electric else "filling", filling, detail),
+        ("drift over weeks", noise.drift_weeks_percent, ""),
+        ("drift over seasons", noise.drift_seasons_percent, ""),
+    ]
+    squares = [sd**2 for _, sd, _ in found if sd is not None]
+    total = sum(squares) if len(squares) == len(found) else 0.0
+    return [
+        Source(label, sd, detail, sd**2 / total if sd is not None and total > 0 else None)
+        for label, sd, detail in found
+    ]
+
+
+def _filling_percent(a: Assessment) -> float | None:
+    """Two levels bound a segment, so its error is sqrt(2) times that of one."""
+    segments = a.segments_baseline + a.segments_modified
+    if a.noise is None or a.expectation is None or not segments:
+        return None
+    length = (a.distance_baseline_km + a.distance_modified_km) / segments
+    energy = a.expectation.consumption * length
+    return 100 * sqrt(2) * a.noise.level_error / energy if energy > 0 else None
+
+
+def rows(a: Assessment) -> list[tuple[str, str]]:
+    """A label and a figure for each source."""
+    return [("  " + source.label, _figure(source)) for source in sources(a)]
+
+
+def _figure(source: Source) -> str:
+    size = "" if source.percent is None else join(f"{source.percent:.1f} %")
+    share = "" if source.share is None else f"{join(f'{100 * source.share:.0f} %')} of the variance"
+    return ", ".join(part for part in (size, source.detail, share) if part)

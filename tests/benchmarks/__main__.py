@@ -1,0 +1,23 @@
+"""`python -m tests.benchmarks`: each figure as a ratio to a baseline measured in the same run."""
+
+from __future__ import annotations
+
+import tempfile
+from pathlib import Path
+
+from tests.benchmarks import growth, processes
+
+
+def benchmarks() -> None:
+    """Print one line a figure, as each is ready."""
+    with tempfile.TemporaryDirectory() as folder:
+        logbook = processes.write_logbook(Path(folder))
+        print(processes.describe(logbook), flush=True)
+        print(processes.enough(logbook), flush=True)
+        print(processes.fillup(logbook), flush=True)
+    for line in growth.compare():
+        print(line, flush=True)
+
+
+if __name__ == "__main__":
+    benchmarks()

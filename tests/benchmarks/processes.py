@@ -1,0 +1,69 @@
+"""`fillup` against a hello-world command of the same framework; `enough` against the import of a statistics library."""
+
+from __future__ import annotations
+
+import datetime as dt
+import json
+import sys
+from dataclasses import replace
+from pathlib import Path
+
+import numpy as np
+
+from tests.benchmarks.timing import Comparison, compare, energytrack, run
+from tests.simulation import simulate
+from tests.uses import STEADY_COMMUTE
+
+HELLO = """
+import typer
+app = typer.Typer(add_completion=False, rich_markup_mode=None)
+@app.command()
+def hello(name: str) -> None:
+    print("hello", name)
+app()
+"""
+STATISTICS = "import statsmodels.regression.linear_model"
+ENTRIES, LOOKS = 250, 60
+
+
+def fillup(logbook: Path, rounds: int = 31) -> Comparison:
+    """One entry more to a log of 250."""
+    last = json.loads(run(energytrack("--logbook", str(logbook), "entries", "--last", "1", "--json")))["entries"][0]
+
+    def entry(turn: int) -> list[str]:
+        odometer = f"{last['odometer_km'] + 300 * (turn + 1):.0f}"
+        words = ("--logbook", str(logbook), "fillup", odometer, "24.5", "--temperature", "12", "--speed", "64")
+        return list(energytrack(*words))
+
+    hello = [sys.executable, "-c", HELLO, "world"]
+    return compare("fillup", entry, "hello-world", hello, target=1.5, rounds=rounds)
+
+
+def enough(logbook: Path, rounds: int = 9) -> Comparison:
+    """The answer on 250 entries, with a look after each of the last 60, while the test is still open."""
+    command = energytrack("--logbook", str(logbook), "enough")
+    baseline = [sys.executable, "-c", STATISTICS]
+    return compare("enough", lambda _: command, STATISTICS, baseline, target=2.0, rounds=rounds)
+
+
+def describe(logbook: Path) -> str:
+    """What `enough` is asked, so that a reader sees that it is the case stated."""
+    answer = json.loads(run(energytrack("--logbook", str(logbook), "enough", "--json")))["assessments"][0]
+    segments = answer["segments_baseline"] + answer["segments_modified"]
+    return f"enough: {segments} segments, {len(answer['looks'])} looks, verdict {answer['verdict']}"
+
+
+def write_logbook(folder: Path) -> Path:
+    """A logbook file of 250 entries of a steady commute, the part fitted for the last 60, its test still open."""
+    use = replace(STEADY_COMMUTE, fillings=ENTRIES, switches=(1 - LOOKS / ENTRIES,), shift_percent=0.0)
+    log = simulate(use, np.random.default_rng(1), start=dt.date(2018, 1, 1))
+    tables = folder / "tables"
+    tables.mkdir()
+    (tables / "vehicles.csv").write_text(f"vehicle,carrier,unit,capacity\n{use.vehicle},petrol,L,{use.capacity}\n")
+    for name, frame in (("entries", log.entries), ("modifications", log.modifications.assign(target_percent=1.0))):
+        shown = frame.replace({True: "yes", False: "no"}) if name == "entries" else frame
+        shown.to_csv(tables / f"{name}.csv", index=False, date_format="%Y-%m-%d")
+    logbook = folder / "bench.logbook"
+    run(energytrack("--logbook", str(logbook), "new"))
+    run(energytrack("--logbook", str(logbook), "import", str(tables)))
+    return logbook

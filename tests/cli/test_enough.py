@@ -1,0 +1,229 @@
+"""`enough` and `plan` as processes on real logbook files."""
+
+from __future__ import annotations
+
+import datetime as dt
+import json
+import math
+import os
+import random
+import subprocess
+import sys
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from energytrack.logbook.opening import open_logbook
+from energytrack.logbook.records import Entry, Vehicle
+from energytrack.logbook.store import Store
+
+ROOT = Path(__file__).parents[2]
+FITTED_KM = 12_000.0
+STEP_KM = 500.0
+
+
+def run(logbook: Path | None, *words: str, encoding: str = "utf-8") -> subprocess.CompletedProcess[str]:
+    named = [] if logbook is None else ["--logbook", str(logbook)]
+    environment = {key: value for key, value in os.environ.items() if key != "ENERGYTRACK_LOGBOOK"}
+    return subprocess.run(
+        [sys.executable, "-m", "energytrack", *named, *words],
+        cwd=ROOT,
+        env=environment | {"PYTHONIOENCODING": encoding},
+        capture_output=True,
+        text=True,
+        encoding=encoding,
+        timeout=300,
+    )
+
+
+def drive(
+    book: Store, vehicle: str, tanks: int, shift: float, sloppy: float, seed: int, extra: tuple[str, ...] = ()
+) -> None:
+    """Full tanks of 500 km at 8 L/100 km; from FITTED_KM on, consumption is shifted (a ratio)."""
+    rng = random.Random(seed)
+    start = dt.date(2025, 3, 1)
+    entries = []
+    for i in range(tanks):
+        km = STEP_KM * i
+        temperature = 12 + 10 * math.sin(i / 4)
+        cold = 0.006 * max(0.0, 18 - temperature)
+        rate = 0.08 * (1 + shift * (km > FITTED_KM) + cold + 0.01 * rng.gauss(0, 1))
+        energy = STEP_KM * rate + sloppy * rng.gauss(0, 1)
+        day = start + dt.timedelta(days=4 * i)
+        columns = {name: rng.random() for name in extra}
+        entries.append((Entry(vehicle, day, energy, km, temperature_c=temperature, extra=columns), {}))
+    book.add_entries(entries, source="test")
+
+
+@pytest.fixture(scope="module")
+def logbook(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """A van with a settled saving and a fresh roof rack, and a car with a change too small to be seen yet."""
+    path = tmp_path_factory.mktemp("log") / "my.logbook"
+    book = open_logbook(path, create=True)
+    assert isinstance(book, Store)
+    book.add_vehicle(Vehicle("van", "diesel", "L", 70.0))
+    book.add_vehicle(Vehicle("car", "petrol", "L", 50.0, distance_unit="mi"))
+    drive(book, "van", 60, -0.12, 0.3, seed=1)
+    drive(book, "car", 30, 0.0, 0.8, seed=2)
+    book.fit("van", "side skirts", dt.date(2025, 6, 5), FITTED_KM)
+    book.fit("car", "grille blanking", dt.date(2025, 6, 5), FITTED_KM, 2.5)
+    book.close()
+    return path
+
+
+def answers(done: subprocess.CompletedProcess[str]) -> list[dict[str, Any]]:
+    def refuse(constant: str) -> None:
+        raise AssertionError(f"{constant} is not JSON (RFC 8259)")
+
+    found = json.loads(done.stdout, parse_constant=refuse)
+    assert list(found) == ["assessments"]
+    return list(found["assessments"])
+
+
+def test_one_answer_for_each_modification_of_each_vehicle(logbook: Path) -> None:
+    done = run(logbook, "enough")
+    assert done.returncode == 0, done.stderr
+    lines = done.stdout.splitlines()
+    assert lines[0] == "van: side skirts"
+    assert lines[1].startswith("Yes: side skirts lowered consumption by 1")
+    assert "car: grille blanking" in lines
+    assert max(map(len, lines)) <= 80
+    assert "\x1b" not in done.stdout
+
+
+def test_one_question_is_answered_without_a_heading_and_in_the_vehicles_own_miles(logbook: Path) -> None:
+    done = run(logbook, "enough", "grille blanking")
+    assert done.stdout.split(":")[0] in {"Not yet", "Out of reach"}
+    assert " mi in " in done.stdout
+    assert " km" not in done.stdout
+
+
+def test_the_target_asked_for_comes_before_the_one_logged_and_that_before_the_usual_one(logbook: Path) -> None:
+    targets = {a["vehicle"]: a["target_percent"] for a in answers(run(logbook, "enough", "--json"))}
+    assert targets == {"van": pytest.approx(3.0), "car": pytest.approx(2.5)}
+    asked = answers(run(logbook, "enough", "--vehicle", "car", "--target", "30", "--json"))
+    assert [a["target_percent"] for a in asked] == [pytest.approx(30.0)]
+
+
+def test_exit_code_tells_not_yet(logbook: Path) -> None:
+    waiting = run(logbook, "enough", "--vehicle", "car", "--json", "--exit-code")
+    verdict = answers(waiting)[0]["verdict"]
+    assert waiting.returncode == (10 if verdict == "not-yet" else 0)
+    settled = run(logbook, "enough", "--vehicle", "van", "--json", "--exit-code")
+    assert answers(settled)[0]["verdict"] == "shifted"
+    assert settled.returncode == 0
+
+
+def test_the_answer_is_kept_for_later_entries(logbook: Path) -> None:
+    run(logbook, "enough", "--vehicle", "van")
+    book = open_logbook(logbook)
+    kept = {found["modification"]: found for found in book.assessments("van")}["side skirts"]
+    assert kept["verdict"] == "shifted"
+    assert kept["at_km"] == pytest.approx(59 * STEP_KM)
+    assert "looks" not in kept
+
+
+def test_plan_compares_and_says_what_was_fitted(logbook: Path) -> None:
+    done = run(logbook, "plan", "--vehicle", "van", "--target", "2")
+    assert done.returncode == 0, done.stderr
+    assert "to show 2 %" in done.stdout
+    assert "side skirts: from 12,000 km, still on" in done.stdout
+    assert max(map(len, done.stdout.splitlines())) <= 80
+    plans = json.loads(run(logbook, "plan", "--json").stdout)["plans"]
+    assert [found["vehicle"] for found in plans] == ["van", "car"]
+    assert {design["name"] for design in plans[0]["designs"]} == {"one-switch", "alternate"}
+
+
+@pytest.mark.parametrize(
+    ("words", "said"),
+    [
+        (["enough", "spoiler"], "no modification named 'spoiler'; logged: side skirts, grille blanking"),
+        (["enough", "--vehicle", "bus"], "van"),
+        (["enough", "--vehicle", "van", "--target", "0"], "between 0 and 100"),
+        (["enough", "--vehicle", "van", "--confidence", "2"], "confidence"),
+        (["plan", "--vehicle", "bus"], "van"),
+        (["plan", "--vehicle", "van", "--target", "-1"], "between 0 and 100"),
+        (["enough", "--vehicle", "van", "--covariate", "payload"], "payload"),
+    ],
+)
+def test_refusals_are_one_line_and_status_1(logbook: Path, words: list[str], said: str) -> None:
+    done = run(logbook, *words)
+    assert done.returncode == 1
+    assert done.stdout == ""
+    assert done.stderr.startswith("energytrack: ")
+    assert len(done.stderr.splitlines()) == 1
+    assert said in done.stderr
+
+
+def test_an_empty_logbook_says_what_to_log(tmp_path: Path) -> None:
+    book = open_logbook(tmp_path / "new.logbook", create=True)
+    assert isinstance(book, Store)
+    none = run(book.path, "enough")
+    assert (none.returncode, none.stdout) == (1, "")
+    assert "no vehicle yet" in none.stderr
+    book.add_vehicle(Vehicle("van", "diesel", "L"))
+    book.close()
+    unmodified = run(book.path, "enough")
+    assert (unmodified.returncode, unmodified.stdout) == (1, "")
+    assert 'energytrack mod fitted "NAME" ODOMETER' in unmodified.stderr
+    assert len(unmodified.stderr.splitlines()) == 1
+
+
+def test_a_vehicle_that_cannot_be_answered_for_does_not_hide_the_answer_of_another(tmp_path: Path) -> None:
+    book = open_logbook(tmp_path / "two.logbook", create=True)
+    assert isinstance(book, Store)
+    book.add_vehicle(Vehicle("van", "diesel", "L", 70.0))
+    book.add_vehicle(Vehicle("bus", "diesel", "L"))
+    drive(book, "van", 60, -0.12, 0.3, seed=1, extra=("payload",))
+    drive(book, "bus", 40, 0.0, 0.3, seed=2)
+    book.fit("van", "side skirts", None, FITTED_KM)
+    book.fit("bus", "side skirts", None, FITTED_KM)
+    book.close()
+    done = run(book.path, "enough", "side skirts", "--covariate", "payload", "--json")
+    assert [a["vehicle"] for a in answers(done)] == ["van"]
+    assert done.returncode == 1
+    assert done.stderr.startswith("energytrack: bus, side skirts: ")
+
+
+def test_a_terminal_without_the_degree_sign_still_gets_the_answer(logbook: Path) -> None:
+    assert "per degree below 18 ?C" in run(logbook, "enough", "side skirts", encoding="ascii").stdout
+
+
+def test_hostile_names_reach_no_terminal(tmp_path: Path) -> None:
+    book = open_logbook(tmp_path / "odd.logbook", create=True)
+    assert isinstance(book, Store)
+    name = "\x1b[2J[red]\u202e"
+    book.add_vehicle(Vehicle("van", "diesel", "L"))
+    drive(book, "van", 40, -0.12, 0.3, seed=1)
+    book.fit("van", name, None, FITTED_KM)
+    book.close()
+    for words in (["enough"], ["plan"], ["enough", "--json"], ["enough", "no such part"]):
+        done = run(book.path, *words)
+        assert "[red]" in done.stdout + done.stderr
+        assert "\x1b" not in done.stdout + done.stderr
+        assert "\u202e" not in done.stdout + done.stderr
+
+
+def test_a_mistyped_option_is_wrong_usage(logbook: Path) -> None:
+    assert run(logbook, "enough", "--jsno").returncode == 2
+    assert run(logbook, "plan", "--jsno").returncode == 2
+
+
+def test_a_vehicle_without_entries_is_told_what_to_drive(tmp_path: Path) -> None:
+    book = open_logbook(tmp_path / "new.logbook", create=True)
+    assert isinstance(book, Store)
+    book.add_vehicle(Vehicle("van", "diesel", "L"))
+    book.fit("van", "side skirts", None, FITTED_KM)
+    book.close()
+    done = run(book.path, "enough")
+    assert done.returncode == 0
+    assert done.stdout.startswith("No baseline: there is nothing measured without side skirts")
+    assert "Drive about 3,200 km without it" in done.stdout.replace("\n", " ")
+    assert run(book.path, "plan").stdout.startswith("No plan yet: 0 segments")
+
+
+def test_no_logbook_named() -> None:
+    done = run(None, "enough")
+    assert done.returncode == 1
+    assert "--logbook" in done.stderr

@@ -1,0 +1,84 @@
+"""The sentence that answers first."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from energytrack.inference.results import Assessment, Remedy
+from energytrack.presentation.answer import sentence
+from tests.presentation.samples import CONTRADICTED, NO_BASELINE, NO_SHIFT, NOT_YET, OUT_OF_REACH, RAISED, SHIFTED
+
+
+def said(a: Assessment, unit: str = "km") -> str:
+    return sentence(a, unit).replace("\u00a0", " ")
+
+
+def test_a_saving_is_said_as_lowered() -> None:
+    assert said(SHIFTED) == (
+        "Yes: side skirts lowered consumption by 5.8 % (look-proof range 3.4 to 8.2 %), settled at 51,230 km."
+    )
+
+
+def test_a_rise_is_said_as_raised() -> None:
+    assert said(RAISED) == (
+        "Yes: roof rack raised consumption by 4.1 % (look-proof range 1.7 to 6.5 %), settled at 51,230 km."
+    )
+
+
+def test_not_yet_says_how_far_and_how_long() -> None:
+    assert said(NOT_YET) == (
+        "Not yet: about 1,860 km more with side skirts, about 12 days of your driving, at the target of 3 %. "
+        "So far -2.1 %, look-proof range -4.9 to +0.7 %."
+    )
+
+
+def test_miles_for_who_counts_miles() -> None:
+    # 1,861 km = 1,156.4 mi, 51,230 km = 31,832.8 mi at 1.609344 km a mile (NIST SP 811)
+    assert "about 1,160 mi more" in said(NOT_YET, "mi")
+    assert "settled at 31,833 mi" in said(SHIFTED, "mi")
+
+
+def test_two_decimals_only_where_the_error_allows() -> None:
+    a = replace(SHIFTED, shift_percent=-1.234, interval_percent=(-1.412, -1.056), standard_error_percent=0.08)
+    assert "by 1.23 % (look-proof range 1.06 to 1.41 %)" in said(a)
+    assert "by 1.2 % (look-proof range 1.1 to 1.4 %)" in said(replace(a, standard_error_percent=0.1))
+
+
+def test_no_minus_before_nothing() -> None:
+    assert "Measured 0.0 %" in said(replace(NO_SHIFT, shift_percent=-0.04))
+
+
+def test_a_settled_shift_that_later_driving_contradicts() -> None:
+    assert said(CONTRADICTED) == (
+        "Doubtful: a shift of -5.8 % from side skirts was settled at 51,230 km, but with what was driven since its "
+        "range reaches zero again: now -0.9 %, look-proof range -3.0 to +1.2 %."
+    )
+    turned = replace(SHIFTED, shift_percent=4.0, interval_percent=(1.0, 7.0))
+    assert "with what was driven since it points the other way: now +4.0 %" in said(turned)
+
+
+def test_a_shift_ruled_out_that_later_driving_shows() -> None:
+    a = replace(NO_SHIFT, shift_percent=-4.4, interval_percent=(-5.6, -3.2))
+    assert said(a) == (
+        "Doubtful: a shift of 3 % from side skirts was ruled out at 55,110 km, but what was driven since shows one: "
+        "now -4.4 %, look-proof range -5.6 to -3.2 %."
+    )
+
+
+def test_out_of_reach_says_what_would_do_and_keeps_the_target_where_it_can() -> None:
+    assert "Within reach: take it off and on every 2 fill-ups, about 5,420 km more for 3 %." in said(OUT_OF_REACH)
+    larger = (Remedy("larger-target", "5 %", 5.0, 3140.0),)
+    only_larger = replace(OUT_OF_REACH, remedies=larger)
+    assert "Within reach: be content with a target of 5 %, about 3,140 km more." in said(only_larger)
+    assert "Within reach" not in said(replace(OUT_OF_REACH, remedies=()))
+
+
+def test_no_baseline_says_what_is_missing_and_how_far_to_drive() -> None:
+    # four working weeks of a 160 km commute are 3,200 km (common practice, no source); 812 km are there
+    assert said(NO_BASELINE) == (
+        "No baseline: there is only 812 km in 2 segments without side skirts, too little to compare with. "
+        "Drive about 2,390 km without it, then ask again."
+    )
+    nothing = replace(NO_BASELINE, distance_baseline_km=0.0, segments_baseline=0)
+    assert "there is nothing measured without side skirts" in said(nothing)
+    assert "Drive about 1,500 km" in said(replace(NO_BASELINE, distance_to_go_km=1500.0))

@@ -1,0 +1,87 @@
+"""Designs compared: sentence, tables, next steps."""
+
+from __future__ import annotations
+
+import datetime as dt
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+from rich.cells import cell_len
+
+from energytrack.inference.results import Plan
+from energytrack.logbook.records import Modification
+from energytrack.presentation.plan import periods, render, sentence
+from tests.presentation.samples import PLAN
+
+EXPECTED = Path(__file__).parent / "expected"
+FITTED = ["side skirts: from 48,900 km, to 52,100 km"]
+
+
+def shown(p: Plan, **options: object) -> str:
+    return "\n".join(line.plain for line in render(p, **options)) + "\n"  # type: ignore[arg-type]
+
+
+def said(p: Plan) -> str:
+    return sentence(p).replace("\u00a0", " ")
+
+
+@pytest.mark.parametrize("unit", ["km", "mi"])
+def test_the_whole_text(unit: str) -> None:
+    expected = (EXPECTED / f"plan-{unit}.txt").read_text(encoding="utf-8")
+    assert shown(PLAN, unit=unit, fitted=FITTED) == expected
+
+
+@pytest.mark.parametrize("unit", ["km", "mi"])
+def test_no_line_is_wider_than_80_columns_at_great_distances(unit: str) -> None:
+    far = tuple(
+        replace(d, distance_km=412_400.0, distance_interval_km=(301_000.0, 999_000.0), days=4100.0, swaps=1234)
+        for d in PLAN.designs
+    )
+    lines = shown(replace(PLAN, designs=far), unit=unit, fitted=FITTED, title=True).splitlines()
+    assert max(map(cell_len, lines)) <= 80
+    assert any("412,000 km" in line or "256,000 mi" in line for line in lines)
+
+
+def test_fewest_swaps_among_ways_about_as_short() -> None:
+    assert said(PLAN) == (
+        "To show 3 %, one switch takes about 12,400 km (81 days), off and on every 2 fill-ups about 5,320 km "
+        "(35 days): 7,100 km less."
+    )
+
+
+def test_one_switch_that_cannot() -> None:
+    one, *others = PLAN.designs
+    p = replace(PLAN, designs=(replace(one, distance_km=None, days=None), *others))
+    assert said(p).startswith("One switch cannot show 3 % with this log, however far you drive; off and on every 2")
+
+
+def test_alternating_that_takes_longer_or_cannot() -> None:
+    one, *others = PLAN.designs
+    longer = replace(PLAN, designs=(one, replace(others[0], distance_km=15_000.0)))
+    assert said(longer).endswith("2,600 km more.")
+    p = replace(PLAN, designs=(one, others[-1]))
+    assert said(p).endswith("taking it off and on does not get there.")
+
+
+def test_nothing_that_can() -> None:
+    p = replace(PLAN, designs=(replace(PLAN.designs[0], distance_km=None), PLAN.designs[-1]))
+    assert said(p) == "Out of reach: no way of testing shows 3 % with this log, however far you drive."
+
+
+def test_too_little_driven_for_a_plan() -> None:
+    p = replace(PLAN, designs=(), noise=None, segments_baseline=2, distance_baseline_km=700.0)
+    assert "Drive about 2,500 km as usual first" in said(p)
+    assert "None" not in shown(p)
+
+
+def test_where_modified_periods_are() -> None:
+    rows = [
+        Modification("van", "skirts", None, 48_900.0, None, 52_100.0),
+        Modification("van", "rack\x1b[2J", dt.date(2026, 5, 3)),
+    ]
+    assert [said.replace("\u00a0", " ") for said in periods(rows, "km")] == [
+        "skirts: from 48,900 km, to 52,100 km",
+        "rack\x1b[2J: from 2026-05-03, still on",
+    ]
+    assert "\x1b" not in shown(PLAN, fitted=periods(rows, "km"))
