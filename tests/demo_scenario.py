@@ -73,7 +73,7 @@ CAR = Driven(
     fitted=dt.date(2026, 9, 22), shift_percent=-2.5, target_percent=3.0,
     km_per_day=96, km_sd=13, speed_kmh=56, speed_sd=3.0, saturdays=False,
     heating=0.6, cooling=0.7, drag_share=0.32, accessory_share=0.10,
-    day_percent=8.0, weeks_percent=1.0, seasons_percent=0.7, level_percent=1.2,
+    day_percent=5.0, weeks_percent=0.4, seasons_percent=0.3, level_percent=1.2,
     price=1.74, refill_at=(0.20, 0.36), partial_share=0.05, missed_on=dt.date(2026, 2, 16),
 )  # fmt: skip
 ELECTRIC = Driven(

@@ -7,6 +7,7 @@ from pathlib import Path
 import pandas as pd
 import pytest
 
+import energytrack as et
 from tests.demo_scenario import CAR, ELECTRIC, VAN, VEHICLES, Driven
 from tests.make_demo_logbook import write
 
@@ -25,6 +26,27 @@ def test_generator_draws_the_committed_bytes(tmp_path: Path) -> None:
     write(tmp_path)
     drawn = {path.name: path.read_bytes() for path in tmp_path.iterdir()}
     assert drawn == {path.name: path.read_bytes() for path in COMMITTED.iterdir()}
+
+
+@pytest.mark.parametrize(
+    ("vehicle", "verdict"),
+    [(VAN, "shifted"), (CAR, "not-yet"), (ELECTRIC, "out-of-reach")],
+    ids=lambda value: getattr(value, "name", value),
+)
+def test_each_vehicle_shows_the_answer_it_is_there_for(vehicle: Driven, verdict: str) -> None:
+    log = et.open_logbook(COMMITTED)
+    answer = et.assess(
+        log.entries(vehicle.name),
+        log.modifications(vehicle.name),
+        vehicle.part,
+        target_percent=vehicle.target_percent,
+        capacity=vehicle.capacity,
+        unit=vehicle.unit,
+        events=log.events(vehicle.name),
+    )
+    assert answer.verdict == verdict
+    assert answer.interval_percent is not None
+    assert answer.interval_percent[0] < vehicle.shift_percent < answer.interval_percent[1]
 
 
 @pytest.mark.parametrize("vehicle", VEHICLES, ids=lambda vehicle: vehicle.name)

@@ -42,7 +42,7 @@ def import_table(
     kind: Annotated[Text, typer.Option(metavar="KIND", help="fill-up or charge, for rows that do not say.")] = None,
     again: Annotated[bool, typer.Option("--again", help="Several entries at one odometer value are meant.")] = False,
     carrier: Annotated[Text, typer.Option(help="Add the vehicle, with this carrier, if it is new.")] = None,
-    capacity: Annotated[float | None, typer.Option(help="Tank or battery capacity of a new vehicle.")] = None,
+    capacity: Annotated[Text, typer.Option(help="Tank or battery capacity of a new vehicle.")] = None,
     as_json: Annotated[bool, typer.Option("--json", help="Print the result as JSON.")] = False,
 ) -> None:
     """Bring a CSV table into the logbook: all of it or, if any row is bad, none of it.

@@ -9,9 +9,10 @@ from contextlib import contextmanager
 import typer
 
 from energytrack.cli.context import say, say_json
+from energytrack.cli.vehicle import described
 from energytrack.logbook.importing import OTHER_TABLES, Outcome
 from energytrack.logbook.quantities import DISTANCE, ENERGY
-from energytrack.logbook.records import CARRIERS, KINDS, UNIT_OF_CARRIER, UNITS, Vehicle
+from energytrack.logbook.records import KINDS, UNITS, Vehicle
 from energytrack.logbook.rejected import BadRowsError
 from energytrack.presentation.plain import plain_text
 
@@ -68,21 +69,16 @@ def units(odometer: str | None, energy: str | None, speed: str | None, temperatu
 
 
 def new_vehicle(
-    name: str | None, carrier: str | None, capacity: float | None, odometer: str | None, energy: str | None
+    name: str | None, carrier: str | None, capacity: str | None, odometer: str | None, energy: str | None
 ) -> Vehicle | None:
-    """The vehicle to add where it is new. Raises typer.BadParameter."""
+    """The vehicle to add where it is new. Raises typer.BadParameter, EntryError."""
     if carrier is None:
         if capacity is not None:
             raise typer.BadParameter("is of a new vehicle; give its --carrier too", param_hint="--capacity")
         return None
     if not name:
         raise typer.BadParameter("adds a vehicle; name it with --vehicle", param_hint="--carrier")
-    unit = UNIT_OF_CARRIER[one_of("--carrier", carrier, CARRIERS)]
-    if capacity is not None and not 0 < capacity < float("inf"):
-        raise typer.BadParameter(f"{capacity:g} is no capacity; give {unit} above 0", param_hint="--capacity")
-    if energy is not None and ENERGY[energy][0] != unit:
-        raise typer.BadParameter(f"{energy} is no unit of {carrier}, counted in {unit}", param_hint="--energy-unit")
-    return Vehicle(name, carrier, unit, capacity, odometer or "km", typed_unit=None if energy == unit else energy)
+    return described(name, carrier, capacity, energy, odometer or "km", None, "")
 
 
 @contextmanager

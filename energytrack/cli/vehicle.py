@@ -42,7 +42,7 @@ def add(
     json: options.Json = False,
 ) -> None:
     """Add a vehicle."""
-    vehicle = _vehicle(name, carrier, capacity, unit, distance_unit_typed, display, note)
+    vehicle = described(name, carrier, capacity, unit, distance_unit_typed, display, note)
     writable(context).add_vehicle(vehicle)
     if json:
         say_json(_columns(vehicle))
@@ -63,9 +63,10 @@ def list_vehicles(context: typer.Context, json: options.Json = False) -> None:
         say(["no vehicles yet: add one with `vehicle add`"])
 
 
-def _vehicle(
+def described(
     name: str, carrier: str, capacity: str | None, unit: str | None, distance: str, display: str | None, note: str
 ) -> Vehicle:
+    """A vehicle from what was typed, with what is usual where nothing was. Raises EntryError."""
     if not name.strip() or not name.isprintable():
         raise EntryError("a vehicle needs a name of printable characters")
     if carrier not in CARRIERS:

@@ -22,14 +22,14 @@ Value = TypeVar("Value")
 
 
 def numbers(frame: pd.DataFrame, name: str) -> list[float | None]:
-    """Numbers, None where empty. Raises ConsumptionError."""
+    """Numbers, None where empty or infinite. Raises ConsumptionError."""
     if name not in frame:
         return [None] * len(frame)
     try:
         values = pd.to_numeric(frame[name]).to_numpy(dtype=np.float64, na_value=math.nan)
     except (ValueError, TypeError) as problem:
         raise ConsumptionError(f"column {name!r} has a value that is not a number: {problem}") from problem
-    return [None if value != value else value for value in values.tolist()]
+    return [value if math.isfinite(value) else None for value in values.tolist()]
 
 
 def texts(frame: pd.DataFrame, name: str, default: str) -> list[str]:

@@ -34,6 +34,7 @@ WHY_VOID = {
 class EchoLogbook(Protocol):
     """What an echo needs to read."""
 
+    def entries(self, vehicle_name: str) -> list[Entry]: ...
     def last_entries(self, vehicle_name: str, count: int) -> list[Entry]: ...
     def modifications(self, vehicle_name: str) -> list[Modification]: ...
     def events(self, vehicle_name: str) -> list[Event]: ...
@@ -41,19 +42,21 @@ class EchoLogbook(Protocol):
 
 
 def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str]:
-    """What `entry`, already in the logbook, meant: one to four lines in the vehicle's units."""
+    """What `entry`, already in the logbook, meant: a few short lines in the vehicle's units."""
     recent = logbook.last_entries(vehicle.name, RECENT_ENTRIES)
+    if len(recent) == RECENT_ENTRIES and all(row.odometer_km is None for row in recent):
+        recent = logbook.entries(vehicle.name)  # without an odometer, positions count from the first entry
     segmented = close_segments(recent, logbook.events(vehicle.name), capacity=vehicle.capacity, unit=vehicle.unit)
     index = _index_of(segmented, entry)
-    if index is None:
+    if index is None or (index == 0 and len(recent) >= RECENT_ENTRIES):
         return ["kept among the older entries"]
     kept = logbook.assessments(vehicle.name)
     rows = logbook.modifications(vehicle.name)
     which = next((k for k, segment in enumerate(segmented.segments) if segment.legs[-1].entry == index), None)
     if which is None:
-        lines = [_without_consumption(segmented, vehicle, index)]
+        lines = _without_consumption(segmented, vehicle, index)
     else:
-        lines = [_with_consumption(segmented.segments[which], vehicle)]
+        lines = _with_consumption(segmented.segments[which], vehicle)
         lines += _compared(segmented, which, vehicle, kept, rows)
     return lines + _still_to_go(segmented, vehicle, index, kept, rows)
 
@@ -74,13 +77,19 @@ def _record(segments: Sequence[Segment]) -> tuple[float, list[float], float]:
     """Median consumption, each segment's deviation from it, and their robust sd, in energy per km."""
     consumption = [segment.energy / segment.distance_km for segment in segments]
     usual = _median(consumption)
-    usual_km = _median([segment.distance_km for segment in segments])
+    usual_km = _median(segment.distance_km for segment in segments)
     deviations = [
         (value - usual) * min(1.0, segment.distance_km / usual_km)
         for value, segment in zip(consumption, segments, strict=True)
     ]
-    sd = MAD_TO_SD * _median([abs(deviation) for deviation in deviations])
+    sd = MAD_TO_SD * _median(abs(deviation) for deviation in deviations)
     return usual, deviations, max(sd, LEAST_SCATTER * usual)
+
+
+def _relative_length(segment: Segment, others: Sequence[Segment]) -> float:
+    """Length of a segment relative to the usual one, at most 1: shorter ones scatter more."""
+    usual_km = _median(other.distance_km for other in others) if others else segment.distance_km
+    return min(1.0, segment.distance_km / usual_km)
 
 
 def _median(values: Iterable[float]) -> float:
@@ -100,28 +109,28 @@ def _index_of(segmented: SegmentedLog, entry: Entry) -> int | None:
     return next((index for index in range(len(segmented.entries) - 1, -1, -1) if same(segmented.entries[index])), None)
 
 
-def _with_consumption(segment: Segment, vehicle: Vehicle) -> str:
+def _with_consumption(segment: Segment, vehicle: Vehicle) -> list[str]:
     figure = consumption_text(segment.energy / segment.distance_km, vehicle)
     last = segment.legs[-1].entry
+    driven = math.fsum(leg.distance_km for leg in segment.legs if leg.entry == last)
+    since = f"{distance_text(driven, vehicle)} since the last entry"
     entries = 1 + last - segment.legs[0].entry
     if entries == 1:
-        return f"{distance_text(segment.distance_km, vehicle)} since the last entry: {figure}"
-    driven = math.fsum(leg.distance_km for leg in segment.legs if leg.entry == last)
-    whole = f"{distance_text(segment.distance_km, vehicle)} over {entries} entries"
-    return f"{distance_text(driven, vehicle)} since the last entry; {whole} since the last known level: {figure}"
+        return [f"{since}: {figure}"]
+    return [since, f"{distance_text(segment.distance_km, vehicle)} since the last known level: {figure}"]
 
 
-def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) -> str:
+def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) -> list[str]:
     entry = segmented.entries[index]
     store = "charge" if vehicle.unit == "kWh" else "tank"
     if index == 0:
-        return f"first entry: consumption follows with the next full {store}"
+        return [f"first entry: consumption follows with the next full {store}"]
     driven = segmented.positions[index] - segmented.positions[index - 1]
-    since = f"{distance_text(driven, vehicle)} since the last entry: " if driven > 0 and not entry.missed else ""
+    since = [f"{distance_text(driven, vehicle)} since the last entry"] if driven > 0 and not entry.missed else []
     void = next((span for span in segmented.void if span.entry == index), None)
     if void is not None and (entry.full or entry.level_percent is not None):
-        return f"{since}no consumption from this entry, {WHY_VOID[void.reason]}"
-    return f"{since}partial fill, consumption follows with the next full {store}"
+        return [*since, f"no consumption: {WHY_VOID[void.reason]}"]
+    return [*since, f"partial fill: consumption follows with the next full {store}"]
 
 
 def _compared(
@@ -146,10 +155,12 @@ def _compared(
     if expected is None or expected <= 0:
         return []
     percent = 100 * (figure / expected - 1)
-    verdict = "within" if abs(percent) <= WITHIN_SD * sd else "outside"
+    scatter = WITHIN_SD * sd / _relative_length(segment, others)
+    verdict = "within" if abs(percent) <= scatter else "outside"
     lines = [
-        f"expected {basis}: {consumption_text(expected, vehicle)}; used {abs(percent):.1f} % "
-        f"{'more' if percent >= 0 else 'less'}, {verdict} the usual scatter (+/- {WITHIN_SD * sd:.0f} %)"
+        f"expected {basis}: {consumption_text(expected, vehicle)}",
+        f"{abs(percent):.1f} % {'more' if percent >= 0 else 'less'} than expected, "
+        f"{verdict} the usual scatter (+/- {scatter:.0f} %)",
     ]
     if unusual(segmented.segments)[which]:
         lines.append("unusual for this vehicle: kept; check the amount and the odometer")
@@ -257,7 +268,7 @@ def _left(
     if to_go is None:
         why = "no baseline yet" if answer["verdict"] == "no-baseline" else f"{target} is out of reach as it is driven"
         return f"{why} (run `energytrack enough` for what would help)"
-    if at is None or all(entry.odometer_km is None for entry in segmented.entries):
+    if at is None:
         return f"about {_about(to_go, vehicle)} to go at {target} when last looked at (`energytrack enough`)"
     here = segmented.positions[index]
     try:

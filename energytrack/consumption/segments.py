@@ -1,4 +1,7 @@
-"""Entries become segments: what was used between two moments at which the stored energy is known."""
+"""Entries become segments: what was used between two moments at which the stored energy is known.
+
+Legs and segments are named tuples: long logs make many of them, and logging one entry must start fast.
+"""
 
 from __future__ import annotations
 
@@ -6,7 +9,7 @@ import math
 from bisect import bisect_right
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Literal
+from typing import Literal, NamedTuple
 
 from energytrack.consumption.positions import (
     driving_order,
@@ -25,8 +28,7 @@ CAPACITY_MARGIN = 1.05  # nobody arrives with an empty tank
 Reason = Literal["missed entry", "no distance", "no amount", "no known level", "no energy used", "not driven"]
 
 
-@dataclass(frozen=True, slots=True)
-class Leg:
+class Leg(NamedTuple):
     """Driving between two consecutive entries, split where an odometer factor changes."""
 
     start_km: float  # position on the log's own scale: odometer, or distance added up from 0
@@ -37,8 +39,7 @@ class Leg:
     end_day: int
 
 
-@dataclass(frozen=True, slots=True)
-class Segment:
+class Segment(NamedTuple):
     """Driving from one known level to the next."""
 
     legs: tuple[Leg, ...]
@@ -53,8 +54,7 @@ class Segment:
     end_weight: float
 
 
-@dataclass(frozen=True, slots=True)
-class Void:
+class Void(NamedTuple):
     """A span whose consumption cannot be measured."""
 
     start_km: float
@@ -81,8 +81,7 @@ class SegmentedLog:
     problems: tuple[Problem, ...]
 
 
-@dataclass(frozen=True, slots=True)
-class _Level:
+class _Level(NamedTuple):
     """A known level: how much is missing from full, and how well that is known."""
 
     missing: float
@@ -168,7 +167,7 @@ class _Chain:
 
     def _close(self, index: int, level: _Level) -> None:
         reason = self.reason or ("no known level" if self.start is None else None)
-        distance = math.fsum(leg.distance_km for leg in self.legs)
+        distance = math.fsum([leg.distance_km for leg in self.legs])
         energy = self.bought + level.missing - (self.start.missing if self.start else 0.0)
         reason = reason or ("not driven" if distance <= 0 else None) or ("no energy used" if energy <= 0 else None)
         if reason or self.start is None:

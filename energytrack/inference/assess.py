@@ -18,7 +18,7 @@ from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import Need, need, remedies
-from energytrack.inference.looks import FEWEST_BASELINE, State, deciding, percent, shown, take_looks
+from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
 from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.results import Assessment, Verdict
@@ -51,7 +51,7 @@ def assess(
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
     not in the table, InferenceError for a target, confidence or power outside its range.
     """
-    question = Question(name, target_percent / 100, 1 - confidence, power, tuple(covariates or ()))
+    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
     bounds.drift(question.alpha, power)  # refuses a confidence or power outside its range before any work
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
@@ -65,7 +65,7 @@ def assess(
 
 
 def _answer(blank: Assessment, observed: Observations, question: Question, states: list[State]) -> Assessment:
-    now, decision = states[-1], deciding(states)
+    now, found = states[-1], finding(states, question.target)
     shift, theta = now.shift, bounds.drift(question.alpha, question.power)
     answer = replace(
         blank,
@@ -81,8 +81,8 @@ def _answer(blank: Assessment, observed: Observations, question: Question, state
         expectation=expectation_of(now.model),
         warnings=(*blank.warnings, *caveats(now.model)),
     )
-    if decision is not None:
-        return _closed(answer, decision, question)
+    if found is not None:
+        return _closed(answer, *found, question)
     required = need(now.model, always_fitted, question)
     ways = () if required.central else remedies(now.model, required, question)
     return replace(_open(answer, required, theta), remedies=ways)
@@ -120,12 +120,12 @@ def _open(answer: Assessment, required: Need, theta: float) -> Assessment:
     )
 
 
-def _closed(answer: Assessment, decision: State, question: Question) -> Assessment:
+def _closed(answer: Assessment, verdict: Verdict, look: State, question: Question) -> Assessment:
     """The test is over: what it found, and where."""
-    then = decision.model.observed
+    then = look.model.observed
     return replace(
         answer,
-        verdict=_finding(decision, question),
+        verdict=verdict,
         distance_needed_km=_driven_with(then, question.modification),
         distance_to_go_km=0.0,
         distance_to_go_interval_km=(0.0, 0.0),
@@ -133,14 +133,6 @@ def _closed(answer: Assessment, decision: State, question: Question) -> Assessme
         settled_at_km=float(then.end_km[-1]),
         settled_on=dt.date.fromordinal(int(then.end_day[-1])).isoformat(),
     )
-
-
-def _finding(decision: State, question: Question) -> Verdict:
-    if decision.crossed:
-        return "shifted"
-    low, high = decision.interval or (-float("inf"), float("inf"))
-    inside = -question.target <= low and high <= question.target
-    return "no-shift-of-target-size" if inside else "closed-unclear"
 
 
 def _blank(vehicle: str, observed: Observations, question: Question, notes: tuple[str, ...]) -> Assessment:

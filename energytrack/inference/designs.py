@@ -34,7 +34,7 @@ def plan(
 
     Tables and errors as for `assess`. Modifications already logged are allowed for, and stay as they are now.
     """
-    question = Question("", target_percent / 100, 1 - confidence, power, tuple(covariates or ()))
+    question = Question("", float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
@@ -45,7 +45,7 @@ def plan(
     return Plan(
         vehicle=vehicle,
         unit=observed.unit,
-        target_percent=target_percent,
+        target_percent=100 * question.target,
         confidence=confidence,
         power=power,
         distance_baseline_km=float(observed.distance_km.sum()),

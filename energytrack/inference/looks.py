@@ -13,7 +13,7 @@ from energytrack.inference import bounds
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
-from energytrack.inference.results import Look
+from energytrack.inference.results import Look, Verdict
 from energytrack.inference.shift import Shift, shift_of
 
 FEWEST_BASELINE = 5  # segments without the modification before anything is said
@@ -78,9 +78,21 @@ def look_points(observed: Observations, modification: str) -> list[int]:
     return points if points[-1] == counts[-1] else [*points, counts[-1]]
 
 
-def deciding(states: Sequence[State]) -> State | None:
-    """The first look that crossed its bound or completed the information: it closes the test."""
-    return next((state for state in states if state.crossed or state.complete), None)
+def finding(states: Sequence[State], target: float) -> tuple[Verdict, State] | None:
+    """What the looks found, and the look that found it; None while the test is open.
+
+    The first look that crosses its bound or completes the information closes the test. Closed without a shift, it
+    stays unclear until a range, then or later, lies inside the target on both sides.
+    """
+    closing = next((k for k, state in enumerate(states) if state.crossed or state.complete), None)
+    if closing is None:
+        return None
+    if states[closing].crossed:
+        return "shifted", states[closing]
+    for state in states[closing:]:
+        if state.interval is not None and -target <= state.interval[0] and state.interval[1] <= target:
+            return "no-shift-of-target-size", state
+    return "closed-unclear", states[closing]
 
 
 def shown(state: State) -> Look:

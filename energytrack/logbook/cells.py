@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 import datetime as dt
-import math
 import re
 import unicodedata
 from collections.abc import Callable
 from functools import lru_cache
 
+LARGEST = 1e15
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]{1,3})?")
 _ISO = re.compile(r"([0-9]{4})-([0-9]{2})-([0-9]{2})(?:[T ][0-9]{2}:[0-9]{2}\S*)?")
 _PARTS = re.compile(r"([0-9]{1,2})([./-])([0-9]{1,2})\2([0-9]{4})(?:[T ][0-9]{1,2}:[0-9]{2}\S*)?")
@@ -47,8 +47,8 @@ def number(text: str) -> float:
     if _NUMBER.fullmatch(text) is None:
         raise CellError(_number_advice(text))
     value = float(text)
-    if not math.isfinite(value):
-        raise CellError(f"{shown(text)} is beyond any number that can be kept; write a finite one")
+    if abs(value) > LARGEST:
+        raise CellError(f"{shown(text)} is beyond anything measured on a vehicle; correct it")
     return value
 
 

@@ -61,7 +61,7 @@ def _named(path: Path, encoding: str) -> str:
     try:
         with path.open(encoding=encoding):
             pass
-    except LookupError:
+    except (LookupError, ValueError):
         raise UnreadableTableError(
             Problem(f"{encoding!r} is no text encoding; give utf-8, latin-1, cp1252, ...", str(path))
         ) from None
@@ -112,7 +112,8 @@ def _rows(path: Path, encoding: str, delimiter: str) -> Iterator[tuple[int, list
     except OSError as error:
         raise UnreadableTableError(Problem(f"cannot be read: {error.strerror}", str(path))) from None
     except UnicodeError:
-        raise UnreadableTableError(Problem(f"is not written in {encoding}; leave --encoding out", str(path))) from None
+        advice = f"is not written in {encoding.removesuffix('-sig')}; leave --encoding out"
+        raise UnreadableTableError(Problem(advice, str(path))) from None
 
 
 def _bounded(file: TextIO, path: Path) -> Iterator[str]:

@@ -63,7 +63,8 @@ def plan_import(
         blamed = {problem.line for problem in bad}
         ordered, unordered = driving_order([row for row in rows if row[0] not in blamed], reading.file, again=again)
         new, known = _unknown_rows(ordered, recorded(name))
-        unfit = misfits(new, standing(name), reading.file, again=again) + jumps(new, standing(name), reading.file)
+        held = standing(name) if new else []
+        unfit = misfits(new, held, reading.file, again=again) + jumps(new, held, reading.file)
         problems = bad + unordered + unfit
         refused |= {problem.line: name for problem in problems if problem.line is not None}
         unfitting = {problem.line for problem in unfit}

@@ -5,8 +5,10 @@ from __future__ import annotations
 import json
 import math
 import os
+import sqlite3
 import subprocess
 import sys
+from contextlib import closing
 from pathlib import Path
 
 import pytest
@@ -122,6 +124,24 @@ def test_miles_and_gallons(folder: Path) -> None:
     assert first.speed_kmh == pytest.approx(96.56064, rel=1e-12)
     assert second.odometer_km == pytest.approx(2173.4190720, rel=1e-12)
     assert str(second.date) == "2026-01-31"
+    with closing(sqlite3.connect(folder / "my.logbook")) as connection:
+        typed = json.loads(connection.execute("SELECT typed FROM entry ORDER BY id").fetchone()[0])
+    assert typed == {"odometer_km": "1000 mi", "energy": "10 gal-us", "temperature_c": "59 F", "speed_kmh": "60 mph"}
+
+
+def test_import_loads_nothing_heavy(folder: Path) -> None:
+    name = _write(folder, TWO_ROWS)
+    code = (
+        "import sys; sys.argv = ['energytrack', '--logbook', 'my.logbook', 'import', sys.argv[1]]\n"
+        "from energytrack.cli.app import main\n"
+        "try: main()\n"
+        "except SystemExit: pass\n"
+        "print(sorted({'numpy', 'pandas', 'scipy', 'statsmodels', 'rich'} & set(sys.modules)))\n"
+    )
+    environment = {**os.environ, "PYTHONPATH": str(Path(__file__).parents[2])}
+    command = [sys.executable, "-c", code, name]
+    done = subprocess.run(command, cwd=folder, env=environment, capture_output=True, text=True, timeout=120, check=True)
+    assert done.stdout.splitlines() == ["log.csv: 2 new, 0 already there", "[]"]
 
 
 def test_one_command_starts_logbook_and_vehicle(tmp_path: Path) -> None:
@@ -183,6 +203,45 @@ def test_hostile_files_cost_one_line(folder: Path, content: bytes) -> None:
     assert len(done.stderr) < 500
     assert done.stderr.strip().isprintable()
     assert _entries(folder) == []
+
+
+@pytest.mark.parametrize(
+    ("text", "said"),
+    [
+        ("2026-01-05,1e308,40", "beyond anything measured"),
+        ("2026-01-05,5e9,40", "no odometer value"),
+        ("0001-01-01,1000,40", "before 1900"),
+        ("2999-01-01,1000,40", "future"),
+        ("2026-01-05,1000,92", "1.3 times the capacity"),
+        ("2026-01-05,-1,40", "not below 0"),
+        ("2026-01-05,1000,nan", "not a number"),
+        ("2026-01-05,1000,40,1", "4 cells where the header has 3"),
+    ],
+)
+def test_one_bad_value_is_one_line_with_file_and_line(folder: Path, text: str, said: str) -> None:
+    done = _run(folder, "import", _write(folder, HEADER + text + "\n"))
+    assert done.returncode == 1
+    assert done.stderr.startswith("energytrack: log.csv:2: ")
+    assert said in done.stderr
+    assert len(done.stderr.splitlines()) == 1
+    assert len(done.stderr) < 300
+    assert _entries(folder) == []
+
+
+def test_a_new_vehicle_is_kept_as_it_is_logged(tmp_path: Path) -> None:
+    _write(tmp_path, HEADER + "2026-01-05,1000,10\n")
+    units = ["--odometer-unit", "mi", "--energy-unit", "gal-us", "--capacity", "20"]
+    done = _run(tmp_path, "import", "log.csv", "--vehicle", "car", "--carrier", "petrol", *units)
+    assert done.returncode == 0
+    store = Store(tmp_path / "my.logbook")
+    vehicle = store.vehicle("car")
+    store.close()
+    assert (vehicle.unit, vehicle.typed_unit, vehicle.distance_unit, vehicle.display) == ("L", "gal-us", "mi", "mpg-us")
+    assert vehicle.capacity == pytest.approx(20 * 3.785411784, rel=1e-12)
+    for wrong in (["--carrier", "steam"], ["--carrier", "petrol", "--capacity", "0"]):
+        refused = _run(tmp_path, "import", "log.csv", "--vehicle", "other", *wrong)
+        assert refused.returncode == 1
+        assert len(refused.stderr.splitlines()) == 1
 
 
 def test_a_folder_of_tables_is_refused_as_a_place_to_write(folder: Path) -> None:

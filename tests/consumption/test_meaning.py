@@ -60,7 +60,8 @@ def test_full_tank_is_compared_with_the_recent_record(book):
     # Deviations 0.06 0.16 0 0.22 0.12 0.10 0.02: median 0.10, times 1.4826 / 8.06 = 1.84 %, twice that 4 %.
     assert logged(book, fill(30, 5000, 42.2)) == [
         "500 km since the last entry: 8.44 L/100 km",
-        "expected from its recent record: 8.06 L/100 km; used 4.7 % more, outside the usual scatter (+/- 4 %)",
+        "expected from its recent record: 8.06 L/100 km",
+        "4.7 % more than expected, outside the usual scatter (+/- 4 %)",
     ]
 
 
@@ -72,24 +73,26 @@ def test_entry_without_a_number_is_found_by_what_it_says(book):
 
 def test_partial_fill_says_when_consumption_follows(book):
     assert logged(book, fill(30, 4700, 10, full=False)) == [
-        "200 km since the last entry: partial fill, consumption follows with the next full tank"
+        "200 km since the last entry",
+        "partial fill: consumption follows with the next full tank",
     ]
-    assert logged(book, fill(31, 5000, 30.3))[0] == (
-        "300 km since the last entry; 500 km over 2 entries since the last known level: 8.06 L/100 km"
-    )
+    assert logged(book, fill(31, 5000, 30.3))[:2] == [
+        "300 km since the last entry",
+        "500 km since the last known level: 8.06 L/100 km",
+    ]
 
 
 def test_missed_entry_says_why_there_is_no_consumption(book):
     assert logged(book, fill(30, 5600, 40, missed=True)) == [
-        "no consumption from this entry, an entry is missing before it"
+        "no consumption: an entry is missing before it"
     ]
 
 
 def test_level_above_what_was_bought_is_explained(book):
     book.add_entry(fill(30, 4800, 5, level_percent=20), {})
     assert logged(book, fill(31, 4900, 5, level_percent=90)) == [
-        "100 km since the last entry: no consumption from this entry, more energy is left than was bought; "
-        "check amount and level"
+        "100 km since the last entry",
+        "no consumption: more energy is left than was bought; check amount and level",
     ]
 
 
@@ -105,7 +108,8 @@ def test_kept_answer_gives_what_is_expected_at_these_conditions(book):
     # 8 L/100 km x (1 + 0.5 % x (heating 14 - 8) - 2 %) = 8.08; payload is unknown and counts as usual. 40.8 L: 8.16.
     assert logged(book, fill(30, 5000, 40.8, temperature_c=4.0)) == [
         "500 km since the last entry: 8.16 L/100 km",
-        "expected at these conditions: 8.08 L/100 km; used 1.0 % more, within the usual scatter (+/- 6 %)",
+        "expected at these conditions: 8.08 L/100 km",
+        "1.0 % more than expected, within the usual scatter (+/- 6 %)",
         "skirts: about 1,500 km to go at the 3 % target (run `energytrack enough` to look)",
     ]
 
@@ -164,6 +168,31 @@ def test_swapped_odometer_digits_are_named_where_they_fit(book):
 
 def test_unusual_without_a_fitting_swap_names_none(book):
     assert logged(book, fill(30, 5000, 66.6))[-1] == "unusual for this vehicle: kept; check the amount and the odometer"
+
+
+def test_short_tank_is_allowed_its_larger_scatter(book):
+    # 50 km are a tenth of a usual tank: the +/- 4 % of the record become +/- 37 %
+    lines = logged(book, fill(30, 4550, 4.9))
+    assert lines[2:] == ["21.6 % more than expected, within the usual scatter (+/- 37 %)"]
+
+
+def test_log_without_odometer_counts_from_its_first_entry(tmp_path):
+    store = open_logbook(tmp_path / "my.logbook", create=True)
+    store.add_vehicle(VAN)
+    rows = [fill(n, None, 40 + WOBBLE[n % 8], distance_km=500) for n in range(90)]  # ends at 45,000 km
+    store.add_entries([(row, {}) for row in rows], "test")
+    store.fit("van", "skirts", None, 44_000.0, 3.0, None, "")
+    store.keep_assessment("van", "skirts", {**KEPT, "at_km": 44_500.0})
+    lines = logged(store, fill(100, None, 40, distance_km=500))
+    assert lines[0] == "500 km since the last entry: 8.00 L/100 km"
+    assert "expected at these conditions: 7.84 L/100 km" in lines[1]  # 2 % below 8, fitted throughout
+    assert lines[3].startswith("skirts: about 1,000 km to go")
+
+
+def test_receipt_older_than_the_recent_ones_is_kept_without_a_comparison(book):
+    for number in range(70):
+        book.add_entry(fill(40 + number, 5000 + 500 * number, 40), {})
+    assert logged(book, fill(1, 1200, 16)) == ["kept among the older entries"]
 
 
 def test_unusual_flags_one_of_many_and_spares_short_segments():

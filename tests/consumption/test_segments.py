@@ -137,6 +137,13 @@ def test_odometer_left_out_once_is_continued_by_the_noted_distance():
     assert [s.distance_km for s in log.segments] == [450, 450]
 
 
+def test_positions_never_run_backwards_where_noted_distances_overshoot_the_odometer():
+    entries = [fill(0, 1000, 30), fill(1, None, 30, distance_km=700), fill(2, 1600, 30, distance_km=50)]
+    log = close_segments(entries)
+    assert log.positions == (1000, 1600, 1600)
+    assert [s.distance_km for s in log.segments] == [700, 50]
+
+
 def test_odometer_ahead_of_the_noted_distance_means_a_missing_entry():
     log = close_segments([fill(0, 1000, 30), fill(1, 2100, 40, distance_km=520), fill(2, 2600, 30)])
     assert [span.reason for span in log.void] == ["missed entry"]
