@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from functools import cache, partial
+from itertools import accumulate
 from math import ceil, sqrt
 from typing import Literal
 
@@ -106,6 +107,8 @@ def design(model: Model, every: int | None, question: Question) -> Design:
     ahead = road(model, schedule, seed=0)
     priced = _priced_variance(model, ahead, question)
     z = bounds.drift(question.alpha, question.power)
+    by_then = [100 * z * sqrt(priced(segments_within(ahead, km))) for km in DISTANCES_KM]
+    never_worse = accumulate(by_then, min)  # the freedom is an approximation, and may lose more than a segment brings
     return Design(
         name="one-switch" if every is None else "alternate",
         every_fillups=every,
@@ -113,7 +116,7 @@ def design(model: Model, every: int | None, question: Question) -> Design:
         distance_km=None if required.central is None else required.central.distance_km,
         distance_interval_km=required.interval_km,
         days=None if required.central is None else required.central.days,
-        resolvable_percent={str(km): 100 * z * sqrt(priced(segments_within(ahead, km))) for km in DISTANCES_KM},
+        resolvable_percent={str(km): shift for km, shift in zip(DISTANCES_KM, never_worse, strict=True)},
     )
 
 

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from math import log
+from math import log, sqrt
 
 import numpy as np
 
@@ -19,7 +19,8 @@ from energytrack.inference.reml import Fit, Prior, Problem, fit
 
 _CLICK_OFF = {"kWh": 0.010}  # sd of one fill or reading as a share of capacity
 _USUAL_CLICK_OFF = 0.012
-_WEEKS, _SEASONS = 0.3, 0.2  # median drift relative to the trip noise of an average segment
+_WEEKS, _SEASONS = 0.3, 0.2  # median drift relative to the trip noise of a usual tank,
+_USUAL_TANK_KM = 500.0  # so that logging the same driving more often does not make it drift more
 _LOOSE = 0.8  # log-sd of those priors
 _TRIP = Prior((1, 0, 0, 0), log(0.05), 1.5)  # all but free: 95 % of it lies between 0.3 and 95 %
 _ANOTHER_MODIFICATION = 0.2  # prior sd of the effect of a modification not asked about
@@ -83,10 +84,7 @@ def fit_model(
         relative, observed.mid_day, observed.linked, observed.start_weight, observed.end_weight, extra=extra
     )
     problem = Problem(shape, columns, energy, precision, noise_priors(observed, scale))
-    first = np.array([prior.median for prior in problem.priors[:2]]) if start is None else np.asarray(start)
-    if start is None:
-        first = np.array([first[0], first[1], first[0] + log(_WEEKS), first[0] + log(_SEASONS)])
-    fitted = fit(problem, first)
+    fitted = fit(problem, _first_guess(problem) if start is None else start)
     return Model(observed, conditions, terms, scale, modification, others, levels, problem, fitted)
 
 
@@ -101,12 +99,18 @@ def noise_priors(observed: Observations, scale: Scale) -> tuple[Prior, ...]:
     """Weak log-normal priors: fills to their usual accuracy, drift in proportion to the trips' own scatter."""
     capacity = observed.capacity or float(observed.energy.max())
     level = _CLICK_OFF.get(observed.unit, _USUAL_CLICK_OFF) * capacity / scale.energy
+    tank = sqrt(scale.distance_km / _USUAL_TANK_KM)
     return (
         _TRIP,
         Prior((0, 1, 0, 0), log(level), _LOOSE),
-        Prior((-1, 0, 1, 0), log(_WEEKS), _LOOSE),
-        Prior((-1, 0, 0, 1), log(_SEASONS), _LOOSE),
+        Prior((-1, 0, 1, 0), log(_WEEKS * tank), _LOOSE),
+        Prior((-1, 0, 0, 1), log(_SEASONS * tank), _LOOSE),
     )
+
+
+def _first_guess(problem: Problem) -> Array:
+    trip, level, weeks, seasons = (prior.median for prior in problem.priors)
+    return np.array([trip, level, trip + weeks, trip + seasons])
 
 
 def _scale(observed: Observations) -> Scale:

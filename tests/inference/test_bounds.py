@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+from scipy.integrate import quad
 from scipy.stats import norm, t
 
 from energytrack.errors import InferenceError
-from energytrack.inference.bounds import critical, drift, expected_share, level
+from energytrack.inference.bounds import critical, drift, expected_share, level, mixture_quantile, price
 from tests.outside.values import reference
 
 
@@ -56,11 +57,32 @@ def test_simulated_paths_cross_as_often_as_promised() -> None:
     assert mean_time == pytest.approx(expected_share(0.05, 0.80), abs=0.006)
 
 
-def test_bound_at_full_information_is_a_plain_quantile() -> None:
-    tail = 2 * norm.sf(level(0.05))
+def test_bound_at_known_noise_is_the_bound_of_brownian_motion() -> None:
     assert critical(1.0, 1e8, 0.05) == pytest.approx(level(0.05), rel=1e-6)
-    assert critical(1.0, 7.0, 0.05) == pytest.approx(t.ppf(1 - tail / 2, 7.0), rel=1e-9)
     assert critical(0.25, 1e9, 0.05) == pytest.approx(2 * level(0.05), rel=1e-4)
+    assert price(1e9, 0.05) == pytest.approx(1.0, rel=1e-6)
+
+
+@pytest.mark.parametrize("freedom", [2.0, 5.0, 12.0])
+def test_quantile_of_the_mixture_against_draws(freedom: float) -> None:
+    rng = np.random.default_rng(int(freedom))
+    draws = rng.standard_normal(1_000_000) * np.exp(rng.standard_normal(1_000_000) * np.sqrt(2 / freedom) / 2)
+    for tail in (0.0125, 0.001):
+        assert (draws > mixture_quantile(tail, freedom)).mean() == pytest.approx(tail, rel=0.06)
+
+
+def test_quantile_of_the_mixture_against_integration() -> None:
+    """scipy.integrate.quad over the log variance."""
+    c, half = mixture_quantile(1e-6, 8.0), np.sqrt(2 / 8.0) / 2
+    exact, _ = quad(lambda x: norm.sf(c * np.exp(-half * x)) * norm.pdf(x), -12, 12, epsabs=1e-14, limit=400)
+    assert exact == pytest.approx(1e-6, rel=1e-6)
+
+
+def test_mixture_lies_between_the_normal_and_students_t() -> None:
+    """Same tail probability, same matched variance of the variance."""
+    for freedom in (3.0, 6.0, 20.0):
+        for tail in (0.0125, 1e-4):
+            assert norm.isf(tail) < mixture_quantile(tail, freedom) < t.isf(tail, freedom)
 
 
 def test_bound_widens_with_less_information_and_fewer_degrees_of_freedom() -> None:
