@@ -15,7 +15,7 @@ _NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
 
 def caveats(model: Model) -> tuple[str, ...]:
     """Warnings about an answer, most weighty first."""
-    found = (_never_apart, _little_overlap, _other_level, _filled_in, _no_weather)
+    found = (_never_apart, _not_fitted_now, _little_overlap, _other_level, _filled_in, _no_weather)
     return tuple(caveat for find in found for caveat in find(model))
 
 
@@ -34,6 +34,12 @@ def _never_apart(model: Model) -> list[str]:
         for other in model.others
         if abs(np.corrcoef(own, _shares(model, other))[0, 1]) > _NEVER_APART
     ]
+
+
+def _not_fitted_now(model: Model) -> list[str]:
+    if model.modification is None or _shares(model, model.modification)[-1] != 0:
+        return []
+    return [f"{model.modification} is not fitted now: distance still to go counts from when it is fitted again"]
 
 
 def _little_overlap(model: Model) -> list[str]:

@@ -6,7 +6,7 @@ A figure that does not exist is None, never 0 or NaN.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import asdict, dataclass
 from typing import Any, Literal
 
@@ -128,7 +128,7 @@ class Design:
 
 @dataclass(frozen=True)
 class Plan:
-    """Designs compared for one vehicle and target."""
+    """Designs compared for one vehicle and target; iterating over a plan gives its designs."""
 
     vehicle: str
     unit: str
@@ -140,6 +140,12 @@ class Plan:
     noise: Noise | None
     designs: tuple[Design, ...]
     warnings: tuple[str, ...]
+
+    def __iter__(self) -> Iterator[Design]:
+        return iter(self.designs)
+
+    def __len__(self) -> int:
+        return len(self.designs)
 
     def to_dict(self) -> dict[str, Any]:
         return {name: plain(value) for name, value in asdict(self).items()}

@@ -187,3 +187,52 @@ def test_unknown_names_are_refused_with_those_that_exist() -> None:
         et.assess(log.entries, log.modifications, "wing")
     with pytest.raises(ConsumptionError, match="energy"):
         et.assess(log.entries.drop(columns="energy"), log.modifications, "part")
+
+
+def test_a_part_taken_off_again_counts_both_phases_and_says_so() -> None:
+    log = drawn(STEADY_COMMUTE, seed=5, switches=(0.3, 0.5))
+    answer = asked(log)
+    assert answer.segments_baseline > answer.segments_modified > 10
+    assert any("not fitted now" in warning for warning in answer.warnings)
+
+
+def test_temperatures_of_a_weather_table_fill_the_gaps() -> None:
+    log = fitted_late(drawn(STEADY_COMMUTE, seed=5, temperature_missing_share=0.0), keep=8)
+    bare = replace(log, entries=log.entries.assign(temperature_c=np.nan))
+    weather = log.entries[["date", "temperature_c"]]
+    assert "season_cos1" in asked(bare).covariates
+    filled = asked(bare, weather=weather)
+    assert "heating" in filled.covariates
+    assert filled.shift_percent == pytest.approx(asked(log).shift_percent, abs=1.0)
+
+
+def test_missing_temperatures_cost_certainty_and_are_counted() -> None:
+    log = fitted_late(drawn(STEADY_COMMUTE, seed=5, temperature_missing_share=0.0), keep=20)
+    gaps = log.entries["temperature_c"].where(np.random.default_rng(1).random(len(log.entries)) > 0.4)
+    known, gappy = asked(log), asked(replace(log, entries=log.entries.assign(temperature_c=gaps)))
+    assert gappy.standard_error_percent > known.standard_error_percent
+    assert any("filled in" in warning for warning in gappy.warnings)
+    assert not any("filled in" in warning for warning in known.warnings)
+
+
+def test_a_further_column_is_used_when_it_is_named() -> None:
+    log = fitted_late(drawn(STEADY_COMMUTE, seed=7), keep=20)
+    load = np.random.default_rng(3).uniform(0, 400, len(log.entries))
+    heavy = log.entries.assign(payload=load, energy=log.entries["energy"] * (1 + 0.0005 * (load - 200)))
+    loaded = replace(log, entries=heavy)
+    used = asked(loaded, covariates=["payload"])
+    assert used.covariates["payload"].estimate == pytest.approx(0.05, abs=0.01)
+    assert used.standard_error_percent < 0.7 * asked(loaded).standard_error_percent
+
+
+def test_tyres_of_another_circumference_do_not_fake_a_shift() -> None:
+    """From the fitting on, the odometer counts 2 % too little: without the event that reads as a rise of 2 %."""
+    log = drawn(DELIVERY_VAN, seed=3, shift_percent=0.0)
+    fitted = log.modifications["fitted_km"].iloc[0]
+    odometer = log.entries["odometer_km"]
+    short = odometer.where(odometer <= fitted, fitted + (odometer - fitted) / 1.02)
+    log = replace(log, entries=log.entries.assign(odometer_km=short))
+    date = log.modifications["fitted_date"].iloc[0]
+    tyres = pd.DataFrame({"date": [date], "odometer_km": [fitted], "what": ["tyres"], "odometer_factor": [1.02]})
+    difference = asked(log).shift_percent - asked(log, events=tyres).shift_percent
+    assert difference == pytest.approx(2.0, abs=0.1)

@@ -72,7 +72,7 @@ def test_four_weeks_of_one_commute_are_a_usable_baseline(seed: int) -> None:
 
 def test_alternating_beats_one_switch_where_the_log_drifts() -> None:
     plan = et.plan(baseline(drawn(DRIFTING, 1)), 4.0, capacity=50.0)
-    one_switch, *alternating = plan.designs
+    one_switch, *alternating = plan
     shortest = min(design.distance_km for design in alternating if design.distance_km is not None)
     assert one_switch.distance_km is None or shortest < one_switch.distance_km
 
