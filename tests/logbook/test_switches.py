@@ -80,4 +80,5 @@ def test_periods_of_accepted_switches_never_overlap(attempts: list[tuple[bool, i
     assert len(periods) == sum(each.fitted for each in logged)
     ends = [each.removed_km for each in periods]
     starts = [each.fitted_km for each in periods]
-    assert all(end is not None and start is not None and end <= start for end, start in zip(ends[:-1], starts[1:], strict=True))
+    following = zip(ends[:-1], starts[1:], strict=True)
+    assert all(end is not None and start is not None and end <= start for end, start in following)
