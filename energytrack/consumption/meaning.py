@@ -160,7 +160,7 @@ def _compared(
     lines = [
         f"expected {basis}: {consumption_text(expected, vehicle)}",
         f"{abs(percent):.1f} % {'more' if percent >= 0 else 'less'} than expected, "
-        f"{verdict} the usual scatter (+/- {scatter:.0f} %)",
+        f"{verdict} the usual scatter (± {scatter:.0f} %)",
     ]
     if unusual(segmented.segments)[which]:
         lines.append("unusual for this vehicle: kept; check the amount and the odometer")
@@ -267,9 +267,9 @@ def _left(
     to_go, at = answer.get("distance_to_go_km"), answer.get("at_km")
     if to_go is None:
         why = "no baseline yet" if answer["verdict"] == "no-baseline" else f"{target} is out of reach as it is driven"
-        return f"{why} (run `energytrack enough` for what would help)"
+        return f"{why}: `energytrack enough` says what would help"
     if at is None:
-        return f"about {_about(to_go, vehicle)} to go at {target} when last looked at (`energytrack enough`)"
+        return f"about {_about(to_go, vehicle)} to go at {target} when last looked at"
     here = segmented.positions[index]
     try:
         periods = fitted_periods(segmented, rows)
@@ -277,8 +277,8 @@ def _left(
         return str(contradiction)
     driven = math.fsum(max(0.0, min(removed, here) - max(fitted, at)) for fitted, removed, _ in periods)
     if driven >= to_go:
-        return f"the distance asked for at {target} is covered (run `energytrack enough` to look)"
-    return f"about {_about(to_go - driven, vehicle)} to go at {target} (run `energytrack enough` to look)"
+        return f"the distance asked for at {target} is covered"
+    return f"about {_about(to_go - driven, vehicle)} to go at {target}"
 
 
 def _about(km: float, vehicle: Vehicle) -> str:

@@ -61,7 +61,7 @@ def test_full_tank_is_compared_with_the_recent_record(book):
     assert logged(book, fill(30, 5000, 42.2)) == [
         "500 km since the last entry: 8.44 L/100 km",
         "expected from its recent record: 8.06 L/100 km",
-        "4.7 % more than expected, outside the usual scatter (+/- 4 %)",
+        "4.7 % more than expected, outside the usual scatter (± 4 %)",
     ]
 
 
@@ -109,8 +109,8 @@ def test_kept_answer_gives_what_is_expected_at_these_conditions(book):
     assert logged(book, fill(30, 5000, 40.8, temperature_c=4.0)) == [
         "500 km since the last entry: 8.16 L/100 km",
         "expected at these conditions: 8.08 L/100 km",
-        "1.0 % more than expected, within the usual scatter (+/- 6 %)",
-        "skirts: about 1,500 km to go at the 3 % target (run `energytrack enough` to look)",
+        "1.0 % more than expected, within the usual scatter (± 6 %)",
+        "skirts: about 1,500 km to go at the 3 % target",
     ]
 
 
@@ -173,7 +173,7 @@ def test_unusual_without_a_fitting_swap_names_none(book):
 def test_short_tank_is_allowed_its_larger_scatter(book):
     # 50 km are a tenth of a usual tank: the +/- 4 % of the record become +/- 37 %
     lines = logged(book, fill(30, 4550, 4.9))
-    assert lines[2:] == ["21.6 % more than expected, within the usual scatter (+/- 37 %)"]
+    assert lines[2:] == ["21.6 % more than expected, within the usual scatter (± 37 %)"]
 
 
 def test_log_without_odometer_counts_from_its_first_entry(tmp_path):
