@@ -60,6 +60,25 @@ class Expectation:
 
 
 @dataclass(frozen=True)
+class Confounder:
+    """A condition, or another modification, that changed together with the one asked about."""
+
+    condition: str
+    inflation: float  # of the variance of the shift, by not knowing the response to it
+    cost_km: float | None  # of the distance to go; None where the test is over or the target is out of reach
+
+
+@dataclass(frozen=True)
+class Advice:
+    """Driving that tells more than the usual."""
+
+    condition: str
+    value: float
+    fitted: bool
+    times_usual: float  # information of such a segment, relative to the usual one
+
+
+@dataclass(frozen=True)
 class Remedy:
     """One way to bring the target within reach, or closer."""
 
@@ -104,6 +123,8 @@ class Assessment:
     remedies: tuple[Remedy, ...]
     expectation: Expectation | None
     warnings: tuple[str, ...]
+    confounders: tuple[Confounder, ...] = ()  # costliest first
+    advice: tuple[Advice, ...] = ()  # driving worth seeking
 
     @property
     def is_open(self) -> bool:
