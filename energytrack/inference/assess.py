@@ -16,12 +16,14 @@ from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
+from energytrack.inference.confounding import confounders, most_telling
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import Need, need, remedies
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
 from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.results import Assessment, Verdict
+from energytrack.inference.several import never_apart, refusal, together, without
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -52,15 +54,17 @@ def assess(
     not in the table, InferenceError for a target, confidence or power outside its range.
     """
     question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
-    bounds.drift(question.alpha, power)  # refuses a confidence or power outside its range before any work
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
     if name not in observed.names:
         raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
+    partners = never_apart(observed, name)
+    if partners:
+        observed, notes = without(observed, partners), (refusal(name, partners), *notes)
     states = take_looks(observed, question, every=every_look)
-    blank = _blank(vehicle, observed, question, notes)
+    blank = replace(_blank(vehicle, observed, question, notes), never_apart=partners)
     return _answer(blank, observed, question, states) if states else _before_the_first_look(blank, observed, question)
 
 
@@ -79,13 +83,16 @@ def _answer(blank: Assessment, observed: Observations, question: Question, state
         covariates=covariates_of(now.model),
         looks=tuple(shown(state) for state in states),
         expectation=expectation_of(now.model),
+        together=together(now.model, question),
         warnings=(*blank.warnings, *caveats(now.model)),
     )
     if found is not None:
         return _closed(answer, *found, question)
     required = need(now.model, always_fitted, question)
     ways = () if required.central else remedies(now.model, required, question)
-    return replace(_open(answer, required, theta), remedies=ways)
+    moved = confounders(now.model, 1 / question.information if required.central else None)
+    advice = tuple(told for told in (most_telling(now.model, mover.condition) for mover in moved) if told is not None)
+    return replace(_open(answer, required, theta), remedies=ways, confounders=moved, advice=advice)
 
 
 def _before_the_first_look(blank: Assessment, observed: Observations, question: Question) -> Assessment:

@@ -1,4 +1,4 @@
-"""What a careful reader of the answer should know: conditions that differ, values filled in, parts never apart."""
+"""What a careful reader of the answer should know: conditions that differ, values filled in, parts taken off."""
 
 from __future__ import annotations
 
@@ -9,31 +9,18 @@ from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
 
 _LITTLE = 0.3  # share of one phase's conditions met in the other, below which the comparison leans on the fitted curve
-_NEVER_APART = 0.98  # correlation of two modifications' shares
 _NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
 
 
 def caveats(model: Model) -> tuple[str, ...]:
     """Warnings about an answer, most weighty first."""
-    found = (_never_apart, _not_fitted_now, _little_overlap, _other_level, _filled_in, _no_weather)
+    found = (_not_fitted_now, _little_overlap, _other_level, _filled_in, _no_weather)
     return tuple(caveat for find in found for caveat in find(model))
 
 
 def _shares(model: Model, name: str) -> Array:
     shares: Array = model.observed.shares[:, model.observed.names.index(name)]
     return shares
-
-
-def _never_apart(model: Model) -> list[str]:
-    if model.modification is None:
-        return []
-    own = _shares(model, model.modification)
-    return [
-        f"{model.modification} and {other} were (nearly) always fitted together: the log cannot tell them apart. "
-        f"Drive some full tanks with only one of them, or log the two as one modification."
-        for other in model.others
-        if abs(np.corrcoef(own, _shares(model, other))[0, 1]) > _NEVER_APART
-    ]
 
 
 def _not_fitted_now(model: Model) -> list[str]:

@@ -48,7 +48,7 @@ def take_look(observed: Observations, question: Question, start: Array | None) -
     priced = shift.standard_error * bounds.price(shift.freedom, question.alpha)
     share = min(1.0, 1 / priced**2 / question.information)
     bound = bounds.critical(share, shift.freedom, question.alpha)
-    return State(len(observed.energy), model, shift, share, bound, shift.interval(bound, model.fit))
+    return State(len(observed.energy), model, shift, share, bound, shift.interval(bound))
 
 
 def take_looks(observed: Observations, question: Question, *, every: bool) -> list[State]:

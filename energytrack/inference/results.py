@@ -79,6 +79,25 @@ class Advice:
 
 
 @dataclass(frozen=True)
+class Effect:
+    """One modification's shift, estimated beside all others."""
+
+    name: str
+    shift_percent: float
+    interval_percent: Range | None  # look-proof
+    standard_error_percent: float
+    degrees_of_freedom: float
+
+
+@dataclass(frozen=True)
+class Together:
+    """Several modifications of one vehicle: each alone, and all at once."""
+
+    each: tuple[Effect, ...]
+    all_at_once: Effect
+
+
+@dataclass(frozen=True)
 class Remedy:
     """One way to bring the target within reach, or closer."""
 
@@ -125,6 +144,8 @@ class Assessment:
     warnings: tuple[str, ...]
     confounders: tuple[Confounder, ...] = ()  # costliest first
     advice: tuple[Advice, ...] = ()  # driving worth seeking
+    never_apart: tuple[str, ...] = ()  # modifications this answer is for as well: the log cannot tell them apart
+    together: Together | None = None  # None where the log holds no other modification
 
     @property
     def is_open(self) -> bool:
