@@ -98,6 +98,70 @@ class Together:
 
 
 @dataclass(frozen=True)
+class PairwiseShift:
+    """One variant against another; percent of consumption with nothing fitted."""
+
+    one: str
+    other: str
+    shift_percent: float  # of `one` relative to `other`: negative where `one` uses less
+    interval_percent: Range | None  # holds for all pairs and all looks together
+    information_fraction: float
+    differs: bool  # zero lies outside the range
+
+
+@dataclass(frozen=True)
+class Standing:
+    """A variant's shift against the bare vehicle, and the chance that none uses less."""
+
+    name: str
+    shift_percent: float
+    chance_best: float
+
+
+@dataclass(frozen=True)
+class Comparison:
+    """Variants of a part held against each other and against the bare vehicle."""
+
+    vehicle: str
+    confidence: float
+    pairs: tuple[PairwiseShift, ...]
+    standings: tuple[Standing, ...]  # the likeliest best first
+    warnings: tuple[str, ...]
+
+    def to_dict(self) -> dict[str, Any]:
+        return {name: plain(value) for name, value in asdict(self).items()}
+
+
+@dataclass(frozen=True)
+class LevelEffect:
+    """A level that was driven, and its shift against the reference level."""
+
+    level: float
+    shift_percent: float
+    interval_percent: Range | None  # look-proof
+
+
+@dataclass(frozen=True)
+class Response:
+    """How consumption answers to the level of a graded modification."""
+
+    vehicle: str
+    modification: str
+    form: Literal["line", "parabola"]
+    reference_level: float  # 0: not fitted
+    levels: tuple[LevelEffect, ...]
+    per_level: Effect  # of one unit of the level, at the reference
+    best_level: float | None  # of least consumption; None where there is none inside the tried range
+    best_level_interval: Range | None
+    next_level: float | None  # worth trying next; None where the best one has been driven
+    confidence: float
+    warnings: tuple[str, ...]
+
+    def to_dict(self) -> dict[str, Any]:
+        return {name: plain(value) for name, value in asdict(self).items()}
+
+
+@dataclass(frozen=True)
 class Remedy:
     """One way to bring the target within reach, or closer."""
 
