@@ -16,11 +16,11 @@ from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
-from energytrack.inference.confounding import confounders, most_telling
+from energytrack.inference.confounding import confounders, in_words, most_telling
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import Need, need, remedies
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
-from energytrack.inference.model import fit_model
+from energytrack.inference.model import Model, fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.results import Assessment, Verdict
 from energytrack.inference.several import never_apart, refusal, together, without
@@ -90,9 +90,20 @@ def _answer(blank: Assessment, observed: Observations, question: Question, state
         return _closed(answer, *found, question)
     required = need(now.model, always_fitted, question)
     ways = () if required.central else remedies(now.model, required, question)
-    moved = confounders(now.model, 1 / question.information if required.central else None)
-    advice = tuple(told for told in (most_telling(now.model, mover.condition) for mover in moved) if told is not None)
-    return replace(_open(answer, required, theta), remedies=ways, confounders=moved, advice=advice)
+    return _with_confounders(replace(_open(answer, required, theta), remedies=ways), now.model, question)
+
+
+def _with_confounders(answer: Assessment, model: Model, question: Question) -> Assessment:
+    """While the test is open: what changed together with the part, and which driving would tell them apart."""
+    moved = confounders(model, 1 / question.information if answer.distance_to_go_km else None)
+    advice = {mover.condition: most_telling(model, mover.condition) for mover in moved}
+    said = [in_words(mover, answer.distance_to_go_km, advice[mover.condition]) for mover in moved]
+    return replace(
+        answer,
+        confounders=moved,
+        advice=tuple(told for told in advice.values() if told is not None),
+        warnings=(*answer.warnings, *said),
+    )
 
 
 def _before_the_first_look(blank: Assessment, observed: Observations, question: Question) -> Assessment:

@@ -109,7 +109,8 @@ def _graded(
         columns[name + _SQUARED] = squared - 2 * reference * linear + reference**2 * fitted
     if np.ptp(columns[name]) == 0:
         raise InferenceError(f"{name} was driven at one level only: log a second level, or drive without it")
-    kept = {other: share for other, share in by_name.items() if not other.startswith(name)} | columns
+    own = (name, name + _SQUARED, name + _FITTED)
+    kept = {other: share for other, share in by_name.items() if other not in own} | columns
     return replace(observed, shares=np.column_stack(list(kept.values())), names=tuple(kept)), tried, reference
 
 
@@ -143,13 +144,14 @@ def _best(
     if bend <= 0 or not min(levels) <= reference - slope / (2 * bend) <= max(levels):
         return None, None
     covariance = model.fit.covariance
+    freedom = shift_along(model.fit, _weights(model, name, 1.0, curved=False)).freedom
     interval = ratio_interval(
         -float(slope),
         2 * float(bend),
         float(covariance[SHIFT, SHIFT]) / scale**2,
         4 * float(covariance[column, column]) / scale_squared**2,
         -2 * float(covariance[SHIFT, column]) / scale / scale_squared,
-        bounds.level(question.alpha),
+        bounds.level(question.alpha) * bounds.price(freedom, question.alpha),
     )
     best = reference - float(slope / (2 * bend))
     return best, None if interval is None else (reference + interval[0], reference + interval[1])
