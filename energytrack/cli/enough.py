@@ -18,6 +18,7 @@ from energytrack.logbook.store import Store
 if TYPE_CHECKING:
     from energytrack.inference.results import Assessment
     from energytrack.logbook.opening import Logbook
+    from energytrack.logbook.records import Vehicle
 
 
 def enough(
@@ -32,6 +33,9 @@ def enough(
     covariate: Annotated[
         list[str] | None, typer.Option(metavar="COLUMN", help="A further numeric column to allow for; repeatable.")
     ] = None,
+    compare: Annotated[
+        bool, typer.Option("--compare", help="Hold the vehicle's modifications against each other, pair by pair.")
+    ] = False,
     picture: Annotated[bool, typer.Option("--picture", help="Draw how the range narrowed with distance.")] = False,
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
@@ -40,6 +44,9 @@ def enough(
     if name is not None and name.startswith("-"):
         raise typer.BadParameter(f"no such option: {name}")
     logbook = readable(context)
+    if compare:
+        _compare(asking.vehicles_asked(logbook, vehicle), logbook, target, confidence, covariate, json)
+        return
     asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
     answers, refusals = asking.answered(
         asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate))
@@ -65,6 +72,35 @@ def _assess(
         covariates=covariates or None,
     )
     return replace(answer, vehicle=question.vehicle.name)
+
+
+def _compare(
+    vehicles: list[Vehicle],
+    logbook: Logbook,
+    target: float | None,
+    confidence: float,
+    covariates: list[str] | None,
+    json: bool,
+) -> None:
+    from energytrack.inference.comparison import compare
+    from energytrack.presentation import several, terminal
+
+    found, refusals = asking.answered(
+        vehicles,
+        lambda vehicle: compare(
+            **asking.tables(logbook, vehicle),
+            target_percent=asking.USUAL_TARGET if target is None else target,
+            confidence=confidence,
+            covariates=covariates or None,
+        ),
+    )
+    if json:
+        say_json({"comparisons": [one.to_dict() for one in found]})
+    else:
+        screen = terminal.console()
+        for one in found:
+            terminal.show(several.compared(one, screen.width, title=len(found) > 1), screen)
+    asking.leave(refusals)
 
 
 def _print_json(answers: list[Assessment]) -> None:

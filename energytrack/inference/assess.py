@@ -22,6 +22,7 @@ from energytrack.inference.distance import Need, need, remedies
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.question import Question
+from energytrack.inference.response import from_first_level, has_levels, respond
 from energytrack.inference.results import Assessment, Verdict
 from energytrack.inference.several import never_apart, refusal, together, without
 
@@ -63,9 +64,28 @@ def assess(
     partners = never_apart(observed, name)
     if partners:
         observed, notes = without(observed, partners), (refusal(name, partners), *notes)
+    observed = from_first_level(observed, name)
     states = take_looks(observed, question, every=every_look)
     blank = replace(_blank(vehicle, observed, question, notes), never_apart=partners)
-    return _answer(blank, observed, question, states) if states else _before_the_first_look(blank, observed, question)
+    if not states:
+        return _before_the_first_look(blank, observed, question)
+    answer = _answer(blank, observed, question, states)
+    if not has_levels(modifications, name):
+        return answer
+    graded = respond(
+        entries,
+        modifications,
+        name,
+        target_percent=target_percent,
+        confidence=confidence,
+        power=power,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        weather=weather,
+        events=events,
+    )
+    return replace(answer, response=graded)
 
 
 def _answer(blank: Assessment, observed: Observations, question: Question, states: list[State]) -> Assessment:

@@ -1,6 +1,6 @@
 """A graded modification: how consumption answers to its level, and the level of least consumption.
 
-Levels are counted from a reference: none fitted where something was driven so, else the lowest level tried. Two levels
+Levels are counted from a reference: none fitted where something was driven so, else the level driven first. Two levels
 give a line, three or more a parabola. The level of least consumption is a ratio of two coefficients, so its range is
 Fieller's (1954).
 """
@@ -80,6 +80,26 @@ def respond(
     )
 
 
+def from_first_level(observed: Observations, name: str) -> Observations:
+    """Where something like a tyre pressure always has a level, the first one driven takes the place of a baseline."""
+    column = observed.names.index(name)
+    levels = observed.shares[:, column]
+    if not len(levels) or not levels.all() or np.ptp(levels) == 0:
+        return observed
+    shares = observed.shares.copy()
+    shares[:, column] = levels - levels[0]
+    return replace(observed, shares=shares)
+
+
+def has_levels(modifications: pd.DataFrame, name: str) -> bool:
+    """Every fitting of this part has a level, and they differ from none or from each other."""
+    own = modifications.loc[modifications["name"] == name]
+    if "level" not in own or own["level"].isna().any():
+        return False
+    levels = set(own["level"].astype(float))
+    return len(levels) > 1 or not levels <= {0.0, 1.0}
+
+
 def _expanded(modifications: pd.DataFrame, name: str) -> pd.DataFrame:
     """The table with two more columns' worth of rows for this part: its level squared, and whether it is fitted."""
     import pandas as pd
@@ -102,7 +122,7 @@ def _graded(
     linear, squared, fitted = by_name[name], by_name[name + _SQUARED], by_name[name + _FITTED]
     levels = set(modifications.loc[modifications["name"] == name, "level"].astype(float))
     bare = bool((fitted < _MOSTLY).any())
-    reference = 0.0 if bare else min(levels)
+    reference = 0.0 if bare else min(levels, key=lambda level: abs(level - linear[0]))
     tried = tuple(sorted(levels | {0.0} if bare else levels))
     columns = {name: linear - reference * fitted}
     if len(tried) >= _FOR_A_PARABOLA:

@@ -210,6 +210,7 @@ class Assessment:
     advice: tuple[Advice, ...] = ()  # driving worth seeking
     never_apart: tuple[str, ...] = ()  # modifications this answer is for as well: the log cannot tell them apart
     together: Together | None = None  # None where the log holds no other modification
+    response: Response | None = None  # None where the modification has no levels
 
     @property
     def is_open(self) -> bool:
