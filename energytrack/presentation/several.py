@@ -70,7 +70,7 @@ def _sentence(found: Comparison) -> str:
         return f"{name} uses least: its range lies below that of every other."
     if any(beaten):
         return f"{name} is likeliest to use least ({_chance(best.chance_best)}), but not yet told from all others."
-    return f"Not yet: no variant is told from the others; {name} is likeliest to use least ({_chance(best.chance_best)})."
+    return f"Not yet: no variant is told from the others. Likeliest to use least: {name} ({_chance(best.chance_best)})."
 
 
 def _against(pair: PairwiseShift, name: str) -> bool:

@@ -46,7 +46,8 @@ def labelled(rows: Sequence[tuple[str, str]], width: int) -> list[str]:
         if cell_len(label) < LABEL_WIDTH:
             lines.append((label + " " * (LABEL_WIDTH - cell_len(label)) + body.pop(0)).rstrip())
         else:
-            lines += wrap(label, width)
+            lead = " " * (len(label) - len(label.lstrip()))
+            lines += [lead + line for line in wrap(label.lstrip(), width - len(lead))]
         lines += [margin + line for line in body]
     return lines
 
