@@ -28,7 +28,8 @@ TABLES = {
 ONE_LINE = re.compile(r"\$ |energytrack: |note: |next: |\S+:\d+: ")
 RESULTS = (
     *(results.Assessment, results.Noise, results.Covariate, results.Look, results.Expectation, results.Remedy),
-    *(results.Plan, results.Design),
+    *(results.Plan, results.Design, results.Confounder, results.Advice, results.Together, results.Effect),
+    *(results.Response, results.LevelEffect, results.Comparison, results.PairwiseShift, results.Standing),
 )
 
 

@@ -12,11 +12,14 @@ import sys
 from pathlib import Path
 from typing import Any
 
+import pandas as pd
 import pytest
 
 from energytrack.logbook.opening import open_logbook
 from energytrack.logbook.records import Entry, Vehicle
 from energytrack.logbook.store import Store
+from tests.fitted import fit_parts
+from tests.inference.test_several import VARIANTS, plain_log
 
 ROOT = Path(__file__).parents[2]
 FITTED_KM = 12_000.0
@@ -227,3 +230,20 @@ def test_no_logbook_named() -> None:
     done = run(None, "enough")
     assert done.returncode == 1
     assert "--logbook" in done.stderr
+
+
+def test_variants_are_compared_on_the_command_line(tmp_path: Path) -> None:
+    """Three variants of a part in one logbook: a sentence, six pairs and as many chances as there are variants."""
+    entries, parts = fit_parts(plain_log(4), VARIANTS)
+    vehicle = entries["vehicle"].iloc[0]
+    pd.DataFrame({"vehicle": [vehicle], "carrier": ["diesel"], "unit": ["L"], "capacity": [75.0]}).to_csv(
+        tmp_path / "vehicles.csv", index=False
+    )
+    entries.to_csv(tmp_path / "entries.csv", index=False)
+    parts.assign(fitted_date=None, removed_date=None).to_csv(tmp_path / "modifications.csv", index=False)
+    shown = run(tmp_path, "enough", "--compare")
+    assert shown.stdout.startswith("dam B uses least")
+    assert shown.stdout.count("look-proof range") == 6
+    assert max(map(len, shown.stdout.splitlines())) <= 80
+    told = json.loads(run(tmp_path, "enough", "--compare", "--json").stdout)
+    assert len(told["comparisons"][0]["standings"]) == 4
