@@ -36,9 +36,7 @@ def enough(
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
 ) -> None:
-    """Has the modification shifted consumption, by how much, and is the distance covered enough to say so?"""
-    if name is not None and name.startswith("-"):
-        raise typer.BadParameter(f"no such option: {name}")
+    """Say whether a modification shifted consumption. By how much, and how far is still to go to be sure."""
     logbook = readable(context)
     asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
     answers, refusals = asking.answered(
