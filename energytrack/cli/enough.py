@@ -42,9 +42,9 @@ def enough(
     answers, refusals = asking.answered(
         asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate))
     )
-    _print_json([a for _, a in answers]) if json else _print(answers, picture)
-    for question, answer in answers:
+    for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
         _keep(logbook, question, answer)
+    _print_json([a for _, a in answers]) if json else _print(answers, picture)
     waiting = exit_code and any(answer.verdict == "not-yet" for _, answer in answers)
     asking.leave(refusals, ExitStatus.NOT_YET if waiting else ExitStatus.DONE)
 
