@@ -9,18 +9,31 @@ from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
 
 _LITTLE = 0.3  # share of one phase's conditions met in the other, below which the comparison leans on the fitted curve
+_ALWAYS = 0.98  # correlation of two modifications' shares
 _NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
 
 
 def caveats(model: Model) -> tuple[str, ...]:
     """Warnings about an answer, most weighty first."""
-    found = (_not_fitted_now, _little_overlap, _other_level, _filled_in, _no_weather)
+    found = (_took_turns, _not_fitted_now, _little_overlap, _other_level, _filled_in, _no_weather)
     return tuple(caveat for find in found for caveat in find(model))
 
 
 def _shares(model: Model, name: str) -> Array:
     shares: Array = model.observed.shares[:, model.observed.names.index(name)]
     return shares
+
+
+def _took_turns(model: Model) -> list[str]:
+    if model.modification is None:
+        return []
+    own = _shares(model, model.modification)
+    return [
+        f"{model.modification} and {other} (nearly) always took each other's place: the log cannot tell their "
+        f"effects apart. Drive some full tanks with neither or both, or log the exchange as one modification."
+        for other in model.others
+        if np.corrcoef(own, _shares(model, other))[0, 1] < -_ALWAYS
+    ]
 
 
 def _not_fitted_now(model: Model) -> list[str]:
@@ -32,7 +45,7 @@ def _not_fitted_now(model: Model) -> list[str]:
 def _little_overlap(model: Model) -> list[str]:
     if model.modification is None:
         return []
-    fitted = np.abs(_shares(model, model.modification)) > 0
+    fitted = model.observed.fitted[:, model.observed.names.index(model.modification)] > 0
     found = []
     for condition, (plural, unit) in _NAMES.items():
         value = model.conditions.values.get(condition)

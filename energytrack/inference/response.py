@@ -8,7 +8,6 @@ Fieller's (1954).
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -21,7 +20,7 @@ from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
 from energytrack.inference.results import LevelEffect, Response
-from energytrack.inference.several import effect_of
+from energytrack.inference.several import effect_of, with_shares, without
 from energytrack.inference.shift import SHIFT, ratio_interval, shift_along
 
 if TYPE_CHECKING:
@@ -84,11 +83,9 @@ def from_first_level(observed: Observations, name: str) -> Observations:
     """Where something like a tyre pressure always has a level, the first one driven takes the place of a baseline."""
     column = observed.names.index(name)
     levels = observed.shares[:, column]
-    if not len(levels) or not levels.all() or np.ptp(levels) == 0:
+    if not len(levels) or observed.fitted[:, column].min() < 1 or np.ptp(levels) == 0:
         return observed
-    shares = observed.shares.copy()
-    shares[:, column] = levels - levels[0]
-    return replace(observed, shares=shares)
+    return with_shares(observed, name, levels - levels[0])
 
 
 def has_levels(modifications: pd.DataFrame, name: str) -> bool:
@@ -124,14 +121,14 @@ def _graded(
     bare = bool((fitted < _MOSTLY).any())
     reference = 0.0 if bare else min(levels, key=lambda level: abs(level - linear[0]))
     tried = tuple(sorted(levels | {0.0} if bare else levels))
-    columns = {name: linear - reference * fitted}
-    if len(tried) >= _FOR_A_PARABOLA:
-        columns[name + _SQUARED] = squared - 2 * reference * linear + reference**2 * fitted
-    if np.ptp(columns[name]) == 0:
+    counted = linear - reference * fitted
+    if np.ptp(counted) == 0:
         raise InferenceError(f"{name} was driven at one level only: log a second level, or drive without it")
-    own = (name, name + _SQUARED, name + _FITTED)
-    kept = {other: share for other, share in by_name.items() if other not in own} | columns
-    return replace(observed, shares=np.column_stack(list(kept.values())), names=tuple(kept)), tried, reference
+    graded = with_shares(without(observed, [name + _SQUARED, name + _FITTED]), name, counted)
+    if len(tried) >= _FOR_A_PARABOLA:
+        curve = squared - 2 * reference * linear + reference**2 * fitted
+        graded = with_shares(graded, name + _SQUARED, curve)
+    return graded, tried, reference
 
 
 def _weights(model: Model, name: str, level: float, *, curved: bool) -> Array:
