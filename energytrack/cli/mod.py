@@ -21,7 +21,7 @@ from energytrack.cli.context import (
     writable,
 )
 from energytrack.errors import EntryError
-from energytrack.logbook.checks import check_date, check_odometer, check_reading, parse_date
+from energytrack.logbook.checks import check_date, check_known, check_odometer, check_reading, parse_date
 from energytrack.logbook.quantities import distance_text, parse_number
 from energytrack.logbook.records import Entry, Modification, Vehicle
 from energytrack.logbook.store import Store
@@ -45,6 +45,10 @@ def fitted(
     odometer_unit: options.OdometerUnit = None,
     target: Annotated[str | None, typer.Option(help="Shift worth knowing, in percent.")] = None,
     level: Annotated[str | None, typer.Option(help="Setting of a graded part, e.g. a pressure.")] = None,
+    known: Annotated[
+        str | None, typer.Option(metavar="LOW:HIGH", help="A known change: the shift expected, in percent, e.g. 4:9.")
+    ] = None,
+    irreversible: Annotated[bool, typer.Option("--irreversible", help="It cannot be taken off again.")] = False,
     note: options.Note = "",
     json: options.Json = False,
 ) -> None:
@@ -54,8 +58,11 @@ def fitted(
     with store.transaction():
         day, km = _place(store, chosen, odometer, odometer_unit, date)
         graded = None if level is None else parse_number(level, "level")
-        store.fit(chosen.name, _checked_name(name), day, km, _target(target), graded, note)
-    _echo(chosen, "fitted", name, day, km, json)
+        expected = _known(known)
+        store.fit(
+            chosen.name, _checked_name(name), day, km, _target(target), graded, note, expected, not irreversible
+        )
+    _echo(chosen, "fitted", name, day, km, json, expected)
 
 
 @mod_commands.command("removed", context_settings=options.NUMBERS_MAY_BE_NEGATIVE)
@@ -128,14 +135,34 @@ def _target(text: str | None) -> float | None:
     return value
 
 
-def _echo(vehicle: Vehicle, action: str, name: str, day: dt.date | None, km: float | None, json: bool) -> None:
+def _known(text: str | None) -> tuple[float, float] | None:
+    if text is None:
+        return None
+    low, mark, high = text.partition(":")
+    if not mark:
+        raise EntryError(f"known change {text!r} is not written as LOW:HIGH, such as 4:9 for 4 to 9 % more")
+    ends = parse_number(low, "known change"), parse_number(high, "known change")
+    check_known(*ends)
+    return ends
+
+
+def _echo(
+    vehicle: Vehicle,
+    action: str,
+    name: str,
+    day: dt.date | None,
+    km: float | None,
+    json: bool,
+    known: tuple[float, float] | None = None,
+) -> None:
     cautions = list(CAUTIONS) if action == "fitted" else []
     if json:
         date = None if day is None else day.isoformat()
         place: dict[str, Any] = {"date": date, "odometer_km": km}
         say_json({"vehicle": vehicle.name, "name": name, "action": action, **place, "cautions": cautions})
         return
-    say([f"{vehicle.name}: {name} {action}, {_where(vehicle, day, km)}"])
+    expected = "" if known is None else f"; a known change, {known[0]:+g} to {known[1]:+g} % expected"
+    say([f"{vehicle.name}: {name} {action}, {_where(vehicle, day, km)}{expected}"])
     if cautions:
         say(["", *caution_lines()])
 
