@@ -43,9 +43,7 @@ def enough(
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
 ) -> None:
-    """Has the modification shifted consumption, by how much, and is the distance covered enough to say so?"""
-    if name is not None and name.startswith("-"):
-        raise typer.BadParameter(f"no such option: {name}")
+    """Say whether a modification shifted consumption. By how much, and how far is still to go to be sure."""
     rule = _rule(looks, open_ended)
     logbook = readable(context)
     if rule == "counted" and not isinstance(logbook, Store):
@@ -54,9 +52,9 @@ def enough(
     answers, refusals = asking.answered(
         asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, rule))
     )
-    _print_json([a for _, a in answers]) if json else _print(answers, picture)
-    for question, answer in answers:
+    for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
         _keep(logbook, question, answer)
+    _print_json([a for _, a in answers]) if json else _print(answers, picture)
     waiting = exit_code and any(answer.verdict == "not-yet" for _, answer in answers)
     asking.leave(refusals, ExitStatus.NOT_YET if waiting else ExitStatus.DONE)
 

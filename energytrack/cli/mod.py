@@ -21,7 +21,14 @@ from energytrack.cli.context import (
     writable,
 )
 from energytrack.errors import EntryError
-from energytrack.logbook.checks import check_date, check_known, check_odometer, check_reading, parse_date
+from energytrack.logbook.checks import (
+    check_date,
+    check_known,
+    check_name,
+    check_odometer,
+    check_reading,
+    parse_date,
+)
 from energytrack.logbook.quantities import distance_text, parse_number
 from energytrack.logbook.records import Entry, Modification, Vehicle
 from energytrack.logbook.store import Store
@@ -35,7 +42,7 @@ Name = Annotated[str, typer.Argument(help="What you call the part or setting.")]
 Odometer = Annotated[str | None, typer.Argument(help="Odometer value; may be left out with --date.")]
 
 
-@mod_commands.command("fitted", context_settings=options.NUMBERS_MAY_BE_NEGATIVE)
+@mod_commands.command("fitted", cls=options.NegativeNumbers)
 def fitted(
     context: typer.Context,
     name: Name,
@@ -58,14 +65,13 @@ def fitted(
     with store.transaction():
         day, km = _place(store, chosen, odometer, odometer_unit, date)
         graded = None if level is None else parse_number(level, "level")
+        check_name(name, "modification")
         expected = _known(known)
-        store.fit(
-            chosen.name, _checked_name(name), day, km, _target(target), graded, note, expected, not irreversible
-        )
+        store.fit(chosen.name, name, day, km, _target(target), graded, note, expected, not irreversible)
     _echo(chosen, "fitted", name, day, km, json, expected)
 
 
-@mod_commands.command("removed", context_settings=options.NUMBERS_MAY_BE_NEGATIVE)
+@mod_commands.command("removed", cls=options.NegativeNumbers)
 def removed(
     context: typer.Context,
     name: Name,
@@ -94,9 +100,10 @@ def list_modifications(
     if json:
         say_json({"modifications": [_columns(period) for _, own in found for period in own]})
         return
-    header = ("vehicle", "modification", "fitted", "removed", "level", "target")
+    header = ("vehicle", "modification", "fitted", "removed", "level", "target", "expected")
     rows = [_cells(each, period) for each, own in found for period in own]
-    say(aligned([header, *rows], right=(4, 5)) if rows else ["no modifications yet: log one with `mod fitted`"])
+    shown = len(header) if any(row[-1] for row in rows) else len(header) - 1  # few changes are known beforehand
+    say(aligned([each[:shown] for each in (header, *rows)], right=(4, 5)) if rows else ["no modifications yet: log one with `mod fitted`"])
 
 
 def _place(
@@ -118,12 +125,6 @@ def _place(
         return None, km
     check_reading(here.date, km, vehicle, before, after)
     return here.date, km
-
-
-def _checked_name(name: str) -> str:
-    if not name.strip() or not name.isprintable():
-        raise EntryError("a modification needs a name of printable characters")
-    return name
 
 
 def _target(text: str | None) -> float | None:
@@ -175,9 +176,10 @@ def _where(vehicle: Vehicle, day: dt.date | None, km: float | None) -> str:
 def _cells(vehicle: Vehicle, period: Modification) -> tuple[str, ...]:
     level = "" if period.level is None else f"{period.level:g}"
     target = "" if period.target_percent is None else f"{period.target_percent:g} %"
+    expected = "" if period.known is None else f"{period.known[0]:+g} to {period.known[1]:+g} %"
     start = _where(vehicle, period.fitted_date, period.fitted_km)
     end = _where(vehicle, period.removed_date, period.removed_km)
-    return vehicle.name, period.name, start, end or "still on", level, target
+    return vehicle.name, period.name, start, end or "still on", level, target, expected
 
 
 def _columns(period: Modification) -> dict[str, Any]:
