@@ -100,10 +100,13 @@ def list_modifications(
     if json:
         say_json({"modifications": [_columns(period) for _, own in found for period in own]})
         return
-    header = ("vehicle", "modification", "fitted", "removed", "level", "target", "expected")
     rows = [_cells(each, period) for each, own in found for period in own]
+    if not rows:
+        say(["no modifications yet: log one with `mod fitted`"])
+        return
+    header = ("vehicle", "modification", "fitted", "removed", "level", "target", "expected")
     shown = len(header) if any(row[-1] for row in rows) else len(header) - 1  # few changes are known beforehand
-    say(aligned([each[:shown] for each in (header, *rows)], right=(4, 5)) if rows else ["no modifications yet: log one with `mod fitted`"])
+    say(aligned([row[:shown] for row in (header, *rows)], right=(4, 5)))
 
 
 def _place(
