@@ -8,20 +8,21 @@ from dataclasses import replace
 from math import sqrt
 from typing import TYPE_CHECKING
 
-from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.frames import modifications_from_frame, observe_frames
 from energytrack.consumption.observations import Observations
 from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
-from energytrack.inference.confounding import confounders, in_words, most_telling
+from energytrack.inference.confounding import with_confounders
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import need, remedies
+from energytrack.inference.known import with_known_change
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.response import from_first_level, has_levels, respond
-from energytrack.inference.results import Assessment, Verdict
+from energytrack.inference.results import Assessment, Rule, Verdict
 from energytrack.inference.several import never_apart, refusal, together, without
 
 if TYPE_CHECKING:
@@ -42,17 +43,21 @@ def assess(
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
     every_look: bool = True,
+    rule: Rule = "every-look",
+    looks_taken: Sequence[float] = (),
 ) -> Assessment:
     """Answer the main question for one modification of one vehicle.
 
     entries, modifications, weather, events: tables as in docs/reference.md, of one vehicle. `capacity` in `unit`
     (L, kg, kWh) is estimated from the log where it is not given. `covariates` names numeric columns used besides
     temperature and speed. `every_look=False` looks only once, at the end, as if nobody had looked before.
+    `rule`: "every-look", whose bound holds however often someone looks; "counted", where only the looks taken count:
+    those at the odometer positions `looks_taken` (km) and this one; "open-ended", a watch that never closes.
 
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
-    not in the table, InferenceError for a target, confidence or power outside its range.
+    not in the table, InferenceError for a target, confidence or power outside its range, or an unknown rule.
     """
-    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
+    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()), rule)
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
@@ -63,12 +68,11 @@ def assess(
     if partners:
         observed, notes = without(observed, partners), (refusal(name, partners), *notes)
     observed = from_first_level(observed, name)
-    states = take_looks(observed, question, every=every_look)
+    states = take_looks(observed, question, every=every_look, taken=looks_taken)
     blank = replace(_blank(vehicle, observed, question, notes), never_apart=partners)
-    if not states:
-        return _before_the_first_look(blank, observed, question)
-    answer = _answer(blank, observed, question, states)
-    if not has_levels(modifications, name):
+    answer = _answer(blank, observed, question, states) if states else _before_the_first_look(blank, observed, question)
+    answer = with_known_change(answer, modifications_from_frame(modifications, vehicle or None))
+    if not states or not has_levels(modifications, name):
         return answer
     graded = respond(
         entries,
@@ -88,7 +92,7 @@ def assess(
 
 def _answer(blank: Assessment, observed: Observations, question: Question, states: list[State]) -> Assessment:
     now, found = states[-1], finding(states, question.target)
-    shift, theta = now.shift, bounds.drift(question.alpha, question.power)
+    shift, theta = now.shift, question.drift
     answer = replace(
         blank,
         shift_percent=100 * shift.ratio,
@@ -106,20 +110,7 @@ def _answer(blank: Assessment, observed: Observations, question: Question, state
     )
     if found is not None:
         return _closed(answer, *found, question)
-    return _with_confounders(_open(answer, now.model, question), now.model, question)
-
-
-def _with_confounders(answer: Assessment, model: Model, question: Question) -> Assessment:
-    """While the test is open: what changed together with the part, and which driving would tell them apart."""
-    moved = confounders(model, 1 / question.information if answer.distance_to_go_km else None)
-    advice = {mover.condition: most_telling(model, mover.condition) for mover in moved}
-    said = [in_words(mover, answer.distance_to_go_km, advice[mover.condition]) for mover in moved]
-    return replace(
-        answer,
-        confounders=moved,
-        advice=tuple(told for told in advice.values() if told is not None),
-        warnings=(*answer.warnings, *said),
-    )
+    return with_confounders(_open(answer, now.model, question), now.model, question)
 
 
 def _before_the_first_look(blank: Assessment, observed: Observations, question: Question) -> Assessment:
@@ -142,16 +133,16 @@ def _open(answer: Assessment, model: Model, question: Question) -> Assessment:
     """The test goes on: how far, or why not and what would help."""
     required = need(model, always_fitted, question)
     driven, central = answer.distance_modified_km, required.central
-    theta = bounds.drift(question.alpha, question.power)
+    expected = required.expected_km if question.has_end else None  # known for the bound that ends at this distance
     return replace(
         answer,
-        verdict="out-of-reach" if central is None else "not-yet",
+        verdict="out-of-reach" if central is None and question.has_end else "not-yet",
         distance_needed_km=None if central is None else driven + central.distance_km,
         distance_to_go_km=None if central is None else central.distance_km,
         distance_to_go_interval_km=required.interval_km,
         days_to_go=None if central is None else central.days,
-        distance_expected_km=None if required.expected_km is None else driven + required.expected_km,
-        resolvable_at_best_percent=100 * theta * sqrt(required.best_variance),
+        distance_expected_km=None if expected is None else driven + expected,
+        resolvable_at_best_percent=100 * question.drift * sqrt(required.best_variance),
         remedies=() if central else remedies(model, required, question),
     )
 
@@ -206,6 +197,7 @@ def _blank(vehicle: str, observed: Observations, question: Question, notes: tupl
         remedies=(),
         expectation=None,
         warnings=notes,
+        rule=question.rule,
     )
 
 

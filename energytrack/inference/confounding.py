@@ -17,12 +17,26 @@ from energytrack.consumption.terms import condition_of
 from energytrack.inference.ahead import Road, always_fitted, reach, road
 from energytrack.inference.model import Model, stack
 from energytrack.inference.noise import Array
-from energytrack.inference.results import Advice, Confounder
+from energytrack.inference.question import Question
+from energytrack.inference.results import Advice, Assessment, Confounder
 from energytrack.inference.shift import SHIFT, contrast_variance
 
 WORTH_SAYING = 1.25  # variance inflation
 _TRIED = (10, 30, 50, 70, 90)  # percentiles of a condition among which driving is compared
 _WORTH_SEEKING = 1.3  # times the information of usual driving
+
+
+def with_confounders(answer: Assessment, model: Model, question: Question) -> Assessment:
+    """While the test is open: what changed together with the part, and which driving would tell them apart."""
+    moved = confounders(model, 1 / question.information if answer.distance_to_go_km else None)
+    advice = {mover.condition: most_telling(model, mover.condition) for mover in moved}
+    said = [in_words(mover, answer.distance_to_go_km, advice[mover.condition]) for mover in moved]
+    return replace(
+        answer,
+        confounders=moved,
+        advice=tuple(told for told in advice.values() if told is not None),
+        warnings=(*answer.warnings, *said),
+    )
 
 
 def confounders(model: Model, variance_needed: float | None = None) -> tuple[Confounder, ...]:

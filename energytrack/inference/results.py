@@ -11,6 +11,8 @@ from dataclasses import asdict, dataclass
 from typing import Any, Literal
 
 Verdict = Literal["shifted", "no-shift-of-target-size", "not-yet", "out-of-reach", "no-baseline", "closed-unclear"]
+Rule = Literal["every-look", "counted", "open-ended"]
+KnownChange = Literal["seen", "seen-otherwise", "not-seen-yet"]
 Range = tuple[float, float]
 
 
@@ -211,6 +213,10 @@ class Assessment:
     never_apart: tuple[str, ...] = ()  # modifications this answer is for as well: the log cannot tell them apart
     together: Together | None = None  # None where the log holds no other modification
     response: Response | None = None  # None where the modification has no levels
+    rule: Rule = "every-look"  # for looks
+    known_percent: Range | None = None  # shift expected of a known change
+    known_change: KnownChange | None = None  # whether the log saw it
+    known_change_logged: bool = True  # of this vehicle, ever
 
     @property
     def is_open(self) -> bool:
