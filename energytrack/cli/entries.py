@@ -45,20 +45,22 @@ class Line:
     entry: Entry
     consumption: float | None
     is_unusual: bool
+    slips: tuple[str, ...] = ()  # what may have happened, where it is unusual
 
 
 def _newest(logbook: Logbook, vehicle: Vehicle, last: int) -> list[Line]:
     """The newest `last` entries, judged by the record of those before them too."""
-    from energytrack.consumption.meaning import RECENT_ENTRIES, unusual
+    from energytrack.consumption.meaning import RECENT_ENTRIES, slip_lines, unusual
     from energytrack.consumption.segments import close_segments
 
     recent = logbook.last_entries(vehicle.name, last + RECENT_ENTRIES)
     segmented = close_segments(recent, logbook.events(vehicle.name), capacity=vehicle.capacity, unit=vehicle.unit)
-    closed = {
-        segment.legs[-1].entry: (segment.energy / segment.distance_km, flag)
-        for segment, flag in zip(segmented.segments, unusual(segmented.segments), strict=True)
-    }
-    lines = [Line(entry, *closed.get(index, (None, False))) for index, entry in enumerate(segmented.entries)]
+    lines = [Line(entry, None, False) for entry in segmented.entries]
+    for which, flag in enumerate(unusual(segmented.segments)):
+        segment = segmented.segments[which]
+        closing = segment.legs[-1].entry
+        slips = tuple(slip_lines(segmented, which, vehicle)) if flag else ()
+        lines[closing] = Line(segmented.entries[closing], segment.energy / segment.distance_km, flag, slips)
     return lines[-last:]
 
 
@@ -71,7 +73,8 @@ def entry_columns(entry: Entry) -> dict[str, Any]:
 
 
 def _columns(line: Line) -> dict[str, Any]:
-    return {**entry_columns(line.entry), "energy_per_km": line.consumption, "unusual": line.is_unusual}
+    judged = {"energy_per_km": line.consumption, "unusual": line.is_unusual, "slips": list(line.slips)}
+    return {**entry_columns(line.entry), **judged}
 
 
 def _table(vehicle: Vehicle, lines: list[Line], last: int) -> list[str]:
@@ -96,7 +99,7 @@ def _place(vehicle: Vehicle, entry: Entry) -> str:
 
 def _flags(line: Line) -> list[str]:
     entry = line.entry
-    unlike = ["unusual"] if line.is_unusual else []
+    unlike = ["unusual", *line.slips[:1]] if line.is_unusual else []
     level = [] if entry.level_percent is None else [f"level {entry.level_percent:g} %"]
     partial = ["partial"] if not entry.full and entry.level_percent is None else []
     missed = ["entries missing before"] if entry.missed else []

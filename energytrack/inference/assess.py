@@ -6,12 +6,13 @@ import datetime as dt
 from collections.abc import Sequence
 from dataclasses import replace
 from math import sqrt
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
-from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.frames import observe_log
 from energytrack.consumption.observations import Observations
+from energytrack.consumption.oddities import set_aside as sort_out
 from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
@@ -21,7 +22,9 @@ from energytrack.inference.distance import Need, need, remedies
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
 from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
-from energytrack.inference.results import Assessment, Verdict
+from energytrack.inference.results import Assessment, Verdict, WithAll
+from energytrack.inference.suspects import suspects
+from energytrack.logbook.records import Vehicle
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -41,6 +44,8 @@ def assess(
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
     every_look: bool = True,
+    set_aside: Literal["odd", "none"] = "odd",
+    typed_in: tuple[str, str | None] = ("km", None),
 ) -> Assessment:
     """Answer the main question for one modification of one vehicle.
 
@@ -53,18 +58,36 @@ def assess(
     """
     question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
     bounds.drift(question.alpha, power)  # refuses a confidence or power outside its range before any work
-    observed, notes = observe_frames(
+    observed, notes, segmented = observe_log(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
     if name not in observed.names:
         raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
-    states = take_looks(observed, question, every=every_look)
-    blank = _blank(vehicle, observed, question, notes)
-    return _answer(blank, observed, question, states) if states else _before_the_first_look(blank, observed, question)
+    found = sort_out(observed, question.covariates) if set_aside == "odd" else None
+    kept = observed if found is None else found.kept
+    answer = _decided(_blank(vehicle, kept, question, notes), observed, question, every_look, odd=found is not None)
+    if found is None or not found.odd:
+        return answer
+    with_all = _decided(_blank(vehicle, observed, question, notes), observed, question, every_look, odd=False)
+    typist = Vehicle(vehicle, "", unit, capacity, typed_in[0], typed_unit=typed_in[1])
+    return replace(
+        answer,
+        set_aside=suspects(segmented, found, typist),
+        verdict_with_all=WithAll(with_all.verdict, with_all.shift_percent, with_all.interval_percent),
+    )
 
 
-def _answer(blank: Assessment, observed: Observations, question: Question, states: list[State]) -> Assessment:
+def _decided(blank: Assessment, observed: Observations, question: Question, every: bool, *, odd: bool) -> Assessment:
+    """The answer from the whole log, or with what is odd in it set aside."""
+    states = take_looks(observed, question, every=every, odd=odd)
+    if states:
+        return _answer(blank, question, states)
+    left = sort_out(observed, question.covariates).kept if odd else observed
+    return _before_the_first_look(blank, left, question)
+
+
+def _answer(blank: Assessment, question: Question, states: list[State]) -> Assessment:
     now, found = states[-1], finding(states, question.target)
     shift, theta = now.shift, bounds.drift(question.alpha, question.power)
     answer = replace(
