@@ -32,6 +32,9 @@ def enough(
     covariate: Annotated[
         list[str] | None, typer.Option(metavar="COLUMN", help="A further numeric column to allow for; repeatable.")
     ] = None,
+    keep_all: Annotated[
+        bool, typer.Option("--keep-all", help="Set nothing aside, however far it stands from its neighbours.")
+    ] = False,
     picture: Annotated[bool, typer.Option("--picture", help="Draw how the range narrowed with distance.")] = False,
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
@@ -42,7 +45,7 @@ def enough(
     logbook = readable(context)
     asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
     answers, refusals = asking.answered(
-        asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate))
+        asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, keep_all))
     )
     _print_json([a for _, a in answers]) if json else _print(answers, picture)
     for question, answer in answers:
@@ -52,7 +55,12 @@ def enough(
 
 
 def _assess(
-    logbook: Logbook, question: asking.Question, confidence: float, power: float, covariates: list[str] | None
+    logbook: Logbook,
+    question: asking.Question,
+    confidence: float,
+    power: float,
+    covariates: list[str] | None,
+    keep_all: bool,
 ) -> Assessment:
     from energytrack.inference.assess import assess
 
@@ -63,6 +71,8 @@ def _assess(
         confidence=confidence,
         power=power,
         covariates=covariates or None,
+        set_aside="none" if keep_all else "odd",
+        typed_in=(question.vehicle.distance_unit, question.vehicle.typed_unit),
     )
     return replace(answer, vehicle=question.vehicle.name)
 

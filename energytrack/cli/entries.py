@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Annotated, Any
 
 import typer
@@ -56,11 +56,14 @@ def _newest(logbook: Logbook, vehicle: Vehicle, last: int) -> list[Line]:
     recent = logbook.last_entries(vehicle.name, last + RECENT_ENTRIES)
     segmented = close_segments(recent, logbook.events(vehicle.name), capacity=vehicle.capacity, unit=vehicle.unit)
     lines = [Line(entry, None, False) for entry in segmented.entries]
-    for which, flag in enumerate(unusual(segmented.segments)):
-        segment = segmented.segments[which]
-        closing = segment.legs[-1].entry
-        slips = tuple(slip_lines(segmented, which, vehicle)) if flag else ()
-        lines[closing] = Line(segmented.entries[closing], segment.energy / segment.distance_km, flag, slips)
+    flags = unusual(segmented.segments)
+    slips = slip_lines(segmented, [which for which, flag in enumerate(flags) if flag], vehicle)
+    for which, segment in enumerate(segmented.segments):
+        closing = segmented.entries[segment.legs[-1].entry]
+        told = Line(closing, segment.energy / segment.distance_km, False)
+        if flags[which] and not closing.confirmed:
+            told = replace(told, is_unusual=True, slips=tuple(slips[which]))
+        lines[segment.legs[-1].entry] = told
     return lines[-last:]
 
 
@@ -103,4 +106,5 @@ def _flags(line: Line) -> list[str]:
     level = [] if entry.level_percent is None else [f"level {entry.level_percent:g} %"]
     partial = ["partial"] if not entry.full and entry.level_percent is None else []
     missed = ["entries missing before"] if entry.missed else []
-    return [*unlike, *level, *partial, *missed, *([entry.note] if entry.note else [])]
+    sure = ["confirmed"] if entry.confirmed else []
+    return [*unlike, *level, *partial, *missed, *sure, *([entry.note] if entry.note else [])]

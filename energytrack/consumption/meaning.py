@@ -73,14 +73,19 @@ def unusual(segments: Sequence[Segment]) -> list[bool]:
     return [abs(deviation) > UNUSUAL_SD * sd for deviation in deviations]
 
 
-def slip_lines(segmented: SegmentedLog, which: int, vehicle: Vehicle) -> list[str]:
-    """What may have happened in an unusual segment, held against the vehicle's own record of the others."""
+def slip_lines(segmented: SegmentedLog, unlike: Sequence[int], vehicle: Vehicle) -> dict[int, list[str]]:
+    """What may have happened in each of the unusual segments, held against the vehicle's own record."""
     segments = segmented.segments
-    others = [*segments[:which], *segments[which + 1 :]]
-    usual, _, sd = _record(others)
-    scatter = [sd / _relative_length(segment, others) for segment in segments]
-    case = Case(segmented, which, [usual] * len(segments), scatter, vehicle)
-    return [str(slip) for slip in find_slips(case)]
+    if not unlike:
+        return {}
+    usual, _, sd = _record(segments)
+    usual_km = _median(segment.distance_km for segment in segments)
+    scatter = [sd / min(1.0, segment.distance_km / usual_km) for segment in segments]
+    expected = [usual] * len(segments)
+    return {
+        which: [str(slip) for slip in find_slips(Case(segmented, which, expected, scatter, vehicle))]
+        for which in unlike
+    }
 
 
 def _record(segments: Sequence[Segment]) -> tuple[float, list[float], float]:
@@ -174,7 +179,7 @@ def _compared(
     ]
     if unusual(segmented.segments)[which]:
         lines.append("unusual for this vehicle: kept; check the amount and the odometer")
-        lines += slip_lines(segmented, which, vehicle)
+        lines += slip_lines(segmented, [which], vehicle)[which]
     return lines
 
 

@@ -95,7 +95,7 @@ def observe(
 
 
 def _confirmed(segmented: SegmentedLog) -> NDArray[np.bool_]:
-    sure = [getattr(entry, "confirmed", False) for entry in segmented.entries]
+    sure = [entry.confirmed for entry in segmented.entries]
     return np.array([any(sure[leg.entry] for leg in segment.legs) for segment in segmented.segments], dtype=np.bool_)
 
 

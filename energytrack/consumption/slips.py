@@ -26,6 +26,7 @@ FITS_SD = 2.0  # a corrected segment lies this close to what was expected of it
 _PARTNER_SD = 2.0  # least deviation of the other half of a pair
 _MERGED_SD = 2.5  # a pair taken together
 _OVERFULL = 1.3  # of capacity: no amount is larger
+_NEAR = 20  # segments on each side that tell what amount is usual
 _USUAL_AMOUNT = 0.6  # of the median amount: what a tank after a forgotten entry holds at least
 
 
@@ -186,7 +187,8 @@ def _gallons(case: Case) -> list[Slip]:
 def _missing_entry(case: Case) -> list[Slip]:
     """About twice the distance on a usual amount: half of the consumption."""
     segment, segments = case.segment, case.segmented.segments
-    usual = sorted(other.energy for other in segments)[len(segments) // 2]
+    near = segments[max(0, case.which - _NEAR) : case.which + _NEAR + 1]
+    usual = sorted(other.energy for other in near)[len(near) // 2]
     halved = case.gap(case.which, segment.distance_km / 2, segment.energy)
     if segment.energy < _USUAL_AMOUNT * usual or halved > FITS_SD:
         return []

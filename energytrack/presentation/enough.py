@@ -7,7 +7,7 @@ from math import isfinite
 from rich.text import Text
 
 from energytrack.inference.results import Assessment
-from energytrack.presentation import advice, bar, conditions, figures, picture, scatter
+from energytrack.presentation import advice, bar, conditions, figures, picture, scatter, set_aside
 from energytrack.presentation.answer import count, sentence, so_far
 from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, labelled, wrap
@@ -40,7 +40,7 @@ def _blocks(a: Assessment, unit: str, width: int, draw: bool) -> list[list[str]]
             "what the conditions do",
             labelled([("  " + label, value) for label, value in conditions.rows(a.covariates, unit)], width),
         ),
-        bullets(map(plain_text, a.warnings), "! ", width),
+        bullets([*set_aside.told(a, unit), *map(plain_text, a.warnings)], "! ", width),
         bullets(advice.next_steps(a, unit), "> ", width),
     ]
 
