@@ -44,7 +44,7 @@ class Odd:
     """One segment set aside, or a pair merged because the level (or the place) between the two does not fit."""
 
     segment: int  # the first of a pair
-    deviation_sd: float  # of the odder one of a pair
+    deviation_sd: float  # of a pair: of the odder one, with the sign of the first
     is_pair: bool
 
 
@@ -176,8 +176,9 @@ def _odd(observed: Observations, judgement: Judgement) -> tuple[Odd, ...]:
         first = _pair(observed, judgement, segment, used)
         members = [segment] if first is None else [first, first + 1]
         used.update(members)
-        worst = max((float(judgement.deviation_sd[k]) for k in members), key=abs)
-        found.append(Odd(members[0], worst, first is not None))
+        worst = float(np.abs(judgement.deviation_sd[members]).max())
+        own = observed.energy[members[0]] - judgement.expected[members[0]] * observed.distance_km[members[0]]
+        found.append(Odd(members[0], float(np.copysign(worst, own)), first is not None))
     return tuple(sorted(found, key=lambda odd: odd.segment))
 
 
