@@ -28,7 +28,7 @@ TABLES = {
 ONE_LINE = re.compile(r"\$ |energytrack: |note: |next: |\S+:\d+: ")
 RESULTS = (
     *(results.Assessment, results.Noise, results.Covariate, results.Look, results.Expectation, results.Remedy),
-    *(results.Plan, results.Design),
+    *(results.SetAside, results.WithAll, results.Plan, results.Design),
 )
 
 
