@@ -30,6 +30,7 @@ RESULTS = (
     *(results.Assessment, results.Noise, results.Covariate, results.Look, results.Expectation, results.Remedy),
     *(results.Plan, results.Design, results.Confounder, results.Advice, results.Together, results.Effect),
     *(results.Response, results.LevelEffect, results.Comparison, results.PairwiseShift, results.Standing),
+    *(results.SetAside, results.WithAll),
 )
 
 

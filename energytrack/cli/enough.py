@@ -46,6 +46,9 @@ def enough(
     open_ended: Annotated[
         bool, typer.Option("--open-ended", help="Watch without an end: only a shift closes the question.")
     ] = False,
+    keep_all: Annotated[
+        bool, typer.Option("--keep-all", help="Set nothing aside, however far it stands from its neighbours.")
+    ] = False,
     picture: Annotated[bool, typer.Option("--picture", help="Draw how the range narrowed with distance.")] = False,
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
@@ -60,7 +63,7 @@ def enough(
         raise LogbookError(f"{logbook.path} is a folder of tables and keeps no looks: use --looks every, or import it")
     asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
     answers, refusals = asking.answered(
-        asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, rule))
+        asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, rule, keep_all))
     )
     if target is None and not covariate and (confidence, power) == USUAL_CERTAINTY:
         for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
@@ -87,6 +90,7 @@ def _assess(
     power: float,
     covariates: list[str] | None,
     rule: Rule,
+    keep_all: bool,
 ) -> Assessment:
     from energytrack.inference.assess import assess
 
@@ -99,6 +103,8 @@ def _assess(
         covariates=covariates or None,
         rule=rule,
         looks_taken=logbook.looks(question.vehicle.name, question.modification),
+        set_aside="none" if keep_all else "odd",
+        typed_in=(question.vehicle.distance_unit, question.vehicle.typed_unit),
     )
     return replace(answer, vehicle=question.vehicle.name)
 

@@ -36,6 +36,8 @@ class Observations:
     names: tuple[str, ...]  # of the modifications, in order of first appearance
     unit: str
     capacity: float | None
+    entry: NDArray[np.intp]  # (n,) index of the entry that closes it, in driving order
+    confirmed: NDArray[np.bool_]  # (n,) holds an entry whose figures somebody confirmed
 
     def __len__(self) -> int:
         return len(self.distance_km)
@@ -91,7 +93,14 @@ def observe(
         names=names,
         unit=segmented.unit,
         capacity=segmented.capacity,
+        entry=np.array([segment.legs[-1].entry for segment in segments], dtype=np.intp),
+        confirmed=_confirmed(segmented),
     )
+
+
+def _confirmed(segmented: SegmentedLog) -> NDArray[np.bool_]:
+    sure = [entry.confirmed for entry in segmented.entries]
+    return np.array([any(sure[leg.entry] for leg in segment.legs) for segment in segmented.segments], dtype=np.bool_)
 
 
 def _conditions(

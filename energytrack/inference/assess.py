@@ -6,10 +6,11 @@ import datetime as dt
 from collections.abc import Sequence
 from dataclasses import replace
 from math import sqrt
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
-from energytrack.consumption.frames import modifications_from_frame, observe_frames
+from energytrack.consumption.frames import modifications_from_frame, observe_log
 from energytrack.consumption.observations import Observations
+from energytrack.consumption.oddities import set_aside as sort_out
 from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
@@ -22,8 +23,10 @@ from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.response import from_first_level, has_levels, respond
-from energytrack.inference.results import Assessment, Rule, Verdict
+from energytrack.inference.results import Assessment, Rule, Verdict, WithAll
 from energytrack.inference.several import never_apart, refusal, together, without
+from energytrack.inference.suspects import suspects
+from energytrack.logbook.records import Vehicle
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -45,6 +48,8 @@ def assess(
     every_look: bool = True,
     rule: Rule = "every-look",
     looks_taken: Sequence[float] = (),
+    set_aside: Literal["odd", "none"] = "odd",
+    typed_in: tuple[str, str | None] = ("km", None),
 ) -> Assessment:
     """Answer the main question for one modification of one vehicle.
 
@@ -58,7 +63,7 @@ def assess(
     not in the table, InferenceError for a target, confidence or power outside its range, or an unknown rule.
     """
     question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()), rule)
-    observed, notes = observe_frames(
+    observed, notes, segmented = observe_log(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
     if name not in observed.names:
@@ -68,11 +73,22 @@ def assess(
     if partners:
         observed, notes = without(observed, partners), (refusal(name, partners), *notes)
     observed = from_first_level(observed, name)
-    states = take_looks(observed, question, every=every_look, taken=looks_taken)
-    blank = replace(_blank(vehicle, observed, question, notes), never_apart=partners)
-    answer = _answer(blank, observed, question, states) if states else _before_the_first_look(blank, observed, question)
-    answer = with_known_change(answer, modifications_from_frame(modifications, vehicle or None))
-    if not states or not has_levels(modifications, name):
+    found = sort_out(observed, question.covariates) if set_aside == "odd" else None
+
+    def decided(odd: bool) -> Assessment:
+        blank = _blank(vehicle, found.kept if odd and found is not None else observed, question, notes)
+        return _decided(replace(blank, never_apart=partners), observed, question, every_look, looks_taken, odd=odd)
+
+    answer = with_known_change(decided(found is not None), modifications_from_frame(modifications, vehicle or None))
+    if found is not None and found.odd:
+        whole = decided(odd=False)
+        typist = Vehicle(vehicle, "", unit, capacity, typed_in[0], typed_unit=typed_in[1])
+        answer = replace(
+            answer,
+            set_aside=suspects(segmented, found, typist),
+            verdict_with_all=WithAll(whole.verdict, whole.shift_percent, whole.interval_percent),
+        )
+    if not answer.looks or not has_levels(modifications, name):
         return answer
     graded = respond(
         entries,
@@ -90,7 +106,18 @@ def assess(
     return replace(answer, response=graded)
 
 
-def _answer(blank: Assessment, observed: Observations, question: Question, states: list[State]) -> Assessment:
+def _decided(
+    blank: Assessment, observed: Observations, question: Question, every: bool, taken: Sequence[float], *, odd: bool
+) -> Assessment:
+    """The answer from the whole log, or with what is odd in it set aside."""
+    states = take_looks(observed, question, every=every, taken=taken, odd=odd)
+    if states:
+        return _answer(blank, question, states)
+    left = sort_out(observed, question.covariates).kept if odd else observed
+    return _before_the_first_look(blank, left, question)
+
+
+def _answer(blank: Assessment, question: Question, states: list[State]) -> Assessment:
     now, found = states[-1], finding(states, question.target)
     shift, theta = now.shift, question.drift
     answer = replace(

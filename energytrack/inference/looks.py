@@ -9,6 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from energytrack.consumption.observations import Observations
+from energytrack.consumption.oddities import set_aside
 from energytrack.inference import bounds, rules
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
@@ -56,21 +57,35 @@ def take_look(observed: Observations, question: Question, start: Array | None, w
 
 
 def take_looks(
-    observed: Observations, question: Question, *, every: bool, taken: Sequence[float] = ()
+    observed: Observations, question: Question, *, every: bool, taken: Sequence[float] = (), odd: bool = True
 ) -> list[State]:
     """States in driving order; only the last one where `every` is False. Empty without a baseline or a test phase.
 
-    `taken`: how far the log had come (km) at the looks taken before, where looks are counted.
+    taken: how far the log had come (km) at the looks taken before, where looks are counted.
+    odd: what stands out is set aside, at each look by the segments up to it. A look is only taken where its newest
+    segment is kept: one that stands out is held back until the next one agrees with it.
     """
     counts = look_points(observed, question.modification)
     if question.rule == "counted":
         counts = _counted(observed, question.modification, taken)
     watch = rules.watch(question.rule, question.alpha)
     states: list[State] = []
-    for count in counts if every else counts[-1:]:
-        start = states[-1].model.fit.theta if states else None
-        states.append(take_look(observed.head(count), question, start, watch))
+    for count in counts if every else reversed(counts):
+        seen = _kept(observed.head(count), question) if odd else observed.head(count)
+        if seen is None:
+            continue
+        states.append(take_look(seen, question, states[-1].model.fit.theta if states else None, watch))
+        if not every:
+            break
     return states
+
+
+def _kept(observed: Observations, question: Question) -> Observations | None:
+    """What is not odd in it; None where the newest segment is, or too little is left to compare."""
+    sorted_out = set_aside(observed, question.covariates)
+    left = sorted_out.kept
+    ready = sorted_out.newest_kept and len(look_points(left, question.modification)) > 0
+    return left if ready else None
 
 
 def look_points(observed: Observations, modification: str) -> list[int]:

@@ -174,6 +174,29 @@ class Remedy:
 
 
 @dataclass(frozen=True)
+class SetAside:
+    """An entry whose segment stands out from its neighbours, and which the answer therefore leaves out or merges."""
+
+    odometer_km: float | None  # None: a log without an odometer
+    date: str
+    energy: float  # as logged, in the vehicle's unit
+    deviation_sd: float  # of its consumption from what its neighbours predict, in robust sd; above 0: too much
+    suspicion: str  # what may have happened
+    suggestion: str  # what would fit
+    merged_with_next: bool  # only the level after it is doubted: its driving counts, together with the next
+    end_km: float  # position on the log's own scale
+
+
+@dataclass(frozen=True)
+class WithAll:
+    """The answer if nothing were set aside."""
+
+    verdict: Verdict
+    shift_percent: float | None
+    interval_percent: Range | None
+
+
+@dataclass(frozen=True)
 class Assessment:
     """Has the modification shifted consumption, by how much, and was the distance enough to say so?"""
 
@@ -217,6 +240,8 @@ class Assessment:
     known_percent: Range | None = None  # shift expected of a known change
     known_change: KnownChange | None = None  # whether the log saw it
     known_change_logged: bool = True  # of this vehicle, ever
+    set_aside: tuple[SetAside, ...] = ()
+    verdict_with_all: WithAll | None = None  # None: nothing was set aside
 
     @property
     def is_open(self) -> bool:

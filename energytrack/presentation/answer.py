@@ -6,6 +6,7 @@ from energytrack.inference.results import Assessment, Look, Remedy
 from energytrack.presentation import figures
 from energytrack.presentation.known import known_sentence
 from energytrack.presentation.plain import plain_text
+from energytrack.presentation.set_aside import follow_up
 from energytrack.presentation.text import join
 
 USUAL_BASELINE_KM = 3200.0  # four working weeks of a 160 km commute; common practice, no source
@@ -21,7 +22,7 @@ def sentence(a: Assessment, unit: str = "km") -> str:
         "no-baseline": _no_baseline,
         "closed-unclear": _unclear,
     }[a.verdict]
-    return " ".join(part for part in (say(a, unit), known_sentence(a)) if part)
+    return " ".join(filter(None, (say(a, unit), known_sentence(a), follow_up(a))))
 
 
 def contradicted(a: Assessment) -> bool:
