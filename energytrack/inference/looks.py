@@ -43,12 +43,16 @@ class State:
 
 def take_look(observed: Observations, question: Question, start: Array | None) -> State:
     """Fit what is known so far and hold the shift against its bound."""
-    model = fit_model(observed, question.modification, covariates=question.covariates, start=start)
+    return judged(fit_model(observed, question.modification, covariates=question.covariates, start=start), question)
+
+
+def judged(model: Model, question: Question) -> State:
+    """The test as a fitted model has it."""
     shift = shift_of(model.fit)
     priced = shift.standard_error * bounds.price(shift.freedom, question.alpha)
     share = min(1.0, 1 / priced**2 / question.information)
     bound = bounds.critical(share, shift.freedom, question.alpha)
-    return State(len(observed.energy), model, shift, share, bound, shift.interval(bound, model.fit))
+    return State(len(model.observed.energy), model, shift, share, bound, shift.interval(bound, model.fit))
 
 
 def take_looks(observed: Observations, question: Question, *, every: bool) -> list[State]:
