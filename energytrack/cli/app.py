@@ -31,6 +31,7 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "import": ("import_", "import_table"),
     "enough": ("enough", "enough"),
     "plan": ("plan", "plan"),
+    "rehearse": ("rehearse", "rehearse"),
 }
 
 

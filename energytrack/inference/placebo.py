@@ -40,6 +40,7 @@ class Called:
     one_look: bool
     averages_every_look: bool
     averages_one_look: bool
+    at_km: float
 
 
 def pretend(observed: Observations, shares: Sequence[float] | np.ndarray) -> Observations:
@@ -103,6 +104,7 @@ def call(place: Place) -> Called:
         one_look=abs(last.z) > mixture_quantile(question.alpha / 2, last.freedom),
         averages_every_look=any(tests),
         averages_one_look=tests[-1],
+        at_km=float(observed.start_km[side]),
     )
 
 
@@ -120,4 +122,5 @@ def summary(side: int, candidates: Sequence[int], called: Sequence[Called]) -> P
         called_one_look=sum(each.one_look for each in called),
         averages_every_look=sum(each.averages_every_look for each in called),
         averages_one_look=sum(each.averages_one_look for each in called),
+        called_at_km=tuple(each.at_km for each in called if each.every_look),
     )

@@ -57,6 +57,7 @@ class Placebo:
     called_one_look: int  # the plain range, looked at once
     averages_every_look: int  # Welch's test on the two averages, after every entry
     averages_one_look: int
+    called_at_km: tuple[float, ...]  # odometer values of the places that this test, looking every time, called a shift
 
 
 @dataclass(frozen=True)
