@@ -36,17 +36,15 @@ def enough(
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
 ) -> None:
-    """Has the modification shifted consumption, by how much, and is the distance covered enough to say so?"""
-    if name is not None and name.startswith("-"):
-        raise typer.BadParameter(f"no such option: {name}")
+    """Say whether a modification shifted consumption. By how much, and how far is still to go to be sure."""
     logbook = readable(context)
     asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
     answers, refusals = asking.answered(
         asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate))
     )
-    _print_json([a for _, a in answers]) if json else _print(answers, picture)
-    for question, answer in answers:
+    for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
         _keep(logbook, question, answer)
+    _print_json([a for _, a in answers]) if json else _print(answers, picture)
     waiting = exit_code and any(answer.verdict == "not-yet" for _, answer in answers)
     asking.leave(refusals, ExitStatus.NOT_YET if waiting else ExitStatus.DONE)
 

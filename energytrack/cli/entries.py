@@ -25,7 +25,7 @@ def entries(
     last: Annotated[int, typer.Option(min=1, max=MOST_ENTRIES, metavar="N", help="How many of the newest.")] = 20,
     json: options.Json = False,
 ) -> None:
-    """List the newest entries of each vehicle, oldest first, with what is special about them."""
+    """List the newest entries of each vehicle. Oldest first, with what is special about them."""
     logbook = readable(context)
     vehicles = the_vehicles(logbook, vehicle)
     listed = [(each, _newest(logbook, each, last)) for each in vehicles]

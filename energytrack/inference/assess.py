@@ -52,7 +52,6 @@ def assess(
     not in the table, InferenceError for a target, confidence or power outside its range.
     """
     question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
-    bounds.drift(question.alpha, power)  # refuses a confidence or power outside its range before any work
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )

@@ -68,7 +68,7 @@ def remedy(r: Remedy, unit: str) -> str:
     if r.distance_km is None:
         return f"{what}, though{goal} even that takes longer than can be foreseen"
     if r.distance_km < 1:
-        return f"{what}{goal}, which is driven already"
+        return f"{what}{goal}, for which the distance is driven already"
     return f"{what}, about {figures.distance(r.distance_km, unit)} more{goal}"
 
 
@@ -104,6 +104,12 @@ def _no_shift(a: Assessment, unit: str) -> str:
         return (
             f"Doubtful: a shift of {target} from {name} was ruled out{at}, "
             f"but what was driven since shows one: now {so_far(a)}."
+        )
+    span, bound = a.interval_percent, a.target_percent
+    if span is not None and (span[0] < -bound or span[1] > bound) and a.settled_at_km is not None:
+        return (
+            f"No: a shift of {target} from {name} was ruled out at {figures.driven(a.settled_at_km, unit)}. "
+            f"Measured now {so_far(a)}, which reaches past the target again."
         )
     return (
         f"No: any shift from {name} is smaller than the target of {target}. "

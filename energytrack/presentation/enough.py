@@ -85,7 +85,7 @@ def _shift(a: Assessment) -> list[Row]:
     if a.standard_error_percent is not None:
         error = a.standard_error_percent
         freedom = a.degrees_of_freedom
-        free = "" if freedom is None or not isfinite(freedom) else f", {freedom:.0f} degrees of freedom"
+        free = "" if freedom is None or not isfinite(freedom) else f", {count(round(freedom), 'degree')} of freedom"
         rows.append(("standard error", figures.percent(error, error) + free))
     now, best = a.resolvable_now_percent, a.resolvable_at_best_percent
     limits = ((now, "now"), (best, "at best"))

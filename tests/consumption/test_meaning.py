@@ -55,6 +55,13 @@ def test_first_entry(tmp_path):
     assert logged(store, fill(0, 1000, 40)) == ["first entry: consumption follows with the next full tank"]
 
 
+def test_more_than_the_tank_holds_is_flagged(book):
+    """A filling may exceed the stated capacity, filler neck and all, yet it is worth a second look."""
+    flag = "75.00 L is more than the capacity of 70.00 L: kept; check the amount"
+    assert flag in logged(book, fill(30, 5400, 75.0))
+    assert not any("capacity" in line for line in logged(book, fill(33, 6000, 70.0)))
+
+
 def test_full_tank_is_compared_with_the_recent_record(book):
     # 42.2 L / 500 km = 8.44; the median of 8.12 7.9 8.06 7.84 8.18 7.96 8.08 is 8.06: 4.7 % more.
     # Deviations 0.06 0.16 0 0.22 0.12 0.10 0.02: median 0.10, times 1.4826 / 8.06 = 1.84 %, twice that 4 %.

@@ -65,6 +65,15 @@ def test_a_shift_ruled_out_that_later_driving_shows() -> None:
     )
 
 
+def test_a_shift_ruled_out_whose_range_has_grown_past_the_target() -> None:
+    """The sentence must not call smaller than 3 % what may be 3.3 %."""
+    a = replace(NO_SHIFT, shift_percent=0.9, interval_percent=(-1.5, 3.3))
+    assert said(a) == (
+        "No: a shift of 3 % from side skirts was ruled out at 55,110 km. Measured now +0.9 %, look-proof range "
+        "-1.5 to +3.3 %, which reaches past the target again."
+    )
+
+
 def test_out_of_reach_says_what_would_do_and_keeps_the_target_where_it_can() -> None:
     assert "Within reach: take it off and on every 2 fill-ups, about 5,420 km more for 3 %." in said(OUT_OF_REACH)
     larger = (Remedy("larger-target", "5 %", 5.0, 3140.0),)
