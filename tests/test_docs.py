@@ -13,6 +13,7 @@ import pytest
 import typer
 
 from energytrack.cli.app import LOGBOOK_VARIABLE, ExitStatus, app
+from energytrack.inference import rehearsal_results as rehearsed
 from energytrack.inference import results
 from energytrack.logbook import columns
 from tests.documents import DOCUMENTS, ROOT, WIDTH, FailedCommandError, commands_of, console_lines, replay
@@ -29,6 +30,7 @@ ONE_LINE = re.compile(r"\$ |energytrack: |note: |next: |\S+:\d+: ")
 RESULTS = (
     *(results.Assessment, results.Noise, results.Covariate, results.Look, results.Expectation, results.Remedy),
     *(results.Plan, results.Design),
+    *(rehearsed.Rehearsal, rehearsed.Scenario, rehearsed.Rate, rehearsed.Settled, rehearsed.Placebo),
 )
 
 

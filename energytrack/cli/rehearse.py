@@ -34,7 +34,10 @@ def rehearse(
     ] = None,
     json: options.Json = False,
 ) -> None:
-    """Try the test on many logs like yours whose truth is known, and on changes that never happened."""
+    """Say how often logs like yours would fool the test.
+
+    Draws logs whose truth is known, and pretends changes in yours that never happened.
+    """
     if name is not None and name.startswith("-"):
         raise typer.BadParameter(f"no such option: {name}")
     logbook = readable(context)

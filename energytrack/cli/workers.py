@@ -28,6 +28,7 @@ def workers() -> Iterator[Executor]:
     try:
         yield pool
     except KeyboardInterrupt:
+        _ignore_interrupts()  # a second one must not disturb the end
         for worker in multiprocessing.active_children():
             worker.terminate()
         raise

@@ -20,7 +20,7 @@ from energytrack.inference.rehearsal_results import Placebo
 
 PRETENDED = "a pretended change"
 SIDES = (10, 20, 40)  # segments before and after the pretended change
-_MOST_PLACES = 60  # for each of them, evenly spread over the eligible ones
+_MOST_PLACES = 40  # for each of them, evenly spread over the eligible ones
 _FEWEST_AVERAGED = 2  # segments a standard deviation needs
 
 
@@ -54,8 +54,9 @@ def pretend(observed: Observations, shares: Sequence[float] | np.ndarray) -> Obs
 
 def places(observed: Observations, question: Question) -> dict[int, list[Place]]:
     """The places to try, by the number of segments on each side; none where the log is too short for one."""
-    return {side: [_place(observed, start, side, question) for start in _spread(starts(observed, side))]
-            for side in SIDES}  # fmt: skip
+    return {
+        side: [place(observed, start, side, question) for start in _spread(starts(observed, side))] for side in SIDES
+    }
 
 
 def starts(observed: Observations, side: int) -> list[int]:
@@ -79,7 +80,8 @@ def _spread(candidates: list[int]) -> list[int]:
     return [candidates[k] for k in np.linspace(0, len(candidates) - 1, _MOST_PLACES).round().astype(int)]
 
 
-def _place(observed: Observations, start: int, side: int, question: Question) -> Place:
+def place(observed: Observations, start: int, side: int, question: Question) -> Place:
+    """The stretch of `side` segments from `start` on, and as many with the change pretended."""
     bare = replace(observed, shares=observed.shares[:, :0], names=())  # what is fitted throughout is the vehicle itself
     stretch = bare.part(start, start + 2 * side)
     linked = stretch.linked.copy()

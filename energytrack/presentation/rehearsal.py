@@ -13,6 +13,7 @@ from energytrack.presentation.text import bullets, join, labelled, wrap
 
 _TOO_OFTEN = 1.5  # times the promised rate, from which the placebo is worth a word
 _USUAL_RUNS = 200
+_MANY = 100  # logs, from which a tenth of a percent is worth showing near 0 and 100
 
 
 def render(r: Rehearsal, *, unit: str = "km", width: int = 80, title: bool = False) -> list[Text]:
@@ -42,21 +43,26 @@ def _after(r: Rehearsal, unit: str) -> str:
     settled = r.target_shift.settled
     if settled is None or settled.median_km is None:
         return ""
-    return f", and half of those logs were settled within {figures.distance(settled.median_km, unit, digits=2)}"
+    return f"; half of these were settled within {figures.distance(settled.median_km, unit, digits=2)} with it fitted"
 
 
 def _percent(rate: Rate) -> str:
-    return join(f"{_share(rate.percent)} %")
+    return join(f"{_share(rate.percent, rate.of)} %")
 
 
 def _span(rate: Rate) -> str:
+    return join(f"{_ends_of(rate)} %")
+
+
+def _ends_of(rate: Rate) -> str:
     low, high = rate.interval_percent
-    return join(f"{_share(low)} to {_share(high)} %")
+    return f"{_share(low, rate.of)} to {_share(high, rate.of)}"
 
 
-def _share(percent: float) -> str:
-    """One decimal near 0 and 100, where it is worth one."""
-    return f"{percent:.1f}" if 0 < percent < 10 or 90 < percent < 100 else f"{percent:.0f}"
+def _share(percent: float, of: int) -> str:
+    """Whole percents; one decimal near 0 and 100, where enough logs were drawn for it to be worth one."""
+    fine = of >= _MANY and (0 < percent < 10 or 90 < percent < 100)
+    return f"{percent:.1f}" if fine else f"{percent:.0f}"
 
 
 def _blocks(r: Rehearsal, unit: str, width: int) -> list[list[str]]:
@@ -88,19 +94,19 @@ def _drawn(r: Rehearsal, unit: str) -> list[str]:
         ("range held the truth all along", [s.covered for s in both]),
         ("range held it at the end", [s.covered_at_end for s in both]),
     )
+    spans = [(None, None) if s.settled is None else (s.settled.median_interval_km, s.settled.range_km) for s in both]
     rows = [
         (f"of {r.runs:,} logs (95 % range)", "without a shift", f"shift of -{r.target_percent:g} %"),
         *((label, *map(_cell, pair)) for label, pair in rates),
         ("settled within, median", *(_median(s, unit) for s in both)),
-        ("  95 % range of the median", *(_ends(s.settled and s.settled.median_interval_km, unit) for s in both)),
-        ("  middle 80 % of the logs", *(_ends(s.settled and s.settled.range_km, unit) for s in both)),
+        ("  95 % range of the median", *(_ends(of_median, unit) for of_median, _ in spans)),
+        ("  middle 80 % of the logs", *(_ends(of_logs, unit) for _, of_logs in spans)),
     ]
     return aligned(rows, right=(1, 2))
 
 
 def _cell(rate: Rate) -> str:
-    low, high = rate.interval_percent
-    return f"{_share(rate.percent)} %  ({_share(low)} to {_share(high)})"
+    return f"{_share(rate.percent, rate.of)} %  ({_ends_of(rate)})"
 
 
 def _median(scenario: Scenario, unit: str) -> str:
@@ -111,9 +117,9 @@ def _median(scenario: Scenario, unit: str) -> str:
 
 
 def _ends(ends: Ends | None, unit: str) -> str:
-    if ends is None or ends[0] is None:
+    low, high = ends or (None, None)
+    if low is None:
         return "-"
-    low, high = ends
     return f"{_km(low, unit)} {unit} or more" if high is None else f"{_km(low, unit)} to {_km(high, unit)} {unit}"
 
 
@@ -135,7 +141,7 @@ def _placebo(r: Rehearsal) -> list[str]:
         ("places tried", *(f"{p.places:,}" for p in r.placebo)),
         ("  that share no segment", *(f"{p.separate:,}" for p in r.placebo)),
         *(
-            (label, *(f"{_share(100 * n / p.places)} %" for n, p in zip(called, r.placebo, strict=True)))
+            (label, *(f"{_share(100 * n / p.places, p.places)} %" for n, p in zip(called, r.placebo, strict=True)))
             for label, called in methods
         ),
     ]
@@ -174,11 +180,11 @@ def _about_power(r: Rehearsal) -> list[str]:
     target, power = figures.target(r.target_percent), join(f"{100 * r.power:g} %")
     if high < 100 * r.power:
         return [
-            f"Within this log, finding {target} falls short of a {power} chance. Drive on, or see which way is "
+            f"Within this log, finding {target} falls short of a chance of {power}. Drive on, or see which way is "
             f"shorter: {join(f'energytrack plan --target {r.target_percent:g}')}"
         ]
     if low >= 100 * r.power:
-        return [f"This log is long enough to find {target} with a {power} chance."]
+        return [f"This log is long enough to find {target} with a chance of {power}."]
     return []
 
 
