@@ -1,7 +1,7 @@
 """Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
 
-The Python interface: open_logbook, assess, plan, compare, respond. Each is loaded when it is first used, so that
-importing the package costs nothing.
+The Python interface: open_logbook, assess, plan, compare, respond, rehearse. Each is loaded when it is first used, so
+that importing the package costs nothing.
 """
 
 from __future__ import annotations
@@ -15,6 +15,7 @@ _HOMES = {
     "plan": "energytrack.inference.designs",
     "compare": "energytrack.inference.comparison",
     "respond": "energytrack.inference.response",
+    "rehearse": "energytrack.inference.rehearsal",
 }
 
 

@@ -13,6 +13,7 @@ import pytest
 import typer
 
 from energytrack.cli.app import LOGBOOK_VARIABLE, ExitStatus, app
+from energytrack.inference import rehearsal_results as rehearsed
 from energytrack.inference import results
 from energytrack.logbook import columns
 from tests.documents import DOCUMENTS, ROOT, WIDTH, FailedCommandError, commands_of, console_lines, replay
@@ -31,6 +32,7 @@ RESULTS = (
     *(results.Plan, results.Design, results.Confounder, results.Advice, results.Together, results.Effect),
     *(results.Response, results.LevelEffect, results.Comparison, results.PairwiseShift, results.Standing),
     *(results.SetAside, results.WithAll),
+    *(rehearsed.Rehearsal, rehearsed.Scenario, rehearsed.Rate, rehearsed.Settled, rehearsed.Placebo),
 )
 
 

@@ -13,6 +13,7 @@ PACKAGE = Path(__file__).parent.parent / "energytrack"
 LAYERS = ["errors", "logbook", "consumption", "inference", "presentation", "cli"]
 LIGHT = [
     "inference.results",
+    "inference.rehearsal_results",
     *(f"consumption.{name}" for name in ("positions", "segments", "shares", "slips", "meaning", "terms")),
 ]
 MODULES = {

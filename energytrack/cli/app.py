@@ -33,6 +33,7 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "weather": ("weather", "weather"),
     "enough": ("enough", "enough"),
     "plan": ("plan", "plan"),
+    "rehearse": ("rehearse", "rehearse"),
 }
 
 

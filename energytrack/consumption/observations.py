@@ -44,16 +44,21 @@ class Observations:
 
     def head(self, count: int) -> Observations:
         """The first `count` segments, as views: what was known after that many."""
+        return self.part(0, count)
+
+    def part(self, start: int, stop: int) -> Observations:
+        """Segments `start` to `stop` (exclusive), as views."""
+        cut = slice(start, stop)
         shortened = {
-            field.name: getattr(self, field.name)[:count]
+            field.name: getattr(self, field.name)[cut]
             for field in fields(self)
             if isinstance(getattr(self, field.name), np.ndarray)
         }
         return replace(
             self,
             **shortened,
-            conditions={name: values[:count] for name, values in self.conditions.items()},
-            known_share={name: values[:count] for name, values in self.known_share.items()},
+            conditions={name: values[cut] for name, values in self.conditions.items()},
+            known_share={name: values[cut] for name, values in self.known_share.items()},
         )
 
 

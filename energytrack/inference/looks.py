@@ -47,13 +47,17 @@ class State:
 def take_look(observed: Observations, question: Question, start: Array | None, watch: rules.Watch) -> State:
     """Fit what is known so far and hold the shift against the bound of the rule at work."""
     model = fit_model(observed, question.modification, covariates=question.covariates, start=start)
+    return judged(model, question, watch)
+
+
+def judged(model: Model, question: Question, watch: rules.Watch) -> State:
+    """The test as a fitted model has it."""
     shift = shift_of(model.fit)
     priced = shift.standard_error * bounds.price(shift.freedom, question.alpha)
     share = 1 / priced**2 / question.information
     known = watch(share)
     bound = None if known is None else bounds.widened(known, shift.freedom)
-    interval = shift.interval(bound)
-    return State(len(observed.energy), model, shift, min(1.0, share), question.has_end, bound, interval)
+    return State(len(model.observed), model, shift, min(1.0, share), question.has_end, bound, shift.interval(bound))
 
 
 def take_looks(
