@@ -13,6 +13,7 @@ from scipy.stats import binom
 import energytrack as et
 from energytrack.consumption.frames import observe_frames
 from energytrack.errors import InferenceError, UnknownNameError
+from energytrack.inference import rules
 from energytrack.inference.jobs import run_all
 from energytrack.inference.looks import take_look
 from energytrack.inference.question import Question
@@ -21,6 +22,7 @@ from energytrack.inference.stage import Stage, draw_log, set_stage, with_shift
 from tests.simulation import SimulatedLog, simulate
 from tests.uses import HOUSEHOLD, SLOPPY_FILLS, STEADY_COMMUTE, Use
 
+EVERY = rules.watch("every-look", 0.05)
 QUESTION = Question("part", 0.03, 0.05, 0.80)
 
 
@@ -82,8 +84,8 @@ def test_one_fit_serves_both_shifts(use: Use):
     ratio = -0.03
     shifted = replace(drawn, energy=drawn.energy + ratio * stage.base * drawn.distance_km * drawn.shares[:, 0])
     for count in (40, 59):
-        quick = with_shift(stage, take_look(drawn.head(count), QUESTION, None), ratio)
-        anew = take_look(shifted.head(count), QUESTION, None)
+        quick = with_shift(stage, take_look(drawn.head(count), QUESTION, None, EVERY), ratio)
+        anew = take_look(shifted.head(count), QUESTION, None, EVERY)
         error = anew.shift.standard_error
         assert quick.shift.ratio == pytest.approx(anew.shift.ratio, abs=0.05 * error)
         assert quick.shift.standard_error == pytest.approx(error, rel=0.03)
