@@ -7,11 +7,11 @@ from typing import TYPE_CHECKING
 
 from energytrack.consumption.frames import observe_frames
 from energytrack.inference.describe import noise_of
-from energytrack.inference.distance import ALTERNATIONS, design
 from energytrack.inference.looks import FEWEST_BASELINE
 from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.results import Plan
+from energytrack.inference.ways import designs
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -29,19 +29,20 @@ def plan(
     covariates: Sequence[str] | None = None,
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
+    reversible: bool = True,
 ) -> Plan:
-    """Distance to the target for one switch and for alternating, from the log's own noise, habit and seasons.
+    """Distance to the target for each way to run the test, from the log's own noise, habit and seasons.
 
     Tables and errors as for `assess`. Modifications already logged are allowed for, and stay as they are now.
+    reversible: whether the part can be taken off again; if not, only ways that never do are compared.
     """
-    question = Question("", float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
+    question = Question("", float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()), reversible)
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     ready = len(observed.energy) >= FEWEST_BASELINE
     model = fit_model(observed, None, covariates=question.covariates) if ready else None
-    ways = (None, *ALTERNATIONS)
     return Plan(
         vehicle=vehicle,
         unit=observed.unit,
@@ -51,6 +52,7 @@ def plan(
         distance_baseline_km=float(observed.distance_km.sum()),
         segments_baseline=len(observed.energy),
         noise=None if model is None else noise_of(model),
-        designs=() if model is None else tuple(design(model, every, question) for every in ways),
+        designs=() if model is None else designs(model, question),
         warnings=notes,
+        reversible=reversible,
     )

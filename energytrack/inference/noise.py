@@ -24,7 +24,7 @@ Array = NDArray[np.float64]
 
 HALF_LIFE_DAYS = (21.0, 180.0)  # of the drift of weeks and of the drift of seasons
 _SAME_DAY = 0.02  # days; closer dates are taken as this far apart, so that the drift's precision stays finite
-_LATENT = 3  # weeks, seasons, level: the unknowns that come with each segment
+LATENT = 3  # weeks, seasons, level: the unknowns that come with each segment
 
 
 class Scatter(NamedTuple):
@@ -95,13 +95,13 @@ def products(shape: Structure, scatter: Scatter, columns: Array) -> Products:
 
     Woodbury: V = R + A Q^-1 A', so V^-1 = R^-1 - R^-1 A M^-1 A' R^-1 with M = Q + A' R^-1 A banded.
     """
-    own, shared, remainder = _loadings(shape, scatter)
-    band = _posterior_precision(shape, own, shared, remainder)
+    own, shared, remainder = loadings(shape, scatter)
+    band = posterior_precision(shape, own, shared, remainder)
     factor, fault = lapack.dpbtrf(band, lower=1)
     if fault:
         raise FloatingPointError("the precision of drift and levels is not positive definite")
     weighted = columns / remainder[:, None]
-    projected = np.empty((shape.distance.size, _LATENT, columns.shape[1]))
+    projected = np.empty((shape.distance.size, LATENT, columns.shape[1]))
     projected[:] = own[:, :, None] * weighted[:, None, :]
     projected[:-1, 2] += shared[1:, None] * weighted[1:]
     flat = projected.reshape(-1, columns.shape[1])
@@ -111,9 +111,9 @@ def products(shape: Structure, scatter: Scatter, columns: Array) -> Products:
     return Products((cross + cross.T) / 2, log_det)
 
 
-def _loadings(shape: Structure, scatter: Scatter) -> tuple[Array, Array, Array]:
+def loadings(shape: Structure, scatter: Scatter) -> tuple[Array, Array, Array]:
     """Of each segment on its own latents (n, 3) and on the level before it (n,), and what is independent (n,)."""
-    own = np.empty((shape.distance.size, _LATENT))
+    own = np.empty((shape.distance.size, LATENT))
     own[:, 0] = scatter.weeks * shape.distance
     own[:, 1] = scatter.seasons * shape.distance
     own[:, 2] = scatter.level * shape.end_weight
@@ -123,9 +123,9 @@ def _loadings(shape: Structure, scatter: Scatter) -> tuple[Array, Array, Array]:
     return own, shared, remainder
 
 
-def _posterior_precision(shape: Structure, own: Array, shared: Array, remainder: Array) -> Array:
+def posterior_precision(shape: Structure, own: Array, shared: Array, remainder: Array) -> Array:
     """M in LAPACK's lower band storage (4, 3 n)."""
-    band = np.zeros((_LATENT + 1, shape.distance.size, _LATENT))
+    band = np.zeros((LATENT + 1, shape.distance.size, LATENT))
     (weeks, weeks_off), (seasons, seasons_off) = shape.drift
     scaled = own / remainder[:, None]
     passed = shared / remainder
@@ -142,5 +142,5 @@ def _posterior_precision(shape: Structure, own: Array, shared: Array, remainder:
     band[3, :-1, 0] = weeks_off
     band[3, :-1, 1] = seasons_off
     band[3, :-1, 2] = passed[1:] * own[1:, 2]
-    return band.reshape(_LATENT + 1, -1)
+    return band.reshape(LATENT + 1, -1)
 

@@ -17,6 +17,7 @@ class Question:
     alpha: float
     power: float
     covariates: tuple[str, ...] = ()
+    reversible: bool = True  # the modification can be taken off again
 
     def __post_init__(self) -> None:
         if not 0 < self.target < 1:

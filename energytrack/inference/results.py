@@ -104,6 +104,7 @@ class Assessment:
     remedies: tuple[Remedy, ...]
     expectation: Expectation | None
     warnings: tuple[str, ...]
+    reversible: bool = True  # the modification can be taken off again
 
     @property
     def is_open(self) -> bool:
@@ -113,17 +114,24 @@ class Assessment:
         return {name: plain(value) for name, value in asdict(self).items()}
 
 
+DesignName = Literal["one-switch", "best-date", "on-off-on", "alternate", "alternate-weekly", "longer-baseline"]
+
+
 @dataclass(frozen=True)
 class Design:
     """One way to run a test, and the distance it takes."""
 
-    name: Literal["one-switch", "alternate"]
-    every_fillups: int | None  # None for one switch
+    name: DesignName
+    every_fillups: int | None  # between swaps where it alternates by fill-ups
     swaps: int | None
     distance_km: float | None  # from now until the target is covered; None: out of reach
     distance_interval_km: tuple[float, float | None] | None  # 80 %
     days: float | None
     resolvable_percent: Mapping[str, float | None]  # further km -> smallest shift resolvable by then
+    start: str | None = None  # date at which it is fitted, where that is not now
+    phases: tuple[int, ...] = ()  # fill-ups of each phase before the last, which goes on to the end
+    costliest: str | None = None  # what adds most to the variance of the shift
+    costliest_share: float | None = None  # by which the variance would fall without it
 
 
 @dataclass(frozen=True)
@@ -140,6 +148,8 @@ class Plan:
     noise: Noise | None
     designs: tuple[Design, ...]
     warnings: tuple[str, ...]
+    reversible: bool = True  # False: only designs that never take it off
+    stated: bool = False  # the noise and the driving are stated, not measured
 
     def __iter__(self) -> Iterator[Design]:
         return iter(self.designs)
