@@ -1,7 +1,7 @@
 """Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
 
-The Python interface: open_logbook, assess, plan. Each is loaded when it is first used, so that importing the package
-costs nothing.
+The Python interface: open_logbook, assess, plan, and plan_from Stated figures. Each is loaded when it is first used,
+so that importing the package costs nothing.
 """
 
 from __future__ import annotations
@@ -13,6 +13,8 @@ _HOMES = {
     "open_logbook": "energytrack.consumption.frames",
     "assess": "energytrack.inference.assess",
     "plan": "energytrack.inference.designs",
+    "plan_from": "energytrack.inference.designs",
+    "Stated": "energytrack.inference.stated",
 }
 
 

@@ -179,6 +179,12 @@ def segments_within(ahead: Road, distance_km: float) -> int:
     return max(1, int(np.searchsorted(driven, distance_km, side="right")))
 
 
+def segments_begun(ahead: Road, distance_km: float) -> int:
+    """How many of the segments ahead a distance reaches into, at least one."""
+    driven = np.cumsum(ahead.distance[ahead.past :]) * ahead.kilometre
+    return max(1, min(ahead.ahead, int(np.searchsorted(driven, distance_km * (1 - 1e-9), side="left")) + 1))
+
+
 def _within(before: float, after: float, wanted: float) -> float:
     """Share of a segment at which the information, linear in distance, reaches the wanted one."""
     gained = 1 / after - (0.0 if np.isinf(before) else 1 / before)

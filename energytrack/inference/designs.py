@@ -1,4 +1,4 @@
-"""Ways to run a test before anything is fitted, compared in km."""
+"""Ways to run a test before anything is fitted, compared in km: from a log, or from stated figures."""
 
 from __future__ import annotations
 
@@ -11,6 +11,7 @@ from energytrack.inference.looks import FEWEST_BASELINE
 from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.results import Plan
+from energytrack.inference.stated import Stated, stated_model
 from energytrack.inference.ways import designs
 
 if TYPE_CHECKING:
@@ -56,3 +57,40 @@ def plan(
         warnings=notes,
         reversible=reversible,
     )
+
+
+def plan_from(
+    stated: Stated,
+    target_percent: float = 3.0,
+    *,
+    confidence: float = 0.95,
+    power: float = 0.80,
+    reversible: bool = True,
+) -> Plan:
+    """The same comparison without a log: driving and noise as stated. Distances count from after the baseline.
+
+    Raises InferenceError for a target, confidence or power outside its range.
+    """
+    question = Question("", float(target_percent) / 100, 1 - confidence, power, reversible=reversible)
+    model = stated_model(stated)
+    return Plan(
+        vehicle="",
+        unit=stated.unit,
+        target_percent=100 * question.target,
+        confidence=confidence,
+        power=power,
+        distance_baseline_km=float(model.observed.distance_km.sum()),
+        segments_baseline=len(model.observed),
+        noise=noise_of(model),
+        designs=designs(model, question),
+        warnings=_left_open(stated),
+        reversible=reversible,
+        stated=True,
+    )
+
+
+def _left_open(stated: Stated) -> tuple[str, ...]:
+    """What was not stated and is taken as usual."""
+    figures = {"drift over weeks": stated.drift, "drift over seasons": stated.season_drift, "filling": stated.filling}
+    open_ = [name for name, value in figures.items() if value is None]
+    return (f"not stated, taken as usual: {', '.join(open_)}",) if open_ else ()

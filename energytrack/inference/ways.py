@@ -8,7 +8,7 @@ from itertools import accumulate
 from math import ceil, inf, isfinite, sqrt
 
 from energytrack.inference import bounds
-from energytrack.inference.ahead import Reach, Road, Schedule, always_fitted, reach, segments_within
+from energytrack.inference.ahead import Reach, Road, Schedule, always_fitted, reach, segments_begun, segments_within
 from energytrack.inference.costliest import costliest
 from energytrack.inference.distance import ALTERNATIONS, LONGER_BASELINES, Course, course, need_along
 from energytrack.inference.model import Model
@@ -18,7 +18,7 @@ from energytrack.inference.schedules import WEEK_DAYS, alternating, from_day, of
 
 DISTANCES_KM = (1_000, 2_500, 5_000, 10_000)
 _MONTHS = 12  # ahead, in which the best date is looked for
-_PHASES = (2, 4, 8, 16, 32, 64)  # fill-ups, tried for each of the first two phases of on-off-on
+_PHASES = (1, 2, 4, 8, 16, 32, 64)  # fill-ups, tried for each of the first two phases of on-off-on
 _USUAL_PRICE = 1.2  # factor on the variance for not knowing the noise
 _LOOKED_INTO = 4  # ways of a kind
 _TAKEN_OFF: tuple[DesignName, ...] = ("on-off-on", "alternate", "alternate-weekly")
@@ -68,25 +68,35 @@ def _best(model: Model, kind: tuple[Way, ...], question: Question) -> tuple[Way,
     courses = [(way, course(model, way.schedule, question)) for way in kind]
     wanted = 1 / question.information
 
-    def roughly(candidate: tuple[Way, Course]) -> tuple[float, float]:
-        here = candidate[1]
-        return _km(reach(here.road, here.variances.__getitem__, wanted / _USUAL_PRICE)), float(here.variances[-1])
+    def roughly(candidate: tuple[Way, Course]) -> tuple[bool, float, float]:
+        way, here = candidate
+        found = reach(here.road, here.variances.__getitem__, wanted / _USUAL_PRICE)
+        return *_merit(way, here, found), float(here.variances[-1])
 
-    def exactly(candidate: tuple[Way, Course]) -> tuple[float, float]:
-        here = candidate[1]
-        return _km(here.reach(wanted)), here.priced(here.road.ahead)
+    def exactly(candidate: tuple[Way, Course]) -> tuple[bool, float, float]:
+        way, here = candidate
+        return *_merit(way, here, here.reach(wanted)), here.priced(here.road.ahead)
 
     return min(sorted(courses, key=roughly)[:_LOOKED_INTO], key=exactly)
 
 
-def _km(found: Reach | None) -> float:
-    return inf if found is None else found.distance_km
+def _merit(way: Way, here: Course, found: Reach | None) -> tuple[bool, float]:
+    """Last those that end before their last phase has begun: they are other ways in truth."""
+    if found is None:
+        return False, inf
+    return _phases_begun(here.road, way, found) <= len(way.phases), found.distance_km
+
+
+def _phases_begun(ahead: Road, way: Way, found: Reach) -> int:
+    """Phases entered by the time the target is covered."""
+    begun = segments_begun(ahead, found.distance_km)
+    return 1 + sum(begun > end for end in accumulate(way.phases))
 
 
 def _design(model: Model, way: Way, here: Course, question: Question) -> Design:
     required = need_along(here, model, way.schedule, question)
     central = required.central
-    count = here.road.ahead if central is None else segments_within(here.road, central.distance_km)
+    count = here.road.ahead if central is None else segments_begun(here.road, central.distance_km)
     source, share = costliest(model, here, count) or (None, None)
     return Design(
         name=way.name,
@@ -117,9 +127,9 @@ def _swaps(ahead: Road, way: Way, central: Reach | None) -> int | None:
     if way.name in ("one-switch", "best-date", "longer-baseline"):
         return 1
     if way.name == "on-off-on":
-        return 3
+        return 3 if central is None else _phases_begun(ahead, way, central)
     if central is None:
         return None
     if way.every_fillups is None:
         return ceil(central.days / WEEK_DAYS)
-    return ceil((segments_within(ahead, central.distance_km) + 1) / way.every_fillups)
+    return ceil(segments_begun(ahead, central.distance_km) / way.every_fillups)
