@@ -81,12 +81,23 @@ def need_along(here: Course, model: Model, schedule: Schedule, question: Questio
     sooner = here.reach(wanted / bounds.expected_share(question.alpha, question.power))
     last = here.road.ahead
     price = here.price(last) if np.isfinite(here.variances[last]) else 1.0
+    central = here.reach(wanted)
     return Need(
-        central=here.reach(wanted),
-        interval_km=_interval(model, schedule, wanted / price),
+        central=central,
+        interval_km=_holding(central, _interval(model, schedule, wanted / price)),
         expected_km=None if sooner is None else sooner.distance_km,
         best_variance=here.priced(last),
     )
+
+
+def _holding(
+    central: Reach | None, interval: tuple[float, float | None] | None
+) -> tuple[float, float | None] | None:
+    """The range, widened to the best guess where a road of few segments left it outside."""
+    if central is None or interval is None:
+        return interval
+    low, high = interval
+    return min(low, central.distance_km), None if high is None else max(high, central.distance_km)
 
 
 def _interval(model: Model, schedule: Schedule, wanted: float) -> tuple[float, float | None] | None:

@@ -86,7 +86,7 @@ def stated_model(stated: Stated) -> Model:
     columns = stack(terms.columns(conditions), np.zeros((len(observed), 0)), asked=False)
     problem = _problem(observed, columns, terms, scale)
     theta = _log_sds(stated, problem, scale)
-    spread: Array = np.linalg.inv(problem.prior_precision + _information(stated, theta) * len(observed))
+    spread = np.linalg.inv(problem.prior_precision + _information(stated, theta) * len(observed)).astype(np.float64)
     there = evaluate(problem, theta)
     unmoved = np.zeros((4, *there.covariance.shape))
     fit = Fit(theta, spread, there.coefficients, there.covariance, unmoved)
