@@ -42,7 +42,7 @@ def plan(
     date: stated.Date = None,
     json: options.Json = False,
 ) -> None:
-    """How far would each way of running a test take to show a shift of the target size?
+    """Say how far each way of testing a modification would take.
 
     From the logbook's own noise; or, with --trip-noise, from stated figures and no logbook.
     """

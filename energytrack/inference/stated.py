@@ -119,6 +119,8 @@ def _driven(stated: Stated, count: int) -> Observations:
         conditions={TEMPERATURE: _year(stated).at(mid_day) + weather},
         known_share={TEMPERATURE: np.ones(count)},
         shares=np.zeros((count, 0)),
+        fitted=np.zeros((count, 0)),
+        levels=np.zeros((count, 0)),
         names=(),
         unit=stated.unit,
         capacity=stated.capacity,
