@@ -8,6 +8,7 @@ from dataclasses import replace
 from math import sqrt
 from typing import TYPE_CHECKING
 
+from energytrack.consumption.columns import flags
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
 from energytrack.errors import UnknownNameError
@@ -49,7 +50,8 @@ def assess(
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
     not in the table, InferenceError for a target, confidence or power outside its range.
     """
-    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
+    reversible = _reversible(modifications, name)
+    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()), reversible)
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
@@ -165,9 +167,16 @@ def _blank(vehicle: str, observed: Observations, question: Question, notes: tupl
         remedies=(),
         expectation=None,
         warnings=notes,
+        reversible=question.reversible,
     )
 
 
 def _driven_with(observed: Observations, modification: str) -> float:
     """Distance driven with the modification fitted, at whatever level (km)."""
     return float(observed.distance_km @ observed.fitted[:, observed.names.index(modification)])
+
+
+def _reversible(modifications: pd.DataFrame, name: str) -> bool:
+    """False where any row of the modification says so, in an optional column `reversible`."""
+    own = modifications[modifications["name"] == name] if "name" in modifications else modifications[:0]
+    return all(flags(own, "reversible", True))

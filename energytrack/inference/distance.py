@@ -125,7 +125,7 @@ def _thetas(model: Model) -> Array:
 def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, ...]:
     """What would bring an out-of-reach target within reach: each option that does, with its distance.
 
-    A modification that cannot be taken off again leaves nothing but a larger target.
+    Of a modification that cannot be taken off again, none that takes it off.
     """
     best = 100 * bounds.drift(question.alpha, question.power) * sqrt(required.best_variance)
     larger = ceil(best * 1.15 * 2) / 2  # a little above the limit, which itself is never reached; in half percents
@@ -137,7 +137,9 @@ def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, 
         ("alternate", _ALTERNATING),
         ("longer-baseline", _LONGER_BASELINE),
     )
-    for what, options in ways if question.reversible else ():
+    for what, options in ways:
+        if not question.reversible and (what == "alternate" or model.modification is not None):
+            continue
         reached = [(_distance(model, schedule, question), detail) for detail, schedule in options]
         within = [(distance, detail) for distance, detail in reached if distance is not None]
         if within:
