@@ -20,14 +20,12 @@ _TO_NOTHING = np.log(0.01)  # on a log standard deviation
 _KNOWN = 1e9  # precision of an effect held for known
 
 
-def costliest(model: Model, here: Course, count: int) -> tuple[str, float] | None:
-    """Its name, and the share by which the variance after `count` segments would fall without it; None before any."""
-    shares = cost_shares(model, here, count)
-    return max(shares.items(), key=lambda item: item[1]) if shares else None
-
-
 def cost_shares(model: Model, here: Course, count: int) -> dict[str, float]:
-    """The share of every source, condition and other modification. They overlap, so they need not add up to one."""
+    """By how much of itself the variance after `count` segments would fall without each; {} where it is infinite.
+
+    The shares overlap, so they need not add up to one: trips that scatter less would also tell the effect of the
+    weather sooner.
+    """
     variance = float(here.variances[count])
     if not np.isfinite(variance):
         return {}

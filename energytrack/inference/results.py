@@ -7,7 +7,7 @@ A figure that does not exist is None, never 0 or NaN.
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, field
 from typing import Any, Literal
 
 Verdict = Literal["shifted", "no-shift-of-target-size", "not-yet", "out-of-reach", "no-baseline", "closed-unclear"]
@@ -132,6 +132,7 @@ class Design:
     phases: tuple[int, ...] = ()  # fill-ups of each phase before the last, which goes on to the end
     costliest: str | None = None  # what adds most to the variance of the shift
     costliest_share: float | None = None  # by which the variance would fall without it
+    cost_shares: Mapping[str, float] = field(default_factory=dict)  # of every source and condition; they overlap
 
 
 @dataclass(frozen=True)

@@ -9,7 +9,7 @@ from math import ceil, inf, isfinite, sqrt
 
 from energytrack.inference import bounds
 from energytrack.inference.ahead import Reach, Road, Schedule, always_fitted, reach, segments_begun, segments_within
-from energytrack.inference.costliest import costliest
+from energytrack.inference.costliest import cost_shares
 from energytrack.inference.distance import ALTERNATIONS, LONGER_BASELINES, Course, course, need_along
 from energytrack.inference.model import Model
 from energytrack.inference.question import Question
@@ -97,7 +97,8 @@ def _design(model: Model, way: Way, here: Course, question: Question) -> Design:
     required = need_along(here, model, way.schedule, question)
     central = required.central
     count = here.road.ahead if central is None else segments_begun(here.road, central.distance_km)
-    source, share = costliest(model, here, count) or (None, None)
+    shares = cost_shares(model, here, count)
+    source = max(shares, key=shares.__getitem__, default=None)
     return Design(
         name=way.name,
         every_fillups=way.every_fillups,
@@ -109,7 +110,8 @@ def _design(model: Model, way: Way, here: Course, question: Question) -> Design:
         start=None if way.start is None else way.start.isoformat(),
         phases=way.phases,
         costliest=source,
-        costliest_share=share,
+        costliest_share=None if source is None else shares[source],
+        cost_shares=shares,
     )
 
 

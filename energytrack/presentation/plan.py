@@ -165,7 +165,7 @@ def _resolvable(p: Plan, unit: str) -> Table:
 
 def _costs(p: Plan) -> Table:
     """What each way's distance is spent on most: the share of the variance that would go with it."""
-    table = _table(["what costs the most", "share of variance", ""], left=(0, 2))
+    table = _table(["what costs the most", "share", "of the variance"], left=(0, 2))
     for d in p.designs:
         source, share = ways.cost(d, p.unit)
         table.add_row(ways.name(d), share, source)

@@ -7,14 +7,13 @@ import datetime as dt
 from energytrack.inference.results import Design
 from energytrack.presentation.text import join
 
-_COSTS = {
-    "trip": "noise from trip to trip",
+_WORTH_SAYING = 0.25  # share of the variance
+_CONDITIONS = {"temperature_c": "temperature", "speed_kmh": "speed", "season": "time of year"}
+_COSTS = _CONDITIONS | {
+    "trip": "trip to trip",
     "filling": "filling",
     "drift-weeks": "drift over weeks",
     "drift-seasons": "drift over seasons",
-    "temperature_c": "temperature moving with it",
-    "speed_kmh": "speed moving with it",
-    "season": "time of year moving with it",
     "unknown-noise": "scatter not well known yet",
 }
 _REMEDIES = {
@@ -51,7 +50,11 @@ def cost(design: Design, unit: str) -> tuple[str, str]:
     if design.costliest is None or design.costliest_share is None:
         return "-", "-"
     source = "charge level" if design.costliest == "filling" and unit == "kWh" else design.costliest
-    return _COSTS.get(source, source), join(f"{100 * design.costliest_share:.0f} %")
+    said = _COSTS.get(source, source)
+    moving = max(design.cost_shares.keys() & _CONDITIONS, key=design.cost_shares.__getitem__, default=None)
+    if moving is not None and moving != source and design.cost_shares[moving] >= _WORTH_SAYING:
+        said += f"; {_CONDITIONS[moving]} {100 * design.cost_shares[moving]:.0f} %"
+    return said, join(f"{100 * design.costliest_share:.0f} %")
 
 
 def remedy(design: Design, reversible: bool) -> str | None:
