@@ -1,7 +1,7 @@
 """Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
 
-The Python interface: open_logbook, assess, plan, compare, respond, rehearse. Each is loaded when it is first used, so
-that importing the package costs nothing.
+The Python interface: open_logbook, assess, plan, plan_from Stated figures, compare, respond, rehearse. Each is loaded
+when it is first used, so that importing the package costs nothing.
 """
 
 from __future__ import annotations
@@ -16,6 +16,8 @@ _HOMES = {
     "compare": "energytrack.inference.comparison",
     "respond": "energytrack.inference.response",
     "rehearse": "energytrack.inference.rehearsal",
+    "plan_from": "energytrack.inference.designs",
+    "Stated": "energytrack.inference.stated",
 }
 
 

@@ -8,6 +8,7 @@ from dataclasses import replace
 from math import sqrt
 from typing import TYPE_CHECKING, Literal
 
+from energytrack.consumption.columns import flags
 from energytrack.consumption.frames import modifications_from_frame, observe_log
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside as sort_out
@@ -62,7 +63,8 @@ def assess(
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
     not in the table, InferenceError for a target, confidence or power outside its range, or an unknown rule.
     """
-    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()), rule)
+    further, reversible = tuple(covariates or ()), _reversible(modifications, name)
+    question = Question(name, float(target_percent) / 100, 1 - confidence, power, further, rule, reversible)
     observed, notes, segmented = observe_log(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
@@ -225,9 +227,16 @@ def _blank(vehicle: str, observed: Observations, question: Question, notes: tupl
         expectation=None,
         warnings=notes,
         rule=question.rule,
+        reversible=question.reversible,
     )
 
 
 def _driven_with(observed: Observations, modification: str) -> float:
     """Distance driven with the modification fitted, at whatever level (km)."""
     return float(observed.distance_km @ observed.fitted[:, observed.names.index(modification)])
+
+
+def _reversible(modifications: pd.DataFrame, name: str) -> bool:
+    """False where any row of the modification says so, in an optional column `reversible`."""
+    own = modifications[modifications["name"] == name] if "name" in modifications else modifications[:0]
+    return all(flags(own, "reversible", True))

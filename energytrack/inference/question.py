@@ -19,6 +19,7 @@ class Question:
     power: float
     covariates: tuple[str, ...] = ()
     rule: Rule = "every-look"
+    reversible: bool = True  # the modification can be taken off again
 
     def __post_init__(self) -> None:
         if not 0 < self.target < 1:

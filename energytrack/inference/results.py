@@ -7,7 +7,7 @@ A figure that does not exist is None, never 0 or NaN.
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, field
 from typing import Any, Literal
 
 Verdict = Literal["shifted", "no-shift-of-target-size", "not-yet", "out-of-reach", "no-baseline", "closed-unclear"]
@@ -242,6 +242,7 @@ class Assessment:
     known_change_logged: bool = True  # of this vehicle, ever
     set_aside: tuple[SetAside, ...] = ()
     verdict_with_all: WithAll | None = None  # None: nothing was set aside
+    reversible: bool = True  # the modification can be taken off again
 
     @property
     def is_open(self) -> bool:
@@ -251,17 +252,25 @@ class Assessment:
         return {name: plain(value) for name, value in asdict(self).items()}
 
 
+DesignName = Literal["one-switch", "best-date", "on-off-on", "alternate", "alternate-weekly", "longer-baseline"]
+
+
 @dataclass(frozen=True)
 class Design:
     """One way to run a test, and the distance it takes."""
 
-    name: Literal["one-switch", "alternate"]
-    every_fillups: int | None  # None for one switch
+    name: DesignName
+    every_fillups: int | None  # between swaps where it alternates by fill-ups
     swaps: int | None
     distance_km: float | None  # from now until the target is covered; None: out of reach
     distance_interval_km: tuple[float, float | None] | None  # 80 %
     days: float | None
     resolvable_percent: Mapping[str, float | None]  # further km -> smallest shift resolvable by then
+    start: str | None = None  # date at which it is fitted, where that is not now
+    phases: tuple[int, ...] = ()  # fill-ups of each phase before the last, which goes on to the end
+    costliest: str | None = None  # what adds most to the variance of the shift
+    costliest_share: float | None = None  # by which the variance would fall without it
+    cost_shares: Mapping[str, float] = field(default_factory=dict)  # of every source and condition; they overlap
 
 
 @dataclass(frozen=True)
@@ -278,6 +287,8 @@ class Plan:
     noise: Noise | None
     designs: tuple[Design, ...]
     warnings: tuple[str, ...]
+    reversible: bool = True  # False: only designs that never take it off
+    stated: bool = False  # the noise and the driving are stated, not measured
 
     def __iter__(self) -> Iterator[Design]:
         return iter(self.designs)
