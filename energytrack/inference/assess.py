@@ -9,13 +9,14 @@ from math import sqrt
 from typing import TYPE_CHECKING, Literal
 
 from energytrack.consumption.columns import flags
-from energytrack.consumption.frames import modifications_from_frame, observe_log
+from energytrack.consumption.frames import events_from_frame, modifications_from_frame, observe_log
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside as sort_out
 from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
+from energytrack.inference.coincidence import coincidences
 from energytrack.inference.confounding import with_confounders
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import need, remedies
@@ -71,6 +72,8 @@ def assess(
     if name not in observed.names:
         raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
+    rows = modifications_from_frame(modifications, vehicle or None)
+    notes = (*coincidences(() if events is None else events_from_frame(events, vehicle or None), rows, name), *notes)
     partners = never_apart(observed, name)
     if partners:
         observed, notes = without(observed, partners), (refusal(name, partners), *notes)
@@ -81,7 +84,7 @@ def assess(
         blank = _blank(vehicle, found.kept if odd and found is not None else observed, question, notes)
         return _decided(replace(blank, never_apart=partners), observed, question, every_look, looks_taken, odd=odd)
 
-    answer = with_known_change(decided(found is not None), modifications_from_frame(modifications, vehicle or None))
+    answer = with_known_change(decided(found is not None), rows)
     if found is not None and found.odd:
         whole = decided(odd=False)
         typist = Vehicle(vehicle, "", unit, capacity, typed_in[0], typed_unit=typed_in[1])

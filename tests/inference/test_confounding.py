@@ -66,3 +66,20 @@ def test_inflation_is_the_ratio_of_two_fits() -> None:
     known = evaluate(replace(model.problem, precision=tight), model.fit.theta).covariance
     expected = contrast_variance(free, base, ratio) / contrast_variance(known, base, ratio)
     assert found.inflation == pytest.approx(expected, rel=1e-6)
+
+
+def test_an_event_that_came_with_the_part_is_named() -> None:
+    log = plain_log(9, 44)
+    fitted = log.entries["odometer_km"].iloc[29]
+    parts = pd.DataFrame({"name": ["part"], "fitted_km": [fitted]})
+    days = log.entries["date"]
+    events = pd.DataFrame(
+        {
+            "date": [days.iloc[29], days.iloc[10]],
+            "odometer_km": [fitted + 300, np.nan],
+            "what": ["new driver", "service"],
+        }
+    )
+    answer = et.assess(log.entries, parts, "part", capacity=75.0, events=events)
+    assert answer.warnings[0].startswith("new driver")
+    assert not any("service" in warning for warning in answer.warnings)
