@@ -89,7 +89,7 @@ def look_points(observed: Observations, modification: str) -> list[int]:
 
 def _ready(observed: Observations, modification: str) -> list[int]:
     """Every number of segments that holds a baseline and something driven with the modification."""
-    fitted = np.abs(observed.shares[:, observed.names.index(modification)]) > 0
+    fitted = observed.fitted[:, observed.names.index(modification)] > 0
     ready = np.flatnonzero((np.cumsum(~fitted) >= FEWEST_BASELINE) & (np.cumsum(fitted) >= 1))
     counts: list[int] = (ready + 1).tolist()
     return counts
