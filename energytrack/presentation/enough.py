@@ -13,12 +13,12 @@ from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, labelled, wrap
 
 Row = tuple[str, str]
-_AHEAD = 1.05  # an expected end is worth saying while it lies ahead
 _LOOKED = {
     "every-look": "however often you look",
     "counted": "at the looks taken so far",
     "open-ended": "however often and however long you look",
 }
+_AHEAD = 1.05  # an expected end is worth saying while it lies ahead
 
 
 def render(
