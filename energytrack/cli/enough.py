@@ -20,6 +20,9 @@ if TYPE_CHECKING:
     from energytrack.logbook.opening import Logbook
 
 
+USUAL_CERTAINTY = (0.95, 0.80)  # confidence and power; other questions are asked in passing and not kept
+
+
 def enough(
     context: typer.Context,
     name: Annotated[str | None, typer.Argument(help="The modification; all of them if left out.")] = None,
@@ -27,8 +30,8 @@ def enough(
     target: Annotated[
         float | None, typer.Option(help="Smallest shift worth knowing about, in percent. Otherwise as logged, or 3.")
     ] = None,
-    confidence: Annotated[float, typer.Option(help="Of the range and the verdict.")] = 0.95,
-    power: Annotated[float, typer.Option(help="Chance that a shift of the target size is found.")] = 0.80,
+    confidence: Annotated[float, typer.Option(help="Of the range and the verdict.")] = USUAL_CERTAINTY[0],
+    power: Annotated[float, typer.Option(help="Chance that a shift of the target size is found.")] = USUAL_CERTAINTY[1],
     covariate: Annotated[
         list[str] | None, typer.Option(metavar="COLUMN", help="A further numeric column to allow for; repeatable.")
     ] = None,
@@ -42,8 +45,9 @@ def enough(
     answers, refusals = asking.answered(
         asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate))
     )
-    for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
-        _keep(logbook, question, answer)
+    if target is None and not covariate and (confidence, power) == USUAL_CERTAINTY:
+        for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
+            _keep(logbook, question, answer)
     _print_json([a for _, a in answers]) if json else _print(answers, picture)
     waiting = exit_code and any(answer.verdict == "not-yet" for _, answer in answers)
     asking.leave(refusals, ExitStatus.NOT_YET if waiting else ExitStatus.DONE)

@@ -193,7 +193,8 @@ def _expected(
             percent += slope * (term(name, value) - expectation["centres"][name])
     own = [row for row in rows if row.name == answer.get("modification")]
     try:
-        highest = max((abs(row.level) for row in own if row.level), default=1.0)  # the shift is that of this level
+        levels = [1.0 if row.level is None else abs(row.level) for row in own]
+        highest = max(levels, default=1.0) or 1.0  # the shift is that of this level
         percent += (expectation["shift_percent"] or 0.0) * shares(segmented, own)[which] / highest
     except ConsumptionError:
         return None  # the rows of the modification contradict each other; said under what is left to go

@@ -49,7 +49,7 @@ class Model:
     scale: Scale
     modification: str | None
     others: tuple[str, ...]
-    levels: dict[str, float]  # modification -> level its share is counted in
+    levels: dict[str, float]  # modification -> highest level so far, at which its effect is stated
     problem: Problem
     fit: Fit
 
@@ -70,7 +70,7 @@ def fit_model(
     conditions = fill(observed)
     terms = choose(observed, conditions, covariates)
     scale = _scale(observed)
-    levels = {name: float(np.abs(observed.shares[:, k]).max(initial=0.0)) for k, name in enumerate(observed.names)}
+    levels = dict(zip(observed.names, observed.levels[-1].tolist(), strict=True))
     if modification is not None and levels.get(modification, 0.0) == 0:
         raise InferenceError(f"nothing has been driven with {modification!r} fitted: log the next full tank")
     others = tuple(name for name in observed.names if name != modification and _varies(observed, name))

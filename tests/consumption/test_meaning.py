@@ -121,6 +121,17 @@ def test_kept_answer_gives_what_is_expected_at_these_conditions(book):
     ]
 
 
+def test_shift_of_a_graded_part_is_that_of_its_highest_level(book):
+    """One period without a level counts as level 1: above the 0.5 of the other, so the whole shift is expected."""
+    book.fit("van", "skirts", None, 1500)
+    book.fit("van", "skirts", None, 1600, level=0.5)
+    book.remove("van", "skirts", None, 1700)
+    book.fit("van", "skirts", None, 4500)
+    book.keep_assessment("van", "skirts", KEPT)
+    told = logged(book, fill(30, 5000, 40, temperature_c=10.0))
+    assert told[1] == "expected at these conditions: 7.84 L/100 km"  # 8 L less 2 %, at the reference temperature
+
+
 def test_distance_to_go_counts_only_what_was_driven_with_the_part_fitted(book):
     book.fit("van", "skirts", day(22), 4000.0, 3.0, None, "")
     book.keep_assessment("van", "skirts", KEPT)
