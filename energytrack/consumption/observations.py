@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, fields, replace
 from itertools import chain
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -58,6 +59,23 @@ class Observations:
             conditions={name: values[cut] for name, values in self.conditions.items()},
             known_share={name: values[cut] for name, values in self.known_share.items()},
         )
+
+    def keeping(self, names: Sequence[str]) -> Observations:
+        """Only these modifications; the driving stays as it was."""
+        kept = [self.names.index(name) for name in names]
+        tables = {table: getattr(self, table)[:, kept] for table in _BY_MODIFICATION}
+        return replace(self, **tables, names=tuple(names))
+
+    def adding(self, name: str, fitted: Array) -> Observations:
+        """One more modification, on or off, fitted for these shares (n,) of each segment's distance."""
+        columns = {"shares": fitted, "fitted": fitted, "levels": np.maximum.accumulate(np.ceil(fitted))}
+        tables: dict[str, Any] = {
+            table: np.column_stack([getattr(self, table), column]) for table, column in columns.items()
+        }
+        return replace(self, **tables, names=(*self.names, name))
+
+
+_BY_MODIFICATION = ("shares", "fitted", "levels")
 
 
 def observe(
