@@ -11,7 +11,6 @@ from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.context import readable, say_json
 from energytrack.cli.workers import workers
-from energytrack.errors import UnknownNameError
 
 if TYPE_CHECKING:
     from concurrent.futures import Executor
@@ -53,26 +52,26 @@ def rehearse(
 
 def _asked(logbook: Logbook, vehicles: list[Vehicle], name: str | None, target: float | None) -> list[_Asked]:
     """Each modification, or the one named; a vehicle without any is asked about a pretended one."""
+    if name is not None:
+        return [_of(question) for question in asking.questions(logbook, vehicles, name, target)]
     asked: list[_Asked] = []
     for vehicle in vehicles:
         if logbook.modifications(vehicle.name):
-            every = asking.questions(logbook, [vehicle], None, target)
-            asked += [(vehicle, q.modification, q.target_percent) for q in every if name in (None, q.modification)]
-        elif name is None:
+            asked += [_of(question) for question in asking.questions(logbook, [vehicle], None, target)]
+        else:
             asked.append((vehicle, None, asking.USUAL_TARGET if target is None else target))
-    if not asked:
-        asking.questions(logbook, vehicles, name, target)  # says which there are
-        raise UnknownNameError(f"no modification named {name!r}")
     return asked
+
+
+def _of(question: asking.Question) -> _Asked:
+    return question.vehicle, question.modification, question.target_percent
 
 
 def _title(asked: _Asked) -> str:
     return asked[0].name if asked[1] is None else f"{asked[0].name}, {asked[1]}"
 
 
-def _rehearse(
-    logbook: Logbook, title: str, asked: _Asked, runs: int, seed: int, executor: Executor
-) -> Rehearsal:
+def _rehearse(logbook: Logbook, title: str, asked: _Asked, runs: int, seed: int, executor: Executor) -> Rehearsal:
     from energytrack.inference.rehearsal import rehearse
     from energytrack.presentation.progress import progress
 

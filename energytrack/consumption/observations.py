@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, fields, replace
 from itertools import chain
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -60,6 +61,29 @@ class Observations:
             conditions={name: values[cut] for name, values in self.conditions.items()},
             known_share={name: values[cut] for name, values in self.known_share.items()},
         )
+
+    def keeping(self, names: Sequence[str]) -> Observations:
+        """Only these modifications; the driving stays as it was."""
+        kept = [self.names.index(name) for name in names]
+        tables = {table: getattr(self, table)[:, kept] for table in _BY_MODIFICATION}
+        return replace(self, **tables, names=tuple(names))
+
+    def leaving_out(self, names: Sequence[str]) -> Observations:
+        """All modifications but these."""
+        return self.keeping([name for name in self.names if name not in names])
+
+    def adding(self, name: str, shares: Array, fitted: Array | None = None) -> Observations:
+        """One more modification: shares (n,) of each segment's distance, times level; on or off without `fitted`."""
+        on = shares if fitted is None else fitted
+        levels = np.divide(np.abs(shares), on, out=np.zeros(len(shares)), where=on > 0)
+        columns = {"shares": shares, "fitted": on, "levels": np.maximum.accumulate(levels)}
+        tables: dict[str, Any] = {
+            table: np.column_stack([getattr(self, table), column]) for table, column in columns.items()
+        }
+        return replace(self, **tables, names=(*self.names, name))
+
+
+_BY_MODIFICATION = ("shares", "fitted", "levels")
 
 
 def observe(

@@ -26,7 +26,7 @@ from energytrack.inference.model import Model, fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.response import from_first_level, has_levels, respond
 from energytrack.inference.results import Assessment, Rule, Verdict, WithAll
-from energytrack.inference.several import never_apart, refusal, together, without
+from energytrack.inference.several import never_apart, refusal, together
 from energytrack.inference.suspects import suspects
 from energytrack.logbook.records import Vehicle
 
@@ -76,7 +76,7 @@ def assess(
     notes = (*coincidences(() if events is None else events_from_frame(events, vehicle or None), rows, name), *notes)
     partners = never_apart(observed, name)
     if partners:
-        observed, notes = without(observed, partners), (refusal(name, partners), *notes)
+        observed, notes = observed.leaving_out(partners), (refusal(name, partners), *notes)
     observed = from_first_level(observed, name)
     found = sort_out(observed, question.covariates) if set_aside == "odd" else None
 

@@ -17,7 +17,6 @@ from energytrack.inference.bounds import mixture_quantile
 from energytrack.inference.looks import finding, take_looks
 from energytrack.inference.question import Question
 from energytrack.inference.rehearsal_results import Placebo
-from energytrack.inference.several import with_shares, without
 
 PRETENDED = "a pretended change"
 SIDES = (10, 20, 40)  # segments before and after the pretended change
@@ -44,11 +43,6 @@ class Called:
     at_km: float
 
 
-def pretend(observed: Observations, shares: Sequence[float] | np.ndarray) -> Observations:
-    """The log with one more modification, driven with for these shares (n,) of each segment's distance."""
-    return with_shares(observed, PRETENDED, np.asarray(shares, dtype=np.float64))
-
-
 def places(observed: Observations, question: Question) -> dict[int, list[Place]]:
     """The places to try, by the number of segments on each side; none where the log is too short for one."""
     return {
@@ -58,7 +52,8 @@ def places(observed: Observations, question: Question) -> dict[int, list[Place]]
 
 def starts(observed: Observations, side: int) -> list[int]:
     """First segments of every stretch of 2 x `side` in which nothing was fitted, removed or set differently."""
-    changed = np.concatenate([[0], np.cumsum(np.any(np.diff(observed.shares, axis=0) != 0, axis=1))])
+    state = np.hstack([observed.shares, observed.fitted])
+    changed = np.concatenate([[0], np.cumsum(np.any(np.diff(state, axis=0) != 0, axis=1))])
     return [start for start in range(len(observed) - 2 * side + 1) if changed[start] == changed[start + 2 * side - 1]]
 
 
@@ -79,11 +74,10 @@ def _spread(candidates: list[int]) -> list[int]:
 
 def place(observed: Observations, start: int, side: int, question: Question) -> Place:
     """The stretch of `side` segments from `start` on, and as many with the change pretended."""
-    bare = without(observed, observed.names)  # what is fitted throughout is the vehicle itself
-    stretch = bare.part(start, start + 2 * side)
+    stretch = observed.keeping(()).part(start, start + 2 * side)  # what is fitted throughout is the vehicle itself
     linked = stretch.linked.copy()
     linked[0] = False  # the segment it shares a level with is not in the stretch
-    pretended = pretend(replace(stretch, linked=linked), np.repeat([0.0, 1.0], side))
+    pretended = replace(stretch, linked=linked).adding(PRETENDED, np.repeat([0.0, 1.0], side))
     return Place(pretended, replace(question, modification=PRETENDED))
 
 

@@ -77,7 +77,6 @@ def rehearse(
     jobs += [place for some in pretended.values() for place in some]
     done = run_all(_do, jobs, executor, progress)
     outcomes = [each for each in done if isinstance(each, tuple)]
-    share = stage.observed.shares[:, stage.observed.names.index(stage.question.modification)]
     return Rehearsal(
         vehicle=vehicle,
         modification=named or "",
@@ -88,8 +87,8 @@ def rehearse(
         power=power,
         runs=runs,
         seed=seed,
-        segments_baseline=int((share == 0).sum()),
-        segments_modified=int((share != 0).sum()),
+        segments_baseline=int((stage.fitted == 0).sum()),
+        segments_modified=int((stage.fitted > 0).sum()),
         distance_modified_km=float(stage.driven[-1]),
         looks=len(look_points(stage.observed, stage.question.modification)),
         noise=noise_of(stage.model),
@@ -116,11 +115,11 @@ def _meant(observed: Observations, name: str | None) -> str | None:
 
 def _stage(observed: Observations, question: Question, name: str | None) -> tuple[Stage, str | None]:
     """The log with the modification where it was fitted, or pretended from the middle on."""
-    pretended = name is None or not observed.shares[:, observed.names.index(name)].any()
+    pretended = name is None or not observed.fitted[:, observed.names.index(name)].any()
     asked = placebo.PRETENDED if name is None or pretended else name
     if pretended:
         middle = len(observed) // 2
-        observed = placebo.pretend(observed, np.repeat([0.0, 1.0], [middle, len(observed) - middle]))
+        observed = observed.adding(placebo.PRETENDED, np.repeat([0.0, 1.0], [middle, len(observed) - middle]))
     if not look_points(observed, asked):
         raise InferenceError(
             f"too short to rehearse: it takes {FEWEST_BASELINE} segments without the modification and one with it, "

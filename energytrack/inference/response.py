@@ -20,7 +20,7 @@ from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
 from energytrack.inference.results import LevelEffect, Response
-from energytrack.inference.several import effect_of, with_shares, without
+from energytrack.inference.several import effect_of
 from energytrack.inference.shift import SHIFT, ratio_interval, shift_along
 
 if TYPE_CHECKING:
@@ -85,7 +85,12 @@ def from_first_level(observed: Observations, name: str) -> Observations:
     levels = observed.shares[:, column]
     if not len(levels) or observed.fitted[:, column].min() < 1 or np.ptp(levels) == 0:
         return observed
-    return with_shares(observed, name, levels - levels[0])
+    return _counted(observed, name, levels - levels[0])
+
+
+def _counted(observed: Observations, name: str, shares: Array) -> Observations:
+    """The part's column counted from its reference level: on where it differs from that."""
+    return observed.leaving_out([name]).adding(name, shares, (shares != 0).astype(float))
 
 
 def has_levels(modifications: pd.DataFrame, name: str) -> bool:
@@ -124,10 +129,10 @@ def _graded(
     counted = linear - reference * fitted
     if np.ptp(counted) == 0:
         raise InferenceError(f"{name} was driven at one level only: log a second level, or drive without it")
-    graded = with_shares(without(observed, [name + _SQUARED, name + _FITTED]), name, counted)
+    graded = _counted(observed.leaving_out([name + _SQUARED, name + _FITTED]), name, counted)
     if len(tried) >= _FOR_A_PARABOLA:
         curve = squared - 2 * reference * linear + reference**2 * fitted
-        graded = with_shares(graded, name + _SQUARED, curve)
+        graded = _counted(graded, name + _SQUARED, curve)
     return graded, tried, reference
 
 

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
 
 import numpy as np
 
@@ -27,30 +26,6 @@ def never_apart(observed: Observations, name: str) -> tuple[str, ...]:
         other
         for k, other in enumerate(observed.names)
         if other != name and _correlation(own, observed.shares[:, k]) > _NEVER_APART
-    )
-
-
-def without(observed: Observations, names: Sequence[str]) -> Observations:
-    """The same log with some modifications' columns left out: the others then stand for them too."""
-    kept = [k for k, name in enumerate(observed.names) if name not in names]
-    return replace(
-        observed,
-        shares=observed.shares[:, kept],
-        fitted=observed.fitted[:, kept],
-        levels=observed.levels[:, kept],
-        names=tuple(observed.names[k] for k in kept),
-    )
-
-
-def with_shares(observed: Observations, name: str, shares: Array) -> Observations:
-    """The same log with other shares (n,) of one modification, which joins the others where it is new."""
-    bare = without(observed, [name])
-    return replace(
-        bare,
-        shares=np.column_stack([bare.shares, shares]),
-        fitted=np.column_stack([bare.fitted, (shares != 0).astype(float)]),
-        levels=np.column_stack([bare.levels, np.maximum.accumulate(np.abs(shares))]),
-        names=(*bare.names, name),
     )
 
 

@@ -19,7 +19,6 @@ from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
 from energytrack.inference.results import Verdict
-from energytrack.inference.several import without
 from energytrack.inference.shift import LEVEL, SHIFT
 
 
@@ -39,10 +38,15 @@ class Stage:
         return float(self.model.fit.coefficients[LEVEL]) * self.model.scale.consumption
 
     @property
+    def fitted(self) -> Array:
+        """Share of each segment (n,) driven with the modification, at whatever level."""
+        share: Array = self.observed.fitted[:, self.observed.names.index(self.question.modification)]
+        return share
+
+    @property
     def driven(self) -> Array:
         """Distance driven with the modification up to each segment (n,), km."""
-        share = np.abs(self.observed.shares[:, self.observed.names.index(self.question.modification)]) / self.level
-        total: Array = np.cumsum(self.observed.distance_km * share)
+        total: Array = np.cumsum(self.observed.distance_km * self.fitted)
         return total
 
 
@@ -59,7 +63,7 @@ class Outcome:
 
 def set_stage(observed: Observations, question: Question, *, pretended: bool) -> Stage:
     """Fit the user's log; its own shift, if it has one, is taken out of the mean and so kept out of the noise."""
-    bare = without(observed, observed.names[-1:]) if pretended else observed
+    bare = observed.keeping([n for n in observed.names if n != question.modification]) if pretended else observed
     model = fit_model(bare, None if pretended else question.modification, covariates=question.covariates)
     coefficients = model.fit.coefficients.copy()
     if not pretended:

@@ -98,7 +98,7 @@ def test_a_placebo_that_is_fooled_names_where():
 
 def test_as_dict_holds_plain_values():
     found = REHEARSAL.to_dict()
-    called = {"count": 4, "of": 200, "percent": 2.0, "interval_percent": [0.5, 5.0]}
-    assert found["no_shift"]["called_shifted"] == called
+    alarms = found["no_shift"]["called_shifted"]
+    assert alarms == {"count": 4, "of": 200, "percent": 2.0, "interval_percent": [0.5, 5.0]}
     assert found["no_shift"]["settled"]["range_km"] == [5_100.0, None]
     assert found["placebo"][0]["called_at_km"] == [52_310.0]
