@@ -9,7 +9,7 @@ from math import sqrt
 from typing import TYPE_CHECKING
 
 from energytrack.consumption.columns import flags
-from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.frames import modifications_from_frame, observe_frames
 from energytrack.consumption.observations import Observations
 from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
@@ -17,10 +17,11 @@ from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import need, remedies
+from energytrack.inference.known import with_known_change
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.question import Question
-from energytrack.inference.results import Assessment, Verdict
+from energytrack.inference.results import Assessment, Rule, Verdict
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -40,32 +41,38 @@ def assess(
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
     every_look: bool = True,
+    rule: Rule = "every-look",
+    looks_taken: Sequence[float] = (),
 ) -> Assessment:
     """Answer the main question for one modification of one vehicle.
 
     entries, modifications, weather, events: tables as in docs/reference.md, of one vehicle. `capacity` in `unit`
     (L, kg, kWh) is estimated from the log where it is not given. `covariates` names numeric columns used besides
     temperature and speed. `every_look=False` looks only once, at the end, as if nobody had looked before.
+    `rule`: "every-look", whose bound holds however often someone looks; "counted", where only the looks taken count:
+    those at the odometer positions `looks_taken` (km) and this one; "open-ended", a watch that never closes.
 
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
-    not in the table, InferenceError for a target, confidence or power outside its range.
+    not in the table, InferenceError for a target, confidence or power outside its range, or an unknown rule.
     """
     reversible = _reversible(modifications, name)
-    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()), reversible)
+    asked = (name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()), rule)
+    question = Question(*asked, reversible=reversible)
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
     if name not in observed.names:
         raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
-    states = take_looks(observed, question, every=every_look)
+    states = take_looks(observed, question, every=every_look, taken=looks_taken)
     blank = _blank(vehicle, observed, question, notes)
-    return _answer(blank, observed, question, states) if states else _before_the_first_look(blank, observed, question)
+    answer = _answer(blank, observed, question, states) if states else _before_the_first_look(blank, observed, question)
+    return with_known_change(answer, modifications_from_frame(modifications, vehicle or None))
 
 
 def _answer(blank: Assessment, observed: Observations, question: Question, states: list[State]) -> Assessment:
     now, found = states[-1], finding(states, question.target)
-    shift, theta = now.shift, bounds.drift(question.alpha, question.power)
+    shift, theta = now.shift, question.drift
     answer = replace(
         blank,
         shift_percent=100 * shift.ratio,
@@ -103,16 +110,16 @@ def _open(answer: Assessment, model: Model, question: Question) -> Assessment:
     """The test goes on: how far, or why not and what would help."""
     required = need(model, always_fitted, question)
     driven, central = answer.distance_modified_km, required.central
-    theta = bounds.drift(question.alpha, question.power)
+    expected = required.expected_km if question.has_end else None  # known for the bound that ends at this distance
     return replace(
         answer,
-        verdict="out-of-reach" if central is None else "not-yet",
+        verdict="out-of-reach" if central is None and question.has_end else "not-yet",
         distance_needed_km=None if central is None else driven + central.distance_km,
         distance_to_go_km=None if central is None else central.distance_km,
         distance_to_go_interval_km=required.interval_km,
         days_to_go=None if central is None else central.days,
-        distance_expected_km=None if required.expected_km is None else driven + required.expected_km,
-        resolvable_at_best_percent=100 * theta * sqrt(required.best_variance),
+        distance_expected_km=None if expected is None else driven + expected,
+        resolvable_at_best_percent=100 * question.drift * sqrt(required.best_variance),
         remedies=() if central else remedies(model, required, question),
     )
 
@@ -167,6 +174,7 @@ def _blank(vehicle: str, observed: Observations, question: Question, notes: tupl
         remedies=(),
         expectation=None,
         warnings=notes,
+        rule=question.rule,
         reversible=question.reversible,
     )
 

@@ -37,7 +37,8 @@ def plan(
     Tables and errors as for `assess`. Modifications already logged are allowed for, and stay as they are now.
     reversible: whether the part can be taken off again; if not, only ways that never do are compared.
     """
-    question = Question("", float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()), reversible)
+    named = tuple(covariates or ())
+    question = Question("", float(target_percent) / 100, 1 - confidence, power, named, reversible=reversible)
     observed, notes = observe_frames(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )

@@ -127,7 +127,7 @@ def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, 
 
     Of a modification that cannot be taken off again, none that takes it off.
     """
-    best = 100 * bounds.drift(question.alpha, question.power) * sqrt(required.best_variance)
+    best = 100 * question.drift * sqrt(required.best_variance)
     larger = ceil(best * 1.15 * 2) / 2  # a little above the limit, which itself is never reached; in half percents
     found = []
     if larger < 100:
