@@ -55,7 +55,7 @@ def fitted(
     known: Annotated[
         str | None, typer.Option(metavar="LOW:HIGH", help="A known change: the shift expected, in percent, e.g. 4:9.")
     ] = None,
-    irreversible: Annotated[bool, typer.Option("--irreversible", help="It cannot be taken off again.")] = False,
+    not_reversible: Annotated[bool, typer.Option("--not-reversible", help="It cannot be taken off again.")] = False,
     note: options.Note = "",
     json: options.Json = False,
 ) -> None:
@@ -67,7 +67,7 @@ def fitted(
         graded = None if level is None else parse_number(level, "level")
         check_name(name, "modification")
         expected = _known(known)
-        store.fit(chosen.name, name, day, km, _target(target), graded, note, expected, not irreversible)
+        store.fit(chosen.name, name, day, km, _target(target), graded, note, expected, not not_reversible)
     _echo(chosen, "fitted", name, day, km, json, expected)
 
 

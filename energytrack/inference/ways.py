@@ -7,7 +7,6 @@ from dataclasses import dataclass
 from itertools import accumulate
 from math import ceil, inf, isfinite, sqrt
 
-from energytrack.inference import bounds
 from energytrack.inference.ahead import Reach, Road, Schedule, always_fitted, reach, segments_begun, segments_within
 from energytrack.inference.costliest import cost_shares
 from energytrack.inference.distance import ALTERNATIONS, LONGER_BASELINES, Course, course, need_along
@@ -116,7 +115,7 @@ def _design(model: Model, way: Way, here: Course, question: Question) -> Design:
 
 
 def _resolvable(here: Course, question: Question) -> dict[str, float | None]:
-    z = bounds.drift(question.alpha, question.power)
+    z = question.drift
     by_then = [100 * z * sqrt(here.priced(segments_within(here.road, km))) for km in DISTANCES_KM]
     never_worse = accumulate(by_then, min)  # the freedom is an approximation, and may lose more than a segment brings
     return {

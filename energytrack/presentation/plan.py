@@ -67,7 +67,7 @@ def _takes(design: Design | None, unit: str) -> str:
     assert design is not None
     assert design.distance_km is not None
     time = "" if design.days is None else f" ({figures.days(design.days)})"
-    return f"{ways.name(design)} takes about {figures.distance(design.distance_km, unit)}{time}"
+    return f"{ways.phrase(design)} takes about {figures.distance(design.distance_km, unit)}{time}"
 
 
 def periods(modifications: Iterable[Modification], unit: str) -> list[str]:

@@ -45,6 +45,16 @@ def name(design: Design) -> str:
     return "off and on at every fill-up" if every == 1 else f"off and on every {every} fill-ups"
 
 
+def phrase(design: Design) -> str:
+    """The same in a sentence."""
+    if design.name == "on-off-on":
+        on, off = design.phases
+        return f"{join(f'{on} fill-up' + 's' * (on > 1))} on, {off} off and on again"
+    if design.name == "longer-baseline":
+        return f"one switch after {join(f'{design.phases[0]} more fill-ups')}"
+    return name(design)
+
+
 def cost(design: Design, unit: str) -> tuple[str, str]:
     """What costs a way the most, and its share of the variance."""
     if design.costliest is None or design.costliest_share is None:

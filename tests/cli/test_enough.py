@@ -355,7 +355,7 @@ def test_known_changes_that_cannot_be_are_refused_and_nothing_is_logged(logbook:
 
 def test_a_saving_may_be_known_and_a_part_irreversible(logbook: Path) -> None:
     done = run(
-        logbook, "mod", "fitted", "remap", "29000", "--vehicle", "van", "--known", "-9:-4", "--irreversible", "--json"
+        logbook, "mod", "fitted", "remap", "29000", "--vehicle", "van", "--known", "-9:-4", "--not-reversible", "--json"
     )
     assert done.returncode == 0, done.stderr
     remap = open_logbook(logbook).modifications("van")[-1]
