@@ -9,7 +9,7 @@ from tests.evidence.block import Block
 
 DOCUMENT = Path(__file__).parent.parent.parent / "docs" / "evidence.md"
 _END = "<!-- end -->"
-_BLOCK = re.compile(r"<!-- measured: (.+) -->\n(.*?)" + re.escape(_END), re.DOTALL)
+_BLOCK = re.compile(r"<!-- measured: ([^\n]+) -->\n(.*?)" + re.escape(_END), re.DOTALL)
 
 
 def measured(text: str) -> dict[str, str]:
