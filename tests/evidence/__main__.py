@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 from collections.abc import Iterator
+from itertools import chain
 from pathlib import Path
 
 from tests.evidence import sham, simulated
@@ -24,7 +25,8 @@ def _blocks(asked: argparse.Namespace) -> Iterator[Block]:
     if asked.what == "sham":
         return sham.blocks(asked.folder)
     uses = tuple(use for use in USES if asked.kind in (None, use.vehicle))
-    return simulated.blocks(uses, asked.logs)
+    parts = [simulated.PARTS[name] for name in asked.only or simulated.PARTS]
+    return chain.from_iterable(part(uses, asked.logs) for part in parts)
 
 
 def _arguments() -> argparse.Namespace:
@@ -34,6 +36,7 @@ def _arguments() -> argparse.Namespace:
     common.add_argument("--document", type=Path, default=DOCUMENT, help="docs/evidence.md where not given")
     what = parser.add_subparsers(dest="what", required=True)
     drawn = what.add_parser("simulated", parents=[common], help="logs drawn from a known truth; about half an hour")
+    drawn.add_argument("--only", action="append", choices=simulated.PARTS, help="one part; may be given several times")
     drawn.add_argument("--logs", type=int, help="at most so many logs of each kind, for a try")
     drawn.add_argument("--kind", choices=[use.vehicle for use in USES], help="one kind of use only, for a try")
     real = what.add_parser("sham", parents=[common], help="sham changes in real logs; minutes")

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
+from scipy.special import ndtr, stdtrit
 
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
@@ -16,7 +17,9 @@ from tests.uses import Use
 
 FIRST_SEED = 30_000
 LONGER = 2  # times as many fillings as tests/uses.py says, all of the further ones with the part
+SMALLEST_TAIL = 1e-200
 TOLD_AFTER = (6, 12, 24)  # segments driven with the part
+Quantile = Callable[[float, float], float]  # of a tail and a freedom
 
 
 @dataclass(frozen=True)
@@ -43,10 +46,10 @@ class Followed:
     """One test. None: it did not get that far within the log."""
 
     use: str
-    priced: Ending | None  # as energytrack counts information
+    ours: Ending | None  # as energytrack counts information and sets its bound
     unpriced: Ending | None  # information as 1 / variance, as if the noise were known
+    student: Ending | None  # bound and price by Student's t
     complete_km: float | None  # with the part, when the information was first complete
-    driven_km: float  # with the part, in the whole log
     held: bool  # the true shift lay in the look-proof range of every look
     told: tuple[Told, ...]
 
@@ -58,26 +61,31 @@ def lengthened(use: Use) -> Use:
 
 def follow(job: Job) -> Followed:
     states = take_looks(drawn(Job(lengthened(job.use), job.seed)), QUESTION, every=True)
-    shares = [min(1.0, 1 / state.shift.standard_error**2 / QUESTION.information) for state in states]
-    unpriced_bounds = [
-        bounds.critical(share, state.shift.freedom, QUESTION.alpha)
-        for share, state in zip(shares, states, strict=True)
-    ]
     truth = job.use.shift_percent / 100
     return Followed(
         job.use.vehicle,
-        _ending(states, [state.share for state in states], [state.bound for state in states]),
-        _ending(states, shares, unpriced_bounds),
+        _ending(states, bounds.mixture_quantile, priced=True),
+        _ending(states, bounds.mixture_quantile, priced=False),
+        _ending(states, _student_quantile, priced=True),
         _complete_km(states),
-        _driven(states[-1]),
         all(state.interval is None or state.interval[0] <= truth <= state.interval[1] for state in states),
         tuple(_told(states, after) for after in TOLD_AFTER),
     )
 
 
-def _ending(states: Sequence[State], shares: Sequence[float], critical: Sequence[float | None]) -> Ending | None:
-    for state, share, bound in zip(states, shares, critical, strict=True):
-        crossed = bound is not None and abs(state.shift.z) > bound
+def _student_quantile(tail: float, freedom: float) -> float:
+    return -float(stdtrit(freedom, tail))
+
+
+def _ending(states: Sequence[State], quantile: Quantile, *, priced: bool) -> Ending | None:
+    """The test as in looks.py and bounds.py, with another quantile, or with information as if the noise were known."""
+    level = bounds.level(QUESTION.alpha)
+    for state in states:
+        freedom = state.shift.freedom
+        price = quantile(float(ndtr(-level)), freedom) / level if priced else 1.0
+        share = min(1.0, 1 / (state.shift.standard_error * price) ** 2 / QUESTION.information)
+        tail = float(ndtr(-level / np.sqrt(share)))
+        crossed = tail > SMALLEST_TAIL and abs(state.shift.z) > quantile(tail, freedom)
         if crossed or share >= 1:
             return Ending(crossed, _driven(state))
     return None

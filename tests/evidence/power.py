@@ -13,9 +13,12 @@ HEADING = (
     "kind of use",
     "tests that closed",
     "of these, found it",
-    "median km when found",
+    "median km when closed",
     "without the price: closed",
     "of these, found it",
+    "Student's t: closed",
+    "of these, found it",
+    "median km when closed",
     "range held the truth at every look",
 )
 
@@ -27,14 +30,20 @@ def block(results: Sequence[Followed], uses: tuple[Use, ...], logs: int) -> Bloc
 
 
 def _row(name: str, results: Sequence[Followed]) -> tuple[str, ...]:
-    priced, unpriced = [one.priced for one in results], [one.unpriced for one in results]
+    ours, student = [one.ours for one in results], [one.student for one in results]
     return (
         name,
-        *_closed(priced),
-        middle(ending.driven_km for ending in priced if ending is not None and ending.found),
-        *_closed(unpriced),
+        *_closed(ours),
+        _km(ours),
+        *_closed([one.unpriced for one in results]),
+        *_closed(student),
+        _km(student),
         rate(one.held for one in results),
     )
+
+
+def _km(endings: Sequence[Ending | None]) -> str:
+    return middle(ending.driven_km for ending in endings if ending is not None)
 
 
 def _closed(endings: Sequence[Ending | None]) -> tuple[str, str]:

@@ -1,4 +1,4 @@
-"""All tables from simulated logs."""
+"""All tables from simulated logs, in parts that can be measured one by one."""
 
 from __future__ import annotations
 
@@ -8,22 +8,49 @@ from tests.evidence import coverage, false_alarms, followed, forecast, power, qu
 from tests.evidence.block import Block
 from tests.evidence.cores import across_cores
 from tests.evidence.logs import jobs
-from tests.uses import USES, Use
+from tests.uses import Use
 
-LOGS_AT_EACH_LOOK, LOGS_AT_ONE_LOOK, LOGS_FOLLOWED = 80, 200, 40
+Uses = tuple[Use, ...]
 
 
-def blocks(uses: tuple[Use, ...] = USES, most: int | None = None) -> Iterator[Block]:
-    """Each block as it is ready. most: fewer logs of each kind than the document's, for a try."""
-    each, once, long = (min(logs, most or logs) for logs in (LOGS_AT_EACH_LOOK, LOGS_AT_ONE_LOOK, LOGS_FOLLOWED))
+def _quantiles(uses: Uses, most: int | None) -> Iterator[Block]:
     yield quantiles.block()
-    estimates = across_cores(coverage.estimate, jobs(uses, once, coverage.FIRST_SEED))
-    yield coverage.block(estimates, uses, once)
-    drifting = coverage.drifting_uses()
-    estimates = across_cores(coverage.estimate, jobs(drifting, once, coverage.FIRST_SEED_OF_DRIFT))
-    yield coverage.drift_block(estimates, drifting, once)
-    claimed = across_cores(false_alarms.claims, jobs(uses, each, false_alarms.FIRST_SEED))
-    yield false_alarms.block(claimed, uses, each)
-    tests = across_cores(followed.follow, jobs(uses, long, followed.FIRST_SEED))
-    yield power.block(tests, uses, long)
-    yield forecast.block(tests, uses, long)
+
+
+def _coverage(uses: Uses, most: int | None) -> Iterator[Block]:
+    logs = _at_most(200, most)
+    estimates = across_cores(coverage.estimate, jobs(uses, logs, coverage.FIRST_SEED))
+    yield coverage.block(estimates, uses, logs)
+
+
+def _drift(uses: Uses, most: int | None) -> Iterator[Block]:
+    logs, uses = _at_most(200, most), coverage.drifting_uses()
+    estimates = across_cores(coverage.estimate, jobs(uses, logs, coverage.FIRST_SEED_OF_DRIFT))
+    yield coverage.drift_block(estimates, uses, logs)
+
+
+def _false_alarms(uses: Uses, most: int | None) -> Iterator[Block]:
+    logs = _at_most(80, most)
+    yield false_alarms.block(
+        across_cores(false_alarms.claims, jobs(uses, logs, false_alarms.FIRST_SEED)), uses, logs
+    )
+
+
+def _long_tests(uses: Uses, most: int | None) -> Iterator[Block]:
+    logs = _at_most(24, most)
+    tests = across_cores(followed.follow, jobs(uses, logs, followed.FIRST_SEED))
+    yield power.block(tests, uses, logs)
+    yield forecast.block(tests, uses, logs)
+
+
+PARTS = {
+    "quantiles": _quantiles,
+    "coverage": _coverage,
+    "drift": _drift,
+    "false-alarms": _false_alarms,
+    "long-tests": _long_tests,
+}
+
+
+def _at_most(logs: int, most: int | None) -> int:
+    return min(logs, most or logs)
