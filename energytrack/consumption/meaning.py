@@ -58,7 +58,15 @@ def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str
     else:
         lines = _with_consumption(segmented.segments[which], vehicle)
         lines += _compared(segmented, which, vehicle, kept, rows)
-    return lines + _still_to_go(segmented, vehicle, index, kept, rows)
+    return lines + _overfilled(entry, vehicle) + _still_to_go(segmented, vehicle, index, kept, rows)
+
+
+def _overfilled(entry: Entry, vehicle: Vehicle) -> list[str]:
+    """A flag where more was bought than a tank holds; charging losses make that usual for a battery."""
+    if vehicle.capacity is None or vehicle.unit == "kWh" or entry.energy <= vehicle.capacity:
+        return []
+    amount, capacity = energy_text(entry.energy, vehicle), energy_text(vehicle.capacity, vehicle)
+    return [f"{amount} is more than the capacity of {capacity}: kept; check the amount"]
 
 
 def unusual(segments: Sequence[Segment]) -> list[bool]:
@@ -122,7 +130,7 @@ def _with_consumption(segment: Segment, vehicle: Vehicle) -> list[str]:
 
 def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) -> list[str]:
     entry = segmented.entries[index]
-    store = "charge" if vehicle.unit == "kWh" else "tank"
+    store, filling = ("charge", "charge") if vehicle.unit == "kWh" else ("tank", "fill")
     if index == 0:
         return [f"first entry: consumption follows with the next full {store}"]
     driven = segmented.positions[index] - segmented.positions[index - 1]
@@ -130,7 +138,7 @@ def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) 
     void = next((span for span in segmented.void if span.entry == index), None)
     if void is not None and (entry.full or entry.level_percent is not None):
         return [*since, f"no consumption: {WHY_VOID[void.reason]}"]
-    return [*since, f"partial fill: consumption follows with the next full {store}"]
+    return [*since, f"partial {filling}: consumption follows with the next full {store}"]
 
 
 def _compared(
@@ -160,7 +168,7 @@ def _compared(
     lines = [
         f"expected {basis}: {consumption_text(expected, vehicle)}",
         f"{abs(percent):.1f} % {'more' if percent >= 0 else 'less'} than expected, "
-        f"{verdict} the usual scatter (+/- {scatter:.0f} %)",
+        f"{verdict} the usual scatter (± {scatter:.0f} %)",
     ]
     if unusual(segmented.segments)[which]:
         lines.append("unusual for this vehicle: kept; check the amount and the odometer")
@@ -185,7 +193,8 @@ def _expected(
             percent += slope * (term(name, value) - expectation["centres"][name])
     own = [row for row in rows if row.name == answer.get("modification")]
     try:
-        highest = max((abs(row.level) for row in own if row.level), default=1.0)  # the shift is that of this level
+        levels = [1.0 if row.level is None else abs(row.level) for row in own]
+        highest = max(levels, default=1.0) or 1.0  # the shift is that of this level
         percent += (expectation["shift_percent"] or 0.0) * shares(segmented, own)[which] / highest
     except ConsumptionError:
         return None  # the rows of the modification contradict each other; said under what is left to go
@@ -267,9 +276,9 @@ def _left(
     to_go, at = answer.get("distance_to_go_km"), answer.get("at_km")
     if to_go is None:
         why = "no baseline yet" if answer["verdict"] == "no-baseline" else f"{target} is out of reach as it is driven"
-        return f"{why} (run `energytrack enough` for what would help)"
+        return f"{why}: `energytrack enough` says what would help"
     if at is None:
-        return f"about {_about(to_go, vehicle)} to go at {target} when last looked at (`energytrack enough`)"
+        return f"about {_about(to_go, vehicle)} to go at {target} when last looked at"
     here = segmented.positions[index]
     try:
         periods = fitted_periods(segmented, rows)
@@ -277,8 +286,8 @@ def _left(
         return str(contradiction)
     driven = math.fsum(max(0.0, min(removed, here) - max(fitted, at)) for fitted, removed, _ in periods)
     if driven >= to_go:
-        return f"the distance asked for at {target} is covered (run `energytrack enough` to look)"
-    return f"about {_about(to_go - driven, vehicle)} to go at {target} (run `energytrack enough` to look)"
+        return f"the distance asked for at {target} is covered"
+    return f"about {_about(to_go - driven, vehicle)} to go at {target}"
 
 
 def _about(km: float, vehicle: Vehicle) -> str:

@@ -15,7 +15,7 @@ _NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
 
 def caveats(model: Model) -> tuple[str, ...]:
     """Warnings about an answer, most weighty first."""
-    found = (_never_apart, _little_overlap, _other_level, _filled_in, _no_weather)
+    found = (_never_apart, _not_fitted_now, _little_overlap, _other_level, _filled_in, _no_weather)
     return tuple(caveat for find in found for caveat in find(model))
 
 
@@ -27,19 +27,32 @@ def _shares(model: Model, name: str) -> Array:
 def _never_apart(model: Model) -> list[str]:
     if model.modification is None:
         return []
-    own = _shares(model, model.modification)
-    return [
-        f"{model.modification} and {other} were (nearly) always fitted together: the log cannot tell them apart. "
-        f"Drive some full tanks with only one of them, or log the two as one modification."
-        for other in model.others
-        if abs(np.corrcoef(own, _shares(model, other))[0, 1]) > _NEVER_APART
-    ]
+    own, found = _shares(model, model.modification), []
+    for other in model.others:
+        correlation = float(np.corrcoef(own, _shares(model, other))[0, 1])
+        if correlation > _NEVER_APART:
+            found.append(
+                f"{model.modification} and {other} were (nearly) always fitted together: the log cannot tell them "
+                f"apart. Drive some full tanks with only one of them, or log the two as one modification."
+            )
+        elif correlation < -_NEVER_APART:
+            found.append(
+                f"{model.modification} and {other} (nearly) always took each other's place: the log cannot tell their "
+                f"effects apart. Drive some full tanks with neither or both, or log the exchange as one modification."
+            )
+    return found
+
+
+def _not_fitted_now(model: Model) -> list[str]:
+    if model.modification is None or _shares(model, model.modification)[-1] != 0:
+        return []
+    return [f"{model.modification} is not fitted now: distance still to go counts from when it is fitted again"]
 
 
 def _little_overlap(model: Model) -> list[str]:
     if model.modification is None:
         return []
-    fitted = np.abs(_shares(model, model.modification)) > 0
+    fitted = model.observed.fitted[:, model.observed.names.index(model.modification)] > 0
     found = []
     for condition, (plural, unit) in _NAMES.items():
         value = model.conditions.values.get(condition)

@@ -62,6 +62,7 @@ def seconds_of(command: Command) -> float:
 def run(command: Command) -> str:
     """The output of a process of this project. Raises CalledProcessError where it fails."""
     environment = {**os.environ, "PYTHONPATH": str(ROOT)}
+    environment.pop("PYTHONDONTWRITEBYTECODE", None)  # an installed package has its bytecode beside it
     return subprocess.run(command, env=environment, capture_output=True, text=True, check=True).stdout
 
 
