@@ -79,7 +79,8 @@ def _stretch(observed: Observations, start: int, side: int) -> Observations:
         if isinstance(getattr(observed, field.name), np.ndarray)
     }
     arrays["linked"][0] = False
-    arrays["shares"] = np.repeat([0.0, 1.0], side)[:, None]
+    for of_the_sham in ("shares", "fitted", "levels"):
+        arrays[of_the_sham] = np.repeat([0.0, 1.0], side)[:, None]
     return replace(
         observed,
         **arrays,
