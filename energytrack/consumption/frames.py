@@ -14,27 +14,32 @@ import pandas as pd
 from energytrack.consumption.columns import dates, flags, kinds, numbers, texts
 from energytrack.consumption.observations import Observations, observe
 from energytrack.consumption.segments import SegmentedLog, close_segments
-from energytrack.errors import ConsumptionError, UnknownNameError
+from energytrack.errors import ConsumptionError, EntryError, UnknownNameError
+from energytrack.logbook.checks import check_known
 from energytrack.logbook.opening import Logbook
 from energytrack.logbook.opening import open_logbook as open_plain
 from energytrack.logbook.records import UNITS, Entry, Event, Modification, Vehicle, Weather
 
 ENTRY_COLUMNS = (
     *("vehicle", "date", "odometer_km", "energy", "kind", "full", "level_percent", "missed", "distance_km"),
-    *("cost", "currency", "temperature_c", "speed_kmh", "place", "note"),
+    *("cost", "currency", "temperature_c", "speed_kmh", "place", "note", "confirmed"),
 )
 MODIFICATION_COLUMNS = (
     *("vehicle", "name", "fitted_date", "fitted_km", "removed_date", "removed_km"),
-    *("level", "target_percent", "note"),
+    *("level", "target_percent", "known_low_percent", "known_high_percent", "reversible", "note"),
 )
 EVENT_COLUMNS = ("vehicle", "date", "odometer_km", "what", "odometer_factor", "note")
 WEATHER_COLUMNS = ("date", "temperature_c")
-VEHICLE_COLUMNS = ("name", "carrier", "unit", "capacity", "distance_unit", "display", "note")
+VEHICLE_COLUMNS = (
+    *("name", "carrier", "unit", "capacity", "distance_unit", "display", "typed_unit"),
+    *("second_carrier", "second_unit", "second_capacity", "note"),
+)
 MOST_PROBLEMS = 5  # named one by one in the notes
 DATES = ("date", "fitted_date", "removed_date")
 NUMBERS = (
     *("odometer_km", "energy", "level_percent", "distance_km", "cost", "temperature_c", "speed_kmh"),
     *("fitted_km", "removed_km", "level", "target_percent", "odometer_factor", "capacity"),
+    *("known_low_percent", "known_high_percent", "second_capacity"),
 )
 
 class FramedLogbook:
@@ -112,6 +117,7 @@ def entries_from_frame(frame: pd.DataFrame, vehicle: str | None = None) -> list[
         texts(rows, "place", ""),
         texts(rows, "note", ""),
         _extras(rows),
+        flags(rows, "confirmed", False),
         strict=True,
     )
     return [Entry(*values) for values in columns]
@@ -131,9 +137,28 @@ def modifications_from_frame(frame: pd.DataFrame, vehicle: str | None = None) ->
         numbers(rows, "level"),
         numbers(rows, "target_percent"),
         texts(rows, "note", ""),
+        _known(rows),
+        flags(rows, "reversible", True),
         strict=True,
     )
     return [Modification(*values) for values in columns]
+
+
+def _known(rows: pd.DataFrame) -> list[tuple[float, float] | None]:
+    found: list[tuple[float, float] | None] = []
+    ends = zip(numbers(rows, "known_low_percent"), numbers(rows, "known_high_percent"), strict=True)
+    for low, high in ends:
+        if (low is None) != (high is None):
+            raise ConsumptionError("a known change has one end: fill in known_low_percent and known_high_percent")
+        if low is None or high is None:
+            found.append(None)
+            continue
+        try:
+            check_known(low, high)
+        except EntryError as error:
+            raise ConsumptionError(str(error)) from None
+        found.append((low, high))
+    return found
 
 
 def events_from_frame(frame: pd.DataFrame, vehicle: str | None = None) -> list[Event]:

@@ -18,6 +18,7 @@ COLDEST_C, HOTTEST_C = -90.0, 60.0  # beyond any outside temperature met on Eart
 FASTEST_KMH = 500.0
 EARLIEST_YEAR = 1900
 LONGEST_NAME = 60  # keeps lists and answers readable
+LARGEST_KNOWN_PERCENT = 100.0
 
 
 def parse_date(text: str) -> dt.date:
@@ -50,6 +51,17 @@ def check_odometer(odometer_km: float, vehicle: Vehicle) -> None:
     if not 0 <= odometer_km <= LARGEST_ODOMETER_KM:
         shown = distance_text(odometer_km, vehicle)
         raise EntryError(f"odometer {shown} is no odometer value: type what the instrument shows")
+
+
+def check_known(low: float, high: float) -> None:
+    """A known change lies on one side of zero, from its low to its high end, in percent. Raises EntryError."""
+    shown = f"a known change of {low:g} to {high:g} %"
+    if low > high:
+        raise EntryError(f"{shown} is written the wrong way round: the lower number comes first, {high:g}:{low:g}")
+    if low <= 0 <= high:
+        raise EntryError(f"{shown} may be none at all: both ends above 0 (it costs), or both below 0 (it saves)")
+    if max(-low, high) > LARGEST_KNOWN_PERCENT:
+        raise EntryError(f"{shown} is beyond {LARGEST_KNOWN_PERCENT:g} %: correct it")
 
 
 def check_values(entry: Entry, vehicle: Vehicle, today: dt.date) -> None:

@@ -15,11 +15,15 @@ Reader = Callable[[str], Any]
 
 ENTRIES = (
     "vehicle", "date", "odometer_km", "energy", "kind", "full", "level_percent", "missed", "distance_km",
-    "cost", "currency", "temperature_c", "speed_kmh", "place", "note",
+    "cost", "currency", "temperature_c", "speed_kmh", "place", "note", "confirmed",
 )  # fmt: skip
-VEHICLES = ("vehicle", "carrier", "unit", "capacity", "distance_unit", "display", "typed_unit", "note")
+VEHICLES = (
+    "vehicle", "carrier", "unit", "capacity", "distance_unit", "display", "typed_unit",
+    "second_carrier", "second_unit", "second_capacity", "note",
+)  # fmt: skip
 MODIFICATIONS = (
-    "vehicle", "name", "fitted_date", "fitted_km", "removed_date", "removed_km", "level", "target_percent", "note",
+    "vehicle", "name", "fitted_date", "fitted_km", "removed_date", "removed_km", "level", "target_percent",
+    "known_low_percent", "known_high_percent", "reversible", "note",
 )  # fmt: skip
 EVENTS = ("vehicle", "date", "odometer_km", "what", "odometer_factor", "note")
 WEATHER = ("date", "temperature_c")
@@ -74,6 +78,7 @@ def entry_readers(form: Form) -> dict[str, Reader]:
         "speed_kmh": _scaled(_positive(number, "a mean speed"), form.kmh),
         "place": text_of,
         "note": text_of,
+        "confirmed": yes_or_no,
     }
 
 
@@ -88,6 +93,9 @@ def vehicle_readers(form: Form) -> dict[str, Reader]:
         "distance_unit": _one_of(tuple(DISTANCE)),
         "display": _one_of(tuple(CONSUMPTION)),
         "typed_unit": _one_of(tuple(ENERGY)),
+        "second_carrier": _one_of(CARRIERS),
+        "second_unit": _one_of(UNITS),
+        "second_capacity": _positive(number, "a capacity"),
         "note": text_of,
     }
 
@@ -105,6 +113,9 @@ def modification_readers(form: Form) -> dict[str, Reader]:
         "removed_km": odometer,
         "level": number,
         "target_percent": _positive(number, "a target"),
+        "known_low_percent": number,
+        "known_high_percent": number,
+        "reversible": yes_or_no,
         "note": text_of,
     }
 

@@ -78,6 +78,11 @@ class Folder:
         self.vehicle(vehicle_name)
         return []
 
+    def looks(self, vehicle_name: str, modification: str) -> list[float]:
+        """None: a folder keeps no looks."""
+        self.vehicle(vehicle_name)
+        return []
+
     def close(self) -> None:
         """Nothing to let go of: tables are read whole."""
 
@@ -89,6 +94,7 @@ class Folder:
         )
 
     add_vehicle = add_entry = add_entries = fit = remove = add_event = add_weather = keep_assessment = refuse_writing
+    record_look = confirm = refuse_writing
 
     def _of_vehicle(self, name: str, file: str, read: Callable[[Path, Form], Reading[Any]]) -> list[Any]:
         self.vehicle(name)

@@ -18,7 +18,10 @@ class Writable(Protocol):
     def add_vehicle(self, vehicle: Vehicle) -> Any: ...
     def add_event(self, event: Event) -> Any: ...
     def add_weather(self, weather: list[Weather]) -> Any: ...
-    def fit(self, vehicle: str, name: str, date: Any, km: Any, target: Any, level: Any, note: str) -> Any: ...
+    def fit(
+        self, vehicle: str, name: str, date: Any, km: Any,
+        target: Any, level: Any, note: str, known: Any, reversible: bool,
+    ) -> Any: ...  # fmt: skip
     def remove(self, vehicle: str, name: str, date: Any, km: Any) -> Any: ...
 
 
@@ -38,7 +41,8 @@ def merge_modifications(store: Writable, modifications: Sequence[Modification]) 
         removed = row.removed_date is not None or row.removed_km is not None
         known = [other for other in store.modifications(row.vehicle) if _fitting(other) == _fitting(row)]
         if not known:
-            store.fit(row.vehicle, row.name, row.fitted_date, row.fitted_km, row.target_percent, row.level, row.note)
+            place = (row.vehicle, row.name, row.fitted_date, row.fitted_km)
+            store.fit(*place, row.target_percent, row.level, row.note, row.known, row.reversible)
         elif not removed or any(other.removed_date or other.removed_km for other in known):
             continue
         if removed:

@@ -39,6 +39,9 @@ class Vehicle:
     display: str | None = None  # consumption unit shown, a key of quantities.CONSUMPTION; None: the carrier's usual one
     note: str = ""
     typed_unit: str | None = None  # unit of amounts typed without one, a key of quantities.ENERGY; None: `unit`
+    second_carrier: str | None = None  # of a vehicle with tank and battery; None: it has one carrier
+    second_unit: str | None = None  # of amounts of the second carrier
+    second_capacity: float | None = None  # in `second_unit`
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,6 +64,7 @@ class Entry:
     place: str = ""
     note: str = ""
     extra: Mapping[str, float] = field(default_factory=lambda: _NOTHING)  # further numeric columns
+    confirmed: bool = False  # looks odd and is right: kept
     id: int | None = None  # the store's number, None outside a store
 
 
@@ -77,6 +81,16 @@ class Modification:
     level: float | None = None  # empty: on or off
     target_percent: float | None = None
     note: str = ""
+    known: tuple[float, float] | None = None  # shift expected beforehand, low to high percent: a known change
+    reversible: bool = True  # can be taken off again
+
+    @property
+    def known_low_percent(self) -> float | None:
+        return None if self.known is None else self.known[0]
+
+    @property
+    def known_high_percent(self) -> float | None:
+        return None if self.known is None else self.known[1]
 
 
 @dataclass(frozen=True, slots=True)

@@ -13,12 +13,19 @@ from typing import Any
 from energytrack.logbook.records import Entry, Event, Vehicle
 from energytrack.logbook.switches import Switch
 
-VEHICLE_COLUMNS = "name, carrier, unit, capacity, distance_unit, display, note, typed_unit"
+VEHICLE_COLUMNS = (
+    "name, carrier, unit, capacity, distance_unit, display, note, typed_unit, "
+    "second_carrier, second_unit, second_capacity"
+)
 ENTRY_COLUMNS = (
     "date, energy, odometer_km, kind, full, level_percent, missed, distance_km, cost, currency, "
     "temperature_c, speed_kmh, place, note, extra, id"
 )
-SWITCH_COLUMNS = "modification, action, date, odometer_km, level, target_percent, note"
+ENTRY_SELECT = f"{ENTRY_COLUMNS}, EXISTS (SELECT 1 FROM confirmation WHERE entry_id = id)"
+SWITCH_COLUMNS = (
+    "modification, action, date, odometer_km, level, target_percent, note, "
+    "known_low_percent, known_high_percent, reversible"
+)
 EVENT_COLUMNS = "date, what, odometer_km, odometer_factor, note"
 
 
@@ -27,22 +34,41 @@ def vehicle_of(row: tuple[Any, ...]) -> Vehicle:
 
 
 def entry_of(vehicle: str, row: tuple[Any, ...]) -> Entry:
-    values = dict(zip(ENTRY_COLUMNS.split(", "), row, strict=True))
+    values = dict(zip((*ENTRY_COLUMNS.split(", "), "confirmed"), row, strict=True))
     values["date"] = dt.date.fromisoformat(values["date"])
     values["energy"] = math.nan if values["energy"] is None else values["energy"]
-    values["full"], values["missed"] = bool(values["full"]), bool(values["missed"])
+    values |= {name: bool(values[name]) for name in ("full", "missed", "confirmed")}
     values["extra"] = MappingProxyType(json.loads(values["extra"]))
     return Entry(vehicle, **values)
 
 
 def switch_of(row: tuple[Any, ...]) -> Switch:
-    name, action, date, km, level, target, note = row
-    return Switch(name, action == "fitted", dt.date.fromisoformat(date) if date else None, km, level, target, note)
+    name, action, date, km, level, target, note, low, high, reversible = row
+    known = None if low is None else (low, high)
+    day = dt.date.fromisoformat(date) if date else None
+    return Switch(name, action == "fitted", day, km, level, target, note, known, bool(reversible))
 
 
 def event_of(vehicle: str, row: tuple[Any, ...]) -> Event:
     date, what, odometer, factor, note = row
     return Event(vehicle, dt.date.fromisoformat(date), what, odometer, factor, note)
+
+
+def switch_values(switch: Switch) -> dict[str, Any]:
+    """Column -> value."""
+    low, high = switch.known or (None, None)
+    return {
+        "modification": switch.modification,
+        "action": "fitted" if switch.fitted else "removed",
+        "date": switch.date.isoformat() if switch.date else None,
+        "odometer_km": switch.km,
+        "level": switch.level,
+        "target_percent": switch.target_percent,
+        "note": switch.note,
+        "known_low_percent": low,
+        "known_high_percent": high,
+        "reversible": int(switch.reversible),
+    }
 
 
 def entry_values(entry: Entry) -> dict[str, Any]:

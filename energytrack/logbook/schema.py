@@ -128,7 +128,52 @@ CREATE TABLE assessment (
 CREATE INDEX assessment_latest ON assessment (vehicle_id, modification, id);
 """
 
-MIGRATIONS: tuple[str, ...] = (_VERSION_1,)  # step n leads from version n to n + 1; never change one that was released
+
+def _kept_for_good(table: str, key: str) -> str:
+    """Guards of a table whose rows nothing supersedes."""
+    refuse = f"BEGIN SELECT RAISE(ABORT, 'rows of {table} are never changed'); END;"
+    return f"""
+CREATE TRIGGER {table}_kept_as_written BEFORE UPDATE ON {table} {refuse}
+CREATE TRIGGER {table}_kept BEFORE DELETE ON {table} {refuse}
+CREATE TRIGGER {table}_not_replaced BEFORE INSERT ON {table}
+    WHEN EXISTS (SELECT 1 FROM {table} WHERE {key} = NEW.{key}) {refuse}
+"""
+
+
+_VERSION_2 = f"""
+ALTER TABLE switch ADD COLUMN known_low_percent REAL;
+ALTER TABLE switch ADD COLUMN known_high_percent REAL
+    CHECK ((known_low_percent IS NULL) = (known_high_percent IS NULL) AND
+           (known_low_percent IS NULL OR known_low_percent <= known_high_percent));
+ALTER TABLE switch ADD COLUMN reversible INTEGER NOT NULL DEFAULT 1 CHECK (reversible IN (0, 1));
+
+ALTER TABLE vehicle ADD COLUMN second_carrier TEXT;
+ALTER TABLE vehicle ADD COLUMN second_unit TEXT CHECK (second_unit IN ('L', 'kg', 'kWh'));
+ALTER TABLE vehicle ADD COLUMN second_capacity REAL CHECK (second_capacity > 0);
+
+CREATE TABLE look (
+    id INTEGER PRIMARY KEY,
+    vehicle_id INTEGER NOT NULL REFERENCES vehicle (id),
+    modification TEXT NOT NULL,
+    at_km REAL NOT NULL,         -- end of the newest closed segment, on the log's own scale
+    date TEXT NOT NULL,          -- end of that segment
+    recorded_at TEXT NOT NULL
+) STRICT;
+
+CREATE INDEX look_of_modification ON look (vehicle_id, modification, at_km);
+
+{_kept_for_good("look", "id")}
+
+CREATE TABLE confirmation (      -- an entry that looks odd and is right
+    entry_id INTEGER PRIMARY KEY REFERENCES entry (id),
+    recorded_at TEXT NOT NULL
+) STRICT;
+
+{_kept_for_good("confirmation", "entry_id")}
+"""
+
+# step n leads from version n to n + 1; never change one that was released
+MIGRATIONS: tuple[str, ...] = (_VERSION_1, _VERSION_2)
 
 
 def version_of(connection: sqlite3.Connection) -> int:

@@ -15,6 +15,7 @@ from energytrack.logbook.records import Entry, Event, Modification, Vehicle, Wea
 from energytrack.logbook.switches import Switch, check_switch, pair
 
 TYPED = "terminal"  # source of entries that were typed
+SAME_PLACE_KM = 0.5  # no odometer shows less
 _NO_REPEAT = (  # of a chain of corrections, those that changed what makes an entry this entry, and the first
     "NOT EXISTS (SELECT 1 FROM entry AS earlier WHERE earlier.id = this.supersedes "
     "AND (earlier.date, earlier.odometer_km, earlier.distance_km, earlier.energy) "
@@ -47,7 +48,7 @@ class Store(LogbookFile):
 
     def ever_logged(self, vehicle_name: str) -> list[Entry]:
         """Every entry as first logged, struck ones too, and every correction that changed its moment or amounts."""
-        select = f"SELECT {rows.ENTRY_COLUMNS} FROM entry AS this WHERE vehicle_id = ? AND {_NO_REPEAT}"
+        select = f"SELECT {rows.ENTRY_SELECT} FROM entry AS this WHERE vehicle_id = ? AND {_NO_REPEAT}"
         found = self._rows(select, self._number(vehicle_name))
         with self._guard():
             return [rows.entry_of(vehicle_name, row) for row in found]
@@ -111,6 +112,11 @@ class Store(LogbookFile):
         with self._guard():
             return [json.loads(row[0]) for row in found]
 
+    def looks(self, vehicle_name: str, modification: str) -> list[float]:
+        """How far the log had come (km) at each look that was taken at this modification, in driving order."""
+        select = "SELECT at_km FROM look WHERE vehicle_id = ? AND modification = ? ORDER BY at_km"
+        return [row[0] for row in self._rows(select, self._number(vehicle_name), modification)]
+
     # Writing
 
     def add_vehicle(self, vehicle: Vehicle) -> None:
@@ -124,7 +130,10 @@ class Store(LogbookFile):
     def add_entry(self, entry: Entry, typed: Mapping[str, Any]) -> int:
         """Append one entry with what was typed for it; its number."""
         with self.transaction(), self._guard():
-            return rows.insert(self._db, "entry", self._written(self._number(entry.vehicle), entry, typed, TYPED))
+            number = rows.insert(self._db, "entry", self._written(self._number(entry.vehicle), entry, typed, TYPED))
+            if entry.confirmed:
+                self.confirm(number)
+            return number
 
     def add_entries(self, entries: Sequence[tuple[Entry, Mapping[str, Any]]], source: str) -> int:
         """Append the entries that were never logged before, in one transaction; how many they are.
@@ -135,7 +144,8 @@ class Store(LogbookFile):
         """
         left: Counter[tuple[Any, ...]] = Counter()
         numbers: dict[str, int] = {}
-        new = []
+        new: list[dict[str, Any]] = []
+        confirmed: list[bool] = []
         with self.transaction(), self._guard():
             for entry, typed in entries:
                 if entry.vehicle not in numbers:
@@ -147,8 +157,21 @@ class Store(LogbookFile):
                     left[key] -= 1
                 else:
                     new.append(values)
+                    confirmed.append(entry.confirmed)
             rows.insert_all(self._db, "entry", new)
+            first = self._rows("SELECT coalesce(max(id), 0) FROM entry")[0][0] - len(new) + 1  # numbers never have gaps
+            rows.insert_all(
+                self._db, "confirmation", [{"entry_id": first + n} for n, kept in enumerate(confirmed) if kept]
+            )
         return len(new)
+
+    def confirm(self, number: int) -> None:
+        """Keep a standing entry that looks odd; once is enough. Raises UnknownNameError where there is none."""
+        with self.transaction(), self._guard():
+            if not self._rows("SELECT 1 FROM standing_entry WHERE id = ?", number):
+                raise UnknownNameError(f"there is no entry {number}: `entries` lists them")
+            if not self._rows("SELECT 1 FROM confirmation WHERE entry_id = ?", number):
+                rows.insert(self._db, "confirmation", {"entry_id": number})
 
     def fit(
         self,
@@ -159,9 +182,11 @@ class Store(LogbookFile):
         target: float | None = None,
         level: float | None = None,
         note: str = "",
+        known: tuple[float, float] | None = None,
+        reversible: bool = True,
     ) -> None:
         """Log a part as fitted. Raises EntryError where it is on already at this level."""
-        self._switch(vehicle, Switch(name, True, date, km, level, target, note))
+        self._switch(vehicle, Switch(name, True, date, km, level, target, note, known, reversible))
 
     def remove(self, vehicle: str, name: str, date: dt.date | None, km: float | None) -> None:
         """Log a part as removed. Raises EntryError where it is not on, with what is."""
@@ -187,6 +212,14 @@ class Store(LogbookFile):
             values = {"vehicle_id": self._number(vehicle), "modification": modification, "result": kept}
             rows.insert(self._db, "assessment", values)
 
+    def record_look(self, vehicle: str, modification: str, at_km: float, date: dt.date) -> None:
+        """Note that someone looked when the log had come this far; once for each modification and end of a segment."""
+        with self.transaction(), self._guard():
+            if any(abs(at_km - taken) < SAME_PLACE_KM for taken in self.looks(vehicle, modification)):
+                return
+            values = {"modification": modification, "at_km": at_km, "date": date.isoformat()}
+            rows.insert(self._db, "look", {"vehicle_id": self._number(vehicle), **values})
+
     # Inside
 
     def _number(self, vehicle_name: str) -> int:
@@ -202,7 +235,7 @@ class Store(LogbookFile):
         return UnknownNameError(f"no vehicle {name!r} in this logbook; {known}")
 
     def _entries(self, vehicle_name: str, part: str, *values: Any) -> list[Entry]:
-        select = f"SELECT {rows.ENTRY_COLUMNS} FROM standing_entry WHERE vehicle_id = ? {part}"
+        select = f"SELECT {rows.ENTRY_SELECT} FROM standing_entry WHERE vehicle_id = ? {part}"
         found = self._rows(select, self._number(vehicle_name), *values)
         with self._guard():
             return [rows.entry_of(vehicle_name, row) for row in found]
@@ -225,14 +258,4 @@ class Store(LogbookFile):
     def _switch(self, vehicle: str, switch: Switch) -> None:
         with self.transaction(), self._guard():
             check_switch(vehicle, self._switches(vehicle), switch)
-            values = {
-                "vehicle_id": self._number(vehicle),
-                "modification": switch.modification,
-                "action": "fitted" if switch.fitted else "removed",
-                "date": switch.date.isoformat() if switch.date else None,
-                "odometer_km": switch.km,
-                "level": switch.level,
-                "target_percent": switch.target_percent,
-                "note": switch.note,
-            }
-            rows.insert(self._db, "switch", values)
+            rows.insert(self._db, "switch", {"vehicle_id": self._number(vehicle), **rows.switch_values(switch)})

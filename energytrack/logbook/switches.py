@@ -22,6 +22,8 @@ class Switch(NamedTuple):  # a frozen dataclass takes five times as long to defi
     level: float | None = None
     target_percent: float | None = None
     note: str = ""
+    known: tuple[float, float] | None = None
+    reversible: bool = True
 
 
 def pair(vehicle: str, switches: Iterable[Switch]) -> list[Modification]:
@@ -92,4 +94,6 @@ def _fitted(vehicle: str, switch: Switch) -> Modification:
         level=switch.level,
         target_percent=switch.target_percent,
         note=switch.note,
+        known=switch.known,
+        reversible=switch.reversible,
     )

@@ -13,9 +13,10 @@ from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any, Generic, TypeVar
 
-from energytrack.errors import LogbookError
+from energytrack.errors import EntryError, LogbookError
 from energytrack.logbook import columns
 from energytrack.logbook.cells import CellError
+from energytrack.logbook.checks import check_known
 from energytrack.logbook.columns import Form, Reader
 from energytrack.logbook.csvfile import UnreadableTableError, open_csv
 from energytrack.logbook.matching import match_columns
@@ -64,6 +65,10 @@ def read_vehicles(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Vehicle]:
     def build(values: dict[str, Any]) -> Vehicle:
         _need(values, "vehicle", "carrier")
         values.setdefault("unit", UNIT_OF_CARRIER[values["carrier"]])
+        if "second_carrier" in values:
+            values.setdefault("second_unit", UNIT_OF_CARRIER[values["second_carrier"]])
+        elif values.keys() & {"second_unit", "second_capacity"}:
+            raise CellError("has a second unit or capacity and no second carrier; fill in second_carrier")
         return Vehicle(name=values.pop("vehicle"), **values)
 
     reading = _read(path, form, columns.vehicle_readers(form), ("vehicle", "carrier"), build)
@@ -81,9 +86,22 @@ def read_modifications(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Modi
         for fitted, removed in (("fitted_date", "removed_date"), ("fitted_km", "removed_km")):
             if fitted in values and removed in values and values[removed] < values[fitted]:
                 raise CellError(f"{removed} {values[removed]} comes before {fitted} {values[fitted]}")
+        ends = [values.pop(name, None) for name in ("known_low_percent", "known_high_percent")]
+        if ends != [None, None]:
+            values["known"] = _known(*ends)
         return Modification(**values)
 
     return _read(path, form, columns.modification_readers(form), ("name",), build)
+
+
+def _known(low: float | None, high: float | None) -> tuple[float, float]:
+    if low is None or high is None:
+        raise CellError("has one end of a known change; fill in known_low_percent and known_high_percent")
+    try:
+        check_known(low, high)
+    except EntryError as error:
+        raise CellError(str(error)) from None
+    return low, high
 
 
 def read_events(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Event]:

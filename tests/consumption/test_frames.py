@@ -105,6 +105,13 @@ def test_other_tables():
     assert modifications_from_frame(mods, "van") == [
         Modification("van", "skirts", fitted_date=dt.date(2026, 1, 5), removed_km=2000.0)
     ]
+    changes = frame("name,fitted_km,known_low_percent,known_high_percent,reversible\nwindows,1,4,9,\nremap,1,,,no\n")
+    assert [(row.known, row.reversible) for row in modifications_from_frame(changes)] == [
+        ((4.0, 9.0), True), (None, False)
+    ]  # fmt: skip
+    for ends in ("4,", "9,4", "-4,9"):
+        with pytest.raises(ConsumptionError, match="known change"):
+            modifications_from_frame(frame(f"name,fitted_km,known_low_percent,known_high_percent\nx,1,{ends}\n"))
     events = frame("date,what,odometer_factor\n2026-01-05,tyres,1.02\n")
     assert events_from_frame(events, "van") == [Event("van", dt.date(2026, 1, 5), "tyres", None, 1.02)]
     weather = frame("date,temperature_c\n2026-01-05,3.5\n2026-01-06,\n")

@@ -269,7 +269,7 @@ def test_a_folder_is_a_logbook_that_is_only_read(tmp_path: Path) -> None:
 def test_a_folder_with_bad_rows_says_which(tmp_path: Path) -> None:
     path = _folder(tmp_path / "tables")
     lines = (path / "entries.csv").read_text().splitlines()
-    lines += ["bus,2026-05-01,1,1" + "," * 11] + ["van,2026-05-09,x,1" + "," * 11] * 8
+    lines += ["bus,2026-05-01,1,1" + "," * 12] + ["van,2026-05-09,x,1" + "," * 12] * 8
     (path / "entries.csv").write_text("\n".join(lines) + "\n")
     with pytest.raises(LogbookError, match=r"entries.csv:10: no vehicle 'bus'.*and 4 more problems"):
         Folder(path).entries("van")

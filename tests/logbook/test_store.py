@@ -129,6 +129,36 @@ def test_the_last_answer_of_each_modification_is_read(store: Store) -> None:
     ]
 
 
+def test_a_look_is_noted_once_for_each_segment_end(store: Store) -> None:
+    for km, days in ((1_000.0, 0), (1_500.0, 3), (1_500.2, 3), (1_000.0, 0)):
+        store.record_look("van", "skirts", km, DAY + dt.timedelta(days=days))
+    store.record_look("van", "tyres", 1_000.0, DAY)
+    assert store.looks("van", "skirts") == [1_000.0, 1_500.0]
+    assert store.looks("van", "tyres") == [1_000.0]
+    assert store.looks("van", "rack") == []
+    with pytest.raises(UnknownNameError):
+        store.record_look("bus", "skirts", 1_000.0, DAY)
+
+
+def test_an_entry_that_looks_odd_is_confirmed(store: Store) -> None:
+    numbers = [store.add_entry(at(km), {}) for km in (1_000, 1_500)]
+    store.confirm(numbers[0])
+    store.confirm(numbers[0])
+    assert [entry.confirmed for entry in store.entries("van")] == [True, False]
+    assert store.entry("van", numbers[0]).confirmed
+    with pytest.raises(UnknownNameError, match="no entry 99"):
+        store.confirm(99)
+
+
+def test_entries_come_in_confirmed(store: Store) -> None:
+    store.add_entry(at(500), {})
+    many = [(replace(at(km), confirmed=km == 1_500), {}) for km in (1_000, 1_500, 2_000)]
+    assert store.add_entries([(at(500), {}), *many], "log.csv") == 3
+    assert [entry.odometer_km for entry in store.entries("van") if entry.confirmed] == [1_500]
+    store.add_entry(replace(at(2_500), confirmed=True), {})
+    assert store.last_entries("van", 1)[0].confirmed
+
+
 # Adding many
 
 
@@ -150,18 +180,25 @@ def test_many_are_added_wholly_or_not_at_all(store: Store) -> None:
 # Nothing is overwritten
 
 
-@pytest.mark.parametrize("table", ["entry", "switch", "event"])
 @pytest.mark.parametrize(
-    "statement", ["UPDATE {0} SET note = 'x'", "DELETE FROM {0}", "REPLACE INTO {0} SELECT * FROM {0}"]
+    ("table", "column"),
+    [
+        *(("entry", "note"), ("switch", "note"), ("event", "note")),
+        *(("look", "modification"), ("confirmation", "recorded_at")),
+    ],
 )
-def test_rows_cannot_be_changed(store: Store, path: Path, table: str, statement: str) -> None:
-    store.add_entry(at(1_000), {})
+@pytest.mark.parametrize(
+    "statement", ["UPDATE {0} SET {1} = 'x'", "DELETE FROM {0}", "REPLACE INTO {0} SELECT * FROM {0}"]
+)
+def test_rows_cannot_be_changed(store: Store, path: Path, table: str, column: str, statement: str) -> None:
+    store.confirm(store.add_entry(at(1_000), {}))
+    store.record_look("van", "skirts", 1_000.0, DAY)
     store.fit("van", "skirts", DAY, None)
     store.add_event(Event("van", DAY, "service"))
     before = raw(path, f"SELECT * FROM {table}")
     assert len(before) == 1
     with pytest.raises(sqlite3.IntegrityError, match="never changed"):
-        raw(path, statement.format(table))
+        raw(path, statement.format(table, column))
     assert raw(path, f"SELECT * FROM {table}") == before
 
 
@@ -206,7 +243,7 @@ def test_settings_of_the_file(store: Store, path: Path) -> None:
     assert setting("user_version") == len(schema.MIGRATIONS)
     strict = raw(path, "SELECT name, strict FROM pragma_table_list WHERE schema = 'main' AND type = 'table'")
     assert {name: flag for name, flag in strict if not str(name).startswith("sqlite_")} == dict.fromkeys(
-        ("vehicle", "entry", "switch", "event", "weather", "assessment"), 1
+        ("vehicle", "entry", "switch", "event", "weather", "assessment", "look", "confirmation"), 1
     )
 
 
@@ -289,22 +326,88 @@ def test_values_that_nothing_here_wrote_are_refused(store: Store, path: Path) ->
 # Versions
 
 
-def test_a_file_of_the_first_version_opens_and_is_brought_up_to_date(
-    store: Store, path: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
-    """A later version, as it would be added: one more step in the list."""
+NEWEST = len(schema.MIGRATIONS)
+FIRST_VERSION = Path(__file__).with_name("version_1.sql")  # the statements as they were released
+FIRST_ROWS = """
+INSERT INTO vehicle VALUES (1, 'van', 'diesel', 'L', 70.0, 'mi', 'mpg-imp', 'white', 'gal-imp', '2026-05-03T08:00:00');
+INSERT INTO entry VALUES (1, 1, '2026-05-03', 48230.0, NULL, 41.32, 'fill-up', 0, 40.0, 1, 70.2, 'EUR', 12.0, 94.0,
+    'pump', 'note', '{"payload": 300.0}', '{}', 'terminal', '2026-05-03T08:00:00', NULL, 0);
+INSERT INTO entry VALUES (2, 1, '2026-05-09', 48900.0, NULL, 44.0, 'fill-up', 1, NULL, 0, NULL, NULL, NULL, NULL,
+    '', '', '{}', '{}', 'terminal', '2026-05-09T08:00:00', NULL, 0);
+INSERT INTO entry VALUES (3, 1, '2026-05-09', 48910.0, NULL, 44.0, 'fill-up', 1, NULL, 0, NULL, NULL, NULL, NULL,
+    '', '', '{}', '{}', 'terminal', '2026-05-09T08:05:00', 2, 0);
+INSERT INTO switch VALUES (1, 1, 'skirts', 'fitted', '2026-05-03', 48900.0, 2.4, 3.0, 'left first', 'x', NULL, 0);
+INSERT INTO event VALUES (1, 1, '2026-05-03', 48300.0, 'winter tyres', 1.02, 'worn', 'x', NULL, 0);
+INSERT INTO weather VALUES ('2026-05-03', 8.0);
+INSERT INTO assessment VALUES (1, 1, 'skirts', '{"verdict": "not-yet"}', 'x');
+"""
+
+
+@pytest.fixture
+def first_version(path: Path) -> Path:
+    connection = sqlite3.connect(path)
+    connection.executescript(FIRST_VERSION.read_text() + FIRST_ROWS)
+    connection.close()
+    return path
+
+
+def test_a_file_of_version_1_is_brought_to_version_2(first_version: Path) -> None:
+    store = open_logbook(first_version)
+    assert raw(first_version, "PRAGMA user_version") == [(2,)]
+    assert store.vehicles() == [VAN]
+    first, second = store.entries("van")
+    assert same(first, FULL_ENTRY)
+    assert (second.odometer_km, second.confirmed) == (48_910.0, False)
+    (skirts,) = store.modifications("van")
+    assert skirts == Modification("van", "skirts", DAY, 48_900.0, level=2.4, target_percent=3.0, note="left first")
+    assert (skirts.known, skirts.reversible) == (None, True)
+    assert store.events("van") == [Event("van", DAY, "winter tyres", 48_300.0, 1.02, "worn")]
+    assert store.weather() == [Weather(DAY, 8.0)]
+    assert store.assessments("van") == [{"verdict": "not-yet"}]
+    assert store.looks("van", "skirts") == []
+
+
+def test_a_file_of_version_1_takes_what_is_new_in_version_2(first_version: Path) -> None:
+    store = open_logbook(first_version)
+    assert isinstance(store, Store)
+    bus = replace(VAN, name="bus", second_carrier="electricity", second_unit="kWh", second_capacity=11.0)
+    store.add_vehicle(bus)
+    store.fit("van", "windows open", DAY, 49_000.0, known=(4.0, 9.0), reversible=False)
+    store.record_look("van", "skirts", 48_910.0, DAY)
+    store.confirm(3)
+    store.close()
+    again = open_logbook(first_version)
+    assert again.vehicle("bus") == bus
+    windows = again.modifications("van")[1]
+    assert (windows.known, windows.reversible) == ((4.0, 9.0), False)
+    assert again.looks("van", "skirts") == [48_910.0]
+    assert [entry.confirmed for entry in again.entries("van")] == [False, True]
+
+
+def test_version_1_becomes_what_a_new_file_is(first_version: Path, tmp_path: Path) -> None:
+    open_logbook(first_version).close()
+    Store.create(tmp_path / "new.logbook").close()
+    columns = (
+        "SELECT t.name, c.* FROM pragma_table_list AS t, pragma_table_info(t.name) AS c "
+        "WHERE t.schema = 'main' ORDER BY t.name, c.cid"
+    )
+    guards = "SELECT name, sql FROM sqlite_schema WHERE type IN ('trigger', 'index', 'view') ORDER BY name"
+    assert raw(first_version, columns, guards) == raw(tmp_path / "new.logbook", columns, guards)
+
+
+def test_a_later_version_is_one_more_step(store: Store, path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     store.add_entry(FULL_ENTRY, {})
     store.close()
-    assert raw(path, "PRAGMA user_version") == [(1,)]
+    assert raw(path, "PRAGMA user_version") == [(NEWEST,)]
     step = "ALTER TABLE entry ADD COLUMN weight REAL;\nCREATE TABLE driver (id INTEGER) STRICT;\n"
     later = (*schema.MIGRATIONS, step)
     monkeypatch.setattr(schema, "MIGRATIONS", later)
     newer = open_logbook(path)
     assert same(newer.entries("van")[0], FULL_ENTRY)
-    assert raw(path, "PRAGMA user_version", "SELECT weight FROM standing_entry") == [(2,), (None,)]
+    assert raw(path, "PRAGMA user_version", "SELECT weight FROM standing_entry") == [(NEWEST + 1,), (None,)]
     newer.add_entry(at(50_000, 9), {})
     monkeypatch.undo()
-    with pytest.raises(LogbookError, match=r"tables of version 2.*install the newer"):
+    with pytest.raises(LogbookError, match=rf"tables of version {NEWEST + 1}.*install the newer"):
         open_logbook(path)
 
 
@@ -317,7 +420,7 @@ def test_a_step_that_fails_leaves_the_file_as_it_was(
     with pytest.raises(LogbookError):
         open_logbook(path)
     monkeypatch.undo()
-    assert raw(path, "PRAGMA user_version") == [(1,)]
+    assert raw(path, "PRAGMA user_version") == [(NEWEST,)]
     assert raw(path, "SELECT name FROM sqlite_schema WHERE name = 'driver'") == []
     assert open_logbook(path).vehicles() == [VAN]
 

@@ -248,9 +248,21 @@ def test_other_tables_say_what_is_wrong(tmp_path: Path) -> None:
     vehicles = read_vehicles(_file(tmp_path, "vehicle,carrier,capacity\nvan,diesel,70\nvan,petrol,\nbus,steam,\n"))
     assert [vehicle for _, vehicle in vehicles.rows] == [Vehicle("van", "diesel", "L", 70.0)]
     assert [problem.line for problem in vehicles.problems] == [4, 3]
+    second = "vehicle,carrier,second_carrier,second_capacity\nvan,petrol,electricity,11\nbus,petrol,,11\n"
+    hybrids = read_vehicles(_file(tmp_path, second))
+    assert [vehicle.second_unit for _, vehicle in hybrids.rows] == ["kWh"]
+    assert [problem.line for problem in hybrids.problems] == [3]
     text = "vehicle,name,fitted_date,removed_date\nvan,skirts,2026-05-03,2026-04-01\nvan,skirts,,\nvan,,2026-05-03,\n"
     modifications = read_modifications(_file(tmp_path, text))
     assert [problem.line for problem in modifications.problems] == [2, 3, 4]
+    known = "vehicle,name,fitted_km,known_low_percent,known_high_percent\n" + "".join(
+        f"van,windows,1,{ends}\n" for ends in ("4,9", "9,4", "-4,9", "0,9", "4,", "-9,-4", "4,900")
+    )
+    changes = read_modifications(_file(tmp_path, known))
+    assert [change.known for _, change in changes.rows] == [(4.0, 9.0), (-9.0, -4.0)]
+    told = {problem.line: problem.message for problem in changes.problems}
+    assert sorted(told) == [3, 4, 5, 6, 8]
+    assert "the lower number comes first, 4:9" in told[3]
     events = read_events(_file(tmp_path, "vehicle,date,what,odometer_factor\nvan,2026-05-03,tyres,1.02\nvan,,x,9\n"))
     assert [event for _, event in events.rows] == [Event("van", dt.date(2026, 5, 3), "tyres", None, 1.02)]
     assert [problem.line for problem in events.problems] == [3]
@@ -286,6 +298,7 @@ ENTRIES = st.builds(
     speed_kmh=_optional(st.floats(1, 200)),
     place=TEXT,
     note=TEXT,
+    confirmed=st.booleans(),
     extra=st.dictionaries(st.sampled_from(["payload_kg", "rain"]), st.floats(-1e6, 1e6), max_size=2),
 )
 MODIFICATIONS = st.builds(
@@ -297,6 +310,8 @@ MODIFICATIONS = st.builds(
     level=_optional(st.floats(-10, 10)),
     target_percent=_optional(st.floats(0.1, 50)),
     note=TEXT,
+    known=st.sampled_from([None, (4.0, 9.0), (-8.5, -3.0), (5.0, 5.0)]),
+    reversible=st.booleans(),
 )
 EVENTS = st.builds(Event, NAME, DATE, NAME, _optional(AMOUNT), _optional(st.floats(0.9, 1.1)), TEXT)
 VEHICLES = st.builds(
@@ -309,6 +324,9 @@ VEHICLES = st.builds(
     display=st.sampled_from([None, "mpg-us"]),
     note=TEXT,
     typed_unit=st.sampled_from([None, "gal-us"]),
+    second_carrier=st.just("electricity"),
+    second_unit=st.just("kWh"),
+    second_capacity=_optional(AMOUNT),
 )
 WEATHER = st.builds(Weather, DATE, st.floats(-50, 50))
 
