@@ -1,7 +1,7 @@
 """Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
 
-The Python interface: open_logbook, assess, plan. Each is loaded when it is first used, so that importing the package
-costs nothing.
+The Python interface: open_logbook, assess, plan, TwoCarriers. Each is loaded when it is first used, so that importing
+the package costs nothing.
 """
 
 from __future__ import annotations
@@ -13,6 +13,7 @@ _HOMES = {
     "open_logbook": "energytrack.consumption.frames",
     "assess": "energytrack.inference.assess",
     "plan": "energytrack.inference.designs",
+    "TwoCarriers": "energytrack.consumption.two_carriers",
 }
 
 

@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
+from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
@@ -38,6 +39,7 @@ def assess(
     covariates: Sequence[str] | None = None,
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
+    two_carriers: TwoCarriers | None = None,
     every_look: bool = True,
 ) -> Assessment:
     """Answer the main question for one modification of one vehicle.
@@ -45,13 +47,22 @@ def assess(
     entries, modifications, weather, events: tables as in docs/reference.md, of one vehicle. `capacity` in `unit`
     (L, kg, kWh) is estimated from the log where it is not given. `covariates` names numeric columns used besides
     temperature and speed. `every_look=False` looks only once, at the end, as if nobody had looked before.
+    `two_carriers` is of a vehicle with tank and battery: its fill-ups are in the fuel's unit, charges and answers in
+    kWh, and `capacity` and `unit` do not count.
 
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
     not in the table, InferenceError for a target, confidence or power outside its range.
     """
     question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
     observed, notes = observe_frames(
-        entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
+        entries,
+        modifications,
+        events=events,
+        weather=weather,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        two_carriers=two_carriers,
     )
     if name not in observed.names:
         raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")

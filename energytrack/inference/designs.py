@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.inference.describe import noise_of
 from energytrack.inference.distance import ALTERNATIONS, design
 from energytrack.inference.looks import FEWEST_BASELINE
@@ -29,6 +30,7 @@ def plan(
     covariates: Sequence[str] | None = None,
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
+    two_carriers: TwoCarriers | None = None,
 ) -> Plan:
     """Distance to the target for one switch and for alternating, from the log's own noise, habit and seasons.
 
@@ -36,7 +38,14 @@ def plan(
     """
     question = Question("", float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
     observed, notes = observe_frames(
-        entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
+        entries,
+        modifications,
+        events=events,
+        weather=weather,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        two_carriers=two_carriers,
     )
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     ready = len(observed.energy) >= FEWEST_BASELINE

@@ -12,6 +12,7 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from energytrack.errors import EntryError, UnknownNameError
+from energytrack.logbook.carriers import for_kind
 from energytrack.logbook.checks import check_date, check_values
 from energytrack.logbook.columns import Form
 from energytrack.logbook.order import Row, driving_order, jumps, misfits, newest_first
@@ -107,7 +108,7 @@ def _implausible(rows: Sequence[Row], vehicle: Vehicle, file: str, today: dt.dat
             if math.isnan(entry.energy):
                 check_date(entry.date, today)
             else:
-                check_values(entry, vehicle, today)
+                check_values(entry, for_kind(vehicle, entry.kind), today)
         except EntryError as error:
             problems.append(Problem(str(error), file, line))
     return problems
