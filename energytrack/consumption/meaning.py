@@ -59,7 +59,8 @@ def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str
     else:
         lines = _with_consumption(segmented.segments[which], vehicle) + _of_each(segmented, which, vehicle)
         lines += _compared(segmented, which, vehicle, kept, rows)
-    return lines + _overfilled(entry, for_kind(vehicle, entry.kind)) + _still_to_go(segmented, vehicle, index, kept, rows)
+    lines += _overfilled(entry, for_kind(vehicle, entry.kind))
+    return lines + _still_to_go(segmented, vehicle, index, kept, rows)
 
 
 def _segmented(vehicle: Vehicle, entries: Sequence[Entry], events: Sequence[Event]) -> SegmentedLog:
