@@ -13,7 +13,8 @@ PACKAGE = Path(__file__).parent.parent / "energytrack"
 LAYERS = ["errors", "logbook", "consumption", "inference", "presentation", "cli"]
 LIGHT = [
     "inference.results",
-    *(f"consumption.{name}" for name in ("positions", "segments", "shares", "meaning", "terms", "two_carriers", "energy_content")),
+    *(f"consumption.{name}" for name in ("positions", "segments", "shares", "meaning", "terms")),
+    *("consumption.two_carriers", "consumption.energy_content"),
 ]
 MODULES = {
     ".".join(path.relative_to(PACKAGE).with_suffix("").parts).removesuffix(".__init__"): path

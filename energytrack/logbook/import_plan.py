@@ -62,10 +62,11 @@ def plan_import(
             plan.notes.append("the newest entry stands first; read from the bottom up")
         bad = _implausible(rows, by_name[name], reading.file, today)
         blamed = {problem.line for problem in bad}
-        ordered, unordered = driving_order([row for row in rows if row[0] not in blamed], reading.file, again=again)
+        equal = again or by_name[name].second_carrier is not None  # tank and battery may be filled at one place
+        ordered, unordered = driving_order([row for row in rows if row[0] not in blamed], reading.file, again=equal)
         new, known = _unknown_rows(ordered, recorded(name))
         held = standing(name) if new else []
-        unfit = misfits(new, held, reading.file, again=again) + jumps(new, held, reading.file)
+        unfit = misfits(new, held, reading.file, again=equal) + jumps(new, held, reading.file)
         problems = bad + unordered + unfit
         refused |= {problem.line: name for problem in problems if problem.line is not None}
         unfitting = {problem.line for problem in unfit}
