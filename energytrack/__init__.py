@@ -1,7 +1,7 @@
 """Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
 
-The Python interface: open_logbook, assess, plan, plan_from Stated figures, compare, respond, rehearse. Each is loaded
-when it is first used, so that importing the package costs nothing.
+The Python interface: open_logbook, assess, plan, plan_from Stated figures, compare, respond, rehearse, TwoCarriers.
+Each is loaded when it is first used, so that importing the package costs nothing.
 """
 
 from __future__ import annotations
@@ -18,6 +18,7 @@ _HOMES = {
     "rehearse": "energytrack.inference.rehearsal",
     "plan_from": "energytrack.inference.designs",
     "Stated": "energytrack.inference.stated",
+    "TwoCarriers": "energytrack.consumption.two_carriers",
 }
 
 

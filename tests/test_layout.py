@@ -15,6 +15,7 @@ LIGHT = [
     "inference.results",
     "inference.rehearsal_results",
     *(f"consumption.{name}" for name in ("positions", "segments", "shares", "slips", "meaning", "terms")),
+    *("consumption.two_carriers", "consumption.energy_content"),
 ]
 MODULES = {
     ".".join(path.relative_to(PACKAGE).with_suffix("").parts).removesuffix(".__init__"): path

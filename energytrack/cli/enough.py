@@ -49,6 +49,9 @@ def enough(
     keep_all: Annotated[
         bool, typer.Option("--keep-all", help="Set nothing aside, however far it stands from its neighbours.")
     ] = False,
+    energy_content: Annotated[
+        str | None, typer.Option(metavar="FUEL=KWH", help="kWh in a L or kg of the fuel, of a plug-in hybrid.")
+    ] = None,
     picture: Annotated[bool, typer.Option("--picture", help="Draw how the range narrowed with distance.")] = False,
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
@@ -56,16 +59,18 @@ def enough(
     """Say whether a modification shifted consumption. By how much, and how far is still to go to be sure."""
     rule = _rule(looks, open_ended)
     logbook = readable(context)
+    vehicles = asking.vehicles_asked(logbook, vehicle)
     if compare:
-        _compare(asking.vehicles_asked(logbook, vehicle), logbook, target, confidence, covariate, json)
+        _compare(vehicles, logbook, target, confidence, covariate, json)
         return
     if rule == "counted" and not isinstance(logbook, Store):
         raise LogbookError(f"{logbook.path} is a folder of tables and keeps no looks: use --looks every, or import it")
-    asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
+    contents = asking.energy_content(energy_content, vehicles)
+    asked = [replace(each, contents=contents) for each in asking.questions(logbook, vehicles, name, target)]
     answers, refusals = asking.answered(
         asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, rule, keep_all))
     )
-    if target is None and not covariate and (confidence, power) == USUAL_CERTAINTY:
+    if target is None and not covariate and not contents and (confidence, power) == USUAL_CERTAINTY:
         for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
             _keep(logbook, question, answer)
     _print_json([a for _, a in answers]) if json else _print(answers, picture)
@@ -95,7 +100,7 @@ def _assess(
     from energytrack.inference.assess import assess
 
     answer = assess(
-        **asking.tables(logbook, question.vehicle),
+        **asking.tables(logbook, question.vehicle, question.contents),
         name=question.modification,
         target_percent=question.target_percent,
         confidence=confidence,

@@ -10,6 +10,7 @@ import typer
 
 from energytrack.cli import options
 from energytrack.cli.context import readable, say, say_json, the_vehicles
+from energytrack.logbook.carriers import for_kind, in_total
 from energytrack.logbook.opening import Logbook
 from energytrack.logbook.quantities import consumption_text, distance_text, energy_text
 from energytrack.logbook.records import Entry, Vehicle
@@ -52,10 +53,10 @@ class Line:
 def _newest(logbook: Logbook, vehicle: Vehicle, last: int) -> list[Line]:
     """The newest `last` entries, judged by the record of those before them too."""
     from energytrack.consumption.meaning import RECENT_ENTRIES, slip_lines, unusual
-    from energytrack.consumption.segments import close_segments
+    from energytrack.consumption.two_carriers import close_vehicle
 
     recent = logbook.last_entries(vehicle.name, last + RECENT_ENTRIES)
-    segmented = close_segments(recent, logbook.events(vehicle.name), capacity=vehicle.capacity, unit=vehicle.unit)
+    segmented = close_vehicle(vehicle, recent, logbook.events(vehicle.name))
     lines = [Line(entry, None, False) for entry in segmented.entries]
     flags = unusual(segmented.segments)
     slips = slip_lines(segmented, [which for which, flag in enumerate(flags) if flag], vehicle)
@@ -91,8 +92,8 @@ def _table(vehicle: Vehicle, lines: list[Line], last: int) -> list[str]:
 
 def _cells(vehicle: Vehicle, line: Line) -> tuple[str, ...]:
     entry = line.entry
-    amount = "no amount" if math.isnan(entry.energy) else energy_text(entry.energy, vehicle)
-    consumption = "" if line.consumption is None else consumption_text(line.consumption, vehicle)
+    amount = "no amount" if math.isnan(entry.energy) else energy_text(entry.energy, for_kind(vehicle, entry.kind))
+    consumption = "" if line.consumption is None else consumption_text(line.consumption, in_total(vehicle))
     return entry.date.isoformat(), _place(vehicle, entry), amount, consumption, ", ".join(_flags(line))
 
 

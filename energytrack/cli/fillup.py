@@ -14,6 +14,7 @@ from energytrack.cli.context import distance_unit, kilometres, say, say_json, th
 from energytrack.cli.prompts import ask, on_terminal
 from energytrack.cli.typed import Typed, as_typed, check_kind, entry_from, unit_of
 from energytrack.errors import EntryError
+from energytrack.logbook.carriers import for_kind
 from energytrack.logbook.checks import check_measure, check_place, check_values
 from energytrack.logbook.quantities import distance_text, parse_number
 from energytrack.logbook.records import Entry, Vehicle
@@ -54,8 +55,9 @@ def _command(kind: str, summary: str) -> Callable[..., None]:
         store = writable(context)
         chosen = the_vehicle(store, vehicle)
         check_kind(kind, chosen)
-        _complete(typed, store, chosen)
-        entry = _write(typed, store, chosen, again)
+        seen = for_kind(chosen, kind)
+        _complete(typed, store, seen)
+        entry = _write(typed, store, seen, again)
         _echo(store, chosen, entry, json)
 
     log.__doc__ = summary

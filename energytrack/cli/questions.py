@@ -3,15 +3,16 @@
 from __future__ import annotations
 
 import sys
-from collections.abc import Callable, Iterable
-from dataclasses import dataclass
+from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any, TypeVar
 
 import typer
 
 from energytrack.cli.app import ExitStatus
 from energytrack.cli.context import the_vehicles
-from energytrack.errors import EnergytrackError, LogbookError, UnknownNameError
+from energytrack.errors import EnergytrackError, EntryError, LogbookError, UnknownNameError
+from energytrack.logbook.quantities import parse_number
 from energytrack.presentation.plain import plain_text
 
 if TYPE_CHECKING:
@@ -30,6 +31,7 @@ class Question:
     vehicle: Vehicle
     modification: str
     target_percent: float
+    contents: Mapping[str, float] = field(default_factory=dict)  # fuel -> kWh per unit, where the usual is not meant
 
     def __str__(self) -> str:
         return f"{plain_text(self.vehicle.name)}, {plain_text(self.modification)}"
@@ -66,12 +68,17 @@ def _of_vehicle(logbook: Logbook, vehicle: Vehicle, target: float | None) -> lis
     return [Question(vehicle, name, own if target is None else target) for name, own in targets.items()]
 
 
-def tables(logbook: Logbook, vehicle: Vehicle) -> dict[str, Any]:
-    """The vehicle's tables as data frames, and its own figures: what `assess` and `plan` take by name."""
+def tables(logbook: Logbook, vehicle: Vehicle, contents: Mapping[str, float] | None = None) -> dict[str, Any]:
+    """The vehicle's tables as data frames, and its own figures: what `assess` and `plan` take by name.
+
+    contents: kWh per unit of a fuel, for a vehicle with tank and battery, where the usual figure is not meant.
+    """
     from energytrack.consumption.frames import FramedLogbook
+    from energytrack.consumption.two_carriers import two_carriers_of
 
     framed = FramedLogbook(logbook)
     weather = framed.weather()
+    both = two_carriers_of(vehicle, contents)
     return {
         "entries": framed.entries(vehicle.name),
         "modifications": framed.modifications(vehicle.name),
@@ -79,7 +86,21 @@ def tables(logbook: Logbook, vehicle: Vehicle) -> dict[str, Any]:
         "weather": None if weather.empty else weather,
         "capacity": vehicle.capacity,
         "unit": vehicle.unit,
+        **({} if both is None else {"two_carriers": both}),
     }
+
+
+def energy_content(typed: str | None, vehicles: Iterable[Vehicle]) -> dict[str, float]:
+    """FUEL=KWH as typed, as a mapping from the fuel; {} where nothing was. Raises EntryError."""
+    if typed is None:
+        return {}
+    fuels = [carrier for each in vehicles if each.second_carrier for carrier in (each.carrier, each.second_carrier)]
+    fuels = [carrier for carrier in dict.fromkeys(fuels) if carrier != "electricity"]
+    fuel, _, value = typed.partition("=")
+    if fuel not in fuels:
+        known = f"write one of {', '.join(f'{each}=KWH' for each in fuels)}" if fuels else "none asked about has"
+        raise EntryError(f"--energy-content {typed!r} is of fuels of vehicles with tank and battery: {known}")
+    return {fuel: parse_number(value, f"energy content of {fuel}")}
 
 
 def answered(asked: Iterable[Asked], answer: Callable[[Asked], Answer]) -> tuple[list[Answer], list[str]]:

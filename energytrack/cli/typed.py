@@ -8,6 +8,7 @@ from typing import Any
 
 from energytrack.cli.context import distance_unit, kilometres, the_date
 from energytrack.errors import EntryError
+from energytrack.logbook.carriers import kinds_of
 from energytrack.logbook.quantities import ENERGY, base_unit, parse_number, parse_temperature, to_base
 from energytrack.logbook.records import Entry, Vehicle
 
@@ -37,8 +38,8 @@ class Typed:
 
 def check_kind(kind: str, vehicle: Vehicle) -> None:
     """A charge is for a battery, a fill-up for a tank. Raises EntryError."""
-    right = "charge" if vehicle.carrier == "electricity" else "fill-up"
-    if kind != right:
+    right = kinds_of(vehicle)[0]
+    if kind not in kinds_of(vehicle):
         raise EntryError(f"{vehicle.name} runs on {vehicle.carrier}: log it with `{right.replace('-', '')}`")
 
 

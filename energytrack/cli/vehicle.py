@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Annotated
 
 import typer
@@ -9,6 +10,7 @@ import typer
 from energytrack.cli import options
 from energytrack.cli.context import distance_unit, readable, say, say_json, writable
 from energytrack.errors import EntryError
+from energytrack.logbook.carriers import for_kind, in_total, kind_of
 from energytrack.logbook.checks import check_name
 from energytrack.logbook.quantities import (
     CONSUMPTION,
@@ -39,11 +41,16 @@ def add(
         str, typer.Option("--distance-unit", metavar="km|mi", help="Unit the odometer counts.")
     ] = "km",
     display: Annotated[str | None, typer.Option(help=f"Consumption shown as: {', '.join(CONSUMPTION)}.")] = None,
+    second_carrier: Annotated[
+        str | None, typer.Option(help="Of a plug-in hybrid: electricity beside a fuel, or a fuel beside electricity.")
+    ] = None,
+    second_capacity: Annotated[str | None, typer.Option(help="Of the second carrier, in L, kg or kWh.")] = None,
     note: options.Note = "",
     json: options.Json = False,
 ) -> None:
     """Add a vehicle."""
     vehicle = described(name, carrier, capacity, unit, distance_unit_typed, display, note)
+    vehicle = _with_second(vehicle, second_carrier, second_capacity)
     writable(context).add_vehicle(vehicle)
     if json:
         say_json(_columns(vehicle))
@@ -87,6 +94,24 @@ def described(
     return vehicle
 
 
+def _with_second(vehicle: Vehicle, carrier: str | None, capacity: str | None) -> Vehicle:
+    """The vehicle with its second carrier, if it has one. Raises EntryError."""
+    if carrier is None:
+        if capacity is not None:
+            raise EntryError("a second capacity needs its carrier: add --second-carrier")
+        return vehicle
+    if carrier not in CARRIERS:
+        raise EntryError(f"unknown carrier {carrier!r}: use one of {', '.join(CARRIERS)}")
+    if (carrier == "electricity") == (vehicle.carrier == "electricity"):
+        raise EntryError(f"{vehicle.carrier} and {carrier}: one of two carriers must be electricity, the other a fuel")
+    if vehicle.display is not None:
+        raise EntryError("consumption from two carriers is shown in kWh/100 km: leave --display and miles out")
+    room = None if capacity is None else parse_number(capacity, "second capacity")
+    if room is not None and room <= 0:
+        raise EntryError(f"second capacity {capacity} must be more than 0: type what tank or battery holds")
+    return replace(vehicle, second_carrier=carrier, second_unit=UNIT_OF_CARRIER[carrier], second_capacity=room)
+
+
 def _check_shown(vehicle: Vehicle) -> None:
     distance_unit(None, vehicle)
     fitting = [key for key, shown in CONSUMPTION.items() if base_unit(shown.energy) == vehicle.unit]
@@ -95,9 +120,17 @@ def _check_shown(vehicle: Vehicle) -> None:
 
 
 def _cells(vehicle: Vehicle) -> tuple[str, ...]:
-    capacity = "" if vehicle.capacity is None else energy_text(vehicle.capacity, vehicle)
-    shown = consumption_unit(vehicle).label
-    return (vehicle.name, vehicle.carrier, capacity, vehicle.distance_unit, shown, vehicle.note)
+    carriers, capacity = vehicle.carrier, _capacity(vehicle)
+    if vehicle.second_carrier is not None:
+        carriers += f" + {vehicle.second_carrier}"
+        second = _capacity(for_kind(vehicle, kind_of(vehicle.second_carrier)))
+        capacity = " + ".join(part for part in (capacity, second) if part)
+    shown = consumption_unit(in_total(vehicle)).label
+    return (vehicle.name, carriers, capacity, vehicle.distance_unit, shown, vehicle.note)
+
+
+def _capacity(vehicle: Vehicle) -> str:
+    return "" if vehicle.capacity is None else energy_text(vehicle.capacity, vehicle)
 
 
 def _columns(vehicle: Vehicle) -> dict[str, object]:
@@ -109,5 +142,8 @@ def _columns(vehicle: Vehicle) -> dict[str, object]:
         "distance_unit": vehicle.distance_unit,
         "display": vehicle.display,
         "typed_unit": vehicle.typed_unit,
+        "second_carrier": vehicle.second_carrier,
+        "second_unit": vehicle.second_unit,
+        "second_capacity": vehicle.second_capacity,
         "note": vehicle.note,
     }

@@ -7,6 +7,10 @@ wrong that may be is passed on as a variance.
 
 Every term has a wide normal prior centred on no effect. It decides nothing where the log speaks, and keeps a term the
 log says little about from being called certain either way.
+
+With tank and battery one more term counts: the energy from the plug per distance. At a given need at the wheels, a kWh
+from the plug replaces about three of fuel, so the total falls by about two: that is the centre of its prior. It is
+stated against driving on fuel alone, where a shift of the need at the wheels is the same shift of the energy bought.
 """
 
 from __future__ import annotations
@@ -18,19 +22,21 @@ import numpy as np
 from numpy.typing import NDArray
 
 from energytrack.consumption.observations import Observations
-from energytrack.consumption.terms import YEAR_DAYS, condition_of, term
+from energytrack.consumption.terms import ELECTRIC, YEAR_DAYS, condition_of, term
 
 Array = NDArray[np.float64]
 
 TEMPERATURE, SPEED, SEASON = "temperature_c", "speed_kmh", "season"
 _FEW = 4  # segments a branch needs
 _KNOWN = 6  # segments with a known value before a condition is used
+_FEWEST_TO_AVERAGE = 2
 _STILL = 0.005  # spread of the speed, relative to its mean, below which it explains nothing
 _TWO_SPEED_TERMS = (25, 0.10)  # segments and relative spread from which v^2 and 1/v can be told apart
 _HARMONICS = ("season_cos1", "season_sin1", "season_cos2", "season_sin2")
 _SEASON_SWING = {"kWh": (0.15, 0.06)}  # prior sd of the two harmonics, as a share of consumption; batteries feel winter
 _USUAL_SWING = (0.08, 0.03)
 _DEGREE = 0.05  # prior sd of the response to one degree
+_ELECTRIC = (-2.0, 1.0)  # prior mean and sd of the total's response to a kWh from the plug; common practice, no source
 _TEMPERATURE_SWING = 10.0  # prior sd of the yearly swing of the temperature itself, K
 
 
@@ -78,7 +84,8 @@ class Terms:
     names: tuple[str, ...]
     centres: Array
     scales: Array
-    prior_sd: Array  # of the response to one scale, as a share of consumption
+    prior_mean: Array  # of the response to one scale, as a share of consumption
+    prior_sd: Array
 
     def columns(self, conditions: Conditions) -> Array:
         """Centred and scaled terms (n, k)."""
@@ -100,7 +107,7 @@ def fill(observed: Observations) -> Conditions:
     values, variances, patterns, filled = {}, {}, {}, {}
     for name, raw in observed.conditions.items():
         known = ~np.isnan(raw)
-        if known.sum() < _KNOWN:
+        if known.sum() < (_FEWEST_TO_AVERAGE if name == ELECTRIC else _KNOWN):
             continue
         pattern = _pattern(observed.mid_day[known], raw[known], yearly=name == TEMPERATURE)
         values[name] = np.where(known, raw, pattern.at(observed.mid_day))
@@ -114,18 +121,28 @@ def choose(observed: Observations, conditions: Conditions, further: Sequence[str
     """The terms this log supports."""
     weight = observed.distance_km
     names = [*_temperature_terms(conditions), *_speed_terms(conditions)]
-    own = {TEMPERATURE, SPEED, *names}  # these have their terms already
+    names += _electric_term(conditions)
+    own = {TEMPERATURE, SPEED, ELECTRIC, *names}  # these have their terms already
     named = [name for name in dict.fromkeys(further) if name in conditions.values and name not in own]
     names += [name for name in named if np.ptp(conditions.values[name]) > 0]
-    centres, scales, priors = [], [], []
+    centres, scales, means, priors = [], [], [], []
+    usual = float(observed.energy.sum() / observed.distance_km.sum())
     for name in names:
         value = conditions.values_of(name)
-        centre = float(np.average(value, weights=weight))
+        centre = 0.0 if name == ELECTRIC else float(np.average(value, weights=weight))
         scale = float(np.sqrt(np.average((value - centre) ** 2, weights=weight)))
         centres.append(0.0 if condition_of(name) == SEASON else centre)
         scales.append(1.0 if condition_of(name) == SEASON else scale)
-        priors.append(_prior_sd(name, scales[-1], conditions, observed.unit))
-    return Terms(tuple(names), np.array(centres), np.array(scales), np.array(priors))
+        one_kwh = scales[-1] / 100 / usual  # of the electric term: one kWh for each kWh, as a share of consumption
+        means.append(_ELECTRIC[0] * one_kwh if name == ELECTRIC else 0.0)
+        usual_sd = _prior_sd(name, scales[-1], conditions, observed.unit)
+        priors.append(_ELECTRIC[1] * one_kwh if name == ELECTRIC else usual_sd)
+    return Terms(tuple(names), np.array(centres), np.array(scales), np.array(means), np.array(priors))
+
+
+def _electric_term(conditions: Conditions) -> list[str]:
+    electric = conditions.values.get(ELECTRIC)
+    return [] if electric is None or not electric.any() else [ELECTRIC]
 
 
 def _temperature_terms(conditions: Conditions) -> tuple[str, ...]:

@@ -14,6 +14,7 @@ import pandas as pd
 from energytrack.consumption.columns import dates, flags, kinds, numbers, texts
 from energytrack.consumption.observations import Observations, observe
 from energytrack.consumption.segments import SegmentedLog, close_segments
+from energytrack.consumption.two_carriers import TwoCarriers, close_two_carriers
 from energytrack.errors import ConsumptionError, EntryError, UnknownNameError
 from energytrack.logbook.checks import check_known
 from energytrack.logbook.opening import Logbook
@@ -193,13 +194,21 @@ def observe_frames(
     capacity: float | None = None,
     unit: str = "L",
     covariates: Sequence[str] | None = None,
+    two_carriers: TwoCarriers | None = None,
 ) -> tuple[Observations, tuple[str, ...]]:
     """One vehicle's tables as arrays over its segments, and notes on what was estimated or is void.
 
     Raises as observe_log does.
     """
     observed, notes, _ = observe_log(
-        entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
+        entries,
+        modifications,
+        events=events,
+        weather=weather,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        two_carriers=two_carriers,
     )
     return observed, notes
 
@@ -213,8 +222,11 @@ def observe_log(
     capacity: float | None = None,
     unit: str = "L",
     covariates: Sequence[str] | None = None,
+    two_carriers: TwoCarriers | None = None,
 ) -> tuple[Observations, tuple[str, ...], SegmentedLog]:
     """One vehicle's tables as arrays over its segments, notes on what was estimated or is void, and the segments.
+
+    two_carriers: of a vehicle with tank and battery; energies are then in kWh, and capacity and unit do not count.
 
     Raises ConsumptionError for missing columns, unreadable values, entries of several vehicles, or modification
     periods that contradict each other; UnknownNameError for a covariate no entry has.
@@ -223,9 +235,11 @@ def observe_log(
         raise ConsumptionError(f"unit {unit!r} is unknown; use one of {', '.join(UNITS)}")
     logged = entries_from_frame(entries)
     vehicle = the_vehicle(logged) if logged and "vehicle" in entries else None
-    segmented = close_segments(
-        logged, [] if events is None else events_from_frame(events, vehicle), capacity=capacity, unit=unit
-    )
+    happened = [] if events is None else events_from_frame(events, vehicle)
+    if two_carriers is None:
+        segmented = close_segments(logged, happened, capacity=capacity, unit=unit)
+    else:
+        segmented = close_two_carriers(logged, happened, two_carriers)
     observed = observe(
         segmented,
         [] if modifications is None else modifications_from_frame(modifications, vehicle),

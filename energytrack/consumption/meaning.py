@@ -9,8 +9,9 @@ from typing import Any, Protocol
 from energytrack.consumption.segments import Segment, SegmentedLog, close_segments
 from energytrack.consumption.shares import fitted_periods, shares
 from energytrack.consumption.slips import Case, find_slips
-from energytrack.consumption.terms import condition_of, term
+from energytrack.consumption.terms import ELECTRIC, condition_of, term
 from energytrack.errors import ConsumptionError
+from energytrack.logbook.carriers import for_kind, in_total
 from energytrack.logbook.quantities import consumption_text, distance_text, energy_text, from_base, to_base
 from energytrack.logbook.records import Entry, Event, Modification, Vehicle
 
@@ -46,7 +47,7 @@ def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str
     recent = logbook.last_entries(vehicle.name, RECENT_ENTRIES)
     if len(recent) == RECENT_ENTRIES and all(row.odometer_km is None for row in recent):
         recent = logbook.entries(vehicle.name)  # without an odometer, positions count from the first entry
-    segmented = close_segments(recent, logbook.events(vehicle.name), capacity=vehicle.capacity, unit=vehicle.unit)
+    segmented = _segmented(vehicle, recent, logbook.events(vehicle.name))
     index = _index_of(segmented, entry)
     if index is None or (index == 0 and len(recent) >= RECENT_ENTRIES):
         return ["kept among the older entries"]
@@ -56,9 +57,34 @@ def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str
     if which is None:
         lines = _without_consumption(segmented, vehicle, index)
     else:
-        lines = _with_consumption(segmented.segments[which], vehicle)
+        lines = _with_consumption(segmented.segments[which], vehicle) + _of_each(segmented, which, vehicle)
         lines += _compared(segmented, which, vehicle, kept, rows)
-    return lines + _overfilled(entry, vehicle) + _still_to_go(segmented, vehicle, index, kept, rows)
+    lines += _overfilled(entry, for_kind(vehicle, entry.kind))
+    return lines + _still_to_go(segmented, vehicle, index, kept, rows)
+
+
+def _segmented(vehicle: Vehicle, entries: Sequence[Entry], events: Sequence[Event]) -> SegmentedLog:
+    if vehicle.second_carrier is None:
+        return close_segments(entries, events, capacity=vehicle.capacity, unit=vehicle.unit)
+    from energytrack.consumption.two_carriers import close_vehicle  # only where it is needed: logging starts fast
+
+    return close_vehicle(vehicle, entries, events)
+
+
+def _of_each(segmented: SegmentedLog, which: int, vehicle: Vehicle) -> list[str]:
+    """What a segment used of each carrier, of a vehicle with tank and battery."""
+    if vehicle.second_carrier is None:
+        return []
+    from energytrack.consumption.two_carriers import fuel_and_electric, two_carriers_of
+
+    both = two_carriers_of(vehicle)
+    if both is None:
+        return []
+    km, energy = segmented.segments[which].distance_km, segmented.segments[which].energy
+    fuel, electric = fuel_and_electric(segmented, which, both)
+    tank, battery = for_kind(vehicle, "fill-up"), for_kind(vehicle, "charge")
+    each = f"{consumption_text(fuel / km, tank)} and {consumption_text(electric / km, battery)}"
+    return [f"of that {each} from the plug, {100 * electric / energy:.0f} % of the energy"]
 
 
 def _overfilled(entry: Entry, vehicle: Vehicle) -> list[str]:
@@ -84,6 +110,8 @@ def unusual(segments: Sequence[Segment]) -> list[bool]:
 def slip_lines(segmented: SegmentedLog, unlike: Sequence[int], vehicle: Vehicle) -> dict[int, list[str]]:
     """What may have happened in each of the unusual segments, held against the vehicle's own record."""
     segments = segmented.segments
+    if vehicle.second_carrier is not None:  # its segments are in kWh, what was typed is not
+        return {which: [] for which in unlike}
     if not unlike:
         return {}
     usual, _, sd = _record(segments)
@@ -133,7 +161,7 @@ def _index_of(segmented: SegmentedLog, entry: Entry) -> int | None:
 
 
 def _with_consumption(segment: Segment, vehicle: Vehicle) -> list[str]:
-    figure = consumption_text(segment.energy / segment.distance_km, vehicle)
+    figure = consumption_text(segment.energy / segment.distance_km, in_total(vehicle))
     last = segment.legs[-1].entry
     driven = math.fsum(leg.distance_km for leg in segment.legs if leg.entry == last)
     since = f"{distance_text(driven, vehicle)} since the last entry"
@@ -146,6 +174,8 @@ def _with_consumption(segment: Segment, vehicle: Vehicle) -> list[str]:
 def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) -> list[str]:
     entry = segmented.entries[index]
     store, filling = ("charge", "charge") if vehicle.unit == "kWh" else ("tank", "fill")
+    if vehicle.second_carrier is not None:
+        store, filling = "tank", "fill"
     if index == 0:
         return [f"first entry: consumption follows with the next full {store}"]
     driven = segmented.positions[index] - segmented.positions[index - 1]
@@ -153,6 +183,8 @@ def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) 
     void = next((span for span in segmented.void if span.entry == index), None)
     if void is not None and (entry.full or entry.level_percent is not None):
         return [*since, f"no consumption: {WHY_VOID[void.reason]}"]
+    if vehicle.second_carrier is not None and entry.kind == "charge":
+        return [*since, "charge added up: consumption follows with the next full tank"]
     return [*since, f"partial {filling}: consumption follows with the next full {store}"]
 
 
@@ -181,7 +213,7 @@ def _compared(
     scatter = WITHIN_SD * sd / _relative_length(segment, others)
     verdict = "within" if abs(percent) <= scatter else "outside"
     lines = [
-        f"expected {basis}: {consumption_text(expected, vehicle)}",
+        f"expected {basis}: {consumption_text(expected, in_total(vehicle))}",
         f"{abs(percent):.1f} % {'more' if percent >= 0 else 'less'} than expected, "
         f"{verdict} the usual scatter (± {scatter:.0f} %)",
     ]
@@ -203,7 +235,7 @@ def _expected(
     expectation = answer["expectation"]
     percent = 0.0
     for name, slope in expectation["terms"].items():
-        value = _condition(segmented, segmented.segments[which], condition_of(name))
+        value = _condition(segmented, which, condition_of(name))
         if value is not None:
             percent += slope * (term(name, value) - expectation["centres"][name])
     own = [row for row in rows if row.name == answer.get("modification")]
@@ -216,8 +248,11 @@ def _expected(
     return float(expectation["consumption"] * (1 + percent / 100))
 
 
-def _condition(segmented: SegmentedLog, segment: Segment, name: str) -> float | None:
+def _condition(segmented: SegmentedLog, which: int, name: str) -> float | None:
     """Distance-weighted condition of a segment, None where unknown on more than half of its distance."""
+    segment = segmented.segments[which]
+    if name == ELECTRIC:
+        return 100 * segmented.electric[which] / segment.distance_km if segmented.electric else None
     if name == "season":
         return (segment.start_day + segment.end_day) / 2
     total = known = 0.0

@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from energytrack.consumption.averages import Array, distance_means, entry_conditions
 from energytrack.consumption.segments import SegmentedLog
 from energytrack.consumption.shares import fitted_shares, highest_levels, shares
+from energytrack.consumption.terms import ELECTRIC
 from energytrack.logbook.records import Modification, Weather
 
 
@@ -102,6 +103,10 @@ def observe(
     names = tuple(dict.fromkeys(row.name for row in modifications))
     rows = [[row for row in modifications if row.name == name] for name in names]
     conditions, known_share = _conditions(segmented, covariates, weather)
+    if segmented.electric:
+        electric = np.array(segmented.electric, dtype=np.float64)
+        conditions[ELECTRIC] = 100 * electric / _column(segment.distance_km for segment in segments)
+        known_share[ELECTRIC] = np.ones(len(segments))
     start_day = _column(segment.start_day for segment in segments)
     end_day = _column(segment.end_day for segment in segments)
     return Observations(

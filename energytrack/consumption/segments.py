@@ -79,9 +79,10 @@ class SegmentedLog:
     capacity_is_estimated: bool
     unit: str
     problems: tuple[Problem, ...]
+    electric: tuple[float, ...] = ()  # kWh from the plug in each segment, where a vehicle has tank and battery
 
 
-class _Level(NamedTuple):
+class Level(NamedTuple):
     """A known level: how much is missing from full, and how well that is known."""
 
     missing: float
@@ -97,9 +98,22 @@ def close_segments(
     from the largest purchases where it is needed and not given.
     """
     ordered = driving_order(entries)
+    size, estimated = (capacity, False) if capacity else (estimate_capacity(ordered, unit), True)
+    levels = [known_level(entry, size, unit) for entry in ordered]
+    return close_at(ordered, levels, events, capacity=size, capacity_is_estimated=estimated, unit=unit)
+
+
+def close_at(
+    ordered: Sequence[Entry],
+    levels: Sequence[Level | None],
+    events: Sequence[Event],
+    *,
+    capacity: float | None,
+    capacity_is_estimated: bool,
+    unit: str,
+) -> SegmentedLog:
+    """Close a segment wherever a level is known. ordered: entries in driving order, levels: known after each."""
     days, problems = monotone_days(ordered)
-    size, estimated = (capacity, False) if capacity else (_estimate_capacity(ordered, unit), True)
-    levels = [_level(entry, size, unit) for entry in ordered]
     problems += _level_problems(ordered, levels)
     chain = _Chain(ordered, scale_positions(ordered), days, events, levels[0] if levels else None)
     for index in range(1, len(ordered)):
@@ -112,8 +126,8 @@ def close_segments(
         segments=tuple(chain.segments),
         open_legs=tuple(chain.legs),
         void=tuple(chain.void),
-        capacity=size,
-        capacity_is_estimated=estimated and size is not None,
+        capacity=capacity,
+        capacity_is_estimated=capacity_is_estimated and capacity is not None,
         unit=unit,
         problems=tuple(problems + chain.problems),
     )
@@ -123,7 +137,7 @@ class _Chain:
     """Walks from entry to entry and closes a segment, or voids a span, at every known level."""
 
     begin: int  # the entry at which the span in hand starts
-    start: _Level | None  # known there
+    start: Level | None  # known there
     linked: bool  # whether the segment before ended there
     legs: list[Leg]
     bought: float
@@ -135,7 +149,7 @@ class _Chain:
         positions: list[float],
         days: list[int],
         events: Sequence[Event],
-        level: _Level | None,
+        level: Level | None,
     ) -> None:
         self.ordered, self.positions, self.days = ordered, positions, days
         self.problems: list[Problem] = []
@@ -145,7 +159,7 @@ class _Chain:
         self.anchored = bool(ordered) and ordered[0].odometer_km is not None  # position of the last entry is certain
         self._restart(0, level, linked=False)
 
-    def drive(self, index: int, level: _Level | None) -> None:
+    def drive(self, index: int, level: Level | None) -> None:
         """Take in the driving up to entry `index` and the level known after it, if any."""
         entry = self.ordered[index]
         distance, reason = self._distance(index)
@@ -165,7 +179,7 @@ class _Chain:
             self._cut(last, self.reason or "no known level")
             self.legs = []
 
-    def _close(self, index: int, level: _Level) -> None:
+    def _close(self, index: int, level: Level) -> None:
         reason = self.reason or ("no known level" if self.start is None else None)
         distance = math.fsum([leg.distance_km for leg in self.legs])
         energy = self.bought + level.missing - (self.start.missing if self.start else 0.0)
@@ -189,7 +203,7 @@ class _Chain:
             )
         self._restart(index, level, linked=reason is None)
 
-    def _restart(self, index: int, level: _Level | None, *, linked: bool) -> None:
+    def _restart(self, index: int, level: Level | None, *, linked: bool) -> None:
         self.begin, self.start, self.linked = index, level, linked
         self.legs, self.bought, self.reason = [], 0.0, None
 
@@ -256,16 +270,17 @@ class _Chain:
         return changes, [1.0, *(held[change] for change in changes)]
 
 
-def _level(entry: Entry, capacity: float | None, unit: str) -> _Level | None:
+def known_level(entry: Entry, capacity: float | None, unit: str) -> Level | None:
+    """The level an entry leaves behind, from its reading or its filling; None where it tells none."""
     percent = entry.level_percent
     if percent is None:
-        return _Level(0.0, 1.0) if entry.full else None
+        return Level(0.0, 1.0) if entry.full else None
     if not 0 <= percent <= 100 or (capacity is None and percent < 100):
         return None
-    return _Level((1 - percent / 100) * (capacity or 0.0), 1.0 if unit == "kWh" else GAUGE_WEIGHT)
+    return Level((1 - percent / 100) * (capacity or 0.0), 1.0 if unit == "kWh" else GAUGE_WEIGHT)
 
 
-def _level_problems(ordered: Sequence[Entry], levels: Sequence[_Level | None]) -> list[Problem]:
+def _level_problems(ordered: Sequence[Entry], levels: Sequence[Level | None]) -> list[Problem]:
     problems = []
     unusable = 0
     for entry, level in zip(ordered, levels, strict=True):
@@ -279,7 +294,7 @@ def _level_problems(ordered: Sequence[Entry], levels: Sequence[_Level | None]) -
     return problems
 
 
-def _estimate_capacity(ordered: Sequence[Entry], unit: str) -> float | None:
+def estimate_capacity(ordered: Sequence[Entry], unit: str) -> float | None:
     """A little above the largest purchases, each scaled to a full tank or battery by the level it ended at.
 
     For electricity only where a reading needs it: charges tell less about a battery than fill-ups about a tank.

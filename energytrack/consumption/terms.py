@@ -14,6 +14,7 @@ from typing import Any
 HEATING_BELOW_C = 18.0
 COOLING_ABOVE_C = 22.0
 YEAR_DAYS = 365.2425  # mean Gregorian year
+ELECTRIC = "electric_kwh_per_100km"  # energy from the plug, the condition of a vehicle with tank and battery
 
 Function = Callable[[Any], Any]  # float -> float, or array -> array of the same shape
 

@@ -12,6 +12,7 @@ from energytrack.consumption.columns import flags
 from energytrack.consumption.frames import events_from_frame, modifications_from_frame, observe_log
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside as sort_out
+from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
@@ -47,6 +48,7 @@ def assess(
     covariates: Sequence[str] | None = None,
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
+    two_carriers: TwoCarriers | None = None,
     every_look: bool = True,
     rule: Rule = "every-look",
     looks_taken: Sequence[float] = (),
@@ -60,6 +62,8 @@ def assess(
     temperature and speed. `every_look=False` looks only once, at the end, as if nobody had looked before.
     `rule`: "every-look", whose bound holds however often someone looks; "counted", where only the looks taken count:
     those at the odometer positions `looks_taken` (km) and this one; "open-ended", a watch that never closes.
+    `two_carriers` is of a vehicle with tank and battery: its fill-ups are in the fuel's unit, charges and answers in
+    kWh, and `capacity` and `unit` do not count.
 
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
     not in the table, InferenceError for a target, confidence or power outside its range, or an unknown rule.
@@ -67,7 +71,14 @@ def assess(
     further, reversible = tuple(covariates or ()), _reversible(modifications, name)
     question = Question(name, float(target_percent) / 100, 1 - confidence, power, further, rule, reversible)
     observed, notes, segmented = observe_log(
-        entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
+        entries,
+        modifications,
+        events=events,
+        weather=weather,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        two_carriers=two_carriers,
     )
     if name not in observed.names:
         raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")
@@ -90,10 +101,10 @@ def assess(
         typist = Vehicle(vehicle, "", unit, capacity, typed_in[0], typed_unit=typed_in[1])
         answer = replace(
             answer,
-            set_aside=suspects(segmented, found, typist),
+            set_aside=suspects(segmented, found, typist, as_typed=two_carriers is None),
             verdict_with_all=WithAll(whole.verdict, whole.shift_percent, whole.interval_percent),
         )
-    if not answer.looks or not has_levels(modifications, name):
+    if not answer.looks or two_carriers is not None or not has_levels(modifications, name):
         return answer
     graded = respond(
         entries,

@@ -3,19 +3,26 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from energytrack.consumption.conditions import SPEED, TEMPERATURE
+from energytrack.consumption.terms import ELECTRIC
 from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
 
 _LITTLE = 0.3  # share of one phase's conditions met in the other, below which the comparison leans on the fitted curve
 _ALWAYS = 0.98  # correlation of two modifications' shares
+_CLEARLY = 2.0  # standard errors by which the charging of the two phases differs
+_WORTH_SAYING = 1.0  # percent of consumption moved by it
 _NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
 
 
 def caveats(model: Model) -> tuple[str, ...]:
     """Warnings about an answer, most weighty first."""
-    found = (_took_turns, _not_fitted_now, _little_overlap, _other_level, _filled_in, _no_weather)
+    found = (
+        *(_took_turns, _not_fitted_now, _charging_changed),
+        *(_little_overlap, _other_level, _filled_in, _no_weather),
+    )
     return tuple(caveat for find in found for caveat in find(model))
 
 
@@ -58,6 +65,34 @@ def _little_overlap(model: Model) -> list[str]:
                 f"{_span(with_it)} {unit} with it. Drive on into conditions both have seen."
             )
     return found
+
+
+def _charging_changed(model: Model) -> list[str]:
+    """Of a vehicle with tank and battery: charged more, or less, since the modification was fitted."""
+    if model.modification is None or ELECTRIC not in model.terms.names:
+        return []
+    place = model.terms.names.index(ELECTRIC)
+    fitted = model.observed.fitted[:, model.observed.names.index(model.modification)] > 0
+    charged = model.conditions.values[ELECTRIC]
+    without, with_it = charged[~fitted], charged[fitted]
+    difference = float(with_it.mean() - without.mean())
+    error = float(np.sqrt(sum(part.var() / max(len(part) - 1, 1) for part in (without, with_it))))
+    slope = model.fit.coefficients[model.term_columns][place] / model.terms.scales[place]
+    moved = 100 * slope * difference / model.fit.coefficients[0]
+    clearly = abs(difference) > _CLEARLY * error and abs(moved) > _WORTH_SAYING
+    if not clearly and _overlap(without, with_it) >= _LITTLE:
+        return []
+    return [
+        f"the charging habit changed: {_electric_share(model, ~fitted):.0f} % of the energy came from the plug without "
+        f"the modification, {_electric_share(model, fitted):.0f} % with it. That alone moved consumption by about "
+        f"{moved:+.0f} % and could pass for a shift. Charge as before, for some full tanks at least."
+    ]
+
+
+def _electric_share(model: Model, chosen: NDArray[np.bool_]) -> float:
+    """Percent of the energy of the chosen segments that came from the plug."""
+    electric = model.observed.conditions[ELECTRIC] * model.observed.distance_km / 100
+    return float(100 * electric[chosen].sum() / model.observed.energy[chosen].sum())
 
 
 def _overlap(one: Array, other: Array) -> float:

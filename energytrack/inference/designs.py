@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.oddities import set_aside
+from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.inference.describe import noise_of
 from energytrack.inference.looks import FEWEST_BASELINE
 from energytrack.inference.model import fit_model
@@ -32,6 +33,7 @@ def plan(
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
     reversible: bool = True,
+    two_carriers: TwoCarriers | None = None,
 ) -> Plan:
     """Distance to the target for each way to run the test, from the log's own noise, habit and seasons.
 
@@ -41,7 +43,14 @@ def plan(
     further = tuple(covariates or ())
     question = Question("", float(target_percent) / 100, 1 - confidence, power, further, reversible=reversible)
     observed, notes = observe_frames(
-        entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
+        entries,
+        modifications,
+        events=events,
+        weather=weather,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        two_carriers=two_carriers,
     )
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     usual = set_aside(observed, question.covariates).kept  # odd entries are no part of the noise to plan with

@@ -6,7 +6,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from math import log, sqrt
 
 import numpy as np
@@ -78,7 +78,8 @@ def fit_model(
     shares = observed.shares[:, [observed.names.index(name) for name in names]] / np.array([levels[n] for n in names])
     relative = observed.distance_km / scale.distance_km
     columns = relative[:, None] * stack(terms.columns(conditions), shares, asked=modification is not None)
-    energy = observed.energy / scale.energy
+    foreseen = _foreseen(terms, asked=modification is not None, others=len(others))
+    energy = observed.energy / scale.energy - columns @ foreseen  # the priors of the rest are centred on no effect
     precision = _precision(terms, asked=modification is not None, others=len(others))
     extra = _filled_in_variance(columns, energy, precision, relative, terms, conditions, modification is not None)
     shape = structure(
@@ -86,7 +87,8 @@ def fit_model(
     )
     problem = Problem(shape, columns, energy, precision, noise_priors(observed, scale))
     fitted = fit(problem, _first_guess(observed, problem) if start is None else start)
-    return Model(observed, conditions, terms, scale, modification, others, levels, problem, fitted)
+    whole = replace(fitted, coefficients=fitted.coefficients + foreseen)
+    return Model(observed, conditions, terms, scale, modification, others, levels, problem, whole)
 
 
 def stack(terms: Array, shares: Array, *, asked: bool) -> Array:
@@ -124,6 +126,11 @@ def _scale(observed: Observations) -> Scale:
 def _varies(observed: Observations, name: str) -> bool:
     """Fitted for part of this log: what never changed cannot be told from the vehicle itself."""
     return bool(np.ptp(observed.shares[:, observed.names.index(name)]) > 0)
+
+
+def _foreseen(terms: Terms, *, asked: bool, others: int) -> Array:
+    """Prior means of the coefficients (p,)."""
+    return np.concatenate([np.zeros(2 if asked else 1), terms.prior_mean, np.zeros(others)])
 
 
 def _precision(terms: Terms, *, asked: bool, others: int) -> Array:

@@ -12,15 +12,17 @@ UNEXPLAINED = "stands out"
 _LOOK = "check amount and odometer; confirm the entry if it is right"
 
 
-def suspects(segmented: SegmentedLog, found: Sorted, vehicle: Vehicle) -> tuple[SetAside, ...]:
-    """One line for each odd segment or pair, in driving order."""
+def suspects(
+    segmented: SegmentedLog, found: Sorted, vehicle: Vehicle, *, as_typed: bool = True
+) -> tuple[SetAside, ...]:
+    """One line for each odd segment or pair, in driving order. as_typed: energies are what was typed, not converted."""
     expected, sd = found.judgement.expected.tolist(), found.judgement.sd.tolist()
-    return tuple(_told(Case(segmented, odd.segment, expected, sd, vehicle), odd) for odd in found.odd)
+    return tuple(_told(Case(segmented, odd.segment, expected, sd, vehicle), odd, as_typed) for odd in found.odd)
 
 
-def _told(case: Case, odd: Odd) -> SetAside:
+def _told(case: Case, odd: Odd, as_typed: bool) -> SetAside:
     entry, segment = case.entry, case.segment
-    slips = find_slips(case)
+    slips = find_slips(case) if as_typed else []
     if odd.is_pair and not slips:
         suspicion, suggestion = "level wrong", f"mark the entry {place(entry, case.vehicle)} as partial"
     else:

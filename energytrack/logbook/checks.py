@@ -105,7 +105,8 @@ def check_place(
         if entry.distance_km is not None and before is not None:
             _check_jump(entry.distance_km, before.date, entry.date, vehicle)
         return
-    if twin is None and before is not None and before.odometer_km == entry.odometer_km:
+    stands = before is not None and before.odometer_km == entry.odometer_km and before.kind == entry.kind
+    if twin is None and before is not None and stands:
         raise EntryError(f"odometer stands still: {_stood(before, vehicle)}; type what the instrument shows now")
     check_reading(entry.date, entry.odometer_km, vehicle, before, after)
 

@@ -12,6 +12,7 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from energytrack.errors import EntryError, UnknownNameError
+from energytrack.logbook.carriers import for_kind
 from energytrack.logbook.checks import check_date, check_values
 from energytrack.logbook.columns import Form
 from energytrack.logbook.order import Row, driving_order, jumps, misfits, newest_first
@@ -61,10 +62,11 @@ def plan_import(
             plan.notes.append("the newest entry stands first; read from the bottom up")
         bad = _implausible(rows, by_name[name], reading.file, today)
         blamed = {problem.line for problem in bad}
-        ordered, unordered = driving_order([row for row in rows if row[0] not in blamed], reading.file, again=again)
+        equal = again or by_name[name].second_carrier is not None  # tank and battery may be filled at one place
+        ordered, unordered = driving_order([row for row in rows if row[0] not in blamed], reading.file, again=equal)
         new, known = _unknown_rows(ordered, recorded(name))
         held = standing(name) if new else []
-        unfit = misfits(new, held, reading.file, again=again) + jumps(new, held, reading.file)
+        unfit = misfits(new, held, reading.file, again=equal) + jumps(new, held, reading.file)
         problems = bad + unordered + unfit
         refused |= {problem.line: name for problem in problems if problem.line is not None}
         unfitting = {problem.line for problem in unfit}
@@ -107,7 +109,7 @@ def _implausible(rows: Sequence[Row], vehicle: Vehicle, file: str, today: dt.dat
             if math.isnan(entry.energy):
                 check_date(entry.date, today)
             else:
-                check_values(entry, vehicle, today)
+                check_values(entry, for_kind(vehicle, entry.kind), today)
         except EntryError as error:
             problems.append(Problem(str(error), file, line))
     return problems

@@ -159,6 +159,9 @@ def _planned(
     if request.energy_unit is not None:
         base = ENERGY[request.energy_unit][0]
         used = {entry.vehicle for _, entry in plan.new + plan.known}
+        if both := [vehicle for vehicle in known if vehicle.name in used and vehicle.second_unit is not None]:
+            units = f"{both[0].unit} and {both[0].second_unit}"
+            raise EntryError(f"energy of {both[0].name} is counted in {units}: convert the file, no --energy-unit")
         if wrong := [vehicle for vehicle in known if vehicle.name in used and vehicle.unit != base]:
             raise EntryError(f"energy of {wrong[0].name} is counted in {wrong[0].unit}, not in {request.energy_unit}")
     return plan

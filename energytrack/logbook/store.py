@@ -79,9 +79,9 @@ class Store(LogbookFile):
         return next(iter(found[0]), None), next(iter(found[1]), None)
 
     def twin(self, entry: Entry) -> Entry | None:
-        """A standing entry of the same day and odometer; without an odometer, of the same day, distance and amount."""
-        part = "AND date = ? AND odometer_km IS ? LIMIT 1"
-        values: list[Any] = [entry.date.isoformat(), entry.odometer_km]
+        """A standing entry of the same kind, day and odometer; without an odometer, of the same distance and amount."""
+        part = "AND kind = ? AND date = ? AND odometer_km IS ? LIMIT 1"
+        values: list[Any] = [entry.kind, entry.date.isoformat(), entry.odometer_km]
         if entry.odometer_km is None:
             part = f"AND distance_km IS ? AND energy = ? {part}"
             values = [entry.distance_km, entry.energy, *values]

@@ -89,7 +89,7 @@ def _better_records(a: Assessment) -> list[str]:
     if filling is not None and (filling.share or 0.0) > _LARGE_SHARE:
         steps.append(
             "Read the charge level after each session (--level)."
-            if a.unit == "kWh"
+            if scatter.charges_only(a)
             else "Fill to the first click at the same pump: filling is the largest part of the scatter."
         )
     return steps

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
-from energytrack.consumption.terms import COOLING_ABOVE_C, HEATING_BELOW_C
+from energytrack.consumption.terms import COOLING_ABOVE_C, ELECTRIC, HEATING_BELOW_C
 from energytrack.inference.results import Covariate
 from energytrack.presentation import figures
 from energytrack.presentation.plain import plain_text
@@ -23,6 +23,8 @@ def rows(covariates: Mapping[str, Covariate], unit: str) -> list[tuple[str, str]
             said["heat"] = _branch(found, f"above {COOLING_ABOVE_C:.0f} °C", above, found.high)
         elif found.condition == "speed_kmh":
             said["speed"] = _speed(found, unit)
+        elif name == ELECTRIC:
+            said["plug"] = _plug(found)
         elif found.condition == "season":
             worth = join(f"{found.effect_percent:.0f} %")
             said["season"] = f"worth {worth} between the best and the worst time of year (by date alone)"
@@ -44,6 +46,11 @@ def _speed(found: Covariate, unit: str) -> str:
     low, high = (figures.in_unit(end, unit) for end in (found.low, found.high))
     here = join(f"{low:.0f} to {high:.0f} {unit}/h")
     return f"{join(f'{found.effect_percent:+.0f} %')} from slow to fast; here {here}"
+
+
+def _plug(found: Covariate) -> str:
+    here = join(f"{found.low:.3g} to {found.high:.3g} kWh/100 km")
+    return f"{_per_unit(found)} for each kWh/100 km charged; here {here}"
 
 
 def _column(found: Covariate) -> str:

@@ -90,7 +90,8 @@ def _shift(a: Assessment) -> list[Row]:
     if a.shift_percent is None:
         return []
     sure = figures.target(100 * a.confidence)
-    rows = [("shift", f"{so_far(a)} ({sure} confidence, {_LOOKED[a.rule]})")]
+    looked = _LOOKED[a.rule] if a.is_open else "when it was settled; figures since then are follow-up"
+    rows = [("shift", f"{so_far(a)} ({sure} confidence, {looked})")]
     if a.standard_error_percent is not None:
         error = a.standard_error_percent
         freedom = a.degrees_of_freedom

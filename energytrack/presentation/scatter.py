@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import sqrt
 
+from energytrack.consumption.terms import ELECTRIC
 from energytrack.inference.results import Assessment
 from energytrack.presentation.text import join
 
@@ -19,12 +20,17 @@ class Source:
     share: float | None
 
 
+def charges_only(a: Assessment) -> bool:
+    """Whether the level is that of a battery alone: kWh with no fuel beside them."""
+    return a.unit == "kWh" and ELECTRIC not in a.covariates
+
+
 def sources(a: Assessment) -> list[Source]:
     """Trip to trip, filling, drift over weeks, drift over seasons; [] where the noise is unknown."""
     noise = a.noise
     if noise is None:
         return []
-    electric = a.unit == "kWh"
+    electric = charges_only(a)
     filling = _filling_percent(a)
     detail = f"{join(f'{noise.level_error:.2g} {a.unit}')} a {'charge' if electric else 'filling'}"
     found = [
