@@ -16,7 +16,7 @@ import typer.core
 import typer.main
 
 from energytrack.cli.context import LOGBOOK_VARIABLE
-from energytrack.cli.options import NUMBERS_MAY_BE_NEGATIVE
+from energytrack.cli.options import NegativeNumbers
 from energytrack.errors import EnergytrackError
 from energytrack.presentation.plain import plain_text
 
@@ -49,7 +49,7 @@ class LazyCommands(typer.core.TyperGroup):
         found = getattr(import_module(f"energytrack.cli.{module}"), attribute)
         if not isinstance(found, typer.Typer):
             alone = typer.Typer(add_completion=False, rich_markup_mode=None)
-            alone.command(cmd_name, context_settings=NUMBERS_MAY_BE_NEGATIVE)(found)
+            alone.command(cmd_name, cls=NegativeNumbers)(found)
             found = alone
         command = typer.main.get_command(found)
         command.name = cmd_name

@@ -20,6 +20,9 @@ if TYPE_CHECKING:
     from energytrack.logbook.opening import Logbook
 
 
+USUAL_CERTAINTY = (0.95, 0.80)  # confidence and power; other questions are asked in passing and not kept
+
+
 def enough(
     context: typer.Context,
     name: Annotated[str | None, typer.Argument(help="The modification; all of them if left out.")] = None,
@@ -27,8 +30,8 @@ def enough(
     target: Annotated[
         float | None, typer.Option(help="Smallest shift worth knowing about, in percent. Otherwise as logged, or 3.")
     ] = None,
-    confidence: Annotated[float, typer.Option(help="Of the range and the verdict.")] = 0.95,
-    power: Annotated[float, typer.Option(help="Chance that a shift of the target size is found.")] = 0.80,
+    confidence: Annotated[float, typer.Option(help="Of the range and the verdict.")] = USUAL_CERTAINTY[0],
+    power: Annotated[float, typer.Option(help="Chance that a shift of the target size is found.")] = USUAL_CERTAINTY[1],
     covariate: Annotated[
         list[str] | None, typer.Option(metavar="COLUMN", help="A further numeric column to allow for; repeatable.")
     ] = None,
@@ -39,17 +42,16 @@ def enough(
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
 ) -> None:
-    """Has the modification shifted consumption, by how much, and is the distance covered enough to say so?"""
-    if name is not None and name.startswith("-"):
-        raise typer.BadParameter(f"no such option: {name}")
+    """Say whether a modification shifted consumption. By how much, and how far is still to go to be sure."""
     logbook = readable(context)
     asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
     answers, refusals = asking.answered(
         asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, keep_all))
     )
+    if target is None and not covariate and (confidence, power) == USUAL_CERTAINTY:
+        for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
+            _keep(logbook, question, answer)
     _print_json([a for _, a in answers]) if json else _print(answers, picture)
-    for question, answer in answers:
-        _keep(logbook, question, answer)
     waiting = exit_code and any(answer.verdict == "not-yet" for _, answer in answers)
     asking.leave(refusals, ExitStatus.NOT_YET if waiting else ExitStatus.DONE)
 

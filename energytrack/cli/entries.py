@@ -17,6 +17,7 @@ from energytrack.logbook.rows import entry_values
 from energytrack.presentation.columns import aligned
 
 MOST_ENTRIES = 1_000_000_000
+WIDTH = 80
 
 
 def entries(
@@ -25,7 +26,7 @@ def entries(
     last: Annotated[int, typer.Option(min=1, max=MOST_ENTRIES, metavar="N", help="How many of the newest.")] = 20,
     json: options.Json = False,
 ) -> None:
-    """List the newest entries of each vehicle, oldest first, with what is special about them."""
+    """List the newest entries of each vehicle. Oldest first, with what is special about them."""
     logbook = readable(context)
     vehicles = the_vehicles(logbook, vehicle)
     listed = [(each, _newest(logbook, each, last)) for each in vehicles]
@@ -84,7 +85,8 @@ def _table(vehicle: Vehicle, lines: list[Line], last: int) -> list[str]:
     if not lines:
         return [f"{vehicle.name}: no entries yet"]
     title = vehicle.name + (f", the newest {last} (--last N for more)" if len(lines) == last else "")
-    return [title, *aligned([_cells(vehicle, line) for line in lines], right=(1, 2, 3))]
+    rows = aligned([_cells(vehicle, line) for line in lines], right=(1, 2, 3))
+    return [title, *(row if len(row) <= WIDTH else f"{row[: WIDTH - 3]}..." for row in rows)]  # notes are whole in JSON
 
 
 def _cells(vehicle: Vehicle, line: Line) -> tuple[str, ...]:

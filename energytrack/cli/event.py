@@ -40,7 +40,7 @@ def event(
     note: options.Note = "",
     json: options.Json = False,
 ) -> None:
-    """Log a service, a tyre change, another driver: anything that may shift consumption and is not under test."""
+    """Log what else may shift consumption: a service, other tyres. It is not under test."""
     store = writable(context)
     chosen = the_vehicle(store, vehicle)
     day = the_date(date)

@@ -15,7 +15,7 @@ Text = str | None
 
 def import_table(
     context: typer.Context,
-    file: Annotated[Path, typer.Argument(help="CSV file, or a folder of tables as `export` writes it.")],
+    file: Annotated[Path, typer.Argument(help="CSV file, or a folder of tables (CSV).")],
     vehicle: Annotated[Text, typer.Option(help="Whose rows these are. Otherwise the file's column tells.")] = None,
     column: Annotated[list[str] | None, typer.Option(help="Our column = theirs, such as energy=Litres.")] = None,
     table: Annotated[
@@ -45,9 +45,10 @@ def import_table(
     capacity: Annotated[Text, typer.Option(help="Tank or battery capacity of a new vehicle.")] = None,
     as_json: Annotated[bool, typer.Option("--json", help="Print the result as JSON.")] = False,
 ) -> None:
-    """Bring a CSV table into the logbook: all of it or, if any row is bad, none of it.
+    """Bring a CSV table into the logbook.
 
-    The same file twice adds nothing; a longer export of the same log adds its new rows.
+    All of it or, if any row is bad, none of it. The same file twice adds nothing; a longer export of the same log adds
+    its new rows.
     """
     from energytrack.cli import import_options as options
     from energytrack.logbook.columns import Form

@@ -21,7 +21,7 @@ from energytrack.cli.context import (
     writable,
 )
 from energytrack.errors import EntryError
-from energytrack.logbook.checks import check_date, check_odometer, check_reading, parse_date
+from energytrack.logbook.checks import check_date, check_name, check_odometer, check_reading, parse_date
 from energytrack.logbook.quantities import distance_text, parse_number
 from energytrack.logbook.records import Entry, Modification, Vehicle
 from energytrack.logbook.store import Store
@@ -35,7 +35,7 @@ Name = Annotated[str, typer.Argument(help="What you call the part or setting.")]
 Odometer = Annotated[str | None, typer.Argument(help="Odometer value; may be left out with --date.")]
 
 
-@mod_commands.command("fitted", context_settings=options.NUMBERS_MAY_BE_NEGATIVE)
+@mod_commands.command("fitted", cls=options.NegativeNumbers)
 def fitted(
     context: typer.Context,
     name: Name,
@@ -54,11 +54,12 @@ def fitted(
     with store.transaction():
         day, km = _place(store, chosen, odometer, odometer_unit, date)
         graded = None if level is None else parse_number(level, "level")
-        store.fit(chosen.name, _checked_name(name), day, km, _target(target), graded, note)
+        check_name(name, "modification")
+        store.fit(chosen.name, name, day, km, _target(target), graded, note)
     _echo(chosen, "fitted", name, day, km, json)
 
 
-@mod_commands.command("removed", context_settings=options.NUMBERS_MAY_BE_NEGATIVE)
+@mod_commands.command("removed", cls=options.NegativeNumbers)
 def removed(
     context: typer.Context,
     name: Name,
@@ -111,12 +112,6 @@ def _place(
         return None, km
     check_reading(here.date, km, vehicle, before, after)
     return here.date, km
-
-
-def _checked_name(name: str) -> str:
-    if not name.strip() or not name.isprintable():
-        raise EntryError("a modification needs a name of printable characters")
-    return name
 
 
 def _target(text: str | None) -> float | None:

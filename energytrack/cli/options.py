@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
-from typing import Annotated
+import re
+from typing import Annotated, Any
 
 import typer
+import typer.core
 
 VehicleName = Annotated[str | None, typer.Option("--vehicle", help="Which vehicle; may be left out when there is one.")]
 Date = Annotated[str | None, typer.Option("--date", metavar="YYYY-MM-DD", help="Day; today if left out.")]
@@ -14,4 +16,10 @@ OdometerUnit = Annotated[
 Note = Annotated[str, typer.Option("--note", help="Anything worth remembering.")]
 Json = Annotated[bool, typer.Option("--json", help="Print JSON.")]
 
-NUMBERS_MAY_BE_NEGATIVE = {"ignore_unknown_options": True}  # so that -5 reaches the checks and is not read as an option
+
+class NegativeNumbers(typer.core.TyperCommand):
+    """A command to which -5 is a number, for its checks to refuse, and any other unknown `-x` a wrong option."""
+
+    def parse_args(self, ctx: Any, args: list[str]) -> list[str]:
+        ctx.ignore_unknown_options = any(re.match(r"-\.?[0-9]", text) for text in args)
+        return super().parse_args(ctx, args)

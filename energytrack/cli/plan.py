@@ -25,7 +25,7 @@ def plan(
     power: Annotated[float, typer.Option(help="Chance that a shift of the target size is found.")] = 0.80,
     json: options.Json = False,
 ) -> None:
-    """How far would one switch take, and how far taking it off and on, to show a shift of the target size?"""
+    """Say how far a test of a modification would take. With one switch, and with taking it off and on."""
     logbook = readable(context)
     by_name = {each.name: each for each in asking.vehicles_asked(logbook, vehicle)}
     answers, refusals = asking.answered(by_name, lambda name: _plan(logbook, by_name[name], target, confidence, power))

@@ -9,6 +9,7 @@ import typer
 from energytrack.cli import options
 from energytrack.cli.context import distance_unit, readable, say, say_json, writable
 from energytrack.errors import EntryError
+from energytrack.logbook.checks import check_name
 from energytrack.logbook.quantities import (
     CONSUMPTION,
     ENERGY,
@@ -27,7 +28,7 @@ vehicle_commands = typer.Typer(
 _USUAL_DISPLAY_IN_MILES = {"gal-us": "mpg-us", "gal-imp": "mpg-imp", "kg": "mi/kg", "kWh": "mi/kWh"}
 
 
-@vehicle_commands.command("add", context_settings=options.NUMBERS_MAY_BE_NEGATIVE)
+@vehicle_commands.command("add", cls=options.NegativeNumbers)
 def add(
     context: typer.Context,
     name: Annotated[str, typer.Argument(help="What you call it.")],
@@ -67,8 +68,7 @@ def described(
     name: str, carrier: str, capacity: str | None, unit: str | None, distance: str, display: str | None, note: str
 ) -> Vehicle:
     """A vehicle from what was typed, with what is usual where nothing was. Raises EntryError."""
-    if not name.strip() or not name.isprintable():
-        raise EntryError("a vehicle needs a name of printable characters")
+    check_name(name, "vehicle")
     if carrier not in CARRIERS:
         raise EntryError(f"unknown carrier {carrier!r}: use one of {', '.join(CARRIERS)}")
     typed_unit = unit or UNIT_OF_CARRIER[carrier]

@@ -8,7 +8,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from energytrack.consumption.segments import SegmentedLog
-from energytrack.errors import UnknownNameError
+from energytrack.consumption.terms import TERMS
+from energytrack.errors import ConsumptionError, UnknownNameError
 from energytrack.logbook.records import Weather
 
 Array = NDArray[np.float64]
@@ -20,9 +21,12 @@ LEAST_KNOWN_SHARE = 0.5  # of the distance: below it a segment's condition count
 def entry_conditions(segmented: SegmentedLog, columns: Sequence[str], weather: Sequence[Weather]) -> dict[str, Array]:
     """Temperature, speed and each further column asked for: one value an entry (n_entries,), NaN where unknown.
 
-    Raises UnknownNameError for a column no entry has.
+    Raises UnknownNameError for a column no entry has, ConsumptionError for one that bears the name of a term.
     """
     entries = segmented.entries
+    taken = next((column for column in columns if column in TERMS), None)
+    if taken is not None:
+        raise ConsumptionError(f"{taken!r} is the name of a term of the model: give that column another name")
     values = {
         "temperature_c": _numbers([entry.temperature_c for entry in entries]),
         "speed_kmh": _numbers([entry.speed_kmh for entry in entries]),

@@ -114,7 +114,9 @@ def choose(observed: Observations, conditions: Conditions, further: Sequence[str
     """The terms this log supports."""
     weight = observed.distance_km
     names = [*_temperature_terms(conditions), *_speed_terms(conditions)]
-    names += [name for name in further if name in conditions.values and np.ptp(conditions.values[name]) > 0]
+    own = {TEMPERATURE, SPEED, *names}  # these have their terms already
+    named = [name for name in dict.fromkeys(further) if name in conditions.values and name not in own]
+    names += [name for name in named if np.ptp(conditions.values[name]) > 0]
     centres, scales, priors = [], [], []
     for name in names:
         value = conditions.values_of(name)

@@ -58,7 +58,15 @@ def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str
     else:
         lines = _with_consumption(segmented.segments[which], vehicle)
         lines += _compared(segmented, which, vehicle, kept, rows)
-    return lines + _still_to_go(segmented, vehicle, index, kept, rows)
+    return lines + _overfilled(entry, vehicle) + _still_to_go(segmented, vehicle, index, kept, rows)
+
+
+def _overfilled(entry: Entry, vehicle: Vehicle) -> list[str]:
+    """A flag where more was bought than a tank holds; charging losses make that usual for a battery."""
+    if vehicle.capacity is None or vehicle.unit == "kWh" or entry.energy <= vehicle.capacity:
+        return []
+    amount, capacity = energy_text(entry.energy, vehicle), energy_text(vehicle.capacity, vehicle)
+    return [f"{amount} is more than the capacity of {capacity}: kept; check the amount"]
 
 
 def unusual(segments: Sequence[Segment]) -> list[bool]:
@@ -137,7 +145,7 @@ def _with_consumption(segment: Segment, vehicle: Vehicle) -> list[str]:
 
 def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) -> list[str]:
     entry = segmented.entries[index]
-    store = "charge" if vehicle.unit == "kWh" else "tank"
+    store, filling = ("charge", "charge") if vehicle.unit == "kWh" else ("tank", "fill")
     if index == 0:
         return [f"first entry: consumption follows with the next full {store}"]
     driven = segmented.positions[index] - segmented.positions[index - 1]
@@ -145,7 +153,7 @@ def _without_consumption(segmented: SegmentedLog, vehicle: Vehicle, index: int) 
     void = next((span for span in segmented.void if span.entry == index), None)
     if void is not None and (entry.full or entry.level_percent is not None):
         return [*since, f"no consumption: {WHY_VOID[void.reason]}"]
-    return [*since, f"partial fill: consumption follows with the next full {store}"]
+    return [*since, f"partial {filling}: consumption follows with the next full {store}"]
 
 
 def _compared(
@@ -200,7 +208,8 @@ def _expected(
             percent += slope * (term(name, value) - expectation["centres"][name])
     own = [row for row in rows if row.name == answer.get("modification")]
     try:
-        highest = max((abs(row.level) for row in own if row.level), default=1.0)  # the shift is that of this level
+        levels = [1.0 if row.level is None else abs(row.level) for row in own]
+        highest = max(levels, default=1.0) or 1.0  # the shift is that of this level
         percent += (expectation["shift_percent"] or 0.0) * shares(segmented, own)[which] / highest
     except ConsumptionError:
         return None  # the rows of the modification contradict each other; said under what is left to go

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, fields, replace
 from itertools import chain
 
@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from energytrack.consumption.averages import Array, distance_means, entry_conditions
 from energytrack.consumption.segments import SegmentedLog
-from energytrack.consumption.shares import shares
+from energytrack.consumption.shares import fitted_shares, highest_levels, shares
 from energytrack.logbook.records import Modification, Weather
 
 
@@ -31,6 +31,8 @@ class Observations:
     conditions: Mapping[str, Array]  # (n,) distance-weighted; NaN where unknown on more than half of the distance
     known_share: Mapping[str, Array]  # (n,) share of the distance with a known value
     shares: Array  # (n, m) share of the distance with each modification fitted, times level
+    fitted: Array  # (n, m) share of the distance with each modification fitted, at whatever level
+    levels: Array  # (n, m) highest level, in size, of each modification up to the end of the segment
     names: tuple[str, ...]  # of the modifications, in order of first appearance
     unit: str
     capacity: float | None
@@ -69,7 +71,7 @@ def observe(
     """
     segments = segmented.segments
     names = tuple(dict.fromkeys(row.name for row in modifications))
-    columns = [shares(segmented, [row for row in modifications if row.name == name]) for name in names]
+    rows = [[row for row in modifications if row.name == name] for name in names]
     conditions, known_share = _conditions(segmented, covariates, weather)
     start_day = _column(segment.start_day for segment in segments)
     end_day = _column(segment.end_day for segment in segments)
@@ -85,7 +87,9 @@ def observe(
         end_weight=_column(segment.end_weight for segment in segments),
         conditions=conditions,
         known_share=known_share,
-        shares=np.array(columns, dtype=np.float64).reshape(len(names), len(segments)).T,
+        shares=_table(shares, segmented, rows),
+        fitted=_table(fitted_shares, segmented, rows),
+        levels=_table(highest_levels, segmented, rows),
         names=names,
         unit=segmented.unit,
         capacity=segmented.capacity,
@@ -115,6 +119,15 @@ def _conditions(
     for name, values in by_entry.items():
         means[name], known[name] = distance_means(values[entry], weights, starts)
     return means, known
+
+
+def _table(
+    measure: Callable[[SegmentedLog, Sequence[Modification]], list[float]],
+    segmented: SegmentedLog,
+    rows: Sequence[Sequence[Modification]],
+) -> Array:
+    columns = [measure(segmented, own) for own in rows]
+    return np.array(columns, dtype=np.float64).reshape(len(rows), len(segmented.segments)).T
 
 
 def _column(values: Iterable[float]) -> Array:

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import math
-from bisect import bisect_right
+from bisect import bisect_left, bisect_right
 from collections.abc import Sequence
+from dataclasses import replace
 from datetime import date
 from itertools import accumulate, pairwise
 
@@ -53,6 +54,24 @@ def shares(segmented: SegmentedLog, modifications: Sequence[Modification]) -> li
         math.fsum(leg.distance_km * fitted.share(leg) for leg in segment.legs) / segment.distance_km
         for segment in segmented.segments
     ]
+
+
+def fitted_shares(segmented: SegmentedLog, modifications: Sequence[Modification]) -> list[float]:
+    """As shares, but at whatever level; a row at level 0 counts as not fitted."""
+    return shares(segmented, [replace(row, level=0.0 if row.level == 0 else 1.0) for row in modifications])
+
+
+def highest_levels(segmented: SegmentedLog, modifications: Sequence[Modification]) -> list[float]:
+    """For each segment the highest level, in size, driven with up to its end; 0 before the first fitting."""
+    periods = [period for period in fitted_periods(segmented, modifications) if period[0] < period[1]]
+    starts = [fitted for fitted, _, _ in periods]
+    ends = [removed for _, removed, _ in periods]
+    highest, levels = 0.0, []
+    for segment in segmented.segments:
+        touching = periods[bisect_right(ends, segment.start_km) : bisect_left(starts, segment.end_km)]
+        highest = max([highest, *(abs(level) for _, _, level in touching)])
+        levels.append(highest)
+    return levels
 
 
 class _Fitted:

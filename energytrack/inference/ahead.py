@@ -71,9 +71,12 @@ class Road:
     noise_prior: Array  # (4, 4) precision of theta that the priors gave
 
     @property
-    def has_begun(self) -> bool:
-        """Something was driven with the modification already."""
-        return bool(self.columns[: self.past, 1].any())
+    def begins(self) -> int | None:
+        """How many of the segments ahead pass before the first with the modification; None: driven with already."""
+        if self.columns[: self.past, 1].any():
+            return None
+        fitted = np.flatnonzero(self.columns[self.past :, 1])
+        return int(fitted[0]) if fitted.size else self.ahead
 
     @property
     def ahead(self) -> int:
@@ -139,9 +142,16 @@ def road(model: Model, schedule: Schedule, seed: int) -> Road:
         base=float(model.fit.coefficients[0]),
         ratio=float(model.fit.coefficients[1] / model.fit.coefficients[0]) if asked else 0.0,
         kilometre=scale.distance_km,
-        noise_known=np.linalg.inv(model.fit.theta_covariance) - model.problem.prior_precision,
+        noise_known=_told_by_the_log(model),
         noise_prior=model.problem.prior_precision,
     )
+
+
+def _told_by_the_log(model: Model) -> Array:
+    """Precision of theta (4, 4) beyond that of the priors; none where the likelihood bends the other way."""
+    values, vectors = np.linalg.eigh(np.linalg.inv(model.fit.theta_covariance) - model.problem.prior_precision)
+    told: Array = (vectors * np.maximum(values, 0.0)) @ vectors.T
+    return told
 
 
 def reach(ahead: Road, variance_after: Callable[[int], float], variance: float) -> Reach | None:
@@ -149,8 +159,11 @@ def reach(ahead: Road, variance_after: Callable[[int], float], variance: float) 
 
     `variance_after` gives it for any number of the segments ahead. It falls as they grow: found by bisection.
     """
-    low, high = 0, ahead.ahead
-    at = {0: variance_after(0) if ahead.has_begun else float("inf"), high: variance_after(high)}
+    begins, high = ahead.begins, ahead.ahead
+    if begins == high:
+        return None
+    low = begins or 0
+    at = {low: variance_after(0) if begins is None else float("inf"), high: variance_after(high)}
     if at[high] > variance:
         return None
     if at[low] <= variance:

@@ -8,8 +8,6 @@ from dataclasses import replace
 from math import sqrt
 from typing import TYPE_CHECKING, Literal
 
-import numpy as np
-
 from energytrack.consumption.frames import observe_log
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside as sort_out
@@ -18,9 +16,9 @@ from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
-from energytrack.inference.distance import Need, need, remedies
+from energytrack.inference.distance import need, remedies
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
-from energytrack.inference.model import fit_model
+from energytrack.inference.model import Model, fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.results import Assessment, Verdict, WithAll
 from energytrack.inference.suspects import suspects
@@ -52,12 +50,13 @@ def assess(
     entries, modifications, weather, events: tables as in docs/reference.md, of one vehicle. `capacity` in `unit`
     (L, kg, kWh) is estimated from the log where it is not given. `covariates` names numeric columns used besides
     temperature and speed. `every_look=False` looks only once, at the end, as if nobody had looked before.
+    `set_aside="none"` keeps what stands out from its neighbours. `typed_in`: units of distance and energy in which the
+    log was typed, for naming slips of digits (energy None: as `unit`).
 
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
     not in the table, InferenceError for a target, confidence or power outside its range.
     """
     question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
-    bounds.drift(question.alpha, power)  # refuses a confidence or power outside its range before any work
     observed, notes, segmented = observe_log(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
@@ -104,20 +103,15 @@ def _answer(blank: Assessment, question: Question, states: list[State]) -> Asses
         expectation=expectation_of(now.model),
         warnings=(*blank.warnings, *caveats(now.model)),
     )
-    if found is not None:
-        return _closed(answer, *found, question)
-    required = need(now.model, always_fitted, question)
-    ways = () if required.central else remedies(now.model, required, question)
-    return replace(_open(answer, required, theta), remedies=ways)
+    return _open(answer, now.model, question) if found is None else _closed(answer, *found, question)
 
 
 def _before_the_first_look(blank: Assessment, observed: Observations, question: Question) -> Assessment:
     """Without a baseline, or with nothing driven since the modification was fitted."""
-    share = observed.shares[:, observed.names.index(question.modification)]
-    if share.any() or len(share) < FEWEST_BASELINE:
+    fitted = observed.fitted[:, observed.names.index(question.modification)]
+    if fitted.any() or len(fitted) < FEWEST_BASELINE:
         return blank
     model = fit_model(observed, None, covariates=question.covariates)
-    required = need(model, always_fitted, question)
     answer = replace(
         blank,
         information_fraction=0.0,
@@ -125,12 +119,14 @@ def _before_the_first_look(blank: Assessment, observed: Observations, question: 
         covariates=covariates_of(model),
         expectation=expectation_of(model),
     )
-    return _open(answer, required, bounds.drift(question.alpha, question.power))
+    return _open(answer, model, question)
 
 
-def _open(answer: Assessment, required: Need, theta: float) -> Assessment:
-    """The test goes on: how far, or why not."""
+def _open(answer: Assessment, model: Model, question: Question) -> Assessment:
+    """The test goes on: how far, or why not and what would help."""
+    required = need(model, always_fitted, question)
     driven, central = answer.distance_modified_km, required.central
+    theta = bounds.drift(question.alpha, question.power)
     return replace(
         answer,
         verdict="out-of-reach" if central is None else "not-yet",
@@ -140,6 +136,7 @@ def _open(answer: Assessment, required: Need, theta: float) -> Assessment:
         days_to_go=None if central is None else central.days,
         distance_expected_km=None if required.expected_km is None else driven + required.expected_km,
         resolvable_at_best_percent=100 * theta * sqrt(required.best_variance),
+        remedies=() if central else remedies(model, required, question),
     )
 
 
@@ -160,7 +157,7 @@ def _closed(answer: Assessment, verdict: Verdict, look: State, question: Questio
 
 def _blank(vehicle: str, observed: Observations, question: Question, notes: tuple[str, ...]) -> Assessment:
     """What is known before any fit."""
-    share = np.abs(observed.shares[:, observed.names.index(question.modification)])
+    share = observed.fitted[:, observed.names.index(question.modification)]
     return Assessment(
         vehicle=vehicle,
         modification=question.modification,
@@ -198,6 +195,4 @@ def _blank(vehicle: str, observed: Observations, question: Question, notes: tupl
 
 def _driven_with(observed: Observations, modification: str) -> float:
     """Distance driven with the modification fitted, at whatever level (km)."""
-    share = np.abs(observed.shares[:, observed.names.index(modification)])
-    highest = share.max(initial=0.0)
-    return float((observed.distance_km * share / highest).sum()) if highest > 0 else 0.0
+    return float(observed.distance_km @ observed.fitted[:, observed.names.index(modification)])

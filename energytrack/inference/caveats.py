@@ -27,13 +27,20 @@ def _shares(model: Model, name: str) -> Array:
 def _never_apart(model: Model) -> list[str]:
     if model.modification is None:
         return []
-    own = _shares(model, model.modification)
-    return [
-        f"{model.modification} and {other} were (nearly) always fitted together: the log cannot tell them apart. "
-        f"Drive some full tanks with only one of them, or log the two as one modification."
-        for other in model.others
-        if abs(np.corrcoef(own, _shares(model, other))[0, 1]) > _NEVER_APART
-    ]
+    own, found = _shares(model, model.modification), []
+    for other in model.others:
+        correlation = float(np.corrcoef(own, _shares(model, other))[0, 1])
+        if correlation > _NEVER_APART:
+            found.append(
+                f"{model.modification} and {other} were (nearly) always fitted together: the log cannot tell them "
+                f"apart. Drive some full tanks with only one of them, or log the two as one modification."
+            )
+        elif correlation < -_NEVER_APART:
+            found.append(
+                f"{model.modification} and {other} (nearly) always took each other's place: the log cannot tell their "
+                f"effects apart. Drive some full tanks with neither or both, or log the exchange as one modification."
+            )
+    return found
 
 
 def _not_fitted_now(model: Model) -> list[str]:
@@ -45,7 +52,7 @@ def _not_fitted_now(model: Model) -> list[str]:
 def _little_overlap(model: Model) -> list[str]:
     if model.modification is None:
         return []
-    fitted = np.abs(_shares(model, model.modification)) > 0
+    fitted = model.observed.fitted[:, model.observed.names.index(model.modification)] > 0
     found = []
     for condition, (plural, unit) in _NAMES.items():
         value = model.conditions.values.get(condition)

@@ -133,8 +133,10 @@ def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, 
     """What would bring an out-of-reach target within reach: each option that does, with its distance."""
     best = 100 * bounds.drift(question.alpha, question.power) * sqrt(required.best_variance)
     larger = ceil(best * 1.15 * 2) / 2  # a little above the limit, which itself is never reached; in half percents
-    wider = _distance(model, always_fitted, replace(question, target=larger / 100))
-    found = [Remedy("larger-target", f"{larger:g} %", larger, wider)]
+    found = []
+    if larger < 100:
+        wider = _distance(model, always_fitted, replace(question, target=larger / 100))
+        found.append(Remedy("larger-target", f"{larger:g} %", larger, wider))
     ways: tuple[tuple[Literal["alternate", "longer-baseline"], _Options], ...] = (
         ("alternate", _ALTERNATING),
         ("longer-baseline", _LONGER_BASELINE),

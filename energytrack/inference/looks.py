@@ -80,8 +80,7 @@ def _kept(observed: Observations, question: Question) -> Observations | None:
 
 def look_points(observed: Observations, modification: str) -> list[int]:
     """Numbers of segments at which to look: from the first one driven with the modification, given a baseline."""
-    share = np.abs(observed.shares[:, observed.names.index(modification)])
-    fitted = share > 0
+    fitted = observed.fitted[:, observed.names.index(modification)] > 0
     ready = np.flatnonzero((np.cumsum(~fitted) >= FEWEST_BASELINE) & (np.cumsum(fitted) >= 1))
     if ready.size == 0:
         return []

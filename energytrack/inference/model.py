@@ -23,6 +23,7 @@ _WEEKS, _SEASONS = 0.3, 0.2  # median drift relative to the trip noise of a usua
 _USUAL_TANK_KM = 500.0  # so that logging the same driving more often does not make it drift more
 _LOOSE = 0.8  # log-sd of those priors
 _TRIP = Prior((1, 0, 0, 0), log(0.05), 1.5)  # all but free: 95 % of it lies between 0.3 and 95 %
+_STRETCH = 500  # segments that give a long log's first guess of the noise
 _ANOTHER_MODIFICATION = 0.2  # prior sd of the effect of a modification not asked about
 
 
@@ -48,7 +49,7 @@ class Model:
     scale: Scale
     modification: str | None
     others: tuple[str, ...]
-    levels: dict[str, float]  # modification -> level its share is counted in
+    levels: dict[str, float]  # modification -> highest level so far, at which its effect is stated
     problem: Problem
     fit: Fit
 
@@ -69,7 +70,7 @@ def fit_model(
     conditions = fill(observed)
     terms = choose(observed, conditions, covariates)
     scale = _scale(observed)
-    levels = {name: float(np.abs(observed.shares[:, k]).max(initial=0.0)) for k, name in enumerate(observed.names)}
+    levels = dict(zip(observed.names, observed.levels[-1].tolist(), strict=True))
     if modification is not None and levels.get(modification, 0.0) == 0:
         raise InferenceError(f"nothing has been driven with {modification!r} fitted: log the next full tank")
     others = tuple(name for name in observed.names if name != modification and _varies(observed, name))
@@ -84,7 +85,7 @@ def fit_model(
         relative, observed.mid_day, observed.linked, observed.start_weight, observed.end_weight, extra=extra
     )
     problem = Problem(shape, columns, energy, precision, noise_priors(observed, scale))
-    fitted = fit(problem, _first_guess(problem) if start is None else start)
+    fitted = fit(problem, _first_guess(observed, problem) if start is None else start)
     return Model(observed, conditions, terms, scale, modification, others, levels, problem, fitted)
 
 
@@ -108,7 +109,10 @@ def noise_priors(observed: Observations, scale: Scale) -> tuple[Prior, ...]:
     )
 
 
-def _first_guess(problem: Problem) -> Array:
+def _first_guess(observed: Observations, problem: Problem) -> Array:
+    """The priors' medians; for a long log what a stretch of it says, so that few rounds are paid at full length."""
+    if len(observed) > 2 * _STRETCH:
+        return fit_model(observed.head(_STRETCH), None).fit.theta
     trip, level, weeks, seasons = (prior.median for prior in problem.priors)
     return np.array([trip, level, trip + weeks, trip + seasons])
 

@@ -18,6 +18,7 @@ COLDEST_C, HOTTEST_C = -90.0, 60.0  # beyond any outside temperature met on Eart
 FASTEST_KMH = 500.0
 EARLIEST_YEAR = 1900
 LARGEST_KNOWN_PERCENT = 100.0
+LONGEST_NAME = 60  # keeps lists and answers readable
 
 
 def parse_date(text: str) -> dt.date:
@@ -27,6 +28,14 @@ def parse_date(text: str) -> dt.date:
         if len(day) == 10 and day[4::3] == "--":  # fromisoformat takes other forms of ISO 8601 too
             return dt.date.fromisoformat(day)
     raise EntryError(f"date {text!r} is not a day of the calendar written as year-month-day, such as 2026-05-03")
+
+
+def check_name(name: str, what: str) -> None:
+    """Refuse a name of a vehicle or modification that a list cannot show. Raises EntryError."""
+    if not name.strip() or not name.isprintable():
+        raise EntryError(f"a {what} needs a name of printable characters")
+    if len(name) > LONGEST_NAME:
+        raise EntryError(f"the name of a {what} has at most {LONGEST_NAME} characters, not {len(name)}: shorten it")
 
 
 def check_date(date: dt.date, today: dt.date) -> None:
@@ -106,7 +115,9 @@ def check_reading(
 ) -> None:
     """Whether a day and an odometer value fit between the entries next to it by odometer. Raises EntryError."""
     shown = distance_text(odometer_km, vehicle)
-    if after is not None and after.date < date:
+    same_day = after is not None and after.date == date
+    too_far = after is not None and (after.odometer_km or 0.0) - odometer_km > FARTHEST_DAY_KM
+    if after is not None and (after.date < date or (same_day and too_far)):
         raise EntryError(
             f"odometer goes back: {shown} on {date}, but {_stood(after, vehicle)}; "
             "correct it, or give the date of a forgotten receipt with --date"

@@ -71,6 +71,9 @@ def parse_number(text: str, what: str) -> float:
         value = float(text) if _NUMERIC.issuperset(text) else math.nan
     if math.isfinite(value):
         return value
+    if re.fullmatch(_DECIMAL_COMMA, text) and re.fullmatch(_GROUPED, text):
+        whole, decimal = text.replace(",", ""), text.replace(",", ".")
+        raise EntryError(f"{what} {text!r} can be read two ways: write {whole}, or {decimal} if that is meant")
     if re.fullmatch(_DECIMAL_COMMA, text):
         raise EntryError(f"{what} has a decimal comma: write {text.replace(',', '.')}, not {text}")
     if re.fullmatch(_GROUPED, text):

@@ -28,7 +28,7 @@ def next_steps(a: Assessment, unit: str) -> list[str]:
 def _after_shift(a: Assessment, unit: str) -> list[str]:
     if contradicted(a):
         return [
-            "Look for what else changed since (tyres, load, route, brakes): " + join("energytrack regimes"),
+            "Look for what else changed since: tyres, load, route, brakes.",
             "Take it off for a while: a true shift goes away with it and comes back with it.",
         ]
     steps = ["Keep logging: every further entry sharpens the figure."]

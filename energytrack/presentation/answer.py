@@ -52,7 +52,7 @@ def so_far(a: Assessment) -> str:
     shift = figures.percent(a.shift_percent, a.standard_error_percent, signed=True)
     span = figures.bounded(a.interval_percent)
     if span is None:
-        return f"{shift}, look-proof range still open at both ends"
+        return f"{shift}, look-proof range still wide open"
     return f"{shift}, look-proof range {figures.percent_range(span, a.standard_error_percent)}"
 
 
@@ -69,13 +69,14 @@ def remedy(r: Remedy, unit: str) -> str:
     if r.distance_km is None:
         return f"{what}, though{goal} even that takes longer than can be foreseen"
     if r.distance_km < 1:
-        return f"{what}{goal}, which is driven already"
+        asked = join(f"energytrack enough --target {r.target_percent:g}")
+        return f"{what}{goal}, for which the distance is driven already ({asked}); a target chosen late counts for less"
     return f"{what}, about {figures.distance(r.distance_km, unit)} more{goal}"
 
 
 def _shifted(a: Assessment, unit: str) -> str:
     name = plain_text(a.modification)
-    at = "" if a.settled_at_km is None else f" at {figures.driven(a.settled_at_km, unit)}"
+    at = _when_settled(a, unit)
     if contradicted(a):
         look = settling_look(a)
         size = "" if look is None else f" of {figures.percent(look.shift_percent, signed=True)}"
@@ -93,6 +94,14 @@ def _shifted(a: Assessment, unit: str) -> str:
     return f"Yes: {name} {verb} consumption by {figures.percent(abs(shift), error)}{within}{settled}."
 
 
+def _when_settled(a: Assessment, unit: str) -> str:
+    """Date and odometer value, or the distance counted by a log without one."""
+    if a.settled_at_km is None:
+        return ""
+    on = "" if a.settled_on is None else f" on {a.settled_on}"
+    return f"{on} at {figures.driven(a.settled_at_km, unit)}"
+
+
 def _what_changed(a: Assessment) -> str:
     span = a.interval_percent
     return "its range reaches zero again" if span is None or span[0] <= 0 <= span[1] else "it points the other way"
@@ -101,10 +110,15 @@ def _what_changed(a: Assessment) -> str:
 def _no_shift(a: Assessment, unit: str) -> str:
     name, target = plain_text(a.modification), figures.target(a.target_percent)
     if contradicted(a):
-        at = "" if a.settled_at_km is None else f" at {figures.driven(a.settled_at_km, unit)}"
         return (
-            f"Doubtful: a shift of {target} from {name} was ruled out{at}, "
+            f"Doubtful: a shift of {target} from {name} was ruled out{_when_settled(a, unit)}, "
             f"but what was driven since shows one: now {so_far(a)}."
+        )
+    span, bound = a.interval_percent, a.target_percent
+    if span is not None and (span[0] < -bound or span[1] > bound) and a.settled_at_km is not None:
+        return (
+            f"No: a shift of {target} from {name} was ruled out{_when_settled(a, unit)}. "
+            f"Measured now {so_far(a)}, which reaches past the target again."
         )
     return (
         f"No: any shift from {name} is smaller than the target of {target}. "

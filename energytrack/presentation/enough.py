@@ -13,6 +13,7 @@ from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, labelled, wrap
 
 Row = tuple[str, str]
+_AHEAD = 1.05  # an expected end is worth saying while it lies ahead
 
 
 def render(
@@ -59,7 +60,8 @@ def _distances(a: Assessment, unit: str) -> list[Row]:
         rows.append((label, f"{figures.distance(a.distance_needed_km, unit)} with it fitted"))
     if a.distance_to_go_km is not None and a.verdict == "not-yet":
         rows.append(("still to go", _to_go(a, unit)))
-    if a.distance_expected_km is not None and a.verdict == "not-yet":
+    ahead = a.distance_expected_km is not None and a.distance_expected_km > _AHEAD * a.distance_modified_km
+    if ahead and a.distance_expected_km is not None and a.verdict == "not-yet":
         sooner, target = figures.distance(a.distance_expected_km, unit), figures.target(a.target_percent)
         rows.append(("sooner, perhaps", f"{sooner} with it fitted, if the shift is truly {target}"))
     return rows
@@ -85,7 +87,7 @@ def _shift(a: Assessment) -> list[Row]:
     if a.standard_error_percent is not None:
         error = a.standard_error_percent
         freedom = a.degrees_of_freedom
-        free = "" if freedom is None or not isfinite(freedom) else f", {freedom:.0f} degrees of freedom"
+        free = "" if freedom is None or not isfinite(freedom) else f", {count(round(freedom), 'degree')} of freedom"
         rows.append(("standard error", figures.percent(error, error) + free))
     now, best = a.resolvable_now_percent, a.resolvable_at_best_percent
     limits = ((now, "now"), (best, "at best"))

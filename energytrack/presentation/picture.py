@@ -14,7 +14,7 @@ _MARGIN = 13  # for the odometer
 _FEWEST = 2
 _TARGETS_SHOWN = 4  # at most so many times the target to either side, unless the shift itself lies further
 _CLEAR = 6  # columns between no shift and the target from which both can be labelled
-_LEGEND = "every look at its odometer value: o estimate, (---) look-proof range, : target"
+_LEGEND = "every look, down the road: o estimate, (---) look-proof range, : target"
 
 
 def lines(a: Assessment, unit: str, width: int) -> list[str]:

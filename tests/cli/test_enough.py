@@ -7,6 +7,7 @@ import json
 import math
 import os
 import random
+import sqlite3
 import subprocess
 import sys
 from pathlib import Path
@@ -122,6 +123,25 @@ def test_the_answer_is_kept_for_later_entries(logbook: Path) -> None:
     assert kept["verdict"] == "shifted"
     assert kept["at_km"] == pytest.approx(59 * STEP_KM)
     assert "looks" not in kept
+
+
+@pytest.mark.skipif(os.name != "posix", reason="POSIX pipes")
+def test_the_answer_is_kept_though_its_reader_leaves(logbook: Path, tmp_path: Path) -> None:
+    copy = tmp_path / "copy.logbook"
+    with sqlite3.connect(logbook) as source, sqlite3.connect(copy) as target:
+        source.backup(target)
+        target.execute("DELETE FROM assessment")
+    source.close()
+    target.close()
+    read, write = os.pipe()
+    os.close(read)
+    command = [sys.executable, "-m", "energytrack", "--logbook", str(copy), "enough", "--vehicle", "van"]
+    subprocess.run(command, cwd=ROOT, stdout=write, stderr=subprocess.PIPE, timeout=300)
+    os.close(write)
+    book = open_logbook(copy)
+    assert isinstance(book, Store)
+    assert [found["modification"] for found in book.assessments("van")] == ["side skirts"]
+    book.close()
 
 
 def test_plan_compares_and_says_what_was_fitted(logbook: Path) -> None:

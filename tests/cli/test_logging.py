@@ -87,6 +87,7 @@ BAD_ENTRIES = [
     (["49500", "40", "--date", "2026-02-30"], "such as 2026-05-03"),
     (["49500", "41,32"], "write 41.32, not 41,32"),
     (["49,5", "41"], "write 49.5, not 49,5"),
+    (["49,500", "41"], "can be read two ways: write 49500, or 49.500"),
     (["49500", "nan"], "is not a number"),
     (["inf", "40"], "is not a number"),
     (["49500", "40", "--vehicle", "bus"], "no vehicle 'bus' in this logbook; there are: van"),
@@ -139,6 +140,24 @@ def test_other_bad_input_is_refused_too(run: Terminal, arguments: list[str], sai
 def test_wrong_usage_is_told_apart(run: Terminal) -> None:
     assert run("fillup", "49500", "40", "--nothing-like-it").returncode == 2
     assert run("nothing-like-it").returncode == 2
+
+
+@pytest.mark.parametrize(
+    "arguments",
+    [["vehicle", "add", "--nam", "--carrier", "petrol"], ["mod", "fitted", "--targt", "3"], ["enough", "--al"]],
+)
+def test_a_misspelt_option_is_never_taken_for_a_name(run: Terminal, arguments: list[str]) -> None:
+    before = run.rows()
+    finished = run(*arguments)
+    assert (finished.returncode, finished.stdout) == (2, "")
+    assert "No such option: --" in finished.stderr
+    assert run.rows() == before
+
+
+def test_every_command_is_summed_up_whole(run: Terminal) -> None:
+    said = run.done("--help")
+    assert "..." not in said.partition("Commands:")[2]
+    assert all(len(line) <= 80 for line in said.splitlines())
 
 
 def test_no_logbook_named_or_there(run: Terminal, tmp_path: Path) -> None:

@@ -55,6 +55,13 @@ def test_first_entry(tmp_path):
     assert logged(store, fill(0, 1000, 40)) == ["first entry: consumption follows with the next full tank"]
 
 
+def test_more_than_the_tank_holds_is_flagged(book):
+    """A filling may exceed the stated capacity, filler neck and all, yet it is worth a second look."""
+    flag = "75.00 L is more than the capacity of 70.00 L: kept; check the amount"
+    assert flag in logged(book, fill(30, 5400, 75.0))
+    assert not any("capacity" in line for line in logged(book, fill(33, 6000, 70.0)))
+
+
 def test_full_tank_is_compared_with_the_recent_record(book):
     # 42.2 L / 500 km = 8.44; the median of 8.12 7.9 8.06 7.84 8.18 7.96 8.08 is 8.06: 4.7 % more.
     # Deviations 0.06 0.16 0 0.22 0.12 0.10 0.02: median 0.10, times 1.4826 / 8.06 = 1.84 %, twice that 4 %.
@@ -112,6 +119,17 @@ def test_kept_answer_gives_what_is_expected_at_these_conditions(book):
         "1.0 % more than expected, within the usual scatter (± 6 %)",
         "skirts: about 1,500 km to go at the 3 % target",
     ]
+
+
+def test_shift_of_a_graded_part_is_that_of_its_highest_level(book):
+    """One period without a level counts as level 1: above the 0.5 of the other, so the whole shift is expected."""
+    book.fit("van", "skirts", None, 1500)
+    book.fit("van", "skirts", None, 1600, level=0.5)
+    book.remove("van", "skirts", None, 1700)
+    book.fit("van", "skirts", None, 4500)
+    book.keep_assessment("van", "skirts", KEPT)
+    told = logged(book, fill(30, 5000, 40, temperature_c=10.0))
+    assert told[1] == "expected at these conditions: 7.84 L/100 km"  # 8 L less 2 %, at the reference temperature
 
 
 def test_distance_to_go_counts_only_what_was_driven_with_the_part_fitted(book):

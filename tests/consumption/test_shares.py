@@ -5,7 +5,7 @@ from __future__ import annotations
 import pytest
 
 from energytrack.consumption.segments import close_segments
-from energytrack.consumption.shares import fitted_position, shares
+from energytrack.consumption.shares import fitted_position, fitted_shares, highest_levels, shares
 from energytrack.errors import ConsumptionError
 from energytrack.logbook.records import Modification
 from tests.consumption.logs import day, fill, fitted, tyres
@@ -27,6 +27,20 @@ def test_on_off_on_within_one_tank_and_beyond():
 
 def test_level_multiplies():
     assert shares(LOG, [fitted(1600, 2000, level=2.5), fitted(2000, level=-1)]) == pytest.approx([0, 2.0, -1, -1])
+
+
+def test_fitted_is_fitted_at_any_level_but_none():
+    rows = [fitted(1600, 2000, level=2.5), fitted(2000, 2500, level=-1), fitted(2500, level=0)]
+    assert fitted_shares(LOG, rows) == pytest.approx([0, 0.8, 1, 0])
+
+
+def test_highest_level_is_that_driven_with_so_far():
+    rows = [fitted(100, 200, level=9), fitted(1600, 2000), fitted(2000, 2500, level=-2.5), fitted(2500, level=2)]
+    assert highest_levels(LOG, rows) == [0, 1, 2.5, 2.5]
+
+
+def test_a_level_never_driven_with_is_no_level():
+    assert highest_levels(LOG, [fitted(1600, 1600, level=9), fitted(3000, level=5)]) == [0, 0, 0, 0]
 
 
 def test_km_takes_precedence_over_the_date():

@@ -132,6 +132,26 @@ def test_fitted_and_not_yet_driven() -> None:
     assert answer.noise is not None
 
 
+def test_out_of_reach_before_the_first_km_names_what_would_help() -> None:
+    log = fitted_late(drawn(HOUSEHOLD), keep=0)
+    answer = asked(log, target_percent=0.5)
+    assert answer.verdict == "out-of-reach"
+    assert answer.remedies[0].what == "larger-target"
+    assert answer.remedies[0].target_percent > 0.5
+
+
+def test_no_target_of_a_hundred_percent_is_proposed() -> None:
+    """Amounts without any relation to distance: nothing can be resolved, and that is an answer, not an error."""
+    log = drawn(STEADY_COMMUTE)
+    wild = np.exp(4.0 * np.random.default_rng(0).standard_normal(9))
+    entries = log.entries.head(9).assign(energy=log.entries["energy"].head(9) * wild)
+    part = pd.DataFrame({"name": ["part"], "fitted_km": [log.entries["odometer_km"].iloc[7]]})
+    answer = et.assess(entries, part, "part", target_percent=1.0)
+    assert answer.verdict == "out-of-reach"
+    assert answer.resolvable_at_best_percent > 100
+    assert all(remedy.what != "larger-target" for remedy in answer.remedies)
+
+
 def test_no_look_sees_the_future() -> None:
     """Every look equals the answer the log would have given on that day."""
     log = fitted_late(drawn(STEADY_COMMUTE, seed=9), keep=12)
@@ -149,6 +169,42 @@ def test_parts_fitted_together_are_not_told_apart() -> None:
     answer = et.assess(log.entries, both, "part", capacity=75.0)
     assert answer.verdict != "shifted"
     assert any("part and tyres" in warning for warning in answer.warnings)
+
+
+def test_parts_that_took_each_others_place_are_not_told_apart() -> None:
+    log = drawn(DELIVERY_VAN, shift_percent=-6.0)
+    before = log.modifications.assign(
+        name="old part", fitted_km=log.entries["odometer_km"].iloc[0] - 1, removed_km=log.modifications["fitted_km"]
+    )
+    both = pd.concat([log.modifications, before.drop(columns="fitted_date")], ignore_index=True)
+    answer = et.assess(log.entries, both, "part", capacity=75.0, every_look=False)
+    assert answer.verdict != "shifted"
+    assert any("took each other's place" in warning for warning in answer.warnings)
+
+
+def test_a_tenth_of_a_tank_is_a_tenth_of_a_tank() -> None:
+    """A part fitted shortly before the newest fill-up has told next to nothing, whatever the target."""
+    log = drawn(STEADY_COMMUTE)
+    before, last = log.entries["odometer_km"].iloc[[14, 15]]
+    part = pd.DataFrame({"name": ["part"], "fitted_km": [last - 0.1 * (last - before)]})
+    answer = et.assess(log.entries.head(16), part, "part", target_percent=20.0)
+    assert answer.verdict == "not-yet"
+    assert answer.information_fraction < 0.1
+    assert answer.distance_modified_km == pytest.approx(0.1 * (last - before))
+    assert not any("level" in warning for warning in answer.warnings)
+
+
+def test_a_graded_part_is_stated_at_its_highest_level_and_counts_every_km() -> None:
+    log = drawn(DELIVERY_VAN, shift_percent=-6.0)
+    km = log.modifications["fitted_km"].iloc[0]
+    half = km + 2_000
+    rows = pd.DataFrame(
+        {"name": ["part"] * 2, "fitted_km": [km, half], "removed_km": [half, np.nan], "level": [1.0, 2.0]}
+    )
+    graded = et.assess(log.entries, rows, "part", capacity=75.0, every_look=False)
+    plain = asked(log, every_look=False)
+    assert graded.distance_modified_km == pytest.approx(plain.distance_modified_km)
+    assert any("stated at level 2" in warning for warning in graded.warnings)
 
 
 def test_answers_are_pure_and_speak_json() -> None:
@@ -223,6 +279,19 @@ def test_a_further_column_is_used_when_it_is_named() -> None:
     used = asked(loaded, covariates=["payload"])
     assert used.covariates["payload"].estimate == pytest.approx(0.05, abs=0.01)
     assert used.standard_error_percent < 0.7 * asked(loaded).standard_error_percent
+
+
+def test_conditions_that_have_terms_already_get_no_second_one() -> None:
+    log = drawn(STEADY_COMMUTE)
+    named = asked(log, covariates=["speed_kmh", "temperature_c"], every_look=False)
+    assert named == asked(log, every_look=False)
+
+
+def test_a_column_that_bears_the_name_of_a_term_is_refused() -> None:
+    log = drawn(STEADY_COMMUTE)
+    entries = log.entries.assign(speed=1.0).drop(columns="speed_kmh")
+    with pytest.raises(ConsumptionError, match="another name"):
+        et.assess(entries, log.modifications, "part", covariates=["speed"])
 
 
 def test_tyres_of_another_circumference_do_not_fake_a_shift() -> None:

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from unittest import mock
+
 import numpy as np
 import pytest
 import statsmodels.api as sm
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from energytrack.inference import noise
 from energytrack.inference.noise import Scatter, Structure, products, structure
 from energytrack.inference.reml import Problem, evaluate
 from tests.dense import dense_covariance
@@ -27,13 +30,19 @@ def a_log(n: int, rng: np.random.Generator) -> tuple[Structure, np.ndarray]:
 
 
 @settings(max_examples=60, deadline=None)
-@given(n=st.integers(2, 40), seed=st.integers(0, 10_000), scatter=st.builds(Scatter, SIZES, SIZES, SIZES, SIZES))
-def test_products_equal_dense_linear_algebra(n: int, seed: int, scatter: Scatter) -> None:
+@given(
+    n=st.integers(2, 40),
+    seed=st.integers(0, 10_000),
+    scatter=st.builds(Scatter, SIZES, SIZES, SIZES, SIZES),
+    block=st.sampled_from([1, 7, 2_000]),
+)
+def test_products_equal_dense_linear_algebra(n: int, seed: int, scatter: Scatter, block: int) -> None:
     rng = np.random.default_rng(seed)
     shape, day = a_log(n, rng)
     columns = rng.normal(size=(n, 3))
     covariance = dense_covariance(shape, scatter, day)
-    found = products(shape, scatter, columns)
+    with mock.patch.object(noise, "_BLOCK", block):
+        found = products(shape, scatter, columns)
     np.testing.assert_allclose(found.cross, columns.T @ np.linalg.solve(covariance, columns), rtol=1e-6, atol=1e-6)
     assert found.log_det == pytest.approx(np.linalg.slogdet(covariance)[1], abs=1e-6)
 

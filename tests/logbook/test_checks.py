@@ -10,7 +10,7 @@ from typing import Any
 import pytest
 
 from energytrack.errors import EntryError
-from energytrack.logbook.checks import check_measure, check_place, check_reading, check_values, parse_date
+from energytrack.logbook.checks import check_measure, check_name, check_place, check_reading, check_values, parse_date
 from energytrack.logbook.records import Entry, Vehicle
 
 TODAY = dt.date(2026, 5, 10)
@@ -86,7 +86,21 @@ def test_two_dates_next_to_each_other_hold_two_days_of_driving() -> None:
     with pytest.raises(EntryError, match="a jump no vehicle drives"):
         check_reading(next_day, 52_001, VAN, BEFORE, None)
     with pytest.raises(EntryError, match="a jump no vehicle drives"):
-        check_reading(dt.date(2026, 5, 9), 46_000, VAN, None, AFTER)
+        check_reading(dt.date(2026, 5, 8), 44_000, VAN, None, AFTER)
+
+
+def test_far_below_a_reading_of_the_same_day_is_going_back() -> None:
+    with pytest.raises(EntryError, match="odometer goes back: 46,000 km on 2026-05-09, but 49,000 km stood on"):
+        check_reading(AFTER.date, 46_000, VAN, None, AFTER)
+    check_reading(AFTER.date, 48_600, VAN, None, AFTER)
+
+
+def test_names_fit_into_a_list() -> None:
+    check_name("x" * 60, "vehicle")
+    with pytest.raises(EntryError, match="at most 60 characters, not 61"):
+        check_name("x" * 61, "vehicle")
+    with pytest.raises(EntryError, match="printable"):
+        check_name("a\x1bb", "modification")
 
 
 def test_distance_entries() -> None:

@@ -94,9 +94,13 @@ def test_an_endless_range_is_said_in_words() -> None:
     assert "degrees of freedom" not in text
 
 
+def test_one_degree_of_freedom_is_one() -> None:
+    assert ", 1 degree of freedom\n" in shown(replace(NOT_YET, degrees_of_freedom=1.4))
+
+
 def test_unbounded_range_is_said_in_words() -> None:
     text = shown(replace(NOT_YET, interval_percent=None)).replace("\n", " ")
-    assert "So far -2.1 %, look-proof range still open at both ends." in text
+    assert "So far -2.1 %, look-proof range still wide open." in text
 
 
 def test_the_bar_is_never_full_before_the_end() -> None:

@@ -1,0 +1,45 @@
+"""The road ahead: what a longer log would tell."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from energytrack.consumption.frames import observe_frames
+from energytrack.inference.ahead import always_fitted, off_first, reach, road
+from energytrack.inference.model import Model, fit_model
+from tests.simulation import simulate
+from tests.uses import HOUSEHOLD, STEADY_COMMUTE, Use
+
+
+def fitted_model(use: Use, seed: int, *, keep: int) -> Model:
+    """A log that ends `keep` entries after the part was fitted."""
+    log = simulate(replace(use, shift_percent=0.0), np.random.default_rng(seed))
+    after = log.entries["odometer_km"] > log.modifications["fitted_km"].iloc[0]
+    entries = log.entries[~after | (after.cumsum() <= keep)]
+    observed, _ = observe_frames(entries, log.modifications, capacity=use.capacity, unit=use.unit)
+    return fit_model(observed, "part" if keep else None)
+
+
+@pytest.mark.parametrize("use", [STEADY_COMMUTE, HOUSEHOLD])
+@pytest.mark.parametrize("seed", range(4))
+def test_a_longer_log_tells_no_less_of_the_noise(use: Use, seed: int) -> None:
+    """The precision of the noise's sizes never falls below that of their priors, in any direction."""
+    ahead = road(fitted_model(use, seed, keep=4), always_fitted, 0)
+    assert np.linalg.eigvalsh(ahead.noise_known).min() > -1e-6
+
+
+def test_nothing_is_reached_before_the_part_is_driven_with() -> None:
+    ahead = road(fitted_model(STEADY_COMMUTE, 1, keep=0), off_first(10), 0)
+    theta = np.log([0.05, 0.02, 0.01, 0.01])
+    reached = reach(ahead, lambda count: ahead.variance(count, theta), 0.05**2)
+    assert reached is not None
+    without = float(ahead.distance[ahead.past : ahead.past + 10].sum()) * ahead.kilometre
+    assert reached.distance_km > without
+
+
+def test_a_part_never_driven_with_reaches_nothing() -> None:
+    ahead = road(fitted_model(STEADY_COMMUTE, 1, keep=0), off_first(10_000), 0)
+    assert reach(ahead, lambda count: 0.0, 1.0) is None
