@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import sys
 from dataclasses import replace
 from typing import TYPE_CHECKING, Annotated
@@ -12,11 +13,11 @@ from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.app import ExitStatus
 from energytrack.cli.context import readable, say_json
-from energytrack.errors import EnergytrackError
+from energytrack.errors import EnergytrackError, LogbookError
 from energytrack.logbook.store import Store
 
 if TYPE_CHECKING:
-    from energytrack.inference.results import Assessment
+    from energytrack.inference.results import Assessment, Rule
     from energytrack.logbook.opening import Logbook
 
 
@@ -38,22 +39,41 @@ def enough(
     keep_all: Annotated[
         bool, typer.Option("--keep-all", help="Set nothing aside, however far it stands from its neighbours.")
     ] = False,
+    looks: Annotated[
+        str, typer.Option(metavar="every|counted", help="Allow for a look at every moment, or count those taken.")
+    ] = "every",
+    open_ended: Annotated[
+        bool, typer.Option("--open-ended", help="Watch without an end: only a shift closes the question.")
+    ] = False,
     picture: Annotated[bool, typer.Option("--picture", help="Draw how the range narrowed with distance.")] = False,
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
 ) -> None:
     """Say whether a modification shifted consumption. By how much, and how far is still to go to be sure."""
+    rule = _rule(looks, open_ended)
     logbook = readable(context)
+    if rule == "counted" and not isinstance(logbook, Store):
+        raise LogbookError(f"{logbook.path} is a folder of tables and keeps no looks: use --looks every, or import it")
     asked = asking.questions(logbook, asking.vehicles_asked(logbook, vehicle), name, target)
     answers, refusals = asking.answered(
-        asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, keep_all))
+        asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, keep_all, rule))
     )
-    if target is None and not covariate and (confidence, power) == USUAL_CERTAINTY:
+    if target is None and not covariate and not keep_all and (confidence, power) == USUAL_CERTAINTY:
         for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
             _keep(logbook, question, answer)
     _print_json([a for _, a in answers]) if json else _print(answers, picture)
     waiting = exit_code and any(answer.verdict == "not-yet" for _, answer in answers)
     asking.leave(refusals, ExitStatus.NOT_YET if waiting else ExitStatus.DONE)
+
+
+def _rule(looks: str, open_ended: bool) -> Rule:
+    if looks not in ("every", "counted"):
+        raise typer.BadParameter(f"--looks {looks!r} is not one of: every, counted")
+    if open_ended:
+        if looks == "counted":
+            raise typer.BadParameter("--open-ended holds however often someone looks: leave --looks counted out")
+        return "open-ended"
+    return "counted" if looks == "counted" else "every-look"
 
 
 def _assess(
@@ -63,6 +83,7 @@ def _assess(
     power: float,
     covariates: list[str] | None,
     keep_all: bool,
+    rule: Rule,
 ) -> Assessment:
     from energytrack.inference.assess import assess
 
@@ -75,6 +96,8 @@ def _assess(
         covariates=covariates or None,
         set_aside="none" if keep_all else "odd",
         typed_in=(question.vehicle.distance_unit, question.vehicle.typed_unit),
+        rule=rule,
+        looks_taken=logbook.looks(question.vehicle.name, question.modification),
     )
     return replace(answer, vehicle=question.vehicle.name)
 
@@ -98,16 +121,20 @@ def _print(answers: list[tuple[asking.Question, Assessment]], picture: bool) -> 
 
 
 def _keep(logbook: Logbook, question: asking.Question, answer: Assessment) -> None:
-    """Keep the answer for the echo of later entries; that it cannot be kept never hides it."""
+    """Keep the answer for the echo of later entries, and that someone looked; a refusal never hides the answer."""
     from energytrack.presentation.as_json import without_nan
 
     if not isinstance(logbook, Store) or not logbook.writable:
         return
+    vehicle, modification = question.vehicle.name, question.modification
     result = without_nan(answer.to_dict())
     del result["looks"]
     try:
-        last = logbook.last_entries(question.vehicle.name, 1)
+        last = logbook.last_entries(vehicle, 1)
         result["at_km"] = last[0].odometer_km if last else None
-        logbook.keep_assessment(question.vehicle.name, question.modification, result)
+        logbook.keep_assessment(vehicle, modification, result)
+        if answer.looks:
+            newest = answer.looks[-1]
+            logbook.record_look(vehicle, modification, newest.odometer_km, dt.date.fromisoformat(newest.date))
     except EnergytrackError as refusal:
         print(f"energytrack: the answer was not kept: {refusal}", file=sys.stderr)

@@ -11,7 +11,7 @@ from energytrack.consumption.shares import fitted_periods, shares
 from energytrack.consumption.slips import Case, find_slips
 from energytrack.consumption.terms import condition_of, term
 from energytrack.errors import ConsumptionError
-from energytrack.logbook.quantities import consumption_text, distance_text, from_base, to_base
+from energytrack.logbook.quantities import consumption_text, distance_text, energy_text, from_base, to_base
 from energytrack.logbook.records import Entry, Event, Modification, Vehicle
 
 RECENT_ENTRIES = 60  # looked at for one echo, however long the log is

@@ -207,7 +207,7 @@ def _regrouped(observed: Observations, group: NDArray[np.int64]) -> Observations
     first = stays[starts]
     last = stays[np.append(starts[1:], len(stays)) - 1]
     weight = observed.distance_km[stays]
-    total = np.add.reduceat(weight, starts) if len(starts) else weight
+    total = _sums(weight, starts)
     cut = np.zeros(len(group), dtype=np.bool_)
     cut[1:] = group[:-1] == -1
     start_day = 2 * observed.mid_day - observed.end_day
@@ -221,8 +221,7 @@ def _regrouped(observed: Observations, group: NDArray[np.int64]) -> Observations
         counted = _sums(np.where(np.isnan(values[stays]), 0.0, known), starts)
         np.divide(summed, counted, out=mean, where=(known_share[name] >= LEAST_KNOWN_SHARE) & (counted > 0))
         conditions[name] = np.where(first == last, values[first], mean)
-    shares = observed.shares[stays] * weight[:, None]
-    shares = np.add.reduceat(shares, starts, axis=0) / total[:, None] if len(starts) else shares
+    whole = first == last
     return replace(
         observed,
         distance_km=total,
@@ -236,10 +235,19 @@ def _regrouped(observed: Observations, group: NDArray[np.int64]) -> Observations
         end_weight=observed.end_weight[last],
         conditions=conditions,
         known_share=known_share,
-        shares=np.where((first == last)[:, None], observed.shares[first], shares),
+        shares=np.where(whole[:, None], observed.shares[first], _mean_shares(observed.shares[stays], weight, starts)),
+        fitted=np.where(whole[:, None], observed.fitted[first], _mean_shares(observed.fitted[stays], weight, starts)),
         entry=observed.entry[last],
         confirmed=observed.confirmed[first],
     )
+
+
+def _mean_shares(shares: Array, weight: Array, starts: NDArray[np.int64]) -> Array:
+    """Distance-weighted shares (n, m) of each run."""
+    if not len(starts):
+        return shares[:0]
+    mean: Array = np.add.reduceat(shares * weight[:, None], starts, axis=0) / _sums(weight, starts)[:, None]
+    return mean
 
 
 def _sums(values: Array, starts: NDArray[np.int64]) -> Array:

@@ -5,10 +5,11 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Sequence
 from dataclasses import replace
+from functools import partial
 from math import sqrt
 from typing import TYPE_CHECKING, Literal
 
-from energytrack.consumption.frames import observe_log
+from energytrack.consumption.frames import modifications_from_frame, observe_log
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside as sort_out
 from energytrack.errors import UnknownNameError
@@ -17,10 +18,11 @@ from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import need, remedies
+from energytrack.inference.known import with_known_change
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.question import Question
-from energytrack.inference.results import Assessment, Verdict, WithAll
+from energytrack.inference.results import Assessment, Rule, Verdict, WithAll
 from energytrack.inference.suspects import suspects
 from energytrack.logbook.records import Vehicle
 
@@ -42,6 +44,8 @@ def assess(
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
     every_look: bool = True,
+    rule: Rule = "every-look",
+    looks_taken: Sequence[float] = (),
     set_aside: Literal["odd", "none"] = "odd",
     typed_in: tuple[str, str | None] = ("km", None),
 ) -> Assessment:
@@ -50,36 +54,41 @@ def assess(
     entries, modifications, weather, events: tables as in docs/reference.md, of one vehicle. `capacity` in `unit`
     (L, kg, kWh) is estimated from the log where it is not given. `covariates` names numeric columns used besides
     temperature and speed. `every_look=False` looks only once, at the end, as if nobody had looked before.
+    `rule`: "every-look", whose bound holds however often someone looks; "counted", where only the looks taken count:
+    those at the odometer positions `looks_taken` (km) and this one; "open-ended", a watch that never closes.
     `set_aside="none"` keeps what stands out from its neighbours. `typed_in`: units of distance and energy in which the
     log was typed, for naming slips of digits (energy None: as `unit`).
 
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
-    not in the table, InferenceError for a target, confidence or power outside its range.
+    not in the table, InferenceError for a target, confidence or power outside its range, or an unknown rule.
     """
-    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
+    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()), rule)
     observed, notes, segmented = observe_log(
         entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
     )
     if name not in observed.names:
         raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
+    decide = partial(_decided, observed=observed, question=question, every=every_look, taken=looks_taken)
     found = sort_out(observed, question.covariates) if set_aside == "odd" else None
     kept = observed if found is None else found.kept
-    answer = _decided(_blank(vehicle, kept, question, notes), observed, question, every_look, odd=found is not None)
-    if found is None or not found.odd:
-        return answer
-    with_all = _decided(_blank(vehicle, observed, question, notes), observed, question, every_look, odd=False)
-    typist = Vehicle(vehicle, "", unit, capacity, typed_in[0], typed_unit=typed_in[1])
-    return replace(
-        answer,
-        set_aside=suspects(segmented, found, typist),
-        verdict_with_all=WithAll(with_all.verdict, with_all.shift_percent, with_all.interval_percent),
-    )
+    answer = decide(_blank(vehicle, kept, question, notes), odd=found is not None)
+    if found is not None and found.odd:
+        with_all = decide(_blank(vehicle, observed, question, notes), odd=False)
+        typist = Vehicle(vehicle, "", unit, capacity, typed_in[0], typed_unit=typed_in[1])
+        answer = replace(
+            answer,
+            set_aside=suspects(segmented, found, typist),
+            verdict_with_all=WithAll(with_all.verdict, with_all.shift_percent, with_all.interval_percent),
+        )
+    return with_known_change(answer, modifications_from_frame(modifications, vehicle or None))
 
 
-def _decided(blank: Assessment, observed: Observations, question: Question, every: bool, *, odd: bool) -> Assessment:
+def _decided(
+    blank: Assessment, *, observed: Observations, question: Question, every: bool, taken: Sequence[float], odd: bool
+) -> Assessment:
     """The answer from the whole log, or with what is odd in it set aside."""
-    states = take_looks(observed, question, every=every, odd=odd)
+    states = take_looks(observed, question, every=every, taken=taken, odd=odd)
     if states:
         return _answer(blank, question, states)
     left = sort_out(observed, question.covariates).kept if odd else observed
@@ -88,7 +97,7 @@ def _decided(blank: Assessment, observed: Observations, question: Question, ever
 
 def _answer(blank: Assessment, question: Question, states: list[State]) -> Assessment:
     now, found = states[-1], finding(states, question.target)
-    shift, theta = now.shift, bounds.drift(question.alpha, question.power)
+    shift, theta = now.shift, question.drift
     answer = replace(
         blank,
         shift_percent=100 * shift.ratio,
@@ -126,16 +135,16 @@ def _open(answer: Assessment, model: Model, question: Question) -> Assessment:
     """The test goes on: how far, or why not and what would help."""
     required = need(model, always_fitted, question)
     driven, central = answer.distance_modified_km, required.central
-    theta = bounds.drift(question.alpha, question.power)
+    expected = required.expected_km if question.has_end else None  # known for the bound that ends at this distance
     return replace(
         answer,
-        verdict="out-of-reach" if central is None else "not-yet",
+        verdict="out-of-reach" if central is None and question.has_end else "not-yet",
         distance_needed_km=None if central is None else driven + central.distance_km,
         distance_to_go_km=None if central is None else central.distance_km,
         distance_to_go_interval_km=required.interval_km,
         days_to_go=None if central is None else central.days,
-        distance_expected_km=None if required.expected_km is None else driven + required.expected_km,
-        resolvable_at_best_percent=100 * theta * sqrt(required.best_variance),
+        distance_expected_km=None if expected is None else driven + expected,
+        resolvable_at_best_percent=100 * question.drift * sqrt(required.best_variance),
         remedies=() if central else remedies(model, required, question),
     )
 
@@ -190,6 +199,7 @@ def _blank(vehicle: str, observed: Observations, question: Question, notes: tupl
         remedies=(),
         expectation=None,
         warnings=notes,
+        rule=question.rule,
     )
 
 

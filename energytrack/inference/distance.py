@@ -106,7 +106,7 @@ def design(model: Model, every: int | None, question: Question) -> Design:
     required = need(model, schedule, question)
     ahead = road(model, schedule, seed=0)
     priced = _priced_variance(model, ahead, question)
-    z = bounds.drift(question.alpha, question.power)
+    z = question.drift
     by_then = [100 * z * sqrt(priced(segments_within(ahead, km))) for km in DISTANCES_KM]
     never_worse = accumulate(by_then, min)  # the freedom is an approximation, and may lose more than a segment brings
     return Design(
@@ -131,7 +131,7 @@ def _swaps(ahead: Road, every: int | None, central: Reach | None) -> int | None:
 
 def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, ...]:
     """What would bring an out-of-reach target within reach: each option that does, with its distance."""
-    best = 100 * bounds.drift(question.alpha, question.power) * sqrt(required.best_variance)
+    best = 100 * question.drift * sqrt(required.best_variance)
     larger = ceil(best * 1.15 * 2) / 2  # a little above the limit, which itself is never reached; in half percents
     found = []
     if larger < 100:

@@ -11,6 +11,8 @@ from dataclasses import asdict, dataclass
 from typing import Any, Literal
 
 Verdict = Literal["shifted", "no-shift-of-target-size", "not-yet", "out-of-reach", "no-baseline", "closed-unclear"]
+Rule = Literal["every-look", "counted", "open-ended"]
+KnownChange = Literal["seen", "seen-otherwise", "not-seen-yet"]
 Range = tuple[float, float]
 
 
@@ -127,6 +129,10 @@ class Assessment:
     remedies: tuple[Remedy, ...]
     expectation: Expectation | None
     warnings: tuple[str, ...]
+    rule: Rule = "every-look"  # for looks
+    known_percent: Range | None = None  # shift expected of a known change
+    known_change: KnownChange | None = None  # whether the log saw it
+    known_change_logged: bool = True  # of this vehicle, ever
     set_aside: tuple[SetAside, ...] = ()
     verdict_with_all: WithAll | None = None  # None: nothing was set aside
 

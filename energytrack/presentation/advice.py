@@ -5,6 +5,7 @@ from __future__ import annotations
 from energytrack.inference.results import Assessment
 from energytrack.presentation import figures, scatter
 from energytrack.presentation.answer import baseline_to_drive, contradicted, remedy
+from energytrack.presentation.known import known_step
 from energytrack.presentation.text import join
 
 MOST = 3
@@ -22,7 +23,8 @@ def next_steps(a: Assessment, unit: str) -> list[str]:
         "no-baseline": _build_baseline,
         "closed-unclear": _sharper_question,
     }[a.verdict](a, unit)
-    return steps[:MOST]
+    known = known_step(a)
+    return steps[:MOST] if known is None else [*steps[: MOST - 1], known]
 
 
 def _after_shift(a: Assessment, unit: str) -> list[str]:
@@ -32,7 +34,7 @@ def _after_shift(a: Assessment, unit: str) -> list[str]:
             "Take it off for a while: a true shift goes away with it and comes back with it.",
         ]
     steps = ["Keep logging: every further entry sharpens the figure."]
-    if (a.shift_percent or 0.0) > 0:
+    if (a.shift_percent or 0.0) > 0 and a.known_change is None:
         steps.append("It costs energy: check the fitting, or take it off and watch consumption fall back.")
     return steps
 

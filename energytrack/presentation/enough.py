@@ -13,6 +13,11 @@ from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, labelled, wrap
 
 Row = tuple[str, str]
+_LOOKED = {
+    "every-look": "however often you look",
+    "counted": "at the looks taken so far",
+    "open-ended": "however often and however long you look",
+}
 _AHEAD = 1.05  # an expected end is worth saying while it lies ahead
 
 
@@ -58,7 +63,7 @@ def _distances(a: Assessment, unit: str) -> list[Row]:
     if a.distance_needed_km is not None:
         label = "needed" if a.is_open else "answered after"
         rows.append((label, f"{figures.distance(a.distance_needed_km, unit)} with it fitted"))
-    if a.distance_to_go_km is not None and a.verdict == "not-yet":
+    if a.distance_to_go_km and a.verdict == "not-yet":
         rows.append(("still to go", _to_go(a, unit)))
     ahead = a.distance_expected_km is not None and a.distance_expected_km > _AHEAD * a.distance_modified_km
     if ahead and a.distance_expected_km is not None and a.verdict == "not-yet":
@@ -83,7 +88,7 @@ def _shift(a: Assessment) -> list[Row]:
     if a.shift_percent is None:
         return []
     sure = figures.target(100 * a.confidence)
-    rows = [("shift", f"{so_far(a)} ({sure} confidence, however often you look)")]
+    rows = [("shift", f"{so_far(a)} ({sure} confidence, {_LOOKED[a.rule]})")]
     if a.standard_error_percent is not None:
         error = a.standard_error_percent
         freedom = a.degrees_of_freedom
