@@ -62,6 +62,8 @@ def assess(
     temperature and speed. `every_look=False` looks only once, at the end, as if nobody had looked before.
     `rule`: "every-look", whose bound holds however often someone looks; "counted", where only the looks taken count:
     those at the odometer positions `looks_taken` (km) and this one; "open-ended", a watch that never closes.
+    `set_aside="none"` keeps what stands out from its neighbours. `typed_in`: units of distance and energy in which the
+    log was typed, for naming slips of digits (energy None: as `unit`).
     `two_carriers` is of a vehicle with tank and battery: its fill-ups are in the fuel's unit, charges and answers in
     kWh, and `capacity` and `unit` do not count.
 
