@@ -51,7 +51,7 @@ def so_far(a: Assessment) -> str:
     shift = figures.percent(a.shift_percent, a.standard_error_percent, signed=True)
     span = figures.bounded(a.interval_percent)
     if span is None:
-        return f"{shift}, look-proof range still open at both ends"
+        return f"{shift}, look-proof range still wide open"
     return f"{shift}, look-proof range {figures.percent_range(span, a.standard_error_percent)}"
 
 

@@ -8,6 +8,8 @@ from energytrack.inference.results import Range
 from energytrack.logbook.quantities import DISTANCE
 from energytrack.presentation.text import join
 
+OPEN_PERCENT = 100.0  # a range this wide is called open
+
 
 def exists(value: float | None) -> bool:
     """Whether a figure is there at all."""
@@ -87,5 +89,5 @@ def target(value: float) -> str:
 
 
 def bounded(span: Range | None) -> Range | None:
-    """The range, or None where it has no ends to show."""
-    return span if span is not None and all(math.isfinite(end) for end in span) else None
+    """The range, or None where it has no ends worth showing: wider than all of consumption tells nothing."""
+    return span if span is not None and span[1] - span[0] < OPEN_PERCENT else None

@@ -100,7 +100,7 @@ def test_one_degree_of_freedom_is_one() -> None:
 
 def test_unbounded_range_is_said_in_words() -> None:
     text = shown(replace(NOT_YET, interval_percent=None)).replace("\n", " ")
-    assert "So far -2.1 %, look-proof range still open at both ends." in text
+    assert "So far -2.1 %, look-proof range still wide open." in text
 
 
 def test_the_bar_is_never_full_before_the_end() -> None:
