@@ -104,8 +104,6 @@ def _with_second(vehicle: Vehicle, carrier: str | None, capacity: str | None) ->
         raise EntryError(f"unknown carrier {carrier!r}: use one of {', '.join(CARRIERS)}")
     if (carrier == "electricity") == (vehicle.carrier == "electricity"):
         raise EntryError(f"{vehicle.carrier} and {carrier}: one of two carriers must be electricity, the other a fuel")
-    if vehicle.display is not None:
-        raise EntryError("consumption from two carriers is shown in kWh/100 km: leave --display and miles out")
     room = None if capacity is None else parse_number(capacity, "second capacity")
     if room is not None and room <= 0:
         raise EntryError(f"second capacity {capacity} must be more than 0: type what tank or battery holds")

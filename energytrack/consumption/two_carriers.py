@@ -24,6 +24,7 @@ from energytrack.consumption.segments import (
     known_level,
 )
 from energytrack.errors import ConsumptionError
+from energytrack.logbook.carriers import kind_of
 from energytrack.logbook.records import Entry, Event, Vehicle
 
 CLICK_OFF_SHARE = 0.012  # usual error of a fill to the click-off, of the tank's capacity
@@ -63,9 +64,14 @@ class _Battery(NamedTuple):
 
 
 def two_carriers_of(vehicle: Vehicle, contents: Mapping[str, float] | None = None) -> TwoCarriers | None:
-    """Tank and battery of a vehicle, None where it has one carrier. contents: kWh per unit of a fuel, if stated."""
+    """Tank and battery of a vehicle, None where it has one carrier. contents: kWh per unit of a fuel, if stated.
+
+    Raises ConsumptionError for two carriers of one kind.
+    """
     if vehicle.second_carrier is None:
         return None
+    if kind_of(vehicle.carrier) == kind_of(vehicle.second_carrier):
+        raise ConsumptionError(f"{vehicle.name} has two carriers of one kind: one must be electricity, one a fuel")
     first, second = (vehicle.carrier, vehicle.capacity), (vehicle.second_carrier, vehicle.second_capacity)
     (fuel, tank), (_, battery) = (second, first) if vehicle.carrier == "electricity" else (first, second)
     return TwoCarriers(fuel, tank, battery, (contents or {}).get(fuel))

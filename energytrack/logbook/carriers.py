@@ -33,7 +33,7 @@ def for_kind(vehicle: Vehicle, kind: str) -> Vehicle:
 
 
 def in_total(vehicle: Vehicle) -> Vehicle:
-    """The vehicle as its whole consumption is shown: in kWh where it has two carriers, else as it is."""
+    """The vehicle as its whole consumption is shown: by the kWh where it has two carriers, else as it is."""
     if vehicle.second_carrier is None:
         return vehicle
-    return replace(vehicle, unit="kWh", typed_unit="kWh", display=None)
+    return replace(vehicle, unit="kWh", typed_unit="kWh", display="mi/kWh" if vehicle.distance_unit == "mi" else None)

@@ -15,6 +15,7 @@ from typing import Any, Generic, TypeVar
 
 from energytrack.errors import EntryError, LogbookError
 from energytrack.logbook import columns
+from energytrack.logbook.carriers import kind_of
 from energytrack.logbook.cells import CellError
 from energytrack.logbook.checks import check_known
 from energytrack.logbook.columns import Form, Reader
@@ -67,6 +68,8 @@ def read_vehicles(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Vehicle]:
         values.setdefault("unit", UNIT_OF_CARRIER[values["carrier"]])
         if "second_carrier" in values:
             values.setdefault("second_unit", UNIT_OF_CARRIER[values["second_carrier"]])
+            if kind_of(values["carrier"]) == kind_of(values["second_carrier"]):
+                raise CellError("has two carriers of one kind; one must be electricity, the other a fuel")
         elif values.keys() & {"second_unit", "second_capacity"}:
             raise CellError("has a second unit or capacity and no second carrier; fill in second_carrier")
         return Vehicle(name=values.pop("vehicle"), **values)

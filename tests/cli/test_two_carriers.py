@@ -65,8 +65,20 @@ def test_impossible_vehicles_are_refused(run: Terminal) -> None:
     assert "add --second-carrier" in run.refused(*add, "petrol", "--second-capacity", "12")
     assert "must be more than 0" in run.refused(*add, "petrol", "--second-carrier", "electricity",
                                                 "--second-capacity", "0")  # fmt: skip
-    assert "leave --display" in run.refused(*add, "petrol", "--second-carrier", "electricity", "--display", "mpg-us")
     assert "unknown carrier 'steam'" in run.refused(*add, "petrol", "--second-carrier", "steam")
+
+
+def test_who_counts_miles_and_gallons_reads_miles_and_gallons(run: Terminal) -> None:
+    """6 gal and 20 kWh over 300 mi: 6 x 3.785 x 32/3.6 + 20 = 221.9 kWh; NIST SP 811 for the gallon."""
+    run.done("vehicle", "add", "us", *HYBRID[:2], "--unit", "gal-us", "--distance-unit", "mi", *HYBRID[4:])
+    run.done("fillup", "10000", "6", "--vehicle", "us", "--date", "2026-01-01")
+    run.done("charge", "10100", "10", "--vehicle", "us", "--date", "2026-01-03", "--partial")
+    run.done("charge", "10200", "10", "--vehicle", "us", "--date", "2026-01-05", "--partial")
+    said = run.done("fillup", "10300", "6", "--vehicle", "us", "--date", "2026-01-09").splitlines()
+    assert said[1:] == [
+        "300 mi since the last known level: 1.35 mi/kWh",
+        "of that 50.0 mpg (US) and 4.14 kWh/100 km from the plug, 9 % of the energy",
+    ]
 
 
 def test_a_vehicle_with_one_carrier_still_takes_only_that(run: Terminal) -> None:

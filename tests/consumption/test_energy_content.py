@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import re
+from pathlib import Path
+
 import pytest
 
 from energytrack.consumption.energy_content import ENERGY_CONTENT, kwh_per_unit
 from energytrack.errors import ConsumptionError
-from energytrack.logbook.records import CARRIERS
+from energytrack.logbook.records import CARRIERS, UNIT_OF_CARRIER
 
 # IPCC Guidelines (2006), volume 2, table 1.2: MJ/kg. Densities: middle of EN 228 (petrol), EN 590 (diesel), and liquid
 # propane at 15 degrees Celsius. All from memory.
@@ -23,6 +26,13 @@ def test_every_carrier_has_an_energy_content_with_its_source_and_year() -> None:
 def test_contents_by_volume_agree_with_contents_by_mass_and_density(fuel: str) -> None:
     by_mass, density = BY_MASS[fuel]
     assert ENERGY_CONTENT[fuel].megajoules == pytest.approx(by_mass * density, rel=0.04)
+
+
+def test_the_reference_states_the_same_contents() -> None:
+    text = (Path(__file__).parents[2] / "docs" / "reference.md").read_text(encoding="utf-8")
+    rows = re.findall(r"^\| ([a-z-]+) \| (L|kg|kWh) \| ([\d.]+) \| (.+) \|$", text, flags=re.MULTILINE)
+    assert {carrier: unit for carrier, unit, _, _ in rows} == dict(UNIT_OF_CARRIER)
+    assert [float(kwh) for _, _, kwh, _ in rows] == pytest.approx([kwh_per_unit(row[0]) for row in rows], rel=0.005)
 
 
 def test_hydrogen_agrees_with_its_heat_of_formation() -> None:

@@ -153,6 +153,8 @@ def test_either_carrier_may_come_first() -> None:
     other = Vehicle("phev", "electricity", "kWh", 12.0, second_carrier="petrol", second_unit="L", second_capacity=40.0)
     assert two_carriers_of(one) == two_carriers_of(other) == TwoCarriers("petrol", 40.0, 12.0)
     assert two_carriers_of(Vehicle("van", "diesel", "L")) is None
+    with pytest.raises(ConsumptionError, match="one must be electricity"):
+        two_carriers_of(Vehicle("car", "petrol", "L", second_carrier="lpg", second_unit="L"))
 
 
 @pytest.mark.parametrize(

@@ -248,10 +248,11 @@ def test_other_tables_say_what_is_wrong(tmp_path: Path) -> None:
     vehicles = read_vehicles(_file(tmp_path, "vehicle,carrier,capacity\nvan,diesel,70\nvan,petrol,\nbus,steam,\n"))
     assert [vehicle for _, vehicle in vehicles.rows] == [Vehicle("van", "diesel", "L", 70.0)]
     assert [problem.line for problem in vehicles.problems] == [4, 3]
-    second = "vehicle,carrier,second_carrier,second_capacity\nvan,petrol,electricity,11\nbus,petrol,,11\n"
+    second = "vehicle,carrier,second_carrier,second_capacity\n"
+    second += "van,petrol,electricity,11\nbus,petrol,,11\ncar,petrol,lpg,\n"
     hybrids = read_vehicles(_file(tmp_path, second))
     assert [vehicle.second_unit for _, vehicle in hybrids.rows] == ["kWh"]
-    assert [problem.line for problem in hybrids.problems] == [3]
+    assert [problem.line for problem in hybrids.problems] == [3, 4]
     text = "vehicle,name,fitted_date,removed_date\nvan,skirts,2026-05-03,2026-04-01\nvan,skirts,,\nvan,,2026-05-03,\n"
     modifications = read_modifications(_file(tmp_path, text))
     assert [problem.line for problem in modifications.problems] == [2, 3, 4]
