@@ -28,7 +28,7 @@ def confirm(
     odometer_unit: options.OdometerUnit = None,
     json: options.Json = False,
 ) -> None:
-    """Keep an entry that looks odd and is right: `enough` sets it aside no longer."""
+    """Keep an entry that looks odd and is right. `enough` sets it aside no longer."""
     store = writable(context)
     chosen = the_vehicle(store, vehicle)
     if odometer is not None:

@@ -20,7 +20,7 @@ _NEVER_APART = 0.98  # correlation of two modifications' shares
 def never_apart(observed: Observations, name: str) -> tuple[str, ...]:
     """Modifications that were on whenever this one was, and off whenever it was off."""
     own = observed.shares[:, observed.names.index(name)]
-    if np.ptp(own) == 0:
+    if not len(own) or np.ptp(own) == 0:
         return ()
     return tuple(
         other
