@@ -1,7 +1,7 @@
 """Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
 
-The Python interface: open_logbook, assess, plan, TwoCarriers. Each is loaded when it is first used, so that importing
-the package costs nothing.
+The Python interface: open_logbook, assess, plan, plan_from Stated figures, compare, respond, rehearse, TwoCarriers.
+Each is loaded when it is first used, so that importing the package costs nothing.
 """
 
 from __future__ import annotations
@@ -13,6 +13,11 @@ _HOMES = {
     "open_logbook": "energytrack.consumption.frames",
     "assess": "energytrack.inference.assess",
     "plan": "energytrack.inference.designs",
+    "compare": "energytrack.inference.comparison",
+    "respond": "energytrack.inference.response",
+    "rehearse": "energytrack.inference.rehearsal",
+    "plan_from": "energytrack.inference.designs",
+    "Stated": "energytrack.inference.stated",
     "TwoCarriers": "energytrack.consumption.two_carriers",
 }
 

@@ -2,4 +2,5 @@
 
 from energytrack.cli.app import main
 
-main()
+if __name__ == "__main__":  # worker processes import this file too
+    main()

@@ -97,7 +97,8 @@ def _environment(scripts: Path) -> dict[str, str]:
     """This project's command on the PATH whether or not it is installed, 80 columns, no logbook named."""
     scripts.mkdir()
     script = scripts / "energytrack"
-    script.write_text(f"#!{sys.executable}\nfrom energytrack.cli.app import main\n\nmain()\n", encoding="utf-8")
+    start = "from energytrack.cli.app import main\n\nif __name__ == '__main__':\n    main()\n"
+    script.write_text(f"#!{sys.executable}\n{start}", encoding="utf-8")
     script.chmod(0o755)
     kept = {name: value for name, value in os.environ.items() if not name.startswith("ENERGYTRACK_")}
     path = os.pathsep.join([str(scripts), str(Path(sys.executable).parent), os.environ["PATH"]])

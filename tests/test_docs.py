@@ -13,6 +13,7 @@ import pytest
 import typer
 
 from energytrack.cli.app import LOGBOOK_VARIABLE, ExitStatus, app
+from energytrack.inference import rehearsal_results as rehearsed
 from energytrack.inference import results
 from energytrack.logbook import columns
 from tests.documents import DOCUMENTS, ROOT, WIDTH, FailedCommandError, commands_of, console_lines, replay
@@ -28,7 +29,10 @@ TABLES = {
 ONE_LINE = re.compile(r"\$ |energytrack: |note: |next: |\S+:\d+: ")
 RESULTS = (
     *(results.Assessment, results.Noise, results.Covariate, results.Look, results.Expectation, results.Remedy),
-    *(results.Plan, results.Design),
+    *(results.Plan, results.Design, results.Confounder, results.Advice, results.Together, results.Effect),
+    *(results.Response, results.LevelEffect, results.Comparison, results.PairwiseShift, results.Standing),
+    *(results.SetAside, results.WithAll),
+    *(rehearsed.Rehearsal, rehearsed.Scenario, rehearsed.Rate, rehearsed.Settled, rehearsed.Placebo),
 )
 
 

@@ -13,7 +13,8 @@ PACKAGE = Path(__file__).parent.parent / "energytrack"
 LAYERS = ["errors", "logbook", "consumption", "inference", "presentation", "cli"]
 LIGHT = [
     "inference.results",
-    *(f"consumption.{name}" for name in ("positions", "segments", "shares", "meaning", "terms")),
+    "inference.rehearsal_results",
+    *(f"consumption.{name}" for name in ("positions", "segments", "shares", "slips", "meaning", "terms")),
     *("consumption.two_carriers", "consumption.energy_content"),
 ]
 MODULES = {

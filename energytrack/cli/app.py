@@ -28,9 +28,12 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "mod": ("mod", "mod_commands"),
     "event": ("event", "event"),
     "entries": ("entries", "entries"),
+    "confirm": ("confirm", "confirm"),
     "import": ("import_", "import_table"),
+    "weather": ("weather", "weather"),
     "enough": ("enough", "enough"),
     "plan": ("plan", "plan"),
+    "rehearse": ("rehearse", "rehearse"),
 }
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import sys
 from dataclasses import replace
 from typing import TYPE_CHECKING, Annotated
@@ -12,12 +13,13 @@ from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.app import ExitStatus
 from energytrack.cli.context import readable, say_json
-from energytrack.errors import EnergytrackError
+from energytrack.errors import EnergytrackError, LogbookError
 from energytrack.logbook.store import Store
 
 if TYPE_CHECKING:
-    from energytrack.inference.results import Assessment
+    from energytrack.inference.results import Assessment, Rule
     from energytrack.logbook.opening import Logbook
+    from energytrack.logbook.records import Vehicle
 
 
 USUAL_CERTAINTY = (0.95, 0.80)  # confidence and power; other questions are asked in passing and not kept
@@ -35,6 +37,18 @@ def enough(
     covariate: Annotated[
         list[str] | None, typer.Option(metavar="COLUMN", help="A further numeric column to allow for; repeatable.")
     ] = None,
+    compare: Annotated[
+        bool, typer.Option("--compare", help="Hold the vehicle's modifications against each other, pair by pair.")
+    ] = False,
+    looks: Annotated[
+        str, typer.Option(metavar="every|counted", help="Allow for a look at every moment, or count those taken.")
+    ] = "every",
+    open_ended: Annotated[
+        bool, typer.Option("--open-ended", help="Watch without an end: only a shift closes the question.")
+    ] = False,
+    keep_all: Annotated[
+        bool, typer.Option("--keep-all", help="Set nothing aside, however far it stands from its neighbours.")
+    ] = False,
     energy_content: Annotated[
         str | None, typer.Option(metavar="FUEL=KWH", help="kWh in a L or kg of the fuel, of a plug-in hybrid.")
     ] = None,
@@ -43,12 +57,18 @@ def enough(
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
 ) -> None:
     """Say whether a modification shifted consumption. By how much, and how far is still to go to be sure."""
+    rule = _rule(looks, open_ended)
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
+    if compare:
+        _compare(vehicles, logbook, target, confidence, covariate, json)
+        return
+    if rule == "counted" and not isinstance(logbook, Store):
+        raise LogbookError(f"{logbook.path} is a folder of tables and keeps no looks: use --looks every, or import it")
     contents = asking.energy_content(energy_content, vehicles)
     asked = [replace(each, contents=contents) for each in asking.questions(logbook, vehicles, name, target)]
     answers, refusals = asking.answered(
-        asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate))
+        asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, rule, keep_all))
     )
     if target is None and not covariate and not contents and (confidence, power) == USUAL_CERTAINTY:
         for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
@@ -58,8 +78,24 @@ def enough(
     asking.leave(refusals, ExitStatus.NOT_YET if waiting else ExitStatus.DONE)
 
 
+def _rule(looks: str, open_ended: bool) -> Rule:
+    if looks not in ("every", "counted"):
+        raise typer.BadParameter(f"--looks {looks!r} is not one of: every, counted")
+    if open_ended:
+        if looks == "counted":
+            raise typer.BadParameter("--open-ended holds however often someone looks: leave --looks counted out")
+        return "open-ended"
+    return "counted" if looks == "counted" else "every-look"
+
+
 def _assess(
-    logbook: Logbook, question: asking.Question, confidence: float, power: float, covariates: list[str] | None
+    logbook: Logbook,
+    question: asking.Question,
+    confidence: float,
+    power: float,
+    covariates: list[str] | None,
+    rule: Rule,
+    keep_all: bool,
 ) -> Assessment:
     from energytrack.inference.assess import assess
 
@@ -70,8 +106,41 @@ def _assess(
         confidence=confidence,
         power=power,
         covariates=covariates or None,
+        rule=rule,
+        looks_taken=logbook.looks(question.vehicle.name, question.modification),
+        set_aside="none" if keep_all else "odd",
+        typed_in=(question.vehicle.distance_unit, question.vehicle.typed_unit),
     )
     return replace(answer, vehicle=question.vehicle.name)
+
+
+def _compare(
+    vehicles: list[Vehicle],
+    logbook: Logbook,
+    target: float | None,
+    confidence: float,
+    covariates: list[str] | None,
+    json: bool,
+) -> None:
+    from energytrack.inference.comparison import compare
+    from energytrack.presentation import several, terminal
+
+    found, refusals = asking.answered(
+        vehicles,
+        lambda vehicle: compare(
+            **asking.tables(logbook, vehicle),
+            target_percent=asking.USUAL_TARGET if target is None else target,
+            confidence=confidence,
+            covariates=covariates or None,
+        ),
+    )
+    if json:
+        say_json({"comparisons": [one.to_dict() for one in found]})
+    else:
+        screen = terminal.console()
+        for one in found:
+            terminal.show(several.compared(one, screen.width, title=len(found) > 1), screen)
+    asking.leave(refusals)
 
 
 def _print_json(answers: list[Assessment]) -> None:
@@ -93,16 +162,20 @@ def _print(answers: list[tuple[asking.Question, Assessment]], picture: bool) -> 
 
 
 def _keep(logbook: Logbook, question: asking.Question, answer: Assessment) -> None:
-    """Keep the answer for the echo of later entries; that it cannot be kept never hides it."""
+    """Keep the answer for the echo of later entries, and that someone looked; a refusal never hides the answer."""
     from energytrack.presentation.as_json import without_nan
 
     if not isinstance(logbook, Store) or not logbook.writable:
         return
+    vehicle, modification = question.vehicle.name, question.modification
     result = without_nan(answer.to_dict())
     del result["looks"]
     try:
-        last = logbook.last_entries(question.vehicle.name, 1)
+        last = logbook.last_entries(vehicle, 1)
         result["at_km"] = last[0].odometer_km if last else None
-        logbook.keep_assessment(question.vehicle.name, question.modification, result)
+        logbook.keep_assessment(vehicle, modification, result)
+        if answer.looks:
+            newest = answer.looks[-1]
+            logbook.record_look(vehicle, modification, newest.odometer_km, dt.date.fromisoformat(newest.date))
     except EnergytrackError as refusal:
         print(f"energytrack: the answer was not kept: {refusal}", file=sys.stderr)

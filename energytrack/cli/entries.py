@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Annotated, Any
 
 import typer
@@ -47,20 +47,25 @@ class Line:
     entry: Entry
     consumption: float | None
     is_unusual: bool
+    slips: tuple[str, ...] = ()  # what may have happened, where it is unusual
 
 
 def _newest(logbook: Logbook, vehicle: Vehicle, last: int) -> list[Line]:
     """The newest `last` entries, judged by the record of those before them too."""
-    from energytrack.consumption.meaning import RECENT_ENTRIES, unusual
+    from energytrack.consumption.meaning import RECENT_ENTRIES, slip_lines, unusual
     from energytrack.consumption.two_carriers import close_vehicle
 
     recent = logbook.last_entries(vehicle.name, last + RECENT_ENTRIES)
     segmented = close_vehicle(vehicle, recent, logbook.events(vehicle.name))
-    closed = {
-        segment.legs[-1].entry: (segment.energy / segment.distance_km, flag)
-        for segment, flag in zip(segmented.segments, unusual(segmented.segments), strict=True)
-    }
-    lines = [Line(entry, *closed.get(index, (None, False))) for index, entry in enumerate(segmented.entries)]
+    lines = [Line(entry, None, False) for entry in segmented.entries]
+    flags = unusual(segmented.segments)
+    slips = slip_lines(segmented, [which for which, flag in enumerate(flags) if flag], vehicle)
+    for which, segment in enumerate(segmented.segments):
+        closing = segmented.entries[segment.legs[-1].entry]
+        told = Line(closing, segment.energy / segment.distance_km, False)
+        if flags[which] and not closing.confirmed:
+            told = replace(told, is_unusual=True, slips=tuple(slips[which]))
+        lines[segment.legs[-1].entry] = told
     return lines[-last:]
 
 
@@ -73,7 +78,8 @@ def entry_columns(entry: Entry) -> dict[str, Any]:
 
 
 def _columns(line: Line) -> dict[str, Any]:
-    return {**entry_columns(line.entry), "energy_per_km": line.consumption, "unusual": line.is_unusual}
+    judged = {"energy_per_km": line.consumption, "unusual": line.is_unusual, "slips": list(line.slips)}
+    return {**entry_columns(line.entry), **judged}
 
 
 def _table(vehicle: Vehicle, lines: list[Line], last: int) -> list[str]:
@@ -99,8 +105,9 @@ def _place(vehicle: Vehicle, entry: Entry) -> str:
 
 def _flags(line: Line) -> list[str]:
     entry = line.entry
-    unlike = ["unusual"] if line.is_unusual else []
+    unlike = ["unusual", *line.slips[:1]] if line.is_unusual else []
     level = [] if entry.level_percent is None else [f"level {entry.level_percent:g} %"]
     partial = ["partial"] if not entry.full and entry.level_percent is None else []
     missed = ["entries missing before"] if entry.missed else []
-    return [*unlike, *level, *partial, *missed, *([entry.note] if entry.note else [])]
+    sure = ["confirmed"] if entry.confirmed else []
+    return [*unlike, *level, *partial, *missed, *sure, *([entry.note] if entry.note else [])]

@@ -21,7 +21,14 @@ from energytrack.cli.context import (
     writable,
 )
 from energytrack.errors import EntryError
-from energytrack.logbook.checks import check_date, check_name, check_odometer, check_reading, parse_date
+from energytrack.logbook.checks import (
+    check_date,
+    check_known,
+    check_name,
+    check_odometer,
+    check_reading,
+    parse_date,
+)
 from energytrack.logbook.quantities import distance_text, parse_number
 from energytrack.logbook.records import Entry, Modification, Vehicle
 from energytrack.logbook.store import Store
@@ -45,6 +52,10 @@ def fitted(
     odometer_unit: options.OdometerUnit = None,
     target: Annotated[str | None, typer.Option(help="Shift worth knowing, in percent.")] = None,
     level: Annotated[str | None, typer.Option(help="Setting of a graded part, e.g. a pressure.")] = None,
+    known: Annotated[
+        str | None, typer.Option(metavar="LOW:HIGH", help="A known change: the shift expected, in percent, e.g. 4:9.")
+    ] = None,
+    not_reversible: Annotated[bool, typer.Option("--not-reversible", help="It cannot be taken off again.")] = False,
     note: options.Note = "",
     json: options.Json = False,
 ) -> None:
@@ -55,8 +66,9 @@ def fitted(
         day, km = _place(store, chosen, odometer, odometer_unit, date)
         graded = None if level is None else parse_number(level, "level")
         check_name(name, "modification")
-        store.fit(chosen.name, name, day, km, _target(target), graded, note)
-    _echo(chosen, "fitted", name, day, km, json)
+        expected = _known(known)
+        store.fit(chosen.name, name, day, km, _target(target), graded, note, expected, not not_reversible)
+    _echo(chosen, "fitted", name, day, km, json, expected)
 
 
 @mod_commands.command("removed", cls=options.NegativeNumbers)
@@ -88,9 +100,13 @@ def list_modifications(
     if json:
         say_json({"modifications": [_columns(period) for _, own in found for period in own]})
         return
-    header = ("vehicle", "modification", "fitted", "removed", "level", "target")
     rows = [_cells(each, period) for each, own in found for period in own]
-    say(aligned([header, *rows], right=(4, 5)) if rows else ["no modifications yet: log one with `mod fitted`"])
+    if not rows:
+        say(["no modifications yet: log one with `mod fitted`"])
+        return
+    header = ("vehicle", "modification", "fitted", "removed", "level", "target", "expected")
+    shown = len(header) if any(row[-1] for row in rows) else len(header) - 1  # few changes are known beforehand
+    say(aligned([row[:shown] for row in (header, *rows)], right=(4, 5)))
 
 
 def _place(
@@ -123,14 +139,34 @@ def _target(text: str | None) -> float | None:
     return value
 
 
-def _echo(vehicle: Vehicle, action: str, name: str, day: dt.date | None, km: float | None, json: bool) -> None:
+def _known(text: str | None) -> tuple[float, float] | None:
+    if text is None:
+        return None
+    low, mark, high = text.partition(":")
+    if not mark:
+        raise EntryError(f"known change {text!r} is not written as LOW:HIGH, such as 4:9 for 4 to 9 % more")
+    ends = parse_number(low, "known change"), parse_number(high, "known change")
+    check_known(*ends)
+    return ends
+
+
+def _echo(
+    vehicle: Vehicle,
+    action: str,
+    name: str,
+    day: dt.date | None,
+    km: float | None,
+    json: bool,
+    known: tuple[float, float] | None = None,
+) -> None:
     cautions = list(CAUTIONS) if action == "fitted" else []
     if json:
         date = None if day is None else day.isoformat()
         place: dict[str, Any] = {"date": date, "odometer_km": km}
         say_json({"vehicle": vehicle.name, "name": name, "action": action, **place, "cautions": cautions})
         return
-    say([f"{vehicle.name}: {name} {action}, {_where(vehicle, day, km)}"])
+    expected = "" if known is None else f"; a known change, {known[0]:+g} to {known[1]:+g} % expected"
+    say([f"{vehicle.name}: {name} {action}, {_where(vehicle, day, km)}{expected}"])
     if cautions:
         say(["", *caution_lines()])
 
@@ -143,9 +179,10 @@ def _where(vehicle: Vehicle, day: dt.date | None, km: float | None) -> str:
 def _cells(vehicle: Vehicle, period: Modification) -> tuple[str, ...]:
     level = "" if period.level is None else f"{period.level:g}"
     target = "" if period.target_percent is None else f"{period.target_percent:g} %"
+    expected = "" if period.known is None else f"{period.known[0]:+g} to {period.known[1]:+g} %"
     start = _where(vehicle, period.fitted_date, period.fitted_km)
     end = _where(vehicle, period.removed_date, period.removed_km)
-    return vehicle.name, period.name, start, end or "still on", level, target
+    return vehicle.name, period.name, start, end or "still on", level, target, expected
 
 
 def _columns(period: Modification) -> dict[str, Any]:

@@ -1,15 +1,17 @@
-"""`plan`: how far each way of running a test would take."""
+"""`plan`: how far each way of running a test would take, from a logbook or from stated noise."""
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import replace
-from typing import TYPE_CHECKING, Annotated
+from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
-from energytrack.cli import options
+from energytrack.cli import options, stated
 from energytrack.cli import questions as asking
 from energytrack.cli.context import readable, say_json
+from energytrack.errors import LogbookError
 
 if TYPE_CHECKING:
     from energytrack.inference.results import Plan
@@ -23,21 +25,69 @@ def plan(
     target: Annotated[float, typer.Option(help="Smallest shift worth knowing about, in percent.")] = 3.0,
     confidence: Annotated[float, typer.Option(help="Of the range and the verdict.")] = 0.95,
     power: Annotated[float, typer.Option(help="Chance that a shift of the target size is found.")] = 0.80,
+    not_reversible: Annotated[
+        bool, typer.Option("--not-reversible", help="The part cannot be taken off again.")
+    ] = False,
+    trip_noise: stated.TripNoise = None,
+    drift: stated.Drift = None,
+    season_drift: stated.SeasonDrift = None,
+    filling: stated.Filling = None,
+    capacity: stated.Capacity = None,
+    consumption: stated.Consumption = None,
+    unit: stated.Unit = None,
+    distance_per_fill: stated.DistancePerFill = None,
+    days_per_fill: stated.DaysPerFill = None,
+    baseline: stated.Baseline = None,
+    temperature_range: stated.TemperatureRange = None,
+    date: stated.Date = None,
     json: options.Json = False,
 ) -> None:
-    """Say how far a test of a modification would take. With one switch, and with taking it off and on."""
+    """Say how far each way of testing a modification would take.
+
+    From the logbook's own noise; or, with --trip-noise, from stated figures and no logbook.
+    """
+    figures = stated.stated(
+        trip_noise=trip_noise, drift=drift, season_drift=season_drift, filling=filling, capacity=capacity,
+        consumption=consumption, unit=unit, km_per_fill=distance_per_fill, days_per_fill=days_per_fill,
+        baseline_km=baseline, temperature_range=temperature_range, date=date,
+    )  # fmt: skip
+    asked: dict[str, Any] = {"target_percent": target, "confidence": confidence, "power": power}
+    asked["reversible"] = not not_reversible
+    if figures is None:
+        _from_logbook(context, vehicle, asked, json)
+        return
+    if vehicle is not None:
+        raise typer.BadParameter("--trip-noise plans without a logbook: leave --vehicle out")
+    from energytrack.inference.designs import plan_from
+
+    found = plan_from(figures, **asked)
+    _print_json([found]) if json else _print([found], lambda _: ("km", []))
+
+
+def _from_logbook(context: typer.Context, vehicle: str | None, asked: dict[str, Any], json: bool) -> None:
+    if context.obj is None:
+        raise LogbookError(
+            "no logbook named, and no noise stated: put --logbook PATH before the command, "
+            "or state the noise, such as --trip-noise 5 --drift 1"
+        )
     logbook = readable(context)
     by_name = {each.name: each for each in asking.vehicles_asked(logbook, vehicle)}
-    answers, refusals = asking.answered(by_name, lambda name: _plan(logbook, by_name[name], target, confidence, power))
-    _print_json(answers) if json else _print(logbook, by_name, answers)
+    answers, refusals = asking.answered(by_name, lambda name: _plan(logbook, by_name[name], asked))
+    _print_json(answers) if json else _print(answers, lambda found: _shown_with(logbook, by_name[found.vehicle]))
     asking.leave(refusals)
 
 
-def _plan(logbook: Logbook, vehicle: Vehicle, target: float, confidence: float, power: float) -> Plan:
+def _plan(logbook: Logbook, vehicle: Vehicle, asked: dict[str, Any]) -> Plan:
     from energytrack.inference.designs import plan as compare
 
-    found = compare(**asking.tables(logbook, vehicle), target_percent=target, confidence=confidence, power=power)
-    return replace(found, vehicle=vehicle.name)
+    return replace(compare(**asking.tables(logbook, vehicle), **asked), vehicle=vehicle.name)
+
+
+def _shown_with(logbook: Logbook, vehicle: Vehicle) -> tuple[str, list[str]]:
+    """The unit of distances, and the periods in which something was fitted already."""
+    from energytrack.presentation.plan import periods
+
+    return vehicle.distance_unit, periods(logbook.modifications(vehicle.name), vehicle.distance_unit)
 
 
 def _print_json(plans: list[Plan]) -> None:
@@ -46,14 +96,13 @@ def _print_json(plans: list[Plan]) -> None:
     say_json(without_nan({"plans": [found.to_dict() for found in plans]}))
 
 
-def _print(logbook: Logbook, vehicles: dict[str, Vehicle], plans: list[Plan]) -> None:
+def _print(plans: list[Plan], shown_with: Callable[[Plan], tuple[str, list[str]]]) -> None:
     from energytrack.presentation import terminal
-    from energytrack.presentation.plan import periods, render
+    from energytrack.presentation.plan import render
 
     screen = terminal.console()
     for place, found in enumerate(plans):
-        unit = vehicles[found.vehicle].distance_unit
-        fitted = periods(logbook.modifications(found.vehicle), unit)
+        unit, fitted = shown_with(found)
         if place:
             screen.print()
         terminal.show(render(found, unit=unit, width=screen.width, title=len(plans) > 1, fitted=fitted), screen)

@@ -196,7 +196,35 @@ def observe_frames(
     covariates: Sequence[str] | None = None,
     two_carriers: TwoCarriers | None = None,
 ) -> tuple[Observations, tuple[str, ...]]:
-    """One vehicle's tables as arrays over its segments, and notes on what was estimated or set aside.
+    """One vehicle's tables as arrays over its segments, and notes on what was estimated or is void.
+
+    Raises as observe_log does.
+    """
+    observed, notes, _ = observe_log(
+        entries,
+        modifications,
+        events=events,
+        weather=weather,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        two_carriers=two_carriers,
+    )
+    return observed, notes
+
+
+def observe_log(
+    entries: pd.DataFrame,
+    modifications: pd.DataFrame | None = None,
+    *,
+    events: pd.DataFrame | None = None,
+    weather: pd.DataFrame | None = None,
+    capacity: float | None = None,
+    unit: str = "L",
+    covariates: Sequence[str] | None = None,
+    two_carriers: TwoCarriers | None = None,
+) -> tuple[Observations, tuple[str, ...], SegmentedLog]:
+    """One vehicle's tables as arrays over its segments, notes on what was estimated or is void, and the segments.
 
     two_carriers: of a vehicle with tank and battery; energies are then in kWh, and capacity and unit do not count.
 
@@ -218,7 +246,7 @@ def observe_frames(
         tuple(covariates or ()),
         [] if weather is None else weather_from_frame(weather),
     )
-    return observed, _notes(segmented)
+    return observed, _notes(segmented), segmented
 
 
 def _notes(segmented: SegmentedLog) -> tuple[str, ...]:

@@ -4,11 +4,11 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Mapping, Sequence
-from itertools import pairwise
 from typing import Any, Protocol
 
 from energytrack.consumption.segments import Segment, SegmentedLog, close_segments
 from energytrack.consumption.shares import fitted_periods, shares
+from energytrack.consumption.slips import Case, find_slips
 from energytrack.consumption.terms import ELECTRIC, condition_of, term
 from energytrack.errors import ConsumptionError
 from energytrack.logbook.carriers import for_kind, in_total
@@ -107,6 +107,23 @@ def unusual(segments: Sequence[Segment]) -> list[bool]:
     return [abs(deviation) > UNUSUAL_SD * sd for deviation in deviations]
 
 
+def slip_lines(segmented: SegmentedLog, unlike: Sequence[int], vehicle: Vehicle) -> dict[int, list[str]]:
+    """What may have happened in each of the unusual segments, held against the vehicle's own record."""
+    segments = segmented.segments
+    if vehicle.second_carrier is not None:  # its segments are in kWh, what was typed is not
+        return {which: [] for which in unlike}
+    if not unlike:
+        return {}
+    usual, _, sd = _record(segments)
+    usual_km = _median(segment.distance_km for segment in segments)
+    scatter = [sd / min(1.0, segment.distance_km / usual_km) for segment in segments]
+    expected = [usual] * len(segments)
+    return {
+        which: [str(slip) for slip in find_slips(Case(segmented, which, expected, scatter, vehicle))]
+        for which in unlike
+    }
+
+
 def _record(segments: Sequence[Segment]) -> tuple[float, list[float], float]:
     """Median consumption, each segment's deviation from it, and their robust sd, in energy per km."""
     consumption = [segment.energy / segment.distance_km for segment in segments]
@@ -202,7 +219,7 @@ def _compared(
     ]
     if unusual(segmented.segments)[which]:
         lines.append("unusual for this vehicle: kept; check the amount and the odometer")
-        lines += _digit_swap(segmented, segment, vehicle, expected, sd / 100 * expected)
+        lines += slip_lines(segmented, [which], vehicle)[which]
     return lines
 
 
@@ -246,40 +263,6 @@ def _condition(segmented: SegmentedLog, which: int, name: str) -> float | None:
             total += value * leg.distance_km
             known += leg.distance_km
     return total / known if known > 0 and known >= segment.distance_km / 2 else None
-
-
-def _digit_swap(
-    segmented: SegmentedLog, segment: Segment, vehicle: Vehicle, expected: float, sd: float
-) -> list[str]:
-    """The swap of two neighbouring digits that brings the segment closest to what was expected, if one does."""
-    entry = segmented.entries[segment.legs[-1].entry]
-    fits = []
-    if entry.odometer_km is not None:
-        for typed in _swapped(f"{from_base(entry.odometer_km, vehicle.distance_unit):.0f}"):
-            other = to_base(float(typed), vehicle.distance_unit)
-            distance = segment.distance_km + other - entry.odometer_km
-            if other > segment.legs[-1].start_km and distance > 0:
-                said = f"odometer {distance_text(other, vehicle)}"
-                fits.append((abs(segment.energy / distance - expected), said))
-    unit = vehicle.typed_unit or vehicle.unit
-    for typed in [] if vehicle.second_carrier else _swapped(f"{from_base(entry.energy, unit):.2f}"):
-        amount = to_base(float(typed), unit)
-        energy = segment.energy + amount - entry.energy
-        fits.append((abs(energy / segment.distance_km - expected), f"amount {energy_text(amount, vehicle)}"))
-    gap, said = min(fits, default=(math.inf, ""))
-    return [f"two digits swapped? {said} would fit"] if gap <= WITHIN_SD * sd else []
-
-
-def _swapped(typed: str) -> list[str]:
-    """All numbers that differ from `typed` by one swap of neighbouring digits."""
-    digits = [place for place, sign in enumerate(typed) if sign.isdigit()]
-    swaps = []
-    for left, right in pairwise(digits):
-        if typed[left] != typed[right]:
-            letters = list(typed)
-            letters[left], letters[right] = letters[right], letters[left]
-            swaps.append("".join(letters))
-    return swaps
 
 
 def _still_to_go(

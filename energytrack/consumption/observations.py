@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, fields, replace
 from itertools import chain
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -37,23 +38,53 @@ class Observations:
     names: tuple[str, ...]  # of the modifications, in order of first appearance
     unit: str
     capacity: float | None
+    entry: NDArray[np.intp]  # (n,) index of the entry that closes it, in driving order
+    confirmed: NDArray[np.bool_]  # (n,) holds an entry whose figures somebody confirmed
 
     def __len__(self) -> int:
         return len(self.distance_km)
 
     def head(self, count: int) -> Observations:
         """The first `count` segments, as views: what was known after that many."""
+        return self.part(0, count)
+
+    def part(self, start: int, stop: int) -> Observations:
+        """Segments `start` to `stop` (exclusive), as views."""
+        cut = slice(start, stop)
         shortened = {
-            field.name: getattr(self, field.name)[:count]
+            field.name: getattr(self, field.name)[cut]
             for field in fields(self)
             if isinstance(getattr(self, field.name), np.ndarray)
         }
         return replace(
             self,
             **shortened,
-            conditions={name: values[:count] for name, values in self.conditions.items()},
-            known_share={name: values[:count] for name, values in self.known_share.items()},
+            conditions={name: values[cut] for name, values in self.conditions.items()},
+            known_share={name: values[cut] for name, values in self.known_share.items()},
         )
+
+    def keeping(self, names: Sequence[str]) -> Observations:
+        """Only these modifications; the driving stays as it was."""
+        kept = [self.names.index(name) for name in names]
+        tables = {table: getattr(self, table)[:, kept] for table in _BY_MODIFICATION}
+        return replace(self, **tables, names=tuple(names))
+
+    def leaving_out(self, names: Sequence[str]) -> Observations:
+        """All modifications but these."""
+        return self.keeping([name for name in self.names if name not in names])
+
+    def adding(self, name: str, shares: Array, fitted: Array | None = None) -> Observations:
+        """One more modification: shares (n,) of each segment's distance, times level; on or off without `fitted`."""
+        on = shares if fitted is None else fitted
+        levels = np.divide(np.abs(shares), on, out=np.zeros(len(shares)), where=on > 0)
+        columns = {"shares": shares, "fitted": on, "levels": np.maximum.accumulate(levels)}
+        tables: dict[str, Any] = {
+            table: np.column_stack([getattr(self, table), column]) for table, column in columns.items()
+        }
+        return replace(self, **tables, names=(*self.names, name))
+
+
+_BY_MODIFICATION = ("shares", "fitted", "levels")
 
 
 def observe(
@@ -96,7 +127,14 @@ def observe(
         names=names,
         unit=segmented.unit,
         capacity=segmented.capacity,
+        entry=np.array([segment.legs[-1].entry for segment in segments], dtype=np.intp),
+        confirmed=_confirmed(segmented),
     )
+
+
+def _confirmed(segmented: SegmentedLog) -> NDArray[np.bool_]:
+    sure = [entry.confirmed for entry in segmented.entries]
+    return np.array([any(sure[leg.entry] for leg in segment.legs) for segment in segmented.segments], dtype=np.bool_)
 
 
 def _conditions(

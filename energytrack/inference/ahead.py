@@ -8,46 +8,29 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from energytrack.consumption.conditions import Conditions
+from energytrack.inference.growing import growing_products
 from energytrack.inference.model import Model, stack
-from energytrack.inference.noise import Array, Scatter, products, structure
-from energytrack.inference.shift import contrast_variance
+from energytrack.inference.noise import Array, Scatter, Structure, structure
 
 RECENT = 40  # segments that make up the habit
 HORIZON_DAYS, HORIZON_KM = 3 * 365.25, 100_000.0  # whichever comes first: nobody plans a test beyond
 _MOST_SEGMENTS = 2_000
 _STEP = 0.02  # in log standard deviation, for the freedom's derivative
+_FLAT = 1e-4  # precision of the flat priors, so that a log without a baseline is no error: it tells next to nothing
 _SHORTEST_DAYS = 0.1  # of an average future segment, for logs whose entries share one date
 
-Schedule = Callable[[int], Array]  # number of segments ahead -> share of each driven with the modification, (m,)
+# days from now at which each of the m segments ahead ends (m,) -> share of each driven with the modification (m,)
+Schedule = Callable[[Array], Array]
 
 
-def always_fitted(count: int) -> Array:
+def always_fitted(ends: Array) -> Array:
     """One switch: the modification stays on."""
-    return np.ones(count)
-
-
-def alternating(every: int) -> Schedule:
-    """On for `every` segments, off for as many, and so on."""
-
-    def schedule(count: int) -> Array:
-        on: Array = (np.arange(count) // every % 2 == 0).astype(float)
-        return on
-
-    return schedule
-
-
-def off_first(without: int) -> Schedule:
-    """More baseline first: off for `without` segments, then on to the end."""
-
-    def schedule(count: int) -> Array:
-        on: Array = (np.arange(count) >= without).astype(float)
-        return on
-
-    return schedule
+    return np.ones(len(ends))
 
 
 @dataclass(frozen=True)
@@ -82,31 +65,53 @@ class Road:
     def ahead(self) -> int:
         return len(self.distance) - self.past
 
-    def variance(self, count: int, theta: Array) -> float:
-        """Variance of the shift (as a ratio) once `count` of the segments ahead have been driven."""
-        n = self.past + count
-        shape = structure(
-            self.distance[:n],
-            self.day[:n],
-            self.linked[:n],
-            self.start_weight[:n],
-            self.end_weight[:n],
-            extra=self.extra[:n],
-        )
-        normal = products(shape, Scatter(*np.exp(theta)), self.columns[:n]).cross + np.diag(self.precision)
-        covariance: Array = np.linalg.inv(normal).astype(np.float64)
-        return contrast_variance(covariance, self.base, self.ratio)
+    def normals(self, theta: Array) -> Array:
+        """Normal matrices of the coefficients (m + 1, p, p) once 0 ... m of the segments ahead have been driven."""
+        cross = growing_products(self._shape, Scatter(*np.exp(theta)), self.columns, self.past)
+        normals: Array = cross + np.diag(np.maximum(self.precision, _FLAT))
+        return normals
 
-    def freedom(self, count: int, theta: Array) -> float:
-        """Satterthwaite degrees of freedom by then: what the log told of the noise grows with its length."""
-        slope = np.array(
-            [
-                (self.variance(count, theta + step) - self.variance(count, theta - step)) / (2 * _STEP)
-                for step in _STEP * np.eye(4)
-            ]
+    def variances(self, theta: Array) -> Array:
+        """Variance of the shift (m + 1,), as a ratio; infinite before anything was driven with the modification."""
+        found = np.full(self.ahead + 1, np.inf)
+        found[self._begun :] = shift_variance(self.normals(theta)[self._begun :], self.base, self.ratio)
+        return found
+
+    def variance(self, count: int, theta: Array) -> float:
+        """Variance of the shift once `count` of the segments ahead have been driven."""
+        return float(self.variances(theta)[count])
+
+    def freedoms(self, theta: Array) -> Array:
+        """Satterthwaite degrees of freedom (m + 1,): what the log tells of the noise grows with its length."""
+        first = self._begun
+        variance = self.variances(theta)[first:]
+        moved = [(self.variances(theta + step), self.variances(theta - step)) for step in _STEP * np.eye(4)]
+        slope = np.array([(up[first:] - down[first:]) / (2 * _STEP) for up, down in moved]).T[:, :, None]
+        length = (self.past + np.arange(first, self.ahead + 1)) / self.past
+        precision = self.noise_prior + self.noise_known * length[:, None, None]
+        wobble = (slope * np.linalg.solve(precision, slope)).sum(axis=(1, 2))
+        found = np.ones(self.ahead + 1)
+        found[first:] = np.maximum(2 * variance**2 / wobble, 1.0)
+        return found
+
+    @cached_property
+    def _shape(self) -> Structure:
+        return structure(
+            self.distance, self.day, self.linked, self.start_weight, self.end_weight, extra=self.extra
         )
-        precision = self.noise_prior + self.noise_known * (self.past + count) / self.past
-        return max(1.0, float(2 * self.variance(count, theta) ** 2 / (slope @ np.linalg.solve(precision, slope))))
+
+    @property
+    def _begun(self) -> int:
+        """Segments ahead after which something was driven with the modification; one more than there are for never."""
+        return 0 if self.begins is None else self.begins + 1
+
+
+def shift_variance(normals: Array, base: float, ratio: float) -> Array:
+    """Variance of the shift by the delta method (k,), from normal matrices of the coefficients (k, p, p)."""
+    direction = np.zeros((normals.shape[-1], 1))
+    direction[:2, 0] = -ratio / base, 1 / base
+    variance: Array = (direction * np.linalg.solve(normals, direction)).sum(axis=(1, 2))
+    return variance
 
 
 @dataclass(frozen=True)
@@ -120,7 +125,7 @@ class Reach:
 def road(model: Model, schedule: Schedule, seed: int) -> Road:
     """The log of `model`, continued to the horizon."""
     habit = _habit(model, seed)
-    shares = schedule(len(habit.distance_km))
+    shares = schedule(habit.ends)
     observed, scale = model.observed, model.scale
     distance = np.concatenate([observed.distance_km, habit.distance_km]) / scale.distance_km
     ahead = _columns_ahead(model, habit.conditions, shares) * (habit.distance_km / scale.distance_km)[:, None]
@@ -184,6 +189,12 @@ def segments_within(ahead: Road, distance_km: float) -> int:
     """How many of the segments ahead fit into a distance, at least one."""
     driven = np.cumsum(ahead.distance[ahead.past :]) * ahead.kilometre
     return max(1, int(np.searchsorted(driven, distance_km, side="right")))
+
+
+def segments_begun(ahead: Road, distance_km: float) -> int:
+    """How many of the segments ahead a distance reaches into, at least one."""
+    driven = np.cumsum(ahead.distance[ahead.past :]) * ahead.kilometre
+    return max(1, min(ahead.ahead, int(np.searchsorted(driven, distance_km * (1 - 1e-9), side="left")) + 1))
 
 
 def _within(before: float, after: float, wanted: float) -> float:

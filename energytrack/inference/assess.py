@@ -6,21 +6,30 @@ import datetime as dt
 from collections.abc import Sequence
 from dataclasses import replace
 from math import sqrt
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
-from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.columns import flags
+from energytrack.consumption.frames import events_from_frame, modifications_from_frame, observe_log
 from energytrack.consumption.observations import Observations
+from energytrack.consumption.oddities import set_aside as sort_out
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
 from energytrack.inference.caveats import caveats
+from energytrack.inference.coincidence import coincidences
+from energytrack.inference.confounding import with_confounders
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import need, remedies
+from energytrack.inference.known import with_known_change
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.question import Question
-from energytrack.inference.results import Assessment, Verdict
+from energytrack.inference.response import from_first_level, has_levels, respond
+from energytrack.inference.results import Assessment, Rule, Verdict, WithAll
+from energytrack.inference.several import never_apart, refusal, together
+from energytrack.inference.suspects import suspects
+from energytrack.logbook.records import Vehicle
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -41,20 +50,29 @@ def assess(
     events: pd.DataFrame | None = None,
     two_carriers: TwoCarriers | None = None,
     every_look: bool = True,
+    rule: Rule = "every-look",
+    looks_taken: Sequence[float] = (),
+    set_aside: Literal["odd", "none"] = "odd",
+    typed_in: tuple[str, str | None] = ("km", None),
 ) -> Assessment:
     """Answer the main question for one modification of one vehicle.
 
     entries, modifications, weather, events: tables as in docs/reference.md, of one vehicle. `capacity` in `unit`
     (L, kg, kWh) is estimated from the log where it is not given. `covariates` names numeric columns used besides
     temperature and speed. `every_look=False` looks only once, at the end, as if nobody had looked before.
+    `rule`: "every-look", whose bound holds however often someone looks; "counted", where only the looks taken count:
+    those at the odometer positions `looks_taken` (km) and this one; "open-ended", a watch that never closes.
+    `set_aside="none"` keeps what stands out from its neighbours. `typed_in`: units of distance and energy in which the
+    log was typed, for naming slips of digits (energy None: as `unit`).
     `two_carriers` is of a vehicle with tank and battery: its fill-ups are in the fuel's unit, charges and answers in
     kWh, and `capacity` and `unit` do not count.
 
     Raises ConsumptionError for tables that hold no measurable driving, UnknownNameError for a modification that is
-    not in the table, InferenceError for a target, confidence or power outside its range.
+    not in the table, InferenceError for a target, confidence or power outside its range, or an unknown rule.
     """
-    question = Question(name, float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
-    observed, notes = observe_frames(
+    further, reversible = tuple(covariates or ()), _reversible(modifications, name)
+    question = Question(name, float(target_percent) / 100, 1 - confidence, power, further, rule, reversible)
+    observed, notes, segmented = observe_log(
         entries,
         modifications,
         events=events,
@@ -67,14 +85,60 @@ def assess(
     if name not in observed.names:
         raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
-    states = take_looks(observed, question, every=every_look)
-    blank = _blank(vehicle, observed, question, notes)
-    return _answer(blank, observed, question, states) if states else _before_the_first_look(blank, observed, question)
+    rows = modifications_from_frame(modifications, vehicle or None)
+    notes = (*coincidences(() if events is None else events_from_frame(events, vehicle or None), rows, name), *notes)
+    partners = never_apart(observed, name)
+    if partners:
+        observed, notes = observed.leaving_out(partners), (refusal(name, partners), *notes)
+    observed = from_first_level(observed, name)
+    found = sort_out(observed, question.covariates) if set_aside == "odd" else None
+
+    def decided(odd: bool) -> Assessment:
+        blank = _blank(vehicle, found.kept if odd and found is not None else observed, question, notes)
+        return _decided(replace(blank, never_apart=partners), observed, question, every_look, looks_taken, odd=odd)
+
+    answer = with_known_change(decided(found is not None), rows)
+    if found is not None and found.odd:
+        whole = decided(odd=False)
+        typist = Vehicle(vehicle, "", unit, capacity, typed_in[0], typed_unit=typed_in[1])
+        answer = replace(
+            answer,
+            set_aside=suspects(segmented, found, typist, as_typed=two_carriers is None),
+            verdict_with_all=WithAll(whole.verdict, whole.shift_percent, whole.interval_percent),
+        )
+    if not answer.looks or not has_levels(modifications, name):
+        return answer
+    graded = respond(
+        entries,
+        modifications,
+        name,
+        target_percent=target_percent,
+        confidence=confidence,
+        power=power,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        weather=weather,
+        events=events,
+        two_carriers=two_carriers,
+    )
+    return replace(answer, response=graded)
 
 
-def _answer(blank: Assessment, observed: Observations, question: Question, states: list[State]) -> Assessment:
+def _decided(
+    blank: Assessment, observed: Observations, question: Question, every: bool, taken: Sequence[float], *, odd: bool
+) -> Assessment:
+    """The answer from the whole log, or with what is odd in it set aside."""
+    states = take_looks(observed, question, every=every, taken=taken, odd=odd)
+    if states:
+        return _answer(blank, question, states)
+    left = sort_out(observed, question.covariates).kept if odd else observed
+    return _before_the_first_look(blank, left, question)
+
+
+def _answer(blank: Assessment, question: Question, states: list[State]) -> Assessment:
     now, found = states[-1], finding(states, question.target)
-    shift, theta = now.shift, bounds.drift(question.alpha, question.power)
+    shift, theta = now.shift, question.drift
     answer = replace(
         blank,
         shift_percent=100 * shift.ratio,
@@ -87,9 +151,12 @@ def _answer(blank: Assessment, observed: Observations, question: Question, state
         covariates=covariates_of(now.model),
         looks=tuple(shown(state) for state in states),
         expectation=expectation_of(now.model),
+        together=together(now.model, question),
         warnings=(*blank.warnings, *caveats(now.model)),
     )
-    return _open(answer, now.model, question) if found is None else _closed(answer, *found, question)
+    if found is not None:
+        return _closed(answer, *found, question)
+    return with_confounders(_open(answer, now.model, question), now.model, question)
 
 
 def _before_the_first_look(blank: Assessment, observed: Observations, question: Question) -> Assessment:
@@ -112,16 +179,16 @@ def _open(answer: Assessment, model: Model, question: Question) -> Assessment:
     """The test goes on: how far, or why not and what would help."""
     required = need(model, always_fitted, question)
     driven, central = answer.distance_modified_km, required.central
-    theta = bounds.drift(question.alpha, question.power)
+    expected = required.expected_km if question.has_end else None  # known for the bound that ends at this distance
     return replace(
         answer,
-        verdict="out-of-reach" if central is None else "not-yet",
+        verdict="out-of-reach" if central is None and question.has_end else "not-yet",
         distance_needed_km=None if central is None else driven + central.distance_km,
         distance_to_go_km=None if central is None else central.distance_km,
         distance_to_go_interval_km=required.interval_km,
         days_to_go=None if central is None else central.days,
-        distance_expected_km=None if required.expected_km is None else driven + required.expected_km,
-        resolvable_at_best_percent=100 * theta * sqrt(required.best_variance),
+        distance_expected_km=None if expected is None else driven + expected,
+        resolvable_at_best_percent=100 * question.drift * sqrt(required.best_variance),
         remedies=() if central else remedies(model, required, question),
     )
 
@@ -176,9 +243,17 @@ def _blank(vehicle: str, observed: Observations, question: Question, notes: tupl
         remedies=(),
         expectation=None,
         warnings=notes,
+        rule=question.rule,
+        reversible=question.reversible,
     )
 
 
 def _driven_with(observed: Observations, modification: str) -> float:
     """Distance driven with the modification fitted, at whatever level (km)."""
     return float(observed.distance_km @ observed.fitted[:, observed.names.index(modification)])
+
+
+def _reversible(modifications: pd.DataFrame, name: str) -> bool:
+    """False where any row of the modification says so, in an optional column `reversible`."""
+    own = modifications[modifications["name"] == name] if "name" in modifications else modifications[:0]
+    return all(flags(own, "reversible", True))

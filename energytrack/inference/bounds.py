@@ -58,7 +58,12 @@ def critical(information: float, freedom: float, alpha: float) -> float | None:
 
     The normal bound b / sqrt(share) is turned into a tail probability and read off the mixture for `freedom`.
     """
-    tail = float(ndtr(-level(alpha) / sqrt(information))) if information > 0 else 0.0
+    return widened(level(alpha) / sqrt(information), freedom) if information > 0 else None
+
+
+def widened(known: float, freedom: float) -> float | None:
+    """A bound on |z| for known noise as one for noise estimated with `freedom`; None beyond any number."""
+    tail = float(ndtr(-known))
     return mixture_quantile(tail, freedom) if tail > _SMALLEST_TAIL else None
 
 

@@ -1,4 +1,4 @@
-"""What a careful reader of the answer should know: conditions that differ, values filled in, parts never apart."""
+"""What a careful reader of the answer should know: conditions that differ, values filled in, parts taken off."""
 
 from __future__ import annotations
 
@@ -11,15 +11,18 @@ from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
 
 _LITTLE = 0.3  # share of one phase's conditions met in the other, below which the comparison leans on the fitted curve
+_ALWAYS = 0.98  # correlation of two modifications' shares
 _CLEARLY = 2.0  # standard errors by which the charging of the two phases differs
 _WORTH_SAYING = 1.0  # percent of consumption moved by it
-_NEVER_APART = 0.98  # correlation of two modifications' shares
 _NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
 
 
 def caveats(model: Model) -> tuple[str, ...]:
     """Warnings about an answer, most weighty first."""
-    found = (_never_apart, _not_fitted_now, _charging_changed, _little_overlap, _other_level, _filled_in, _no_weather)
+    found = (
+        *(_took_turns, _not_fitted_now, _charging_changed),
+        *(_little_overlap, _other_level, _filled_in, _no_weather),
+    )
     return tuple(caveat for find in found for caveat in find(model))
 
 
@@ -28,23 +31,16 @@ def _shares(model: Model, name: str) -> Array:
     return shares
 
 
-def _never_apart(model: Model) -> list[str]:
+def _took_turns(model: Model) -> list[str]:
     if model.modification is None:
         return []
-    own, found = _shares(model, model.modification), []
-    for other in model.others:
-        correlation = float(np.corrcoef(own, _shares(model, other))[0, 1])
-        if correlation > _NEVER_APART:
-            found.append(
-                f"{model.modification} and {other} were (nearly) always fitted together: the log cannot tell them "
-                f"apart. Drive some full tanks with only one of them, or log the two as one modification."
-            )
-        elif correlation < -_NEVER_APART:
-            found.append(
-                f"{model.modification} and {other} (nearly) always took each other's place: the log cannot tell their "
-                f"effects apart. Drive some full tanks with neither or both, or log the exchange as one modification."
-            )
-    return found
+    own = _shares(model, model.modification)
+    return [
+        f"{model.modification} and {other} (nearly) always took each other's place: the log cannot tell their "
+        f"effects apart. Drive some full tanks with neither or both, or log the exchange as one modification."
+        for other in model.others
+        if np.corrcoef(own, _shares(model, other))[0, 1] < -_ALWAYS
+    ]
 
 
 def _not_fitted_now(model: Model) -> list[str]:

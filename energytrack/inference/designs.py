@@ -1,4 +1,4 @@
-"""Ways to run a test before anything is fitted, compared in km."""
+"""Ways to run a test before anything is fitted, compared in km: from a log, or from stated figures."""
 
 from __future__ import annotations
 
@@ -6,13 +6,15 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.oddities import set_aside
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.inference.describe import noise_of
-from energytrack.inference.distance import ALTERNATIONS, design
 from energytrack.inference.looks import FEWEST_BASELINE
 from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.results import Plan
+from energytrack.inference.stated import Stated, stated_model
+from energytrack.inference.ways import designs
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -30,13 +32,16 @@ def plan(
     covariates: Sequence[str] | None = None,
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
+    reversible: bool = True,
     two_carriers: TwoCarriers | None = None,
 ) -> Plan:
-    """Distance to the target for one switch and for alternating, from the log's own noise, habit and seasons.
+    """Distance to the target for each way to run the test, from the log's own noise, habit and seasons.
 
     Tables and errors as for `assess`. Modifications already logged are allowed for, and stay as they are now.
+    reversible: whether the part can be taken off again; if not, only ways that never do are compared.
     """
-    question = Question("", float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
+    further = tuple(covariates or ())
+    question = Question("", float(target_percent) / 100, 1 - confidence, power, further, reversible=reversible)
     observed, notes = observe_frames(
         entries,
         modifications,
@@ -48,9 +53,9 @@ def plan(
         two_carriers=two_carriers,
     )
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
-    ready = len(observed.energy) >= FEWEST_BASELINE
-    model = fit_model(observed, None, covariates=question.covariates) if ready else None
-    ways = (None, *ALTERNATIONS)
+    usual = set_aside(observed, question.covariates).kept  # odd entries are no part of the noise to plan with
+    ready = len(usual) >= FEWEST_BASELINE
+    model = fit_model(usual, None, covariates=question.covariates) if ready else None
     return Plan(
         vehicle=vehicle,
         unit=observed.unit,
@@ -60,6 +65,44 @@ def plan(
         distance_baseline_km=float(observed.distance_km.sum()),
         segments_baseline=len(observed.energy),
         noise=None if model is None else noise_of(model),
-        designs=() if model is None else tuple(design(model, every, question) for every in ways),
+        designs=() if model is None else designs(model, question),
         warnings=notes,
+        reversible=reversible,
     )
+
+
+def plan_from(
+    stated: Stated,
+    target_percent: float = 3.0,
+    *,
+    confidence: float = 0.95,
+    power: float = 0.80,
+    reversible: bool = True,
+) -> Plan:
+    """The same comparison without a log: driving and noise as stated. Distances count from after the baseline.
+
+    Raises InferenceError for a target, confidence or power outside its range.
+    """
+    question = Question("", float(target_percent) / 100, 1 - confidence, power, reversible=reversible)
+    model = stated_model(stated)
+    return Plan(
+        vehicle="",
+        unit=stated.unit,
+        target_percent=100 * question.target,
+        confidence=confidence,
+        power=power,
+        distance_baseline_km=float(model.observed.distance_km.sum()),
+        segments_baseline=len(model.observed),
+        noise=noise_of(model),
+        designs=designs(model, question),
+        warnings=_left_open(stated),
+        reversible=reversible,
+        stated=True,
+    )
+
+
+def _left_open(stated: Stated) -> tuple[str, ...]:
+    """What was not stated and is taken as usual."""
+    figures = {"drift over weeks": stated.drift, "drift over seasons": stated.season_drift, "filling": stated.filling}
+    open_ = [name for name, value in figures.items() if value is None]
+    return (f"not stated, taken as usual: {', '.join(open_)}",) if open_ else ()

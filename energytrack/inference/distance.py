@@ -4,40 +4,60 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
-from functools import cache, partial
-from itertools import accumulate
+from functools import cache
 from math import ceil, sqrt
 from typing import Literal
 
 import numpy as np
 
 from energytrack.inference import bounds
-from energytrack.inference.ahead import (
-    Reach,
-    Road,
-    Schedule,
-    alternating,
-    always_fitted,
-    off_first,
-    reach,
-    road,
-    segments_within,
-)
+from energytrack.inference.ahead import Reach, Road, Schedule, always_fitted, reach, road
 from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
-from energytrack.inference.results import Design, Remedy
+from energytrack.inference.results import Remedy
+from energytrack.inference.schedules import alternating, off_first
 
 _DRAWS = 40  # of the noise and the habit, for the 80 % range
 _LOW, _HIGH = 0.10, 0.90
 _WIDEST = 2.5  # standard deviations a draw of the noise may stray
 ALTERNATIONS = (1, 2, 4)  # fill-ups between swaps
+LONGER_BASELINES = (10, 20, 40, 80, 160)  # fill-ups without it first
 _ALTERNATING = tuple(
     ("every fill-up" if every == 1 else f"every {every} fill-ups", alternating(every)) for every in ALTERNATIONS
 )
-_LONGER_BASELINE = tuple((f"{count} fill-ups without it first", off_first(count)) for count in (10, 20, 40, 80, 160))
+_LONGER_BASELINE = tuple((f"{count} fill-ups without it first", off_first(count)) for count in LONGER_BASELINES)
 _Options = tuple[tuple[str, Schedule], ...]
-DISTANCES_KM = (1_000, 2_500, 5_000, 10_000)
+
+
+@dataclass(frozen=True)
+class Course:
+    """A road, and how the variance of the shift falls along it."""
+
+    road: Road
+    variances: Array  # (m + 1,) after so many of the segments ahead, the noise known
+    priced: Callable[[int], float]  # the same for a test that must estimate the noise as well
+
+    def reach(self, variance: float) -> Reach | None:
+        """Where the priced variance has fallen so far; None beyond the horizon."""
+        return reach(self.road, self.priced, variance)
+
+    def price(self, count: int) -> float:
+        """Factor on the variance after so many segments for not knowing the noise."""
+        return self.priced(count) / float(self.variances[count])
+
+
+def course(model: Model, schedule: Schedule, question: Question) -> Course:
+    """The road under a schedule, with its information."""
+    ahead, theta = road(model, schedule, seed=0), model.fit.theta
+    variances = ahead.variances(theta)
+    freedoms = cache(lambda: ahead.freedoms(theta))  # eight times the work of the variances: only where asked for
+
+    @cache
+    def priced(count: int) -> float:
+        return float(variances[count]) * bounds.price(float(freedoms()[count]), question.alpha) ** 2
+
+    return Course(ahead, variances, priced)
 
 
 @dataclass(frozen=True)
@@ -52,30 +72,32 @@ class Need:
 
 def need(model: Model, schedule: Schedule, question: Question) -> Need:
     """Distance ahead, under a schedule, until a shift of the target size can be resolved."""
-    ahead = road(model, schedule, seed=0)
-    priced = _priced_variance(model, ahead, question)
+    return need_along(course(model, schedule, question), model, schedule, question)
+
+
+def need_along(here: Course, model: Model, schedule: Schedule, question: Question) -> Need:
+    """The same where the course is known already."""
     wanted = 1 / question.information
-    central = reach(ahead, priced, wanted)
-    sooner = reach(ahead, priced, wanted / bounds.expected_share(question.alpha, question.power))
-    last = priced(ahead.ahead)
-    price = last / ahead.variance(ahead.ahead, model.fit.theta)
+    sooner = here.reach(wanted / bounds.expected_share(question.alpha, question.power))
+    last = here.road.ahead
+    price = here.price(last) if np.isfinite(here.variances[last]) else 1.0
+    central = here.reach(wanted)
     return Need(
         central=central,
-        interval_km=_interval(model, schedule, wanted / price),
+        interval_km=_holding(central, _interval(model, schedule, wanted / price)),
         expected_km=None if sooner is None else sooner.distance_km,
-        best_variance=last,
+        best_variance=here.priced(last),
     )
 
 
-def _priced_variance(model: Model, ahead: Road, question: Question) -> Callable[[int], float]:
-    """Variance of the shift after so many segments, raised by the price of not knowing the noise by then."""
-    theta = model.fit.theta
-
-    @cache
-    def priced(count: int) -> float:
-        return ahead.variance(count, theta) * bounds.price(ahead.freedom(count, theta), question.alpha) ** 2
-
-    return priced
+def _holding(
+    central: Reach | None, interval: tuple[float, float | None] | None
+) -> tuple[float, float | None] | None:
+    """The range, widened to the best guess where a road of few segments left it outside."""
+    if central is None or interval is None:
+        return interval
+    low, high = interval
+    return min(low, central.distance_km), None if high is None else max(high, central.distance_km)
 
 
 def _interval(model: Model, schedule: Schedule, wanted: float) -> tuple[float, float | None] | None:
@@ -83,7 +105,7 @@ def _interval(model: Model, schedule: Schedule, wanted: float) -> tuple[float, f
     reached = []
     for seed, theta in enumerate(_thetas(model), start=1):
         ahead = road(model, schedule, seed)
-        reached.append(reach(ahead, partial(ahead.variance, theta=theta), wanted))
+        reached.append(reach(ahead, ahead.variances(theta).__getitem__, wanted))
     ordered = sorted(float("inf") if r is None else r.distance_km for r in reached)
     low, high = (ordered[round(q * (len(ordered) - 1))] for q in (_LOW, _HIGH))
     if low == float("inf"):
@@ -100,38 +122,12 @@ def _thetas(model: Model) -> Array:
     return draws
 
 
-def design(model: Model, every: int | None, question: Question) -> Design:
-    """One way to run the test from here: one switch (`every` None), or alternating every so many fill-ups."""
-    schedule = always_fitted if every is None else alternating(every)
-    required = need(model, schedule, question)
-    ahead = road(model, schedule, seed=0)
-    priced = _priced_variance(model, ahead, question)
-    z = bounds.drift(question.alpha, question.power)
-    by_then = [100 * z * sqrt(priced(segments_within(ahead, km))) for km in DISTANCES_KM]
-    never_worse = accumulate(by_then, min)  # the freedom is an approximation, and may lose more than a segment brings
-    return Design(
-        name="one-switch" if every is None else "alternate",
-        every_fillups=every,
-        swaps=_swaps(ahead, every, required.central),
-        distance_km=None if required.central is None else required.central.distance_km,
-        distance_interval_km=required.interval_km,
-        days=None if required.central is None else required.central.days,
-        resolvable_percent={str(km): shift for km, shift in zip(DISTANCES_KM, never_worse, strict=True)},
-    )
-
-
-def _swaps(ahead: Road, every: int | None, central: Reach | None) -> int | None:
-    """Times the part goes on or comes off, the first fitting included."""
-    if every is None:
-        return 1
-    if central is None:
-        return None
-    return ceil((segments_within(ahead, central.distance_km) + 1) / every)
-
-
 def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, ...]:
-    """What would bring an out-of-reach target within reach: each option that does, with its distance."""
-    best = 100 * bounds.drift(question.alpha, question.power) * sqrt(required.best_variance)
+    """What would bring an out-of-reach target within reach: each option that does, with its distance.
+
+    Of a modification that cannot be taken off again, none that takes it off.
+    """
+    best = 100 * question.drift * sqrt(required.best_variance)
     larger = ceil(best * 1.15 * 2) / 2  # a little above the limit, which itself is never reached; in half percents
     found = []
     if larger < 100:
@@ -142,6 +138,8 @@ def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, 
         ("longer-baseline", _LONGER_BASELINE),
     )
     for what, options in ways:
+        if not question.reversible and (what == "alternate" or model.modification is not None):
+            continue
         reached = [(_distance(model, schedule, question), detail) for detail, schedule in options]
         within = [(distance, detail) for distance, detail in reached if distance is not None]
         if within:
@@ -151,6 +149,5 @@ def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, 
 
 
 def _distance(model: Model, schedule: Schedule, question: Question) -> float | None:
-    ahead = road(model, schedule, seed=0)
-    found = reach(ahead, _priced_variance(model, ahead, question), 1 / question.information)
+    found = course(model, schedule, question).reach(1 / question.information)
     return None if found is None else found.distance_km

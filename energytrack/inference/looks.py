@@ -9,7 +9,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from energytrack.consumption.observations import Observations
-from energytrack.inference import bounds
+from energytrack.consumption.oddities import set_aside
+from energytrack.inference import bounds, rules
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
@@ -19,6 +20,7 @@ from energytrack.inference.shift import Shift, shift_of
 FEWEST_BASELINE = 5  # segments without the modification before anything is said
 _EACH = 80  # looks taken one by one; then ever more sparsely, so that the cost stays linear in the log
 _SPARSER = 1.05
+_SAME_PLACE_KM = 0.5  # no odometer shows less
 
 
 @dataclass(frozen=True)
@@ -28,7 +30,8 @@ class State:
     segments: int  # of the log, up to this look
     model: Model
     shift: Shift
-    share: float  # of the information needed, counted after the price of not knowing the noise
+    share: float  # of the information needed, counted after the price of not knowing the noise; 1 at most
+    has_end: bool  # complete information closes the test
     bound: float | None
     interval: tuple[float, float] | None
 
@@ -38,36 +41,62 @@ class State:
 
     @property
     def complete(self) -> bool:
-        return self.share >= 1.0
+        return self.has_end and self.share >= 1.0
 
 
-def take_look(observed: Observations, question: Question, start: Array | None) -> State:
-    """Fit what is known so far and hold the shift against its bound."""
+def take_look(observed: Observations, question: Question, start: Array | None, watch: rules.Watch) -> State:
+    """Fit what is known so far and hold the shift against the bound of the rule at work."""
     model = fit_model(observed, question.modification, covariates=question.covariates, start=start)
+    return judged(model, question, watch)
+
+
+def judged(model: Model, question: Question, watch: rules.Watch) -> State:
+    """The test as a fitted model has it."""
     shift = shift_of(model.fit)
     priced = shift.standard_error * bounds.price(shift.freedom, question.alpha)
-    share = min(1.0, 1 / priced**2 / question.information)
-    bound = bounds.critical(share, shift.freedom, question.alpha)
-    return State(len(observed.energy), model, shift, share, bound, shift.interval(bound, model.fit))
+    share = 1 / priced**2 / question.information
+    known = watch(share)
+    bound = None if known is None else bounds.widened(known, shift.freedom)
+    return State(len(model.observed), model, shift, min(1.0, share), question.has_end, bound, shift.interval(bound))
 
 
-def take_looks(observed: Observations, question: Question, *, every: bool) -> list[State]:
-    """States in driving order; only the last one where `every` is False. Empty without a baseline or a test phase."""
+def take_looks(
+    observed: Observations, question: Question, *, every: bool, taken: Sequence[float] = (), odd: bool = True
+) -> list[State]:
+    """States in driving order; only the last one where `every` is False. Empty without a baseline or a test phase.
+
+    taken: how far the log had come (km) at the looks taken before, where looks are counted.
+    odd: what stands out is set aside, at each look by the segments up to it. A look is only taken where its newest
+    segment is kept: one that stands out is held back until the next one agrees with it.
+    """
     counts = look_points(observed, question.modification)
+    if question.rule == "counted":
+        counts = _counted(observed, question.modification, taken)
+    watch = rules.watch(question.rule, question.alpha)
     states: list[State] = []
-    for count in counts if every else counts[-1:]:
-        start = states[-1].model.fit.theta if states else None
-        states.append(take_look(observed.head(count), question, start))
+    for count in counts if every else reversed(counts):
+        seen = _kept(observed.head(count), question) if odd else observed.head(count)
+        if seen is None:
+            continue
+        states.append(take_look(seen, question, states[-1].model.fit.theta if states else None, watch))
+        if not every:
+            break
     return states
+
+
+def _kept(observed: Observations, question: Question) -> Observations | None:
+    """What is not odd in it; None where the newest segment is, or too little is left to compare."""
+    sorted_out = set_aside(observed, question.covariates)
+    left = sorted_out.kept
+    ready = sorted_out.newest_kept and len(look_points(left, question.modification)) > 0
+    return left if ready else None
 
 
 def look_points(observed: Observations, modification: str) -> list[int]:
     """Numbers of segments at which to look: from the first one driven with the modification, given a baseline."""
-    fitted = observed.fitted[:, observed.names.index(modification)] > 0
-    ready = np.flatnonzero((np.cumsum(~fitted) >= FEWEST_BASELINE) & (np.cumsum(fitted) >= 1))
-    if ready.size == 0:
+    counts = _ready(observed, modification)
+    if not counts:
         return []
-    counts = (ready + 1).tolist()
     points, step = counts[:_EACH], 1.0
     position = float(len(points))
     while position < len(counts):
@@ -75,6 +104,22 @@ def look_points(observed: Observations, modification: str) -> list[int]:
         step *= _SPARSER
         position += step
     return points if points[-1] == counts[-1] else [*points, counts[-1]]
+
+
+def _ready(observed: Observations, modification: str) -> list[int]:
+    """Every number of segments that holds a baseline and something driven with the modification."""
+    fitted = observed.fitted[:, observed.names.index(modification)] > 0
+    ready = np.flatnonzero((np.cumsum(~fitted) >= FEWEST_BASELINE) & (np.cumsum(fitted) >= 1))
+    counts: list[int] = (ready + 1).tolist()
+    return counts
+
+
+def _counted(observed: Observations, modification: str, taken: Sequence[float]) -> list[int]:
+    """Numbers of segments closed at the looks that were taken, and now."""
+    ready = _ready(observed, modification)
+    closed = np.searchsorted(observed.end_km, np.asarray(taken, dtype=np.float64) + _SAME_PLACE_KM, side="right")
+    seen = set(closed.tolist())
+    return [count for count in ready if count in seen or count == ready[-1]]
 
 
 def finding(states: Sequence[State], target: float) -> tuple[Verdict, State] | None:

@@ -24,7 +24,7 @@ Array = NDArray[np.float64]
 
 HALF_LIFE_DAYS = (21.0, 180.0)  # of the drift of weeks and of the drift of seasons
 _SAME_DAY = 0.02  # days; closer dates are taken as this far apart, so that the drift's precision stays finite
-_LATENT = 3  # weeks, seasons, level: the unknowns that come with each segment
+LATENT = 3  # weeks, seasons, level: the unknowns that come with each segment
 _BLOCK = 2_000  # segments whose factor and columns fit a processor's cache together
 
 
@@ -96,8 +96,8 @@ def products(shape: Structure, scatter: Scatter, columns: Array) -> Products:
 
     Woodbury: V = R + A Q^-1 A', so V^-1 = R^-1 - R^-1 A M^-1 A' R^-1 with M = Q + A' R^-1 A banded.
     """
-    own, shared, remainder = _loadings(shape, scatter)
-    band = _posterior_precision(shape, own, shared, remainder)
+    own, shared, remainder = loadings(shape, scatter)
+    band = posterior_precision(shape, own, shared, remainder)
     factor, fault = lapack.dpbtrf(band, lower=1)
     if fault:
         raise FloatingPointError("the precision of drift and levels is not positive definite")
@@ -115,25 +115,25 @@ def _explained(factor: Array, own: Array, shared: Array, weighted: Array) -> Arr
     passed = np.zeros_like(weighted)
     passed[:-1] = shared[1:, None] * weighted[1:]
     total = np.zeros((weighted.shape[1], weighted.shape[1]))
-    last = np.zeros((_LATENT, weighted.shape[1]))  # the rows of L^-1 A' W before the block
+    last = np.zeros((LATENT, weighted.shape[1]))  # the rows of L^-1 A' W before the block
     for start in range(0, len(weighted), _BLOCK):
         block = slice(start, start + _BLOCK)
         part = own[block, :, None] * weighted[block, None, :]
         part[:, 2] += passed[block]
         rows = part.reshape(-1, weighted.shape[1])
-        first = _LATENT * start
-        for back in range(_LATENT if start else 0):
+        first = LATENT * start
+        for back in range(LATENT if start else 0):
             for row in range(back + 1):  # L reaches three rows below its diagonal
-                rows[row] -= factor[_LATENT + row - back, first - _LATENT + back] * last[back]
+                rows[row] -= factor[LATENT + row - back, first - LATENT + back] * last[back]
         solved, _ = lapack.dtbtrs(factor[:, first : first + len(rows)], rows, uplo="L")
-        last = solved[-_LATENT:]
+        last = solved[-LATENT:]
         total += solved.T @ solved
     return total
 
 
-def _loadings(shape: Structure, scatter: Scatter) -> tuple[Array, Array, Array]:
+def loadings(shape: Structure, scatter: Scatter) -> tuple[Array, Array, Array]:
     """Of each segment on its own latents (n, 3) and on the level before it (n,), and what is independent (n,)."""
-    own = np.empty((shape.distance.size, _LATENT))
+    own = np.empty((shape.distance.size, LATENT))
     own[:, 0] = scatter.weeks * shape.distance
     own[:, 1] = scatter.seasons * shape.distance
     own[:, 2] = scatter.level * shape.end_weight
@@ -143,9 +143,9 @@ def _loadings(shape: Structure, scatter: Scatter) -> tuple[Array, Array, Array]:
     return own, shared, remainder
 
 
-def _posterior_precision(shape: Structure, own: Array, shared: Array, remainder: Array) -> Array:
+def posterior_precision(shape: Structure, own: Array, shared: Array, remainder: Array) -> Array:
     """M in LAPACK's lower band storage (4, 3 n)."""
-    band = np.zeros((_LATENT + 1, shape.distance.size, _LATENT))
+    band = np.zeros((LATENT + 1, shape.distance.size, LATENT))
     (weeks, weeks_off), (seasons, seasons_off) = shape.drift
     scaled = own / remainder[:, None]
     passed = shared / remainder
@@ -162,5 +162,5 @@ def _posterior_precision(shape: Structure, own: Array, shared: Array, remainder:
     band[3, :-1, 0] = weeks_off
     band[3, :-1, 1] = seasons_off
     band[3, :-1, 2] = passed[1:] * own[1:, 2]
-    return band.reshape(_LATENT + 1, -1)
+    return band.reshape(LATENT + 1, -1)
 

@@ -5,7 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from energytrack.errors import InferenceError
-from energytrack.inference import bounds
+from energytrack.inference import rules
+from energytrack.inference.results import Rule
 
 
 @dataclass(frozen=True)
@@ -17,13 +18,26 @@ class Question:
     alpha: float
     power: float
     covariates: tuple[str, ...] = ()
+    rule: Rule = "every-look"
+    reversible: bool = True  # the modification can be taken off again
 
     def __post_init__(self) -> None:
         if not 0 < self.target < 1:
             raise InferenceError(f"the target must lie between 0 and 100 percent, not {100 * self.target:g}: try 3")
-        bounds.drift(self.alpha, self.power)  # refuses a confidence or power outside its range
+        rules.check_rule(self.rule)
+        rules.drift(self.rule, self.alpha, self.power)  # refuses a confidence or power outside its range
+
+    @property
+    def drift(self) -> float:
+        """Standardised true shift that is found with the stated power once the information is complete."""
+        return rules.drift(self.rule, self.alpha, self.power)
 
     @property
     def information(self) -> float:
         """Information at which a shift of the target size is found with the stated power."""
-        return (bounds.drift(self.alpha, self.power) / self.target) ** 2
+        return (self.drift / self.target) ** 2
+
+    @property
+    def has_end(self) -> bool:
+        """Complete information closes the test."""
+        return self.rule != "open-ended"

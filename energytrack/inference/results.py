@@ -7,10 +7,12 @@ A figure that does not exist is None, never 0 or NaN.
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, field
 from typing import Any, Literal
 
 Verdict = Literal["shifted", "no-shift-of-target-size", "not-yet", "out-of-reach", "no-baseline", "closed-unclear"]
+Rule = Literal["every-look", "counted", "open-ended"]
+KnownChange = Literal["seen", "seen-otherwise", "not-seen-yet"]
 Range = tuple[float, float]
 
 
@@ -60,6 +62,108 @@ class Expectation:
 
 
 @dataclass(frozen=True)
+class Confounder:
+    """A condition, or another modification, that changed together with the one asked about."""
+
+    condition: str
+    inflation: float  # of the variance of the shift, by not knowing the response to it
+    cost_km: float | None  # of the distance to go; None where the test is over or the target is out of reach
+
+
+@dataclass(frozen=True)
+class Advice:
+    """Driving that tells more than the usual."""
+
+    condition: str
+    value: float
+    fitted: bool
+    times_usual: float  # information of such a segment, relative to the usual one
+
+
+@dataclass(frozen=True)
+class Effect:
+    """One modification's shift, estimated beside all others."""
+
+    name: str
+    shift_percent: float
+    interval_percent: Range | None  # look-proof
+    standard_error_percent: float
+    degrees_of_freedom: float
+
+
+@dataclass(frozen=True)
+class Together:
+    """Several modifications of one vehicle: each alone, and all at once."""
+
+    each: tuple[Effect, ...]
+    all_at_once: Effect
+
+
+@dataclass(frozen=True)
+class PairwiseShift:
+    """One variant against another; percent of consumption with nothing fitted."""
+
+    one: str
+    other: str
+    shift_percent: float  # of `one` relative to `other`: negative where `one` uses less
+    interval_percent: Range | None  # holds for all pairs and all looks together
+    information_fraction: float
+    differs: bool  # zero lies outside the range
+
+
+@dataclass(frozen=True)
+class Standing:
+    """A variant's shift against the bare vehicle, and the chance that none uses less."""
+
+    name: str
+    shift_percent: float
+    chance_best: float
+
+
+@dataclass(frozen=True)
+class Comparison:
+    """Variants of a part held against each other and against the bare vehicle."""
+
+    vehicle: str
+    confidence: float
+    pairs: tuple[PairwiseShift, ...]
+    standings: tuple[Standing, ...]  # the likeliest best first
+    warnings: tuple[str, ...]
+
+    def to_dict(self) -> dict[str, Any]:
+        return {name: plain(value) for name, value in asdict(self).items()}
+
+
+@dataclass(frozen=True)
+class LevelEffect:
+    """A level that was driven, and its shift against the reference level."""
+
+    level: float
+    shift_percent: float
+    interval_percent: Range | None  # look-proof
+
+
+@dataclass(frozen=True)
+class Response:
+    """How consumption answers to the level of a graded modification."""
+
+    vehicle: str
+    modification: str
+    form: Literal["line", "parabola"]
+    reference_level: float  # 0: not fitted
+    levels: tuple[LevelEffect, ...]
+    per_level: Effect  # of one unit of the level, at the reference
+    best_level: float | None  # of least consumption; None where there is none inside the tried range
+    best_level_interval: Range | None
+    next_level: float | None  # worth trying next; None where the best one has been driven
+    confidence: float
+    warnings: tuple[str, ...]
+
+    def to_dict(self) -> dict[str, Any]:
+        return {name: plain(value) for name, value in asdict(self).items()}
+
+
+@dataclass(frozen=True)
 class Remedy:
     """One way to bring the target within reach, or closer."""
 
@@ -67,6 +171,29 @@ class Remedy:
     detail: str  # e.g. "every 2 fill-ups"
     target_percent: float
     distance_km: float | None  # further distance it takes; None: not within the horizon either
+
+
+@dataclass(frozen=True)
+class SetAside:
+    """An entry whose segment stands out from its neighbours, and which the answer therefore leaves out or merges."""
+
+    odometer_km: float | None  # None: a log without an odometer
+    date: str
+    energy: float  # as logged, in the vehicle's unit
+    deviation_sd: float  # of its consumption from what its neighbours predict, in robust sd; above 0: too much
+    suspicion: str  # what may have happened
+    suggestion: str  # what would fit
+    merged_with_next: bool  # only the level after it is doubted: its driving counts, together with the next
+    end_km: float  # position on the log's own scale
+
+
+@dataclass(frozen=True)
+class WithAll:
+    """The answer if nothing were set aside."""
+
+    verdict: Verdict
+    shift_percent: float | None
+    interval_percent: Range | None
 
 
 @dataclass(frozen=True)
@@ -104,6 +231,18 @@ class Assessment:
     remedies: tuple[Remedy, ...]
     expectation: Expectation | None
     warnings: tuple[str, ...]
+    confounders: tuple[Confounder, ...] = ()  # costliest first
+    advice: tuple[Advice, ...] = ()  # driving worth seeking
+    never_apart: tuple[str, ...] = ()  # modifications this answer is for as well: the log cannot tell them apart
+    together: Together | None = None  # None where the log holds no other modification
+    response: Response | None = None  # None where the modification has no levels
+    rule: Rule = "every-look"  # for looks
+    known_percent: Range | None = None  # shift expected of a known change
+    known_change: KnownChange | None = None  # whether the log saw it
+    known_change_logged: bool = True  # of this vehicle, ever
+    set_aside: tuple[SetAside, ...] = ()
+    verdict_with_all: WithAll | None = None  # None: nothing was set aside
+    reversible: bool = True  # the modification can be taken off again
 
     @property
     def is_open(self) -> bool:
@@ -113,17 +252,25 @@ class Assessment:
         return {name: plain(value) for name, value in asdict(self).items()}
 
 
+DesignName = Literal["one-switch", "best-date", "on-off-on", "alternate", "alternate-weekly", "longer-baseline"]
+
+
 @dataclass(frozen=True)
 class Design:
     """One way to run a test, and the distance it takes."""
 
-    name: Literal["one-switch", "alternate"]
-    every_fillups: int | None  # None for one switch
+    name: DesignName
+    every_fillups: int | None  # between swaps where it alternates by fill-ups
     swaps: int | None
     distance_km: float | None  # from now until the target is covered; None: out of reach
     distance_interval_km: tuple[float, float | None] | None  # 80 %
     days: float | None
     resolvable_percent: Mapping[str, float | None]  # further km -> smallest shift resolvable by then
+    start: str | None = None  # date at which it is fitted, where that is not now
+    phases: tuple[int, ...] = ()  # fill-ups of each phase before the last, which goes on to the end
+    costliest: str | None = None  # what adds most to the variance of the shift
+    costliest_share: float | None = None  # by which the variance would fall without it
+    cost_shares: Mapping[str, float] = field(default_factory=dict)  # of every source and condition; they overlap
 
 
 @dataclass(frozen=True)
@@ -140,6 +287,8 @@ class Plan:
     noise: Noise | None
     designs: tuple[Design, ...]
     warnings: tuple[str, ...]
+    reversible: bool = True  # False: only designs that never take it off
+    stated: bool = False  # the noise and the driving are stated, not measured
 
     def __iter__(self) -> Iterator[Design]:
         return iter(self.designs)

@@ -17,8 +17,8 @@ LARGEST_AMOUNT = 20_000.0  # L, kg or kWh: beyond the tanks and batteries of roa
 COLDEST_C, HOTTEST_C = -90.0, 60.0  # beyond any outside temperature met on Earth
 FASTEST_KMH = 500.0
 EARLIEST_YEAR = 1900
-LONGEST_NAME = 60  # keeps lists and answers readable
 LARGEST_KNOWN_PERCENT = 100.0
+LONGEST_NAME = 60  # keeps lists and answers readable
 
 
 def parse_date(text: str) -> dt.date:

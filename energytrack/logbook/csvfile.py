@@ -86,7 +86,10 @@ def _detected(path: Path) -> str:
 
 
 def _width(path: Path, encoding: str, delimiter: str) -> int:
-    first = next(_rows(path, encoding, delimiter), None)
+    try:
+        first = next(_rows(path, encoding, delimiter), None)
+    except UnreadableTableError:  # quoted cells read with another delimiter than theirs
+        return 0
     return len(first[1]) if first else 0
 
 

@@ -17,15 +17,15 @@ _ADVICE = "nothing was imported; mend the file, or keep the good rows with --ski
 class BadRowsError(EntryError):
     """Rows that cannot be imported, each with its line; nothing was written."""
 
-    def __init__(self, file: str, problems: Sequence[Problem]) -> None:
+    def __init__(self, file: str, problems: Sequence[Problem], advice: str = _ADVICE) -> None:
         self.problems = tuple(problems)
         lines = list(dict.fromkeys(str(problem.line) for problem in problems))
         if len(lines) == 1:
             told = "; ".join(problem.message for problem in problems)
-            super().__init__(f"{file}:{lines[0]}: {told} ({_ADVICE})")
+            super().__init__(f"{file}:{lines[0]}: {told} ({advice})")
         else:
             shown = ", ".join(lines[:20]) + (", ..." if len(lines) > 20 else "")
-            super().__init__(f"{file}: {len(lines)} bad rows, in lines {shown}; {_ADVICE}")
+            super().__init__(f"{file}: {len(lines)} bad rows, in lines {shown}; {advice}")
 
 
 def write_rejected(target: Path, path: Path, form: Form, problems: Sequence[Problem]) -> None:

@@ -57,7 +57,7 @@ def read_entries(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Entry]:
             values.setdefault("currency", form.currency)
         return Entry(**values, extra=extra) if extra else Entry(**values)
 
-    return _read(path, form, columns.entry_readers(form), ("date", "energy"), build)
+    return read_rows(path, form, columns.entry_readers(form), ("date", "energy"), build)
 
 
 def read_vehicles(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Vehicle]:
@@ -74,8 +74,8 @@ def read_vehicles(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Vehicle]:
             raise CellError("has a second unit or capacity and no second carrier; fill in second_carrier")
         return Vehicle(name=values.pop("vehicle"), **values)
 
-    reading = _read(path, form, columns.vehicle_readers(form), ("vehicle", "carrier"), build)
-    return _without_repeats(reading, lambda vehicle: vehicle.name)
+    reading = read_rows(path, form, columns.vehicle_readers(form), ("vehicle", "carrier"), build)
+    return without_repeats(reading, lambda vehicle: vehicle.name)
 
 
 def read_modifications(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Modification]:
@@ -94,7 +94,7 @@ def read_modifications(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Modi
             values["known"] = _known(*ends)
         return Modification(**values)
 
-    return _read(path, form, columns.modification_readers(form), ("name",), build)
+    return read_rows(path, form, columns.modification_readers(form), ("name",), build)
 
 
 def _known(low: float | None, high: float | None) -> tuple[float, float]:
@@ -115,7 +115,7 @@ def read_events(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Event]:
         _need(values, "date", "what")
         return Event(**values)
 
-    return _read(path, form, columns.event_readers(form), ("date", "what"), build)
+    return read_rows(path, form, columns.event_readers(form), ("date", "what"), build)
 
 
 def read_weather(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Weather]:
@@ -125,8 +125,8 @@ def read_weather(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Weather]:
         _need(values, "date")
         return Weather(**values) if "temperature_c" in values else None
 
-    reading = _read(path, form, columns.weather_readers(form), ("date", "temperature_c"), build)
-    return _without_repeats(reading, lambda weather: weather.date)
+    reading = read_rows(path, form, columns.weather_readers(form), ("date", "temperature_c"), build)
+    return without_repeats(reading, lambda weather: weather.date)
 
 
 def _vehicle(values: dict[str, Any], form: Form) -> str:
@@ -142,7 +142,7 @@ def _need(values: Mapping[str, Any], *names: str) -> None:
         raise CellError(f"lacks {' and '.join(lacking)}; fill in")
 
 
-def _read(
+def read_rows(
     path: Path,
     form: Form,
     readers: dict[str, Reader],
@@ -203,7 +203,7 @@ def _typed(cells: list[str], wanted: list[tuple[str, int, Reader]], units: Mappi
     return {name: f"{text} {units[name]}" for name, text in found.items() if text}
 
 
-def _without_repeats(reading: Reading[Record], key: Callable[[Record], Any]) -> Reading[Record]:
+def without_repeats(reading: Reading[Record], key: Callable[[Record], Any]) -> Reading[Record]:
     first: dict[Any, int] = {}
     for line, record in reading.rows:
         if key(record) in first:

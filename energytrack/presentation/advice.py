@@ -5,6 +5,7 @@ from __future__ import annotations
 from energytrack.inference.results import Assessment
 from energytrack.presentation import figures, scatter
 from energytrack.presentation.answer import baseline_to_drive, contradicted, remedy
+from energytrack.presentation.known import known_step
 from energytrack.presentation.text import join
 
 MOST = 3
@@ -22,18 +23,18 @@ def next_steps(a: Assessment, unit: str) -> list[str]:
         "no-baseline": _build_baseline,
         "closed-unclear": _sharper_question,
     }[a.verdict](a, unit)
-    return steps[:MOST]
+    known = known_step(a)
+    return steps[:MOST] if known is None else [*steps[: MOST - 1], known]
 
 
 def _after_shift(a: Assessment, unit: str) -> list[str]:
     if contradicted(a):
-        return [
-            "Look for what else changed since: tyres, load, route, brakes.",
-            "Take it off for a while: a true shift goes away with it and comes back with it.",
-        ]
+        off = ["Take it off for a while: a true shift goes away with it and comes back with it."]
+        return ["Look for what else changed since: tyres, load, route, brakes.", *(off if a.reversible else [])]
     steps = ["Keep logging: every further entry sharpens the figure."]
-    if (a.shift_percent or 0.0) > 0:
-        steps.append("It costs energy: check the fitting, or take it off and watch consumption fall back.")
+    if (a.shift_percent or 0.0) > 0 and a.known_change is None:
+        or_off = ", or take it off and watch consumption fall back" if a.reversible else ""
+        steps.append(f"It costs energy: check the fitting{or_off}.")
     return steps
 
 
@@ -41,6 +42,8 @@ def _sharper_question(a: Assessment, unit: str) -> list[str]:
     if contradicted(a):
         return _after_shift(a, unit)
     command = join(f"energytrack plan --target {_SHARPER * a.target_percent:.3g}")
+    if not a.reversible:
+        return ["It cannot be taken off again: no new test can look for less on this vehicle, but every entry helps."]
     return [
         f"To look for less, see what a new test would take: {command}",
         "Taking it off and on again tells a shift from a drift of the season better than driving on.",
@@ -59,10 +62,14 @@ def _bring_within_reach(a: Assessment, unit: str) -> list[str]:
     steps = [_capital(remedy(r, unit)) + "." for r in a.remedies]
     if not steps:
         steps = ["Compare other ways: " + join(f"energytrack plan --target {a.target_percent:g}")]
+    if not a.reversible:
+        steps.append("It cannot be taken off again, so no other way of testing is left on this vehicle.")
     return steps + _better_records(a)
 
 
 def _build_baseline(a: Assessment, unit: str) -> list[str]:
+    if a.distance_modified_km > 0 and not a.reversible:
+        return ["It cannot be taken off again, and too little was logged before: this log cannot say what it does."]
     if a.distance_modified_km > 0:
         first = f"Take it off when parked and log that ({join('energytrack mod removed')}), then drive your usual runs."
     else:

@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from energytrack.inference.results import Assessment, Look, Remedy
 from energytrack.presentation import figures
+from energytrack.presentation.known import known_sentence
 from energytrack.presentation.plain import plain_text
+from energytrack.presentation.set_aside import follow_up
 from energytrack.presentation.text import join
 
 USUAL_BASELINE_KM = 3200.0  # four working weeks of a 160 km commute; common practice, no source
@@ -20,7 +22,7 @@ def sentence(a: Assessment, unit: str = "km") -> str:
         "no-baseline": _no_baseline,
         "closed-unclear": _unclear,
     }[a.verdict]
-    return say(a, unit)
+    return " ".join(filter(None, (say(a, unit), known_sentence(a), follow_up(a))))
 
 
 def contradicted(a: Assessment) -> bool:
@@ -126,7 +128,9 @@ def _no_shift(a: Assessment, unit: str) -> str:
 
 
 def _not_yet(a: Assessment, unit: str) -> str:
-    if a.distance_to_go_km is None:
+    if a.rule == "open-ended" and a.distance_to_go_km == 0:
+        go = f"the distance for a shift from {plain_text(a.modification)} is driven, none has shown, the watch goes on"
+    elif a.distance_to_go_km is None:
         go = f"how much further with {plain_text(a.modification)} cannot be foreseen yet"
     else:
         go = f"about {figures.distance(a.distance_to_go_km, unit)} more with {plain_text(a.modification)}"

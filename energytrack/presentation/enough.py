@@ -7,12 +7,17 @@ from math import isfinite
 from rich.text import Text
 
 from energytrack.inference.results import Assessment
-from energytrack.presentation import advice, bar, conditions, figures, picture, scatter
+from energytrack.presentation import advice, bar, conditions, figures, picture, scatter, set_aside, several
 from energytrack.presentation.answer import count, sentence, so_far
 from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, labelled, wrap
 
 Row = tuple[str, str]
+_LOOKED = {
+    "every-look": "however often you look",
+    "counted": "at the looks taken so far",
+    "open-ended": "however often and however long you look",
+}
 _AHEAD = 1.05  # an expected end is worth saying while it lies ahead
 
 
@@ -41,7 +46,9 @@ def _blocks(a: Assessment, unit: str, width: int, draw: bool) -> list[list[str]]
             "what the conditions do",
             labelled([("  " + label, value) for label, value in conditions.rows(a.covariates, unit)], width),
         ),
-        bullets(map(plain_text, a.warnings), "! ", width),
+        _headed("parts side by side", labelled(several.side_by_side(a.together), width) if a.together else []),
+        _headed("by level", labelled(several.levels(a.response), width) if a.response else []),
+        bullets([*set_aside.told(a, unit), *map(plain_text, a.warnings)], "! ", width),
         bullets(advice.next_steps(a, unit), "> ", width),
     ]
 
@@ -58,7 +65,7 @@ def _distances(a: Assessment, unit: str) -> list[Row]:
     if a.distance_needed_km is not None:
         label = "needed" if a.is_open else "answered after"
         rows.append((label, f"{figures.distance(a.distance_needed_km, unit)} with it fitted"))
-    if a.distance_to_go_km is not None and a.verdict == "not-yet":
+    if a.distance_to_go_km and a.verdict == "not-yet":
         rows.append(("still to go", _to_go(a, unit)))
     ahead = a.distance_expected_km is not None and a.distance_expected_km > _AHEAD * a.distance_modified_km
     if ahead and a.distance_expected_km is not None and a.verdict == "not-yet":
@@ -83,7 +90,8 @@ def _shift(a: Assessment) -> list[Row]:
     if a.shift_percent is None:
         return []
     sure = figures.target(100 * a.confidence)
-    rows = [("shift", f"{so_far(a)} ({sure} confidence, however often you look)")]
+    looked = _LOOKED[a.rule] if a.is_open else "when it was settled; figures since then are follow-up"
+    rows = [("shift", f"{so_far(a)} ({sure} confidence, {looked})")]
     if a.standard_error_percent is not None:
         error = a.standard_error_percent
         freedom = a.degrees_of_freedom

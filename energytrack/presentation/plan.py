@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime as dt
 import io
 from collections.abc import Iterable, Sequence
+from typing import Literal
 
 from rich.console import Console
 from rich.table import Table
@@ -12,13 +13,13 @@ from rich.text import Text
 
 from energytrack.inference.results import Design, Plan
 from energytrack.logbook.records import Modification
-from energytrack.presentation import figures
+from energytrack.presentation import figures, ways
 from energytrack.presentation.answer import USUAL_BASELINE_KM, count
 from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, join, labelled, wrap
 
 _ABOUT_AS_SHORT = 1.1
-_AMPLE = 240  # columns
+_LARGEST_TARGET = 50.0  # percent
 
 
 def render(
@@ -43,13 +44,14 @@ def sentence(p: Plan, unit: str = "km") -> str:
             f"No plan yet: {segments} between known levels tell too little about the scatter. "
             f"Drive about {figures.distance(missing, unit)} as usual first, logging every entry."
         )
-    one, other = _one_switch(p), _best_alternating(p)
+    one, other = _one_switch(p), _best_other(p)
+    whose = "such noise" if p.stated else "this log"
     if one is None and other is None:
-        return f"Out of reach: no way of testing shows {target} with this log, however far you drive."
+        return f"Out of reach: no way of testing shows {target} with {whose}, however far you drive."
     if one is None or one.distance_km is None:
-        return f"One switch cannot show {target} with this log, however far you drive; {_takes(other, unit)}."
+        return f"One switch now cannot show {target} with {whose}, however far you drive; {_takes(other, unit)}."
     if other is None or other.distance_km is None:
-        return f"To show {target}, {_takes(one, unit)}; taking it off and on does not get there."
+        return f"To show {target}, {_takes(one, unit)}; no other way gets there."
     second = _takes(other, unit).replace(" takes", "", 1)
     return f"To show {target}, {_takes(one, unit)}, {second}: {_difference(one, other, unit)}."
 
@@ -65,14 +67,7 @@ def _takes(design: Design | None, unit: str) -> str:
     assert design is not None
     assert design.distance_km is not None
     time = "" if design.days is None else f" ({figures.days(design.days)})"
-    return f"{_name(design)} takes about {figures.distance(design.distance_km, unit)}{time}"
-
-
-def _name(design: Design) -> str:
-    if design.every_fillups is None:
-        return "one switch"
-    every = design.every_fillups
-    return "off and on at every fill-up" if every == 1 else f"off and on every {every} fill-ups"
+    return f"{ways.phrase(design)} takes about {figures.distance(design.distance_km, unit)}{time}"
 
 
 def periods(modifications: Iterable[Modification], unit: str) -> list[str]:
@@ -95,40 +90,58 @@ def _one_switch(p: Plan) -> Design | None:
     return next((d for d in p.designs if d.name == "one-switch" and d.distance_km is not None), None)
 
 
-def _best_alternating(p: Plan) -> Design | None:
-    """The way with the fewest swaps among those about as short as the shortest."""
-    within = [(d.distance_km, d) for d in p.designs if d.name == "alternate" and d.distance_km is not None]
+def _best_other(p: Plan) -> Design | None:
+    """The way with the fewest swaps among those about as short as the shortest, one switch now left out."""
+    within = [(d.distance_km, d) for d in p.designs if d.name != "one-switch" and d.distance_km is not None]
     if not within:
         return None
     limit = _ABOUT_AS_SHORT * min(km for km, _ in within)
-    return max((d for km, d in within if km <= limit), key=lambda d: d.every_fillups or 0)
+    return min((d for km, d in within if km <= limit), key=lambda d: (d.swaps or 0, d.distance_km))
 
 
 def _blocks(p: Plan, unit: str, width: int, fitted: Sequence[str]) -> list[list[str]]:
-    segments = count(p.segments_baseline, "segment")
-    baseline = [("log so far", f"{figures.driven(p.distance_baseline_km, unit)} in {segments}")]
-    baseline += [("modified in it" if i == 0 else "", plain_text(phrase)) for i, phrase in enumerate(fitted)]
-    tables = [_distances(p, unit), _resolvable(p, unit)] if p.designs else []
+    tables = [_distances(p, unit), _resolvable(p, unit), _costs(p)] if p.designs else []
     return [
-        *tables,
-        labelled(baseline, width),
-        bullets(map(plain_text, p.warnings), "! ", width),
+        *(_lines(table, width) for table in tables),
+        labelled(_baseline(p, unit, fitted), width),
+        bullets(_cautions(p), "! ", width),
         bullets(_next_steps(p), "> ", width),
     ]
 
 
-def _distances(p: Plan, unit: str) -> list[str]:
+def _baseline(p: Plan, unit: str, fitted: Sequence[str]) -> list[tuple[str, str]]:
+    driven = figures.driven(p.distance_baseline_km, unit)
+    if not p.stated or p.noise is None:
+        rows = [("log so far", f"{driven} in {count(p.segments_baseline, 'segment')}")]
+        return rows + [("modified in it" if i == 0 else "", plain_text(phrase)) for i, phrase in enumerate(fitted)]
+    noise = p.noise
+    sizes = [
+        f"{join(f'{noise.trip_percent:.2g} %')} from trip to trip",
+        f"{join(f'{noise.drift_weeks_percent:.2g} %')} over weeks",
+        f"{join(f'{noise.drift_seasons_percent:.2g} %')} over seasons",
+        f"{join(f'{noise.level_error:.2g} {p.unit}')} a filling",
+    ]
+    before = f"{driven} in {count(p.segments_baseline, 'fill-up')}; distances count from after it"
+    return [("baseline, stated", before), ("scatter, stated", ", ".join(sizes))]
+
+
+def _cautions(p: Plan) -> list[str]:
+    kept = [] if p.reversible else ["It cannot be taken off again: ways that take it off are left out."]
+    return kept + [plain_text(warning) for warning in p.warnings]
+
+
+def _distances(p: Plan, unit: str) -> Table:
     table = _table([f"to show {p.target_percent:g} %", "distance", "80 % range", "days", "swaps"])
     for d in p.designs:
         reached = d.distance_km is not None
         table.add_row(
-            _name(d),
+            ways.name(d),
             figures.distance(d.distance_km, unit) if d.distance_km is not None else "out of reach",
             _range(d, unit) if reached else "-",
             figures.days(d.days).split("\u00a0")[0] if d.days is not None else "-",
-            f"{d.swaps:,}" if d.swaps is not None else "-",
+            f"{d.swaps:,}" if d.swaps is not None and reached else "-",
         )
-    return _lines(table)
+    return table
 
 
 def _range(d: Design, unit: str) -> str:
@@ -140,39 +153,55 @@ def _range(d: Design, unit: str) -> str:
     return figures.distance_range(low, high, unit)
 
 
-def _resolvable(p: Plan, unit: str) -> list[str]:
+def _resolvable(p: Plan, unit: str) -> Table:
     """The smallest shift each way can show after so much further driving."""
     distances = list(p.designs[0].resolvable_percent)
     table = _table(["smallest shift within", *(figures.distance(float(km), unit) for km in distances)])
     for d in p.designs:
         shifts = [d.resolvable_percent.get(km) for km in distances]
-        table.add_row(_name(d), *("-" if shift is None else figures.percent(shift) for shift in shifts))
-    return _lines(table)
-
-
-def _table(headings: Sequence[str]) -> Table:
-    table = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0), show_header=True)
-    for place, heading in enumerate(headings):
-        table.add_column(Text(heading), justify="left" if place == 0 else "right", no_wrap=True)
+        table.add_row(ways.name(d), *("-" if shift is None else figures.percent(shift) for shift in shifts))
     return table
 
 
-def _lines(table: Table) -> list[str]:
-    """A table as plain lines, as wide as its figures: a screen too narrow wraps them, and none is cut."""
+def _costs(p: Plan) -> Table:
+    """What each way's distance is spent on most: the share of the variance that would go with it."""
+    table = _table(["what costs the most", "share", "of the variance"], left=(0, 2))
+    for d in p.designs:
+        source, share = ways.cost(d, p.unit)
+        table.add_row(ways.name(d), share, source)
+    return table
+
+
+def _table(headings: Sequence[str], left: Sequence[int] = (0,)) -> Table:
+    """The first column folds where the screen is too narrow for all of them."""
+    table = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0), show_header=True)
+    for place, heading in enumerate(headings):
+        justify: Literal["left", "right"] = "left" if place in left else "right"
+        table.add_column(Text(heading), justify=justify, no_wrap=place > 0, overflow="fold")
+    return table
+
+
+def _lines(table: Table, width: int) -> list[str]:
+    """A table as plain lines; what does not fit is folded, and nothing is cut."""
     out = io.StringIO()
-    Console(file=out, width=_AMPLE, color_system=None, markup=False, emoji=False, highlight=False).print(table)
+    Console(file=out, width=width, color_system=None, markup=False, emoji=False, highlight=False).print(table)
     return [line.rstrip().replace("\u00a0", " ") for line in out.getvalue().splitlines()]
 
 
 def _next_steps(p: Plan) -> list[str]:
-    one, other = _one_switch(p), _best_alternating(p)
+    one, other = _one_switch(p), _best_other(p)
     if not p.designs:
         return ["Record the outside temperature with each entry: weather is the largest thing to tell apart."]
-    if one is None and other is None:
-        return ["Ask for a larger shift: " + join(f"energytrack plan --target {2 * p.target_percent:g}")]
-    steps = []
-    if other is not None and (one is None or (other.distance_km or 0.0) < (one.distance_km or 0.0)):
+    best = min((d for d in (one, other) if d is not None), key=lambda d: d.distance_km or 0.0, default=None)
+    advice = ways.remedy(best or p.designs[0], p.reversible)
+    steps = [] if advice is None else [advice]
+    if best is None:
+        larger = min(2 * p.target_percent, _LARGEST_TARGET)
+        return [*steps, "Ask for a larger shift: " + join(f"energytrack plan --target {larger:g}")]
+    if (best.swaps or 0) > 1:
         steps.append("Swap only what comes off and on quickly and safely, parked, as its maker says.")
+    if p.stated:
+        return [*steps, f"Keep a log, and plan again from its own noise: {join('energytrack plan')}"]
     commands = f"{join('energytrack mod fitted')}, {join('energytrack mod removed')}"
-    steps.append(f"Log each change at its odometer value: {commands}")
+    steps.append(f"Log each change at its odometer value: {commands if p.reversible else commands.split(',')[0]}")
     return [*steps, f"Then ask after any entry: {join('energytrack enough')}"]

@@ -38,14 +38,17 @@ def _pieces(text: str, width: int) -> Iterable[str]:
 
 
 def labelled(rows: Sequence[tuple[str, str]], width: int) -> list[str]:
-    """Rows of a label and its value; a long value goes on under itself."""
+    """Rows of a label and its value; a long value goes on under itself, a long label stands above it."""
     lines: list[str] = []
     for label, value in rows:
         margin = " " * LABEL_WIDTH
-        first = label.ljust(LABEL_WIDTH)
         body = wrap(value, width - LABEL_WIDTH)
-        lines.append((first + body[0]).rstrip())
-        lines += [margin + line for line in body[1:]]
+        if cell_len(label) < LABEL_WIDTH:
+            lines.append((label + " " * (LABEL_WIDTH - cell_len(label)) + body.pop(0)).rstrip())
+        else:
+            lead = " " * (len(label) - len(label.lstrip()))
+            lines += [lead + line for line in wrap(label.lstrip(), width - len(lead))]
+        lines += [margin + line for line in body]
     return lines
 
 

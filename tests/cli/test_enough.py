@@ -13,11 +13,14 @@ import sys
 from pathlib import Path
 from typing import Any
 
+import pandas as pd
 import pytest
 
 from energytrack.logbook.opening import open_logbook
 from energytrack.logbook.records import Entry, Vehicle
 from energytrack.logbook.store import Store
+from tests.fitted import fit_parts
+from tests.inference.test_several import VARIANTS, plain_log
 
 ROOT = Path(__file__).parents[2]
 FITTED_KM = 12_000.0
@@ -152,7 +155,7 @@ def test_plan_compares_and_says_what_was_fitted(logbook: Path) -> None:
     assert max(map(len, done.stdout.splitlines())) <= 80
     plans = json.loads(run(logbook, "plan", "--json").stdout)["plans"]
     assert [found["vehicle"] for found in plans] == ["van", "car"]
-    assert {design["name"] for design in plans[0]["designs"]} == {"one-switch", "alternate"}
+    assert {"one-switch", "best-date", "on-off-on", "alternate"} < {design["name"] for design in plans[0]["designs"]}
 
 
 @pytest.mark.parametrize(
@@ -247,3 +250,113 @@ def test_no_logbook_named() -> None:
     done = run(None, "enough")
     assert done.returncode == 1
     assert "--logbook" in done.stderr
+
+
+def test_variants_are_compared_on_the_command_line(tmp_path: Path) -> None:
+    """Three variants of a part in one logbook: a sentence, six pairs and as many chances as there are variants."""
+    entries, parts = fit_parts(plain_log(4), VARIANTS)
+    vehicle = entries["vehicle"].iloc[0]
+    pd.DataFrame({"vehicle": [vehicle], "carrier": ["diesel"], "unit": ["L"], "capacity": [75.0]}).to_csv(
+        tmp_path / "vehicles.csv", index=False
+    )
+    entries.to_csv(tmp_path / "entries.csv", index=False)
+    parts.assign(fitted_date=None, removed_date=None).to_csv(tmp_path / "modifications.csv", index=False)
+    shown = run(tmp_path, "enough", "--compare")
+    assert shown.stdout.startswith("dam B uses least")
+    assert shown.stdout.count("look-proof range") == 6
+    assert max(map(len, shown.stdout.splitlines())) <= 80
+    told = json.loads(run(tmp_path, "enough", "--compare", "--json").stdout)
+    assert len(told["comparisons"][0]["standings"]) == 4
+
+
+# Rules for looks and known changes
+
+
+def test_looks_taken_are_recorded_once_for_each_new_segment(logbook: Path) -> None:
+    for words in (("grille blanking",), ("grille blanking", "--json"), ("grille blanking", "--looks", "counted")):
+        assert run(logbook, "enough", *words).returncode == 0
+    book = open_logbook(logbook)
+    assert book.looks("car", "grille blanking") == [STEP_KM * 29]
+
+
+def test_only_looks_taken_count_when_they_are_counted(tmp_path: Path) -> None:
+    path = tmp_path / "my.logbook"
+    book = open_logbook(path, create=True)
+    assert isinstance(book, Store)
+    book.add_vehicle(Vehicle("car", "petrol", "L", 50.0))
+    drive(book, "car", 40, -0.02, 0.5, seed=4)
+    book.fit("car", "blanking", dt.date(2025, 6, 5), FITTED_KM)
+    for tank in (28, 33):
+        book.record_look("car", "blanking", STEP_KM * tank, dt.date(2025, 7, 1))
+    book.close()
+    (counted,) = answers(run(path, "enough", "--looks", "counted", "--json"))
+    (every,) = answers(run(path, "enough", "--json"))
+    assert (counted["rule"], every["rule"]) == ("counted", "every-look")
+    assert [look["odometer_km"] for look in counted["looks"]] == [STEP_KM * tank for tank in (28, 33, 39)]
+    assert len(every["looks"]) == 15
+    bounds = {look["odometer_km"]: look["bound"] for look in every["looks"]}
+    assert counted["looks"][-1]["bound"] < bounds[STEP_KM * 39]
+
+
+def test_an_open_ended_watch(logbook: Path) -> None:
+    (answer,) = answers(run(logbook, "enough", "grille blanking", "--open-ended", "--json"))
+    assert answer["rule"] == "open-ended"
+    assert answer["verdict"] in ("not-yet", "shifted")
+    assert answer["distance_expected_km"] is None
+
+
+@pytest.mark.parametrize(
+    ("words", "says"),
+    [(("--looks", "some"), "every, counted"), (("--looks", "counted", "--open-ended"), "leave --looks counted out")],
+)
+def test_rules_that_cannot_be_are_refused(logbook: Path, words: tuple[str, ...], says: str) -> None:
+    done = run(logbook, "enough", *words)
+    assert done.returncode == 2
+    assert says in done.stderr
+    assert done.stdout == ""
+
+
+def test_a_folder_keeps_no_looks_to_count() -> None:
+    done = run(ROOT / "demo_logbook", "enough", "--vehicle", "van", "--looks", "counted")
+    assert done.returncode != 0
+    assert "keeps no looks" in done.stderr
+    assert "Traceback" not in done.stderr
+
+
+def test_a_known_change_is_logged_and_answered(tmp_path: Path) -> None:
+    path = tmp_path / "my.logbook"
+    book = open_logbook(path, create=True)
+    assert isinstance(book, Store)
+    book.add_vehicle(Vehicle("car", "petrol", "L", 50.0))
+    drive(book, "car", 45, 0.08, 0.3, seed=5)
+    book.close()
+    fitted = run(path, "mod", "fitted", "windows open", str(FITTED_KM), "--known", "5:12")
+    assert fitted.stdout.splitlines()[0].endswith("; a known change, +5 to +12 % expected")
+    (answer,) = answers(run(path, "enough", "--json"))
+    assert (answer["known_percent"], answer["known_change"]) == ([5.0, 12.0], "seen")
+    said = " ".join(run(path, "enough").stdout.split())
+    assert "A known change, +5 to +12 % expected, was seen: this log can show a shift of" in said
+    assert "It has shown what it was for: take it off" in said
+    assert "It costs energy" not in said
+    listed = json.loads(run(path, "mod", "list", "--json").stdout)["modifications"]
+    assert (listed[0]["known"], listed[0]["reversible"]) == ([5.0, 12.0], True)
+    assert run(path, "mod", "list").stdout.splitlines()[1].endswith("+5 to +12 %")
+
+
+@pytest.mark.parametrize("known", ["9:4", "-4:9", "0:5", "4", "4:", "four:nine", "5:900", "nan:9"])
+def test_known_changes_that_cannot_be_are_refused_and_nothing_is_logged(logbook: Path, known: str) -> None:
+    before = open_logbook(logbook).modifications("van")
+    done = run(logbook, "mod", "fitted", "windows", "29000", "--vehicle", "van", f"--known={known}")
+    assert done.returncode != 0
+    assert done.stderr.startswith("energytrack: ")
+    assert len(done.stderr.splitlines()) == 1
+    assert open_logbook(logbook).modifications("van") == before
+
+
+def test_a_saving_may_be_known_and_a_part_irreversible(logbook: Path) -> None:
+    done = run(
+        logbook, "mod", "fitted", "remap", "29000", "--vehicle", "van", "--known", "-9:-4", "--not-reversible", "--json"
+    )
+    assert done.returncode == 0, done.stderr
+    remap = open_logbook(logbook).modifications("van")[-1]
+    assert (remap.name, remap.known, remap.reversible) == ("remap", (-9.0, -4.0), False)

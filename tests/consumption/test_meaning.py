@@ -175,13 +175,13 @@ def test_swapped_digits_are_named_where_they_fit(book):
     # 40.20 typed as 04.20 would be refused elsewhere; 63.90 for 36.90 is possible: 12.8 instead of 7.4 L/100 km
     assert logged(book, fill(30, 4960, 63.9))[-2:] == [
         "unusual for this vehicle: kept; check the amount and the odometer",
-        "two digits swapped? amount 36.90 L would fit",
+        "two digits swapped? amount 63.90 -> 36.90 L fits",
     ]
 
 
 def test_swapped_odometer_digits_are_named_where_they_fit(book):
     # 37.8 L over 290 km would be 13.0 L/100 km, over 470 km it is 8.04
-    assert logged(book, fill(30, 4790, 37.8))[-1] == "two digits swapped? odometer 4,970 km would fit"
+    assert logged(book, fill(30, 4790, 37.8))[-1] == "two digits swapped? odometer 4,790 -> 4,970 km fits"
 
 
 def test_unusual_without_a_fitting_swap_names_none(book):

@@ -88,3 +88,15 @@ def test_empty_log_has_empty_arrays():
 def test_covariate_that_no_entry_has_is_refused_with_those_that_exist():
     with pytest.raises(UnknownNameError, match=r"payload.*rain"):
         observe(close_segments(ENTRIES), covariates=["payload"])
+
+
+def test_modifications_can_be_left_out_and_added():
+    log = observe(close_segments(ENTRIES), [fitted(1_200, level=4.0)])
+    assert len(log) == 2
+    assert log.keeping(()).shares.shape == (len(log), 0)
+    pretended = log.adding("pretended", np.array([0.0, 0.5]))
+    assert pretended.names == (*log.names, "pretended")
+    assert pretended.levels[:, 1].tolist() == [0.0, 1.0]
+    again = pretended.keeping(log.names)
+    for table in ("shares", "fitted", "levels"):
+        np.testing.assert_array_equal(getattr(again, table), getattr(log, table))

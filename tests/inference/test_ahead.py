@@ -8,8 +8,9 @@ import numpy as np
 import pytest
 
 from energytrack.consumption.frames import observe_frames
-from energytrack.inference.ahead import always_fitted, off_first, reach, road
+from energytrack.inference.ahead import always_fitted, reach, road
 from energytrack.inference.model import Model, fit_model
+from energytrack.inference.schedules import off_first
 from tests.simulation import simulate
 from tests.uses import HOUSEHOLD, STEADY_COMMUTE, Use
 

@@ -167,8 +167,8 @@ def test_parts_fitted_together_are_not_told_apart() -> None:
     log = drawn(DELIVERY_VAN, shift_percent=-6.0)
     both = pd.concat([log.modifications, log.modifications.assign(name="tyres")], ignore_index=True)
     answer = et.assess(log.entries, both, "part", capacity=75.0)
-    assert answer.verdict != "shifted"
-    assert any("part and tyres" in warning for warning in answer.warnings)
+    assert answer.never_apart == ("tyres",)
+    assert answer.warnings[0].startswith("part and tyres were never apart")
 
 
 def test_parts_that_took_each_others_place_are_not_told_apart() -> None:

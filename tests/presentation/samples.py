@@ -179,14 +179,17 @@ PLAN = Plan(
         Design(
             "one-switch", None, 1, 12_420.0, (8100.0, None), 81.0,
             {"1000": 8.42, "2500": 5.61, "5000": 4.2, "10000": 3.31},
+            costliest="drift-weeks", costliest_share=0.62, cost_shares={"drift-weeks": 0.62, "temperature_c": 0.31},
         ),
         Design(
             "alternate", 1, 24, 5104.0, (4010.0, 7220.0), 33.2,
             {"1000": 6.9, "2500": 4.3, "5000": 3.03, "10000": 2.15},
+            costliest="filling", costliest_share=0.48, cost_shares={"filling": 0.48, "temperature_c": 0.03},
         ),
         Design(
             "alternate", 2, 13, 5320.0, (4100.0, 7600.0), 34.9,
             {"1000": None, "2500": 4.4, "5000": 3.1, "10000": 2.2},
+            costliest="trip", costliest_share=0.71, cost_shares={"trip": 0.71},
         ),
         Design("alternate", 4, None, None, None, None, {"1000": 9.1, "2500": 6.4, "5000": 5.2, "10000": 4.4}),
     ),

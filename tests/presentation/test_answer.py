@@ -69,6 +69,33 @@ def test_a_shift_ruled_out_that_later_driving_shows() -> None:
     )
 
 
+def test_a_known_change_that_was_seen_says_what_the_log_can_show() -> None:
+    a = replace(RAISED, known_percent=(2.0, 5.0), known_change="seen")
+    assert said(a).endswith(
+        "A known change, +2 to +5 % expected, was seen: this log can show a shift of 3.0 % or more now."
+    ) or said(a).endswith("this log can show a shift of 3.1 % or more now.")  # 3.05 as a binary fraction
+
+
+def test_a_known_change_that_was_not_seen_warns_of_smaller_ones() -> None:
+    otherwise = replace(SHIFTED, known_percent=(4.0, 9.0), known_change="seen-otherwise")
+    assert "not the known change, +4 to +9 % expected: smaller shifts from this log are not to be" in said(otherwise)
+    open_ = replace(NOT_YET, known_percent=(4.0, 9.0), known_change="not-seen-yet")
+    assert said(open_).endswith(
+        "The known change, +4 to +9 % expected, has not been seen yet: this log can only show a shift of 3.3 % or "
+        "more now."
+    )
+    assert "has not been seen:" in said(replace(NO_SHIFT, known_percent=(4.0, 9.0), known_change="not-seen-yet"))
+    assert said(replace(NO_BASELINE, known_percent=(4.0, 9.0), known_change="not-seen-yet")).endswith("seen yet.")
+
+
+def test_an_open_ended_watch_goes_on_past_the_distance_needed() -> None:
+    a = replace(NOT_YET, rule="open-ended", distance_to_go_km=0.0, days_to_go=0.0)
+    assert said(a).startswith(
+        "Not yet: the distance for a shift from side skirts is driven, none has shown, the watch goes on, at the "
+        "target of 3 %."
+    )
+
+
 def test_a_shift_ruled_out_whose_range_has_grown_past_the_target() -> None:
     """The sentence must not call smaller than 3 % what may be 3.3 %."""
     a = replace(NO_SHIFT, shift_percent=0.9, interval_percent=(-1.5, 3.3))

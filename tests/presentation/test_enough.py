@@ -8,7 +8,7 @@ from pathlib import Path
 import pytest
 from rich.cells import cell_len
 
-from energytrack.inference.results import Assessment, Covariate, Look, Noise
+from energytrack.inference.results import Assessment, Covariate, Look, Noise, Rule
 from energytrack.presentation.enough import render
 from tests.presentation.samples import EVERY_VERDICT, NOT_YET, OUT_OF_REACH, SHIFTED
 
@@ -154,3 +154,29 @@ def test_at_most_three_next_steps() -> None:
     for a in EVERY_VERDICT.values():
         steps = [line for line in shown(a).splitlines() if line.startswith("> ")]
         assert 1 <= len(steps) <= 3
+
+
+@pytest.mark.parametrize("width", [60, 80])
+@pytest.mark.parametrize("verdict", EVERY_VERDICT)
+def test_a_known_change_is_recommended_while_the_answer_is_open_and_none_was_logged(verdict: str, width: int) -> None:
+    a = replace(EVERY_VERDICT[verdict], known_change_logged=False)
+    text = " ".join(shown(a, width=width).split())
+    assert ("--known 4:9" in text) == a.is_open
+    assert ("only where it is safe" in text) == a.is_open
+    assert "--known" not in shown(EVERY_VERDICT[verdict], width=width)
+
+
+@pytest.mark.parametrize(
+    ("rule", "words"),
+    [
+        ("every-look", "however often you look"),
+        ("counted", "at the looks taken so far"),
+        ("open-ended", "however often and however long you look"),
+    ],
+)
+def test_the_rule_stands_beside_the_range(rule: Rule, words: str) -> None:
+    assert words in " ".join(shown(replace(NOT_YET, rule=rule)).split())
+
+
+def test_what_is_driven_already_is_not_still_to_go() -> None:
+    assert "still to go" not in shown(replace(NOT_YET, rule="open-ended", distance_to_go_km=0.0))

@@ -53,7 +53,7 @@ def test_fewest_swaps_among_ways_about_as_short() -> None:
 def test_one_switch_that_cannot() -> None:
     one, *others = PLAN.designs
     p = replace(PLAN, designs=(replace(one, distance_km=None, days=None), *others))
-    assert said(p).startswith("One switch cannot show 3 % with this log, however far you drive; off and on every 2")
+    assert said(p).startswith("One switch now cannot show 3 % with this log, however far you drive; off and on every 2")
 
 
 def test_alternating_that_takes_longer_or_cannot() -> None:
@@ -61,7 +61,7 @@ def test_alternating_that_takes_longer_or_cannot() -> None:
     longer = replace(PLAN, designs=(one, replace(others[0], distance_km=15_000.0)))
     assert said(longer).endswith("2,600 km more.")
     p = replace(PLAN, designs=(one, others[-1]))
-    assert said(p).endswith("taking it off and on does not get there.")
+    assert said(p).endswith("no other way gets there.")
 
 
 def test_nothing_that_can() -> None:
@@ -85,3 +85,43 @@ def test_where_modified_periods_are() -> None:
         "rack\x1b[2J: from 2026-05-03, still on",
     ]
     assert "\x1b" not in shown(PLAN, fitted=periods(rows, "km"))
+
+
+def test_every_kind_of_way_has_a_name_that_fits() -> None:
+    one = PLAN.designs[0]
+    kinds = (
+        replace(one, name="best-date", start="2026-09-01"),
+        replace(one, name="on-off-on", phases=(16, 8), swaps=3),
+        replace(one, name="alternate-weekly", swaps=12),
+        replace(one, name="longer-baseline", phases=(160,)),
+    )
+    text = shown(replace(PLAN, designs=(one, *kinds)))
+    for name in ("one switch in Sep 2026", "on 16, off 8, on (fill-ups)", "off and on every week"):
+        assert text.count(name) >= 3
+    assert text.count("one switch, 160 fill-ups on") >= 3
+    assert max(map(cell_len, text.splitlines())) <= 80
+
+
+def test_a_narrow_screen_folds_names_and_cuts_nothing() -> None:
+    narrow, wide = shown(PLAN, width=60), shown(PLAN)
+    assert max(map(cell_len, narrow.splitlines())) <= 60
+    assert "\u2026" not in narrow
+    assert sorted("".join(narrow.split())) == sorted("".join(wide.split()))
+
+
+def test_a_part_that_stays_on() -> None:
+    text = shown(replace(PLAN, designs=PLAN.designs[:1], reversible=False))
+    assert "! It cannot be taken off again: ways that take it off are left out." in text
+    assert "mod removed" not in text
+
+
+def test_a_stated_plan_says_that_nothing_was_measured() -> None:
+    text = " ".join(shown(replace(PLAN, stated=True)).split())
+    assert "baseline, stated 8,423 km in 19 fill-ups; distances count from after it" in text
+    assert "3.1 % from trip to trip" in text
+    assert "log so far" not in text
+
+
+def test_what_would_shorten_the_best_way() -> None:
+    assert "> Fill to the first click" in shown(replace(PLAN, designs=PLAN.designs[:2]))
+    assert "first click" not in shown(PLAN)

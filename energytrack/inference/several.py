@@ -1,0 +1,70 @@
+"""Several modifications in one log: those never apart are one, those that were are estimated side by side."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from energytrack.consumption.observations import Observations
+from energytrack.inference import bounds
+from energytrack.inference.model import Model
+from energytrack.inference.noise import Array
+from energytrack.inference.question import Question
+from energytrack.inference.results import Effect, Together
+from energytrack.inference.shift import SHIFT, Shift, shift_along
+
+_NEVER_APART = 0.98  # correlation of two modifications' shares
+
+
+def never_apart(observed: Observations, name: str) -> tuple[str, ...]:
+    """Modifications that were on whenever this one was, and off whenever it was off."""
+    own = observed.shares[:, observed.names.index(name)]
+    if np.ptp(own) == 0:
+        return ()
+    return tuple(
+        other
+        for k, other in enumerate(observed.names)
+        if other != name and _correlation(own, observed.shares[:, k]) > _NEVER_APART
+    )
+
+
+def refusal(name: str, partners: Sequence[str]) -> str:
+    """Why there is no answer for one part alone, and which entries would give it."""
+    others = " and ".join(partners)
+    return (
+        f"{name} and {others} were never apart in this log, so it cannot say which of them did what: the answer is "
+        f"for them together. To tell them apart, drive some full tanks with only one of them fitted"
+    )
+
+
+def together(model: Model, question: Question) -> Together | None:
+    """Each modification's shift beside the others, and all of them at once; None where there is only one."""
+    columns = {str(model.modification): SHIFT}
+    columns |= {name: model.term_columns.stop + k for k, name in enumerate(model.others)}
+    if len(columns) < 2:
+        return None
+    size = len(model.fit.coefficients)
+    each = {name: effect_of(name, shift_along(model.fit, np.eye(size)[k]), question) for name, k in columns.items()}
+    whole = np.zeros(size)
+    whole[list(columns.values())] = 1.0
+    names = " + ".join(columns)
+    return Together(tuple(each.values()), effect_of(names, shift_along(model.fit, whole), question))
+
+
+def effect_of(name: str, shift: Shift, question: Question) -> Effect:
+    """A shift with the look-proof range of its own share of the information."""
+    priced = shift.standard_error * bounds.price(shift.freedom, question.alpha)
+    share = min(1.0, 1 / priced**2 / question.information)
+    interval = shift.interval(bounds.critical(share, shift.freedom, question.alpha))
+    return Effect(
+        name,
+        100 * shift.ratio,
+        None if interval is None else (100 * interval[0], 100 * interval[1]),
+        100 * shift.standard_error,
+        shift.freedom,
+    )
+
+
+def _correlation(one: Array, other: Array) -> float:
+    return float(np.corrcoef(np.abs(one), np.abs(other))[0, 1]) if np.ptp(other) > 0 else 0.0

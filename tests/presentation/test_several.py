@@ -1,0 +1,92 @@
+"""Several parts, variants and levels: whole texts compared, at eighty columns."""
+
+from __future__ import annotations
+
+from energytrack.inference.results import (
+    Comparison,
+    Effect,
+    LevelEffect,
+    PairwiseShift,
+    Response,
+    Standing,
+    Together,
+)
+from energytrack.presentation import several
+
+SKIRTS = Effect("skirts", -5.03, (-6.9, -3.1), 0.71, 9.0)
+TYRES = Effect("tyres", 3.96, (1.8, 6.2), 0.80, 9.0)
+BOTH = Effect("skirts + tyres", -1.07, (-3.4, 1.3), 0.85, 9.0)
+RESPONSE = Response(
+    "van",
+    "wing",
+    "parabola",
+    0.0,
+    (LevelEffect(0.0, 0.0, (0.0, 0.0)), LevelEffect(5.0, -6.1, (-8.0, -4.2)), LevelEffect(20.0, 0.4, (-2.0, 2.9))),
+    SKIRTS,
+    10.14,
+    (8.9, 11.6),
+    10.14,
+    0.95,
+    (),
+)
+FOUND = Comparison(
+    "van",
+    0.95,
+    (
+        PairwiseShift("dam A", "dam B", 6.2, (3.0, 9.4), 1.0, True),
+        PairwiseShift("dam A", "nothing fitted", -1.8, (-5.2, 1.7), 0.8, False),
+        PairwiseShift("dam B", "nothing fitted", -8.0, (-11.1, -4.8), 1.0, True),
+    ),
+    (Standing("dam B", -8.0, 0.998), Standing("dam A", -1.8, 0.002), Standing("nothing fitted", 0.0, 0.0)),
+    ("1 span between known levels set aside: missed entry (1)",),
+)
+COMPARED = """\
+dam B uses least: its range lies below that of every other.
+
+pair by pair (95 % confidence for all pairs and however many looks)
+  dam A / dam B       +6.2 %, look-proof range +3.0 to +9.4 %: differ
+  dam A / nothing fitted
+                      -1.8 %, look-proof range -5.2 to +1.7 %: not told apart
+                      yet
+  dam B / nothing fitted
+                      -8.0 %, look-proof range -11.1 to -4.8 %: differ
+
+chance that none of the others uses less
+  dam B               over 99 %, -8.0 %
+  dam A               under 1 %, -1.8 %
+  nothing fitted      under 1 %, 0.0 %
+
+! 1 span between known levels set aside: missed entry (1)"""
+
+
+def test_parts_side_by_side() -> None:
+    assert several.side_by_side(Together((SKIRTS, TYRES), BOTH)) == [
+        ("  skirts", "-5.0\u00a0%, look-proof range -6.9\u00a0to\u00a0-3.1\u00a0%"),
+        ("  tyres", "+4.0\u00a0%, look-proof range +1.8\u00a0to\u00a0+6.2\u00a0%"),
+        ("  all at once", "-1.1\u00a0%, look-proof range -3.4\u00a0to\u00a0+1.3\u00a0%"),
+    ]
+
+
+def test_levels_of_a_graded_part() -> None:
+    rows = dict(several.levels(RESPONSE))
+    assert rows["  counted from"] == "not fitted"
+    assert rows["  least consumption"] == "at level 10.1 (range 8.9 to 11.6)"
+    assert rows["  worth trying next"] == "level 10.1, if its maker and the law allow it"
+    assert "  level 0" not in rows
+
+
+def test_variants_compared() -> None:
+    assert "\n".join(line.plain for line in several.compared(FOUND)) == COMPARED
+    assert max(len(line.plain) for line in several.compared(FOUND)) <= 80
+
+
+def test_variants_not_told_apart() -> None:
+    from dataclasses import replace
+
+    open_pairs = tuple(replace(pair, differs=False) for pair in FOUND.pairs)
+    assert several.compared(replace(FOUND, pairs=open_pairs))[0].plain.startswith("Not yet: no variant is told")
+
+
+def test_hostile_names_are_inert() -> None:
+    hostile = Together((Effect("a\x1b[31m", 0.0, None, 1.0, 5.0),), BOTH)
+    assert "\x1b" not in str(several.side_by_side(hostile))
