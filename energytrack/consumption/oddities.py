@@ -114,6 +114,7 @@ def _response(observed: Observations, consumption: Array, shape: Array, covariat
     local = np.column_stack([column - _local_mean(column, weight) for column in columns.T])
     difference = consumption - _references(consumption, weight)[2]
     held = np.diag(1 / (terms.prior_sd * np.median(consumption)) ** 2)
+    foreseen = held @ (terms.prior_mean * np.median(consumption))
     slopes: Array = np.zeros(columns.shape[1])
     least = LEAST_SCATTER * float(np.median(consumption))
     for _ in range(_ROUNDS):
@@ -121,7 +122,8 @@ def _response(observed: Observations, consumption: Array, shape: Array, covariat
         scale = max(MAD_TO_SD * float(np.median(np.abs(residual))), least)
         trust = np.minimum(1.0, _HUBER * scale / np.maximum(np.abs(residual), 1e-300)) / (scale * shape) ** 2
         weighted = (local * trust[:, None]).T
-        slopes = np.asarray(np.linalg.solve(weighted @ local + held, weighted @ difference), dtype=np.float64)
+        explained = weighted @ difference + foreseen
+        slopes = np.asarray(np.linalg.solve(weighted @ local + held, explained), dtype=np.float64)
     response: Array = columns @ slopes
     return response
 

@@ -106,7 +106,7 @@ def assess(
             set_aside=suspects(segmented, found, typist, as_typed=two_carriers is None),
             verdict_with_all=WithAll(whole.verdict, whole.shift_percent, whole.interval_percent),
         )
-    if not answer.looks or two_carriers is not None or not has_levels(modifications, name):
+    if not answer.looks or not has_levels(modifications, name):
         return answer
     graded = respond(
         entries,
@@ -120,6 +120,7 @@ def assess(
         covariates=covariates,
         weather=weather,
         events=events,
+        two_carriers=two_carriers,
     )
     return replace(answer, response=graded)
 

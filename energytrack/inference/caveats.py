@@ -85,7 +85,8 @@ def _charging_changed(model: Model) -> list[str]:
     return [
         f"the charging habit changed: {_electric_share(model, ~fitted):.0f} % of the energy came from the plug without "
         f"the modification, {_electric_share(model, fitted):.0f} % with it. That alone moved consumption by about "
-        f"{moved:+.0f} % and could pass for a shift. Charge as before, for some full tanks at least."
+        f"{moved:+.0f} %. It is allowed for, yet an error in that could pass for a shift: charge as before for some "
+        f"full tanks."
     ]
 
 

@@ -15,6 +15,7 @@ import numpy as np
 from scipy.special import ndtr
 
 from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.model import Model, fit_model
@@ -44,6 +45,7 @@ def compare(
     covariates: Sequence[str] | None = None,
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
+    two_carriers: TwoCarriers | None = None,
 ) -> Comparison:
     """Pairwise shifts between variants of a part and the bare vehicle, simultaneous over pairs and looks.
 
@@ -51,7 +53,14 @@ def compare(
     InferenceError where two of the variants were never apart, or too little was driven with or without them.
     """
     observed, notes = observe_frames(
-        entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
+        entries,
+        modifications,
+        events=events,
+        weather=weather,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        two_carriers=two_carriers,
     )
     chosen = tuple(observed.names if names is None else dict.fromkeys(names))
     unknown = [name for name in chosen if name not in observed.names]

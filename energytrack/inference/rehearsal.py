@@ -16,6 +16,7 @@ import numpy as np
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside
+from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference import placebo
 from energytrack.inference.describe import noise_of
@@ -48,6 +49,7 @@ def rehearse(
     unit: str = "L",
     covariates: Sequence[str] | None = None,
     events: pd.DataFrame | None = None,
+    two_carriers: TwoCarriers | None = None,
     weather: pd.DataFrame | None = None,
     executor: Executor | None = None,
     progress: Progress | None = None,
@@ -67,7 +69,14 @@ def rehearse(
         raise InferenceError(f"the seed must not be negative, but is {seed}: any whole number from 0 on will do")
     question = Question("", float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
     observed, notes = observe_frames(
-        entries, modifications, events=events, weather=weather, capacity=capacity, unit=unit, covariates=covariates
+        entries,
+        modifications,
+        events=events,
+        weather=weather,
+        capacity=capacity,
+        unit=unit,
+        covariates=covariates,
+        two_carriers=two_carriers,
     )
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     usual = set_aside(observed, question.covariates).kept  # odd entries are no part of the noise to be drawn

@@ -14,6 +14,7 @@ import numpy as np
 
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
+from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference import bounds
 from energytrack.inference.model import Model, fit_model
@@ -45,6 +46,7 @@ def respond(
     covariates: Sequence[str] | None = None,
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
+    two_carriers: TwoCarriers | None = None,
 ) -> Response:
     """The response of consumption to the level of one modification. Tables and errors as for `assess`.
 
@@ -59,6 +61,7 @@ def respond(
         capacity=capacity,
         unit=unit,
         covariates=covariates,
+        two_carriers=two_carriers,
     )
     graded, levels, reference = _graded(observed, modifications, name)
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+import pandas as pd
 import pytest
 
 import energytrack as et
@@ -90,3 +91,15 @@ def test_plan_takes_tank_and_battery_too() -> None:
     found = et.plan(entries, 5.0, two_carriers=BOTH)
     assert found.unit == "kWh"
     assert any(design.distance_km for design in found.designs)
+
+
+def test_every_question_takes_tank_and_battery() -> None:
+    entries, modifications = hybrid_log(HybridUse(shift_percent=-8.0), np.random.default_rng(3))
+    rehearsed = et.rehearse(entries, modifications, "part", 8.0, runs=2, two_carriers=BOTH)
+    assert rehearsed.unit == "kWh"
+    wing = modifications.assign(level=5.0)
+    assert et.respond(entries, wing, "part", two_carriers=BOTH).levels
+    later = modifications.assign(name="other", fitted_km=modifications["fitted_km"] + 5000)
+    both_parts = pd.concat([modifications.assign(removed_km=later["fitted_km"]), later])
+    compared = et.compare(entries, both_parts, two_carriers=BOTH)
+    assert len(compared.pairs) == 3  # each part against the other and against nothing fitted
