@@ -22,6 +22,7 @@ from energytrack.cli.context import (
 )
 from energytrack.errors import EntryError
 from energytrack.logbook.checks import (
+    LARGEST_TARGET_PERCENT,
     check_date,
     check_known,
     check_name,
@@ -134,8 +135,8 @@ def _target(text: str | None) -> float | None:
     if text is None:
         return None
     value = parse_number(text, "target")
-    if not 0 < value < 100:
-        raise EntryError(f"target {value:g} is outside 0 to 100 %: type the shift worth knowing, such as 3")
+    if not 0 < value <= LARGEST_TARGET_PERCENT:
+        raise EntryError(f"target {value:g} is not above 0 and at most 50 %: type the shift worth knowing, such as 3")
     return value
 
 

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from energytrack.errors import InferenceError
 from energytrack.inference import rules
 from energytrack.inference.results import Rule
+from energytrack.logbook.checks import LARGEST_TARGET_PERCENT
 
 
 @dataclass(frozen=True)
@@ -22,8 +23,9 @@ class Question:
     reversible: bool = True  # the modification can be taken off again
 
     def __post_init__(self) -> None:
-        if not 0 < self.target < 1:
-            raise InferenceError(f"the target must lie between 0 and 100 percent, not {100 * self.target:g}: try 3")
+        if not 0 < 100 * self.target <= LARGEST_TARGET_PERCENT:
+            asked = f"{100 * self.target:g}"
+            raise InferenceError(f"the target must lie above 0 and at most at 50 percent, not {asked}: try 3")
         rules.check_rule(self.rule)
         rules.drift(self.rule, self.alpha, self.power)  # refuses a confidence or power outside its range
 

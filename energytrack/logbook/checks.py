@@ -18,6 +18,7 @@ COLDEST_C, HOTTEST_C = -90.0, 60.0  # beyond any outside temperature met on Eart
 FASTEST_KMH = 500.0
 EARLIEST_YEAR = 1900
 LARGEST_KNOWN_PERCENT = 100.0
+LARGEST_TARGET_PERCENT = 50.0
 LONGEST_NAME = 60  # keeps lists and answers readable
 
 
@@ -56,10 +57,10 @@ def check_odometer(odometer_km: float, vehicle: Vehicle) -> None:
 def check_known(low: float, high: float) -> None:
     """A known change lies on one side of zero, from its low to its high end, in percent. Raises EntryError."""
     shown = f"a known change of {low:g} to {high:g} %"
+    if min(low, high) <= 0 <= max(low, high):
+        raise EntryError(f"{shown} may be none at all: both ends above 0 (it costs), or both below 0 (it saves)")
     if low > high:
         raise EntryError(f"{shown} is written the wrong way round: the lower number comes first, {high:g}:{low:g}")
-    if low <= 0 <= high:
-        raise EntryError(f"{shown} may be none at all: both ends above 0 (it costs), or both below 0 (it saves)")
     if max(-low, high) > LARGEST_KNOWN_PERCENT:
         raise EntryError(f"{shown} is beyond {LARGEST_KNOWN_PERCENT:g} %: correct it")
 

@@ -163,10 +163,11 @@ def test_plan_compares_and_says_what_was_fitted(logbook: Path) -> None:
     [
         (["enough", "spoiler"], "no modification named 'spoiler'; logged: side skirts, grille blanking"),
         (["enough", "--vehicle", "bus"], "van"),
-        (["enough", "--vehicle", "van", "--target", "0"], "between 0 and 100"),
+        (["enough", "--vehicle", "van", "--target", "0"], "at most at 50"),
+        (["enough", "--vehicle", "van", "--target", "51"], "at most at 50"),
         (["enough", "--vehicle", "van", "--confidence", "2"], "confidence"),
         (["plan", "--vehicle", "bus"], "van"),
-        (["plan", "--vehicle", "van", "--target", "-1"], "between 0 and 100"),
+        (["plan", "--vehicle", "van", "--target", "-1"], "at most at 50"),
         (["enough", "--vehicle", "van", "--covariate", "payload"], "payload"),
     ],
 )
@@ -336,7 +337,7 @@ def test_a_known_change_is_logged_and_answered(tmp_path: Path) -> None:
     assert (answer["known_percent"], answer["known_change"]) == ([5.0, 12.0], "seen")
     said = " ".join(run(path, "enough").stdout.split())
     assert "A known change, +5 to +12 % expected, was seen: this log can show a shift of" in said
-    assert "It has shown what it was for: take it off" in said
+    assert "It has shown what it was for: if it is still on, take it off" in said
     assert "It costs energy" not in said
     listed = json.loads(run(path, "mod", "list", "--json").stdout)["modifications"]
     assert (listed[0]["known"], listed[0]["reversible"]) == ([5.0, 12.0], True)

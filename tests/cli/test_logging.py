@@ -115,7 +115,8 @@ def test_bad_entries_are_refused_and_nothing_is_written(run: Terminal, arguments
 BAD_SWITCHES = [
     (["mod", "fitted", "skirts"], "say where"),
     (["mod", "fitted", "skirts", "-5"], "no odometer value"),
-    (["mod", "fitted", "skirts", "48900", "--target", "0"], "outside 0 to 100"),
+    (["mod", "fitted", "skirts", "48900", "--target", "0"], "at most 50 %"),
+    (["mod", "fitted", "skirts", "48900", "--target", "51"], "at most 50 %"),
     (["mod", "fitted", "skirts", "48900", "--date", "2999-01-01"], "in the future"),
     (["mod", "fitted", " ", "48900"], "needs a name"),
     (["mod", "removed", "spoiler", "48900"], "fitted now: nothing"),

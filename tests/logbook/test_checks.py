@@ -10,7 +10,15 @@ from typing import Any
 import pytest
 
 from energytrack.errors import EntryError
-from energytrack.logbook.checks import check_measure, check_name, check_place, check_reading, check_values, parse_date
+from energytrack.logbook.checks import (
+    check_known,
+    check_measure,
+    check_name,
+    check_place,
+    check_reading,
+    check_values,
+    parse_date,
+)
 from energytrack.logbook.records import Entry, Vehicle
 
 TODAY = dt.date(2026, 5, 10)
@@ -131,3 +139,17 @@ def test_days_written_another_way_are_refused(typed: str) -> None:
 
 def test_a_leap_day_is_a_day() -> None:
     assert parse_date("2024-02-29") == dt.date(2024, 2, 29)
+
+
+@pytest.mark.parametrize(
+    ("low", "high", "refusal"),
+    [
+        (9.0, 4.0, "the lower number comes first, 4:9"),
+        (4.0, -9.0, "may be none at all"),  # turning it round would not mend it
+        (-9.0, 4.0, "may be none at all"),
+        (0.0, 4.0, "may be none at all"),
+    ],
+)
+def test_a_known_change_lies_on_one_side_of_zero(low: float, high: float, refusal: str) -> None:
+    with pytest.raises(EntryError, match=refusal):
+        check_known(low, high)
