@@ -93,10 +93,10 @@ class Effect:
 
 @dataclass(frozen=True)
 class Together:
-    """Several modifications of one vehicle: each alone, and all at once."""
+    """Several modifications of one vehicle: each alone, and all at once, None where no two ever were."""
 
     each: tuple[Effect, ...]
-    all_at_once: Effect
+    all_at_once: Effect | None
 
 
 @dataclass(frozen=True)

@@ -15,6 +15,7 @@ from energytrack.inference.results import Effect, Together
 from energytrack.inference.shift import SHIFT, Shift, shift_along
 
 _NEVER_APART = 0.98  # correlation of two modifications' shares
+_THROUGHOUT = 0.999  # of a segment's distance
 
 
 def never_apart(observed: Observations, name: str) -> tuple[str, ...]:
@@ -39,7 +40,10 @@ def refusal(name: str, partners: Sequence[str]) -> str:
 
 
 def together(model: Model, question: Question) -> Together | None:
-    """Each modification's shift beside the others, and all of them at once; None where there is only one."""
+    """Each modification's shift beside the others; None where there is only one.
+
+    With all at once, where two were ever on together.
+    """
     columns = {str(model.modification): SHIFT}
     columns |= {name: model.term_columns.stop + k for k, name in enumerate(model.others)}
     if len(columns) < 2:
@@ -49,7 +53,13 @@ def together(model: Model, question: Question) -> Together | None:
     whole = np.zeros(size)
     whole[list(columns.values())] = 1.0
     names = " + ".join(columns)
-    return Together(tuple(each.values()), effect_of(names, shift_along(model.fit, whole), question))
+    all_at_once = effect_of(names, shift_along(model.fit, whole), question) if _ever_together(model) else None
+    return Together(tuple(each.values()), all_at_once)
+
+
+def _ever_together(model: Model) -> bool:
+    """At least one segment was driven with two of them on throughout; variants of one part never are."""
+    return bool(((model.observed.fitted >= _THROUGHOUT).sum(axis=1) > 1).any())
 
 
 def effect_of(name: str, shift: Shift, question: Question) -> Effect:

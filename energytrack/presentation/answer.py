@@ -22,7 +22,31 @@ def sentence(a: Assessment, unit: str = "km") -> str:
         "no-baseline": _no_baseline,
         "closed-unclear": _unclear,
     }[a.verdict]
-    return " ".join(filter(None, (say(a, unit), known_sentence(a), follow_up(a))))
+    return " ".join(filter(None, (say(a, unit), _bent(a), known_sentence(a), follow_up(a))))
+
+
+def named(a: Assessment) -> str:
+    """What the answer is for: the modification, or with it those that were never apart from it."""
+    if not a.never_apart:
+        return plain_text(a.modification)
+    *others, last = map(plain_text, (a.modification, *a.never_apart))
+    return f"{', '.join(others)} and {last} together"
+
+
+def _bent(a: Assessment) -> str:
+    """Where a level inside the tried range uses least, a shift in proportion to the level is not the whole answer."""
+    graded = a.response
+    if graded is None or graded.best_level is None:
+        return ""
+    best = min(graded.levels, key=lambda effect: effect.shift_percent)
+    span = figures.bounded(best.interval_percent)
+    if best.level == graded.reference_level or span is None:
+        return ""
+    shift, within = figures.percent(best.shift_percent, signed=True), figures.percent_range(span)
+    return (
+        f"That takes its levels in proportion; with a bend allowed for, level {best.level:g} comes to {shift}, "
+        f"look-proof range {within}."
+    )
 
 
 def contradicted(a: Assessment) -> bool:
@@ -76,7 +100,7 @@ def remedy(r: Remedy, unit: str) -> str:
 
 
 def _shifted(a: Assessment, unit: str) -> str:
-    name = plain_text(a.modification)
+    name = named(a)
     at = _when_settled(a, unit)
     if contradicted(a):
         look = settling_look(a)
@@ -109,7 +133,7 @@ def _what_changed(a: Assessment) -> str:
 
 
 def _no_shift(a: Assessment, unit: str) -> str:
-    name, target = plain_text(a.modification), figures.target(a.target_percent)
+    name, target = named(a), figures.target(a.target_percent)
     if contradicted(a):
         return (
             f"Doubtful: a shift of {target} from {name} was ruled out{_when_settled(a, unit)}, "
@@ -129,18 +153,18 @@ def _no_shift(a: Assessment, unit: str) -> str:
 
 def _not_yet(a: Assessment, unit: str) -> str:
     if a.rule == "open-ended" and a.distance_to_go_km == 0:
-        go = f"the distance for a shift from {plain_text(a.modification)} is driven, none has shown, the watch goes on"
+        go = f"the distance for a shift from {named(a)} is driven, none has shown, the watch goes on"
     elif a.distance_to_go_km is None:
-        go = f"how much further with {plain_text(a.modification)} cannot be foreseen yet"
+        go = f"how much further with {named(a)} cannot be foreseen yet"
     else:
-        go = f"about {figures.distance(a.distance_to_go_km, unit)} more with {plain_text(a.modification)}"
+        go = f"about {figures.distance(a.distance_to_go_km, unit)} more with {named(a)}"
         go += "" if a.days_to_go is None else f", about {figures.days(a.days_to_go)} of your driving"
     now = "Nothing measured with it so far" if a.shift_percent is None else f"So far {so_far(a)}"
     return f"Not yet: {go}, at the target of {figures.target(a.target_percent)}. {now}."
 
 
 def _out_of_reach(a: Assessment, unit: str) -> str:
-    name, target = plain_text(a.modification), figures.target(a.target_percent)
+    name, target = named(a), figures.target(a.target_percent)
     if a.resolvable_at_best_percent is None:
         limit = f"this log of {name} cannot show a shift of {target}, however far you drive on like this."
     else:
@@ -159,7 +183,7 @@ def _best_remedy(a: Assessment) -> Remedy | None:
 
 
 def _no_baseline(a: Assessment, unit: str) -> str:
-    name = plain_text(a.modification)
+    name = named(a)
     have = f"only {figures.driven(a.distance_baseline_km, unit)} in {count(a.segments_baseline, 'segment')}"
     have = have if a.segments_baseline else "nothing measured"
     return (
@@ -178,7 +202,7 @@ def baseline_to_drive(a: Assessment) -> float:
 def _unclear(a: Assessment, unit: str) -> str:
     return (
         f"Unclear: the distance for a target of {figures.target(a.target_percent)} is driven, yet a shift of that size "
-        f"from {plain_text(a.modification)} is neither shown nor ruled out. Measured {so_far(a)}."
+        f"from {named(a)} is neither shown nor ruled out. Measured {so_far(a)}."
     )
 
 

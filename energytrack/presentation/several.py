@@ -17,7 +17,8 @@ Row = tuple[str, str]
 def side_by_side(together: Together) -> list[Row]:
     """Each part's own shift, and all at once."""
     rows = [("  " + plain_text(effect.name), _effect(effect)) for effect in together.each]
-    return [*rows, ("  all at once", _effect(together.all_at_once))]
+    whole = together.all_at_once
+    return rows if whole is None else [*rows, ("  all at once", _effect(whole))]
 
 
 def levels(response: Response) -> list[Row]:

@@ -101,3 +101,11 @@ def test_comparisons_that_cannot_be_made_are_refused() -> None:
         compare(entries, parts, ["A"], capacity=75.0)
     with pytest.raises(UnknownNameError, match="A, B"):
         compare(entries, parts, ["A", "X"], capacity=75.0)
+
+
+def test_variants_never_on_together_have_no_effect_all_at_once() -> None:
+    log = plain_log(3)
+    entries, parts = fit_parts(log, [Period("short", 30, 60, -0.02), Period("long", 60, 119, -0.05)])
+    both = et.assess(entries, parts, "long", capacity=75.0, every_look=False).together
+    assert [effect.name for effect in both.each] == ["long", "short"]
+    assert both.all_at_once is None

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from energytrack.inference.results import (
     Comparison,
     Effect,
@@ -11,7 +13,8 @@ from energytrack.inference.results import (
     Standing,
     Together,
 )
-from energytrack.presentation import several
+from energytrack.presentation import answer, several
+from tests.presentation.samples import NOT_YET, SHIFTED
 
 SKIRTS = Effect("skirts", -5.03, (-6.9, -3.1), 0.71, 9.0)
 TYRES = Effect("tyres", 3.96, (1.8, 6.2), 0.80, 9.0)
@@ -81,8 +84,6 @@ def test_variants_compared() -> None:
 
 
 def test_variants_not_told_apart() -> None:
-    from dataclasses import replace
-
     open_pairs = tuple(replace(pair, differs=False) for pair in FOUND.pairs)
     assert several.compared(replace(FOUND, pairs=open_pairs))[0].plain.startswith("Not yet: no variant is told")
 
@@ -90,3 +91,20 @@ def test_variants_not_told_apart() -> None:
 def test_hostile_names_are_inert() -> None:
     hostile = Together((Effect("a\x1b[31m", 0.0, None, 1.0, 5.0),), BOTH)
     assert "\x1b" not in str(several.side_by_side(hostile))
+
+
+def test_variants_never_on_together_have_no_row_all_at_once() -> None:
+    labels = [label for label, _ in several.side_by_side(Together((SKIRTS, TYRES), None))]
+    assert labels == ["  skirts", "  tyres"]
+
+
+def test_the_first_sentence_is_about_all_parts_that_were_never_apart() -> None:
+    both = replace(SHIFTED, modification="skirts", never_apart=("fairing", "tyres"))
+    assert answer.sentence(both).startswith("Yes: skirts, fairing and tyres together lowered consumption by")
+
+
+def test_the_first_sentence_says_where_levels_are_not_in_proportion() -> None:
+    graded = answer.sentence(replace(NOT_YET, response=RESPONSE))
+    assert "level 5 comes to -6.1\u00a0%, look-proof range -8.0\u00a0to\u00a0-4.2\u00a0%." in graded
+    straight = replace(RESPONSE, form="line", best_level=None, best_level_interval=None)
+    assert "in proportion" not in answer.sentence(replace(NOT_YET, response=straight))
