@@ -46,7 +46,7 @@ def _took_turns(model: Model) -> list[str]:
 def _not_fitted_now(model: Model) -> list[str]:
     if model.modification is None or _shares(model, model.modification)[-1] != 0:
         return []
-    return [f"{model.modification} is not fitted now: distance still to go counts from when it is fitted again"]
+    return [f"{model.modification} is not fitted now: any distance still to go counts from when it is fitted again"]
 
 
 def _little_overlap(model: Model) -> list[str]:

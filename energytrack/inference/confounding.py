@@ -13,7 +13,7 @@ from dataclasses import replace
 import numpy as np
 
 from energytrack.consumption.conditions import SEASON, Conditions
-from energytrack.consumption.terms import condition_of
+from energytrack.consumption.terms import ELECTRIC, condition_of
 from energytrack.inference.ahead import Road, always_fitted, reach, road
 from energytrack.inference.model import Model, stack
 from energytrack.inference.noise import Array
@@ -23,6 +23,13 @@ from energytrack.inference.shift import SHIFT, contrast_variance
 
 WORTH_SAYING = 1.25  # variance inflation
 _TRIED = (10, 30, 50, 70, 90)  # percentiles of a condition among which driving is compared
+_NAMES = {
+    "temperature_c": "the temperature",
+    "speed_kmh": "the mean speed",
+    SEASON: "the season",
+    ELECTRIC: "the charging",
+}
+_UNITS = {"temperature_c": " °C", "speed_kmh": " km/h", ELECTRIC: " kWh/100 km from the plug"}
 _WORTH_SEEKING = 1.3  # times the information of usual driving
 
 
@@ -118,16 +125,16 @@ def _gain(model: Model, condition: str, at: float, fitted: bool) -> float:
 
 def in_words(confounder: Confounder, to_go_km: float | None, advice: Advice | None) -> str:
     """A warning a driver can act on."""
-    names = {"temperature_c": "the temperature", "speed_kmh": "the mean speed", SEASON: "the season"}
-    what = names.get(confounder.condition, confounder.condition)
+    what = _NAMES.get(confounder.condition, confounder.condition)
     said = f"{what} changed together with the modification: not knowing its effect multiplies the variance "
     said += f"of the shift by {confounder.inflation:.1f}"
     if confounder.cost_km is not None and to_go_km and confounder.cost_km > 0.1 * to_go_km:
-        said += f"; {min(1.0, confounder.cost_km / to_go_km):.0%} of the distance still to go is because of it"
+        said += f"; {100 * min(1.0, confounder.cost_km / to_go_km):.0f} % of the distance still to go is because of it"
     return said if advice is None else f"{said}. {_seek(advice)}"
 
 
 def _seek(advice: Advice) -> str:
-    unit = {"temperature_c": " °C", "speed_kmh": " km/h"}.get(advice.condition, f" {advice.condition}")
+    unit = _UNITS.get(advice.condition, f" {advice.condition}")
     how = "with" if advice.fitted else "without"
-    return f"A segment {how} it at about {advice.value:.0f}{unit} tells {advice.times_usual:.1f} times as much as usual"
+    at = f"{advice.value:z.0f}{unit}"
+    return f"A segment {how} it at about {at} tells {advice.times_usual:.1f} times as much as usual"

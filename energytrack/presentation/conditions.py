@@ -38,7 +38,7 @@ def _branch(found: Covariate, where: str, low: float, high: float) -> str:
     response = f"{_per_unit(found)} per degree {where}"
     if high <= low:
         return f"{response}; hardly met here"
-    here = join(f"{low:.0f} to {high:.0f} °C")
+    here = join(f"{low:z.0f} to {high:z.0f} °C")
     return f"{response}; here {here}, worth {join(f'{abs(found.estimate) * (high - low):.0f} %')}"
 
 

@@ -9,6 +9,8 @@ import pandas as pd
 import pytest
 
 import energytrack as et
+from energytrack.inference.confounding import in_words
+from energytrack.inference.results import Advice, Confounder
 from tests.inference.test_several import plain_log
 
 
@@ -83,3 +85,12 @@ def test_an_event_that_came_with_the_part_is_named() -> None:
     answer = et.assess(log.entries, parts, "part", capacity=75.0, events=events)
     assert answer.warnings[0].startswith("new driver")
     assert not any("service" in warning for warning in answer.warnings)
+
+
+def test_in_words_a_share_has_its_space_and_a_charging_habit_its_name() -> None:
+    said = in_words(
+        Confounder("electric_kwh_per_100km", 4.3, 250.0), 1000.0, Advice("electric_kwh_per_100km", -0.2, False, 3.5)
+    )
+    assert said.startswith("the charging changed together with the modification")
+    assert "25 % of the distance still to go" in said
+    assert said.endswith("A segment without it at about 0 kWh/100 km from the plug tells 3.5 times as much as usual")

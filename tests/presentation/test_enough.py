@@ -9,6 +9,7 @@ import pytest
 from rich.cells import cell_len
 
 from energytrack.inference.results import Assessment, Covariate, Look, Noise, Rule
+from energytrack.presentation.conditions import rows
 from energytrack.presentation.enough import render
 from tests.presentation.samples import EVERY_VERDICT, NOT_YET, OUT_OF_REACH, SHIFTED
 
@@ -180,3 +181,8 @@ def test_the_rule_stands_beside_the_range(rule: Rule, words: str) -> None:
 
 def test_what_is_driven_already_is_not_still_to_go() -> None:
     assert "still to go" not in shown(replace(NOT_YET, rule="open-ended", distance_to_go_km=0.0))
+
+
+def test_no_temperature_is_minus_nought() -> None:
+    heating = Covariate(0.61, 0.08, -8.5, -0.3, 18.4, "temperature_c")
+    assert "here 0\u00a0to\u00a018\u00a0°C" in rows({"heating": heating}, "km")[0][1]
