@@ -61,7 +61,7 @@ def enough(
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
     if compare:
-        _compare(vehicles, logbook, target, confidence, covariate, json)
+        _compare(vehicles, logbook, target, confidence, covariate, json, keep_all)
         return
     if rule == "counted" and not isinstance(logbook, Store):
         raise LogbookError(f"{logbook.path} is a folder of tables and keeps no looks: use --looks every, or import it")
@@ -121,6 +121,7 @@ def _compare(
     confidence: float,
     covariates: list[str] | None,
     json: bool,
+    keep_all: bool,
 ) -> None:
     from energytrack.inference.comparison import compare
     from energytrack.presentation import several, terminal
@@ -132,6 +133,7 @@ def _compare(
             target_percent=asking.USUAL_TARGET if target is None else target,
             confidence=confidence,
             covariates=covariates or None,
+            set_aside="none" if keep_all else "odd",
         ),
     )
     if json:

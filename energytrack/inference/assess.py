@@ -121,6 +121,7 @@ def assess(
         weather=weather,
         events=events,
         two_carriers=two_carriers,
+        set_aside=set_aside,
     )
     return replace(answer, response=graded)
 

@@ -9,12 +9,13 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from itertools import combinations
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 from scipy.special import ndtr
 
 from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.oddities import set_aside as sort_out
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference import bounds
@@ -46,10 +47,11 @@ def compare(
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
     two_carriers: TwoCarriers | None = None,
+    set_aside: Literal["odd", "none"] = "odd",
 ) -> Comparison:
     """Pairwise shifts between variants of a part and the bare vehicle, simultaneous over pairs and looks.
 
-    names: at least two modifications, all of the table where left out. Tables and errors as for `assess`;
+    names: at least two modifications, all of the table where left out. Tables, `set_aside` and errors as for `assess`;
     InferenceError where two of the variants were never apart, or too little was driven with or without them.
     """
     observed, notes = observe_frames(
@@ -73,12 +75,20 @@ def compare(
         if same:
             raise InferenceError(f"{name} and {same[0]} were never apart: drive some full tanks with only one of them")
     question = Question(chosen[0], float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
+    if set_aside == "odd":
+        found = sort_out(observed, question.covariates)
+        observed, notes = found.kept, (*notes, *_left_out(len(found.odd)))
     model = fit_model(observed, chosen[0], covariates=question.covariates)
     missing = [name for name in chosen[1:] if name not in model.others]
     if missing:
         raise InferenceError(f"nothing, or everything, was driven with {missing[0]}: there is nothing to compare")
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     return _compared(vehicle, model, chosen, question, notes)
+
+
+def _left_out(count: int) -> list[str]:
+    things = "1 odd entry" if count == 1 else f"{count} odd entries"
+    return [f"{things} set aside; energytrack enough says which, --keep-all keeps them in"] if count else []
 
 
 def _compared(

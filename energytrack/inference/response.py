@@ -8,12 +8,13 @@ Fieller's (1954).
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
+from energytrack.consumption.oddities import set_aside as sort_out
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference import bounds
@@ -47,8 +48,10 @@ def respond(
     weather: pd.DataFrame | None = None,
     events: pd.DataFrame | None = None,
     two_carriers: TwoCarriers | None = None,
+    set_aside: Literal["odd", "none"] = "odd",
 ) -> Response:
-    """The response of consumption to the level of one modification. Tables and errors as for `assess`.
+    """The response of consumption to the level of one modification. Tables, `set_aside` and
+    errors as for `assess`.
 
     InferenceError where a fitting has no level, or fewer than two levels were driven.
     """
@@ -63,6 +66,8 @@ def respond(
         covariates=covariates,
         two_carriers=two_carriers,
     )
+    if set_aside == "odd":
+        observed = sort_out(observed, question.covariates).kept
     graded, levels, reference = _graded(observed, modifications, name)
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     model = fit_model(graded, name, covariates=question.covariates)

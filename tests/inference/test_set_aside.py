@@ -10,6 +10,8 @@ import pytest
 
 import energytrack as et
 from energytrack.inference.results import Assessment
+from tests.fitted import Period, fit_parts
+from tests.inference.test_several import plain_log
 from tests.simulation import SimulatedLog, simulate
 from tests.uses import STEADY_COMMUTE
 
@@ -92,3 +94,19 @@ def test_digits_are_those_that_were_typed(log: SimulatedLog) -> None:
     """41 litres typed in a log of US gallons: the suggestion is in gallons."""
     told = answer(log, typed_wrong(log, 3.785), typed_in=("mi", "gal-us")).set_aside[0]
     assert told.suspicion == "litres typed for gallons" or "gal (US)" in told.suggestion
+
+
+def test_levels_and_variants_are_not_spoilt_by_a_slip() -> None:
+    log = plain_log(2)
+    entries, parts = fit_parts(log, [Period("wing", 30, 60, -0.03, 5.0), Period("wing", 60, 119, -0.05, 10.0)])
+    dams = parts.assign(name=["short", "long"], level=None)
+    slip = entries.copy()
+    slip.loc[70, "energy"] /= 10
+    clean, odd = (et.respond(table, parts, "wing", capacity=75.0).levels[-1] for table in (entries, slip))
+    assert odd.shift_percent == pytest.approx(clean.shift_percent, abs=0.5)
+    kept = et.respond(slip, parts, "wing", capacity=75.0, set_aside="none").levels[-1]
+    widths = [level.interval_percent[1] - level.interval_percent[0] for level in (clean, odd, kept)]
+    assert widths[1] < 1.5 * widths[0] < 5 * widths[0] < widths[2]
+    whole, compared = (et.compare(table, dams, capacity=75.0) for table in (entries, slip))
+    assert [pair.differs for pair in compared.pairs] == [pair.differs for pair in whole.pairs]
+    assert compared.warnings == ("1 odd entry set aside; energytrack enough says which, --keep-all keeps them in",)
