@@ -98,6 +98,11 @@ def test_progress_on_a_terminal_and_a_clean_end_on_ctrl_c(logbook: Path):
     assert "Traceback" not in child.before
 
 
+def listening() -> None:
+    """A suite run in the background of a shell passes on that Ctrl-C is ignored: a command in front hears it."""
+    signal.signal(signal.SIGINT, signal.SIG_DFL)
+
+
 def ended_by_interrupts(child: subprocess.Popen[str]) -> tuple[str, str]:
     """Press Ctrl-C, and again every two seconds: one that falls into the moment of a worker's start is not heard."""
     for _ in range(30):
@@ -114,7 +119,8 @@ def ended_by_interrupts(child: subprocess.Popen[str]) -> tuple[str, str]:
 def test_ctrl_c_while_workers_start_is_clean_too(logbook: Path):
     words = [sys.executable, "-m", "energytrack", "--logbook", str(logbook), "rehearse", "--vehicle", "van"]
     child = subprocess.Popen([*words, "--runs", "5000"], cwd=Path(__file__).parents[2], text=True,
-                             stdout=subprocess.PIPE, stderr=subprocess.PIPE, start_new_session=True)  # fmt: skip
+                             stdout=subprocess.PIPE, stderr=subprocess.PIPE, start_new_session=True,
+                             preexec_fn=listening)  # fmt: skip
     started = Path(f"/proc/{child.pid}/task/{child.pid}/children")
     while len(started.read_text(encoding="ascii").split()) < 2:  # the first child only keeps count of the others
         assert child.poll() is None
