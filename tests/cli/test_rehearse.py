@@ -84,23 +84,23 @@ def test_refusals_are_one_line(logbook: Path, words: tuple[str, ...], said: str)
     assert done.stdout == ""
 
 
+def listening() -> None:
+    """A suite run in the background of a shell passes on that Ctrl-C is ignored: a command in front hears it."""
+    signal.signal(signal.SIGINT, signal.SIG_DFL)
+
+
 @pytest.mark.skipif(sys.platform == "win32", reason="POSIX terminals")
 def test_progress_on_a_terminal_and_a_clean_end_on_ctrl_c(logbook: Path):
     pexpect = pytest.importorskip("pexpect")
     words = ["-m", "energytrack", "--logbook", str(logbook), "rehearse", "--vehicle", "van", "--runs", "5000"]
     child = pexpect.spawn(sys.executable, words, encoding="utf-8", timeout=120, cwd=Path(__file__).parents[2],
-                          env={**os.environ, "TERM": "xterm"})  # fmt: skip
+                          env={**os.environ, "TERM": "xterm"}, preexec_fn=listening)  # fmt: skip
     child.expect(r"van, side skirts.*[1-9]\d*/50\d\d")
     child.sendintr()
     child.expect(pexpect.EOF)
     child.close()
     assert child.exitstatus == 128 + signal.SIGINT
     assert "Traceback" not in child.before
-
-
-def listening() -> None:
-    """A suite run in the background of a shell passes on that Ctrl-C is ignored: a command in front hears it."""
-    signal.signal(signal.SIGINT, signal.SIG_DFL)
 
 
 def ended_by_interrupts(child: subprocess.Popen[str]) -> tuple[str, str]:
