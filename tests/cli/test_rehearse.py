@@ -84,12 +84,17 @@ def test_refusals_are_one_line(logbook: Path, words: tuple[str, ...], said: str)
     assert done.stdout == ""
 
 
+def listening() -> None:
+    """A suite run in the background of a shell passes on that Ctrl-C is ignored: a command in front hears it."""
+    signal.signal(signal.SIGINT, signal.SIG_DFL)
+
+
 @pytest.mark.skipif(sys.platform == "win32", reason="POSIX terminals")
 def test_progress_on_a_terminal_and_a_clean_end_on_ctrl_c(logbook: Path):
     pexpect = pytest.importorskip("pexpect")
     words = ["-m", "energytrack", "--logbook", str(logbook), "rehearse", "--vehicle", "van", "--runs", "5000"]
     child = pexpect.spawn(sys.executable, words, encoding="utf-8", timeout=120, cwd=Path(__file__).parents[2],
-                          env={**os.environ, "TERM": "xterm"})  # fmt: skip
+                          env={**os.environ, "TERM": "xterm"}, preexec_fn=listening)  # fmt: skip
     child.expect(r"van, side skirts.*[1-9]\d*/50\d\d")
     child.sendintr()
     child.expect(pexpect.EOF)
@@ -114,7 +119,8 @@ def ended_by_interrupts(child: subprocess.Popen[str]) -> tuple[str, str]:
 def test_ctrl_c_while_workers_start_is_clean_too(logbook: Path):
     words = [sys.executable, "-m", "energytrack", "--logbook", str(logbook), "rehearse", "--vehicle", "van"]
     child = subprocess.Popen([*words, "--runs", "5000"], cwd=Path(__file__).parents[2], text=True,
-                             stdout=subprocess.PIPE, stderr=subprocess.PIPE, start_new_session=True)  # fmt: skip
+                             stdout=subprocess.PIPE, stderr=subprocess.PIPE, start_new_session=True,
+                             preexec_fn=listening)  # fmt: skip
     started = Path(f"/proc/{child.pid}/task/{child.pid}/children")
     while len(started.read_text(encoding="ascii").split()) < 2:  # the first child only keeps count of the others
         assert child.poll() is None
