@@ -60,6 +60,8 @@ def enough(
     rule = _rule(looks, open_ended)
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
+    if compare and (name is not None or rule != "every-look" or picture or exit_code):
+        raise typer.BadParameter("--compare takes no modification, --looks, --open-ended, --picture or --exit-code")
     if compare:
         _compare(vehicles, logbook, target, confidence, covariate, json, keep_all)
         return

@@ -361,3 +361,10 @@ def test_a_saving_may_be_known_and_a_part_irreversible(logbook: Path) -> None:
     assert done.returncode == 0, done.stderr
     remap = open_logbook(logbook).modifications("van")[-1]
     assert (remap.name, remap.known, remap.reversible) == ("remap", (-9.0, -4.0), False)
+
+
+@pytest.mark.parametrize("further", [("side skirts",), ("--open-ended",), ("--picture",), ("--exit-code",)])
+def test_a_comparison_refuses_what_it_would_ignore(logbook: Path, further: tuple[str, ...]) -> None:
+    done = run(logbook, "enough", "--compare", *further)
+    assert done.returncode == 2
+    assert "--compare takes no" in done.stderr
