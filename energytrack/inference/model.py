@@ -23,7 +23,7 @@ _WEEKS, _SEASONS = 0.3, 0.2  # median drift relative to the trip noise of a usua
 _USUAL_TANK_KM = 500.0  # so that logging the same driving more often does not make it drift more
 _LOOSE = 0.8  # log-sd of those priors
 _TRIP = Prior((1, 0, 0, 0), log(0.05), 1.5)  # all but free: 95 % of it lies between 0.3 and 95 %
-_STRETCH = 500  # segments that give a long log's first guess of the noise
+_STRETCH = 500  # segments at least, or a tenth of the log, that give a long log's first guess of the noise
 _ANOTHER_MODIFICATION = 0.2  # prior sd of the effect of a modification not asked about
 
 
@@ -114,7 +114,7 @@ def noise_priors(observed: Observations, scale: Scale) -> tuple[Prior, ...]:
 def _first_guess(observed: Observations, problem: Problem) -> Array:
     """The priors' medians; for a long log what a stretch of it says, so that few rounds are paid at full length."""
     if len(observed) > 2 * _STRETCH:
-        return fit_model(observed.head(_STRETCH), None).fit.theta
+        return fit_model(observed.head(max(_STRETCH, len(observed) // 10)), None).fit.theta
     trip, level, weeks, seasons = (prior.median for prior in problem.priors)
     return np.array([trip, level, trip + weeks, trip + seasons])
 

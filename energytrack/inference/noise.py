@@ -94,41 +94,73 @@ class Products(NamedTuple):
 def products(shape: Structure, scatter: Scatter, columns: Array) -> Products:
     """B' V^-1 B for B of shape (n, q), and log det V, in O(n q).
 
-    Woodbury: V = R + A Q^-1 A', so V^-1 = R^-1 - R^-1 A M^-1 A' R^-1 with M = Q + A' R^-1 A banded.
+    Woodbury: V = R + A Q^-1 A', so V^-1 = R^-1 - R^-1 A M^-1 A' R^-1 with M = Q + A' R^-1 A banded. M = L L' is
+    factored, and L^-1 A' R^-1 B found, block by block: the numbers of a block fit a processor's cache.
     """
-    own, shared, remainder = loadings(shape, scatter)
-    band = posterior_precision(shape, own, shared, remainder)
-    factor, fault = lapack.dpbtrf(band, lower=1)
-    if fault:
-        raise FloatingPointError("the precision of drift and levels is not positive definite")
-    weighted = columns / remainder[:, None]
-    cross = columns.T @ weighted - _explained(factor, own, shared, weighted)
-    log_det = float(np.log(remainder).sum() + 2 * np.log(factor[0]).sum()) - shape.drift_log_det
+    n, q = columns.shape
+    cross, log_det = np.zeros((q, q)), -shape.drift_log_det
+    coupling, last = np.zeros((LATENT, LATENT)), np.zeros((LATENT, q))  # of the block before: L's reach, and its rows
+    for start in range(0, n, _BLOCK):
+        size = min(_BLOCK, n - start)
+        some = part(shape, start, min(start + size + 1, n))  # one more, for what it shares with the last of the block
+        own, shared, remainder = loadings(some, scatter)
+        weighted = columns[start : start + len(remainder)] / remainder[:, None]
+        rows = own[:, :, None] * weighted[:, None, :]
+        rows[:-1, 2] += shared[1:, None] * weighted[1:]
+        band = posterior_precision(some, own, shared, remainder)[:, : LATENT * size]
+        reach = _reach(band)
+        _subtract(band, coupling @ coupling.T)
+        factor, fault = lapack.dpbtrf(band, lower=1)
+        if fault:
+            raise FloatingPointError("the precision of drift and levels is not positive definite")
+        flat = rows[:size].reshape(-1, q)
+        flat[:LATENT] -= coupling @ last
+        solved, _ = lapack.dtbtrs(factor, flat, uplo="L")
+        cross += columns[start : start + size].T @ weighted[:size] - solved.T @ solved
+        log_det += float(np.log(remainder[:size]).sum() + 2 * np.log(factor[0]).sum())
+        coupling, last = _coupling(reach, factor), solved[-LATENT:]
     return Products((cross + cross.T) / 2, log_det)
 
 
-def _explained(factor: Array, own: Array, shared: Array, weighted: Array) -> Array:
-    """W' A M^-1 A' W (q, q) for W of shape (n, q) and M = L L', as the squares of L^-1 A' W.
+def part(shape: Structure, start: int, stop: int) -> Structure:
+    """Segments `start` to `stop` (exclusive) of a structure, as views; the drifts stay those of the whole."""
+    cut = slice(start, stop)
+    return Structure(
+        shape.distance[cut],
+        shape.trip_shape[cut],
+        shape.linked[cut],
+        shape.start_weight[cut],
+        shape.end_weight[cut],
+        shape.extra[cut],
+        tuple((diagonal[cut], off[start : stop - 1]) for diagonal, off in shape.drift),
+        shape.drift_log_det,
+    )
 
-    By forward substitution in blocks that fit a processor's cache: one pass over all of a long log is much slower.
-    """
-    passed = np.zeros_like(weighted)
-    passed[:-1] = shared[1:, None] * weighted[1:]
-    total = np.zeros((weighted.shape[1], weighted.shape[1]))
-    last = np.zeros((LATENT, weighted.shape[1]))  # the rows of L^-1 A' W before the block
-    for start in range(0, len(weighted), _BLOCK):
-        block = slice(start, start + _BLOCK)
-        part = own[block, :, None] * weighted[block, None, :]
-        part[:, 2] += passed[block]
-        rows = part.reshape(-1, weighted.shape[1])
-        first = LATENT * start
-        for back in range(LATENT if start else 0):
-            for row in range(back + 1):  # L reaches three rows below its diagonal
-                rows[row] -= factor[LATENT + row - back, first - LATENT + back] * last[back]
-        solved, _ = lapack.dtbtrs(factor[:, first : first + len(rows)], rows, uplo="L")
-        last = solved[-LATENT:]
-        total += solved.T @ solved
-    return total
+
+def _reach(band: Array) -> Array:
+    """Entries of M (3, 3) between the last unknowns of a block (columns) and the first of the next (rows)."""
+    reach = np.zeros((LATENT, LATENT))
+    for column in range(LATENT):
+        for row in range(column + 1):
+            reach[row, column] = band[LATENT + row - column, band.shape[1] - LATENT + column]
+    return reach
+
+
+def _coupling(reach: Array, factor: Array) -> Array:
+    """Entries of L (3, 3) at the place of `reach`: reach times the inverse transpose of L's last corner."""
+    corner = np.zeros((LATENT, LATENT))
+    for column in range(LATENT):
+        for row in range(column, LATENT):
+            corner[row, column] = factor[row - column, factor.shape[1] - LATENT + column]
+    coupling: Array = np.linalg.solve(corner, reach.T).T.astype(np.float64)
+    return coupling
+
+
+def _subtract(band: Array, corner: Array) -> None:
+    """Take a symmetric matrix (3, 3) from the first corner of a band, in place."""
+    for column in range(LATENT):
+        for row in range(column, LATENT):
+            band[row - column, column] -= corner[row, column]
 
 
 def loadings(shape: Structure, scatter: Scatter) -> tuple[Array, Array, Array]:

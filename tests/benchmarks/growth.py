@@ -58,7 +58,7 @@ def compare(rounds: int = 3) -> list[str]:
 
 
 def _assess(log: SimulatedLog) -> None:
-    assess(log.entries, log.modifications, "part", capacity=50.0, every_look=False)
+    assess(log.entries, log.modifications, "part", capacity=50.0, every_look=False, set_aside="none")
 
 
 def _median(costs: list[Cost]) -> Cost:
