@@ -130,7 +130,7 @@ def remedies(model: Model, required: Need, question: Question) -> tuple[Remedy, 
     best = 100 * question.drift * sqrt(required.best_variance)
     larger = ceil(best * 1.15 * 2) / 2  # a little above the limit, which itself is never reached; in half percents
     found = []
-    if larger < 100:
+    if larger <= 50:  # a question may not ask for more
         wider = _distance(model, always_fitted, replace(question, target=larger / 100))
         found.append(Remedy("larger-target", f"{larger:g} %", larger, wider))
     ways: tuple[tuple[Literal["alternate", "longer-baseline"], _Options], ...] = (

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import signal
 import sqlite3
 import sys
 from pathlib import Path
@@ -26,10 +27,15 @@ def logbook(tmp_path: Path) -> Path:
     return tmp_path / "my.logbook"
 
 
+def listening() -> None:
+    """A suite run in the background of a shell passes on that Ctrl-C is ignored: a command in front hears it."""
+    signal.signal(signal.SIGINT, signal.SIG_DFL)
+
+
 def start(logbook: Path, *arguments: str):
     environment = {**os.environ, "PYTHONPATH": str(ROOT)}
     command = ["-m", "energytrack", "--logbook", str(logbook), *arguments]
-    return pexpect.spawn(sys.executable, command, env=environment, encoding="utf-8", timeout=30)
+    return pexpect.spawn(sys.executable, command, env=environment, encoding="utf-8", timeout=30, preexec_fn=listening)
 
 
 def entries(logbook: Path) -> list[tuple[float, float]]:
