@@ -12,7 +12,6 @@ from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.lib.stride_tricks import sliding_window_view
 from numpy.typing import NDArray
 
 from energytrack.consumption.averages import LEAST_KNOWN_SHARE, Array
@@ -24,6 +23,7 @@ FEWEST = 10  # segments before any is judged
 NEIGHBOURS = 5  # on each side
 MAD_TO_SD = 1.4826  # for a normal distribution
 LEAST_SCATTER = 0.01  # of consumption: a short or rounded record can look steadier than it is
+_PLACES = np.delete(np.arange(2 * NEIGHBOURS + 1), NEIGHBOURS)  # of the neighbours in a window around each segment
 _PARTNER_SD = 2.0  # of the other half of a pair, in the opposite direction
 _MERGED_SD = 2.5  # a pair taken together must be as usual
 _HUBER = 1.345  # 95 % efficient for normal scatter
@@ -68,9 +68,10 @@ def judge(observed: Observations, covariates: Sequence[str] = ()) -> Judgement:
     shape = _shape(observed.distance_km)
     response = _response(observed, consumption, shape, covariates)
     adjusted = consumption - response
-    before, after, around = _references(adjusted, weight)
-    usual = float(np.median(consumption))
-    scatter = MAD_TO_SD * float(np.median(np.abs(adjusted - around) / shape)) * count / (count - 0.8)
+    before, after = _sides(adjusted, weight)
+    around = _around(adjusted, weight)
+    usual = _median(consumption)
+    scatter = MAD_TO_SD * _median(np.abs(adjusted - around) / shape) * count / (count - 0.8)
     sd = max(scatter, LEAST_SCATTER * usual) * shape
     below, above = adjusted - before, adjusted - after
     nearer = np.where(np.abs(below) < np.abs(above), below, above)
@@ -95,7 +96,7 @@ def set_aside(observed: Observations, covariates: Sequence[str] = ()) -> Sorted:
 
 def _shape(distance: Array) -> Array:
     """Relative sd of consumption by length: half trips (variance ~ 1/d), half levels (~ 1/d^2) at the usual length."""
-    relative = np.median(distance) / distance
+    relative = _median(distance) / distance
     shape: Array = np.sqrt((relative + relative**2) / 2)
     return shape
 
@@ -111,16 +112,18 @@ def _response(observed: Observations, consumption: Array, shape: Array, covariat
     if columns.shape[1] == 0:
         return np.zeros(len(consumption))
     weight = observed.distance_km
-    local = np.column_stack([column - _local_mean(column, weight) for column in columns.T])
-    difference = consumption - _references(consumption, weight)[2]
-    held = np.diag(1 / (terms.prior_sd * np.median(consumption)) ** 2)
-    foreseen = held @ (terms.prior_mean * np.median(consumption))
+    local = columns - _local_means(columns, weight)
+    difference = consumption - _around(consumption, weight)
+    usual = _median(consumption)
+    held = np.diag(1 / (terms.prior_sd * usual) ** 2)
+    foreseen = held @ (terms.prior_mean * usual)
     slopes: Array = np.zeros(columns.shape[1])
-    least = LEAST_SCATTER * float(np.median(consumption))
+    least = LEAST_SCATTER * usual
     for _ in range(_ROUNDS):
         residual = (difference - local @ slopes) / shape
-        scale = max(MAD_TO_SD * float(np.median(np.abs(residual))), least)
-        trust = np.minimum(1.0, _HUBER * scale / np.maximum(np.abs(residual), 1e-300)) / (scale * shape) ** 2
+        size = np.abs(residual)
+        scale = max(MAD_TO_SD * _median(size), least)
+        trust = np.minimum(1.0, _HUBER * scale / np.maximum(size, 1e-300)) / (scale * shape) ** 2
         weighted = (local * trust[:, None]).T
         explained = weighted @ difference + foreseen
         slopes = np.asarray(np.linalg.solve(weighted @ local + held, explained), dtype=np.float64)
@@ -128,8 +131,8 @@ def _response(observed: Observations, consumption: Array, shape: Array, covariat
     return response
 
 
-def _references(values: Array, weight: Array) -> tuple[Array, Array, Array]:
-    """Weighted medians (n,) of the neighbours before, after, and on both sides.
+def _sides(values: Array, weight: Array) -> tuple[Array, Array]:
+    """Weighted medians (n,) of the neighbours before and after.
 
     Where a side is empty, the single segment next to it stands in: the newest one is odd only where it differs from
     the five before it and from the last of them, so that the second segment after a shift already agrees.
@@ -138,20 +141,34 @@ def _references(values: Array, weight: Array) -> tuple[Array, Array, Array]:
     before = _medians(near_values[:, :NEIGHBOURS], near_weight[:, :NEIGHBOURS])
     after = _medians(near_values[:, NEIGHBOURS:], near_weight[:, NEIGHBOURS:])
     before[0], after[-1] = values[1], values[-2]
-    return before, after, _medians(near_values, near_weight)
+    return before, after
+
+
+def _around(values: Array, weight: Array) -> Array:
+    """Weighted median (n,) of the neighbours on both sides."""
+    return _medians(_neighbours(values, np.nan), _neighbours(weight, 0.0))
 
 
 def _neighbours(values: Array, padding: float) -> Array:
     """The five before and the five after each value (n, 10)."""
-    padded = np.concatenate([np.full(NEIGHBOURS, padding), values, np.full(NEIGHBOURS, padding)])
-    windows = sliding_window_view(padded, 2 * NEIGHBOURS + 1)
-    return np.delete(windows, NEIGHBOURS, axis=1)
+    padded = np.full(len(values) + 2 * NEIGHBOURS, padding)
+    padded[NEIGHBOURS:-NEIGHBOURS] = values
+    near: Array = padded[np.arange(len(values))[:, None] + _PLACES]
+    return near
 
 
-def _local_mean(values: Array, weight: Array) -> Array:
+def _local_means(columns: Array, weight: Array) -> Array:
+    """Weighted mean of the neighbours of each segment, for each column (n, k)."""
     near = _neighbours(weight, 0.0)
-    mean: Array = (_neighbours(values, 0.0) * near).sum(axis=1) / near.sum(axis=1)
-    return mean
+    summed = [(_neighbours(column, 0.0) * near).sum(axis=1) for column in columns.T]
+    means: Array = (np.array(summed) / near.sum(axis=1)).T
+    return means
+
+
+def _median(values: Array) -> float:
+    """As numpy's, without its care for nan: this one is asked for hundreds of times an answer."""
+    ordered, half = np.sort(values), len(values) // 2
+    return float(ordered[half] if len(values) % 2 else (ordered[half - 1] + ordered[half]) / 2)
 
 
 def _medians(values: Array, weight: Array) -> Array:

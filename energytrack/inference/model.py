@@ -14,8 +14,9 @@ import numpy as np
 from energytrack.consumption.conditions import Conditions, Terms, choose, fill
 from energytrack.consumption.observations import Observations
 from energytrack.errors import InferenceError
+from energytrack.inference.likelihood import Prior, Problem
 from energytrack.inference.noise import Array, structure
-from energytrack.inference.reml import Fit, Prior, Problem, fit
+from energytrack.inference.reml import Fit, fit
 
 _CLICK_OFF = {"kWh": 0.010}  # sd of one fill or reading as a share of capacity
 _USUAL_CLICK_OFF = 0.012

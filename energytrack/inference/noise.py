@@ -47,6 +47,7 @@ class Structure:
     start_weight: Array  # sd of the level at the start, relative to a full fill
     end_weight: Array
     extra: Array  # further known variance, such as that of a filled-in temperature
+    day: Array  # (n,) middle of each segment, none closer to the next than the drift allows
     drift: tuple[tuple[Array, Array], ...]  # diagonal (n,) and off-diagonal (n-1,) of each unit drift's precision
     drift_log_det: float  # of all drift precisions together
 
@@ -79,6 +80,7 @@ def structure(
         start_weight=start_weight,
         end_weight=end_weight,
         extra=np.zeros(len(distance)) if extra is None else extra,
+        day=np.concatenate([[0.0], np.cumsum(gaps)]),
         drift=tuple(drift),
         drift_log_det=log_det,
     )
@@ -132,6 +134,7 @@ def part(shape: Structure, start: int, stop: int) -> Structure:
         shape.start_weight[cut],
         shape.end_weight[cut],
         shape.extra[cut],
+        shape.day[cut],
         tuple((diagonal[cut], off[start : stop - 1]) for diagonal, off in shape.drift),
         shape.drift_log_det,
     )
@@ -196,3 +199,20 @@ def posterior_precision(shape: Structure, own: Array, shared: Array, remainder: 
     band[3, :-1, 2] = passed[1:] * own[1:, 2]
     return band.reshape(LATENT + 1, -1)
 
+
+
+def unit_covariances(shape: Structure) -> Array:
+    """What each source at a standard deviation of 1 adds to the covariance of the segments (4, n, n)."""
+    n = shape.distance.size
+    found = np.zeros((4, n, n))
+    here = np.arange(n)
+    start = shape.start_weight
+    passed_on = np.where(shape.linked, start, 0.0)[1:] * shape.end_weight[:-1]
+    found[0, here, here] = shape.trip_shape
+    found[1, here, here] = start**2 + shape.end_weight**2
+    found[1, here[1:], here[:-1]] = found[1, here[:-1], here[1:]] = -passed_on
+    apart = np.abs(shape.day[:, None] - shape.day)
+    together = np.outer(shape.distance, shape.distance)
+    for place, half_life in enumerate(HALF_LIFE_DAYS, start=2):
+        found[place] = together * np.exp2(-apart / half_life)
+    return found

@@ -17,10 +17,11 @@ from energytrack.consumption.conditions import TEMPERATURE, Conditions, Pattern,
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.terms import YEAR_DAYS
 from energytrack.errors import InferenceError
+from energytrack.inference.likelihood import Problem, evaluate
 from energytrack.inference.looks import FEWEST_BASELINE
 from energytrack.inference.model import Model, Scale, noise_priors, stack
 from energytrack.inference.noise import HALF_LIFE_DAYS, Array, structure
-from energytrack.inference.reml import Fit, Problem, evaluate
+from energytrack.inference.reml import Fit
 from energytrack.logbook.records import UNITS
 
 _SEASONS_OF_WEEKS = 2 / 3  # drift of seasons relative to that of weeks, where only the latter is stated

@@ -49,8 +49,8 @@ def test_inflation_is_the_ratio_of_two_fits() -> None:
     """Checked by pretending the response is known: its prior made a thousand times as tight."""
     from energytrack.consumption.frames import observe_frames
     from energytrack.inference.confounding import confounders
+    from energytrack.inference.likelihood import evaluate
     from energytrack.inference.model import fit_model
-    from energytrack.inference.reml import evaluate
     from energytrack.inference.shift import contrast_variance
 
     rng = np.random.default_rng(2)

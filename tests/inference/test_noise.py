@@ -11,8 +11,8 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from energytrack.inference import noise
+from energytrack.inference.likelihood import Problem, evaluate
 from energytrack.inference.noise import Scatter, Structure, products, structure
-from energytrack.inference.reml import Problem, evaluate
 from tests.dense import dense_covariance
 
 SIZES = st.floats(1e-3, 0.3)

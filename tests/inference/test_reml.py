@@ -7,8 +7,9 @@ import pytest
 import statsmodels.api as sm
 
 from energytrack.errors import InferenceError
+from energytrack.inference.likelihood import Prior, Problem, evaluate
 from energytrack.inference.noise import structure
-from energytrack.inference.reml import Prior, Problem, evaluate, fit
+from energytrack.inference.reml import fit
 from tests.outside.values import reference, table
 
 OFF = np.log(1e-6)  # a source of noise that is not there

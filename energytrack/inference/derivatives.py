@@ -1,0 +1,91 @@
+"""How the restricted likelihood, and the coefficients' covariance, change with the noise sizes.
+
+A short log has them exactly, from the n x n covariance itself (Harville, 1977): one factorisation and a few products
+of small matrices. A long one has them from finite differences on one stencil, each point of it in linear time.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from energytrack.inference.likelihood import Point, Problem, evaluate
+from energytrack.inference.noise import Array
+
+DENSE = 160  # segments up to which the cubic cost is the smaller one
+_STEP = 0.02  # of the stencil, in log standard deviation
+
+
+@dataclass(frozen=True)
+class Derivatives:
+    """At one theta, over its f free directions."""
+
+    slope: Array  # (f,) of the cost
+    curvature: Array  # (f, f)
+    covariance: Array  # (4, p, p) of the coefficients' covariance, zero where theta is not free
+
+
+def derivatives(problem: Problem, theta: Array, here: Point) -> Derivatives:
+    """At theta (4,), where the likelihood is `here`."""
+    if len(problem.energy) <= DENSE:
+        return exact(problem, theta, here)
+    return differences(problem, theta, here)
+
+
+def exact(problem: Problem, theta: Array, here: Point) -> Derivatives:
+    """First and second derivatives in closed form, O(n^3).
+
+    With D_k the derivative of V and P = V^-1 - V^-1 X C X' V^-1: the slope is (tr P D_k - y'P D_k P y) / 2 and the
+    curvature y'P D_k P D_l P y - tr(P D_k P D_l) / 2, plus twice the slope where k = l, for D_k doubles as V's own
+    second derivative. The covariance changes by C X'V^-1 D_k V^-1 X C.
+    """
+    free = list(problem.free)
+    changes = 2 * np.exp(2 * theta)[:, None, None] * problem.sources  # D_k (4, n, n)
+    covariance = changes.sum(axis=0) / 2
+    covariance[np.diag_indices_from(covariance)] += problem.shape.extra
+    inverse = np.linalg.inv(covariance)
+    weighted = inverse @ problem.columns
+    found = weighted @ here.covariance  # V^-1 X C
+    projection = inverse - found @ weighted.T
+    residual = projection @ problem.energy
+    moved = changes @ residual  # D_k P y (4, n)
+    products = projection @ changes  # P D_k (4, n, n)
+    flat = products.reshape(4, -1)
+    traces = flat @ products.transpose(0, 2, 1).reshape(4, -1).T
+    slope = (np.trace(products, axis1=1, axis2=2) - moved @ residual) / 2
+    curvature = moved @ projection @ moved.T - traces / 2 + np.diag(2 * slope)
+    gradient = np.zeros((4, *here.covariance.shape))
+    gradient[free] = found.T @ changes[free] @ found
+    return Derivatives(
+        (slope + problem.prior_slope(theta))[free],
+        (curvature + problem.prior_precision)[np.ix_(free, free)],
+        gradient,
+    )
+
+
+def differences(problem: Problem, theta: Array, here: Point) -> Derivatives:
+    """Central differences; the mixed ones need one corner on each side of the diagonal."""
+    free = problem.free
+    count = len(free)
+    ahead, behind = [], []
+    gradient = np.zeros((4, *here.covariance.shape))
+    for k in free:
+        up, down = (evaluate(problem, _moved(theta, (k,), sign)) for sign in (+1, -1))
+        gradient[k] = (up.covariance - down.covariance) / (2 * _STEP)
+        ahead.append(up.cost)
+        behind.append(down.cost)
+    slope = (np.array(ahead) - np.array(behind)) / (2 * _STEP)
+    curvature = np.diag((np.array(ahead) + np.array(behind) - 2 * here.cost) / _STEP**2)
+    for i in range(count):
+        for j in range(i):
+            corners = sum(evaluate(problem, _moved(theta, (free[i], free[j]), sign)).cost for sign in (+1, -1))
+            bend = curvature[i, i] + curvature[j, j]
+            curvature[i, j] = curvature[j, i] = ((corners - 2 * here.cost) / _STEP**2 - bend) / 2
+    return Derivatives(slope, curvature, gradient)
+
+
+def _moved(theta: Array, directions: tuple[int, ...], sign: int) -> Array:
+    moved = theta.copy()
+    moved[list(directions)] += sign * _STEP
+    return moved
