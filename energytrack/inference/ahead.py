@@ -20,7 +20,7 @@ from energytrack.inference.noise import Array, Scatter, Structure, structure
 RECENT = 40  # segments that make up the habit
 HORIZON_DAYS, HORIZON_KM = 3 * 365.25, 100_000.0  # whichever comes first: nobody plans a test beyond
 _MOST_SEGMENTS = 2_000
-_STEP = 0.02  # in log standard deviation, for the freedom's derivative
+_STEP = 0.005  # in log standard deviation, for the freedom's derivative
 _FLAT = 1e-4  # precision of the flat priors, so that a log without a baseline is no error: it tells next to nothing
 _SHORTEST_DAYS = 0.1  # of an average future segment, for logs whose entries share one date
 
@@ -85,8 +85,8 @@ class Road:
         """Satterthwaite degrees of freedom (m + 1,): what the log tells of the noise grows with its length."""
         first = self._begun
         variance = self.variances(theta)[first:]
-        moved = [(self.variances(theta + step), self.variances(theta - step)) for step in _STEP * np.eye(4)]
-        slope = np.array([(up[first:] - down[first:]) / (2 * _STEP) for up, down in moved]).T[:, :, None]
+        moved = [self.variances(theta + step)[first:] for step in _STEP * np.eye(4)]
+        slope = ((np.array(moved) - variance) / _STEP).T[:, :, None]
         length = (self.past + np.arange(first, self.ahead + 1)) / self.past
         precision = self.noise_prior + self.noise_known * length[:, None, None]
         wobble = (slope * np.linalg.solve(precision, slope)).sum(axis=(1, 2))

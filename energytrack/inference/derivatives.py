@@ -9,6 +9,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+from scipy.linalg import lapack
 
 from energytrack.inference.likelihood import Point, Problem, evaluate
 from energytrack.inference.noise import Array
@@ -26,14 +27,14 @@ class Derivatives:
     covariance: Array  # (4, p, p) of the coefficients' covariance, zero where theta is not free
 
 
-def derivatives(problem: Problem, theta: Array, here: Point) -> Derivatives:
-    """At theta (4,), where the likelihood is `here`."""
+def derivatives(problem: Problem, theta: Array, here: Point, curvature: Array | None = None) -> Derivatives:
+    """At theta (4,), where the likelihood is `here`. A curvature found close by may stand in for the one here."""
     if len(problem.energy) <= DENSE:
-        return exact(problem, theta, here)
-    return differences(problem, theta, here)
+        return exact(problem, theta, here, curvature)
+    return differences(problem, theta, here, curvature)
 
 
-def exact(problem: Problem, theta: Array, here: Point) -> Derivatives:
+def exact(problem: Problem, theta: Array, here: Point, curvature: Array | None = None) -> Derivatives:
     """First and second derivatives in closed form, O(n^3).
 
     With D_k the derivative of V and P = V^-1 - V^-1 X C X' V^-1: the slope is (tr P D_k - y'P D_k P y) / 2 and the
@@ -44,45 +45,58 @@ def exact(problem: Problem, theta: Array, here: Point) -> Derivatives:
     changes = 2 * np.exp(2 * theta)[:, None, None] * problem.sources  # D_k (4, n, n)
     covariance = changes.sum(axis=0) / 2
     covariance[np.diag_indices_from(covariance)] += problem.shape.extra
-    inverse = np.linalg.inv(covariance)
+    inverse = _inverse(covariance)
     weighted = inverse @ problem.columns
     found = weighted @ here.covariance  # V^-1 X C
     projection = inverse - found @ weighted.T
     residual = projection @ problem.energy
     moved = changes @ residual  # D_k P y (4, n)
-    products = projection @ changes  # P D_k (4, n, n)
-    flat = products.reshape(4, -1)
-    traces = flat @ products.transpose(0, 2, 1).reshape(4, -1).T
-    slope = (np.trace(products, axis1=1, axis2=2) - moved @ residual) / 2
-    curvature = moved @ projection @ moved.T - traces / 2 + np.diag(2 * slope)
+    slope = ((changes * projection).sum(axis=(1, 2)) - moved @ residual) / 2
     gradient = np.zeros((4, *here.covariance.shape))
     gradient[free] = found.T @ changes[free] @ found
-    return Derivatives(
-        (slope + problem.prior_slope(theta))[free],
-        (curvature + problem.prior_precision)[np.ix_(free, free)],
-        gradient,
-    )
+    if curvature is None:
+        products = projection @ changes  # P D_k (4, n, n)
+        traces = products.reshape(4, -1) @ products.transpose(0, 2, 1).reshape(4, -1).T
+        bend = moved @ projection @ moved.T - traces / 2 + np.diag(2 * slope)
+        curvature = (bend + problem.prior_precision)[np.ix_(free, free)]
+    return Derivatives((slope + problem.prior_slope(theta))[free], curvature, gradient)
 
 
-def differences(problem: Problem, theta: Array, here: Point) -> Derivatives:
+def _inverse(covariance: Array) -> Array:
+    """Of a symmetric positive definite matrix."""
+    factor, fault = lapack.dpotrf(covariance, lower=1)
+    if fault:
+        raise np.linalg.LinAlgError("the covariance is not positive definite")
+    half, _ = lapack.dpotri(factor, lower=1)
+    whole: Array = np.tril(half) + np.tril(half, -1).T
+    return whole
+
+
+def differences(problem: Problem, theta: Array, here: Point, curvature: Array | None = None) -> Derivatives:
     """Central differences; the mixed ones need one corner on each side of the diagonal."""
-    free = problem.free
-    count = len(free)
     ahead, behind = [], []
     gradient = np.zeros((4, *here.covariance.shape))
-    for k in free:
+    for k in problem.free:
         up, down = (evaluate(problem, _moved(theta, (k,), sign)) for sign in (+1, -1))
         gradient[k] = (up.covariance - down.covariance) / (2 * _STEP)
         ahead.append(up.cost)
         behind.append(down.cost)
     slope = (np.array(ahead) - np.array(behind)) / (2 * _STEP)
-    curvature = np.diag((np.array(ahead) + np.array(behind) - 2 * here.cost) / _STEP**2)
-    for i in range(count):
+    if curvature is None:
+        bends = (np.array(ahead) + np.array(behind) - 2 * here.cost) / _STEP**2
+        curvature = _mixed(problem, theta, here, bends)
+    return Derivatives(slope, curvature, gradient)
+
+
+def _mixed(problem: Problem, theta: Array, here: Point, bends: Array) -> Array:
+    """The curvature (f, f) with these bends (f,) on its diagonal."""
+    free, curvature = problem.free, np.diag(bends)
+    for i in range(len(free)):
         for j in range(i):
             corners = sum(evaluate(problem, _moved(theta, (free[i], free[j]), sign)).cost for sign in (+1, -1))
-            bend = curvature[i, i] + curvature[j, j]
-            curvature[i, j] = curvature[j, i] = ((corners - 2 * here.cost) / _STEP**2 - bend) / 2
-    return Derivatives(slope, curvature, gradient)
+            both = (corners - 2 * here.cost) / _STEP**2
+            curvature[i, j] = curvature[j, i] = (both - bends[i] - bends[j]) / 2
+    return curvature
 
 
 def _moved(theta: Array, directions: tuple[int, ...], sign: int) -> Array:

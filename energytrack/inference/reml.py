@@ -17,6 +17,7 @@ from energytrack.inference.noise import Array, Scatter
 
 _LONGEST = 1.5  # of one Newton step
 _CLOSE = 0.01  # a step shorter than this ends the search
+_STEADY = 0.05  # after a step shorter than this the curvature is as good as it was
 _ROUNDS = 40
 _FLATTEST = 0.05  # curvature taken at least, so that a flat direction cannot throw the search away
 _SMALLEST, _LARGEST = np.log(1e-6), np.log(20.0)
@@ -41,13 +42,14 @@ def fit(problem: Problem, start: Array) -> Fit:
     """Newton's method from `start` (4,). InferenceError where the columns cannot be told apart."""
     theta: Array = np.array(start, dtype=np.float64)
     try:
-        here = evaluate(problem, theta)
+        here, curvature = evaluate(problem, theta), None
         for _ in range(_ROUNDS):
-            local = derivatives(problem, theta, here)
+            local = derivatives(problem, theta, here, curvature)
             step = _newton_step(local.slope, local.curvature)
             theta, here, moved = _descend(problem, theta, here, step)
             if moved < _CLOSE:
                 break
+            curvature = local.curvature if moved < _STEADY else None
     except np.linalg.LinAlgError as fault:
         raise InferenceError(
             "two of the effects asked for cannot be told apart in this log: leave one covariate out"
