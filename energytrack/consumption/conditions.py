@@ -110,16 +110,17 @@ def fill(observed: Observations) -> Conditions:
         if known.sum() < (_FEWEST_TO_AVERAGE if name == ELECTRIC else _KNOWN):
             continue
         pattern = _pattern(observed.mid_day[known], raw[known], yearly=name == TEMPERATURE)
-        values[name] = np.where(known, raw, pattern.at(observed.mid_day))
+        whole = bool(known.all())
+        values[name] = raw if whole else np.where(known, raw, pattern.at(observed.mid_day))
         variances[name] = np.where(known, 0.0, pattern.variance)
         patterns[name] = pattern
-        filled[name] = int((~known).sum())
+        filled[name] = 0 if whole else int((~known).sum())
     return Conditions(observed.mid_day, values, variances, patterns, filled)
 
 
 def choose(observed: Observations, conditions: Conditions, further: Sequence[str] = ()) -> Terms:
     """The terms this log supports."""
-    weight = observed.distance_km
+    share = observed.distance_km / observed.distance_km.sum()
     names = [*_temperature_terms(conditions), *_speed_terms(conditions)]
     names += _electric_term(conditions)
     own = {TEMPERATURE, SPEED, ELECTRIC, *names}  # these have their terms already
@@ -129,8 +130,8 @@ def choose(observed: Observations, conditions: Conditions, further: Sequence[str
     usual = float(observed.energy.sum() / observed.distance_km.sum())
     for name in names:
         value = conditions.values_of(name)
-        centre = 0.0 if name == ELECTRIC else float(np.average(value, weights=weight))
-        scale = float(np.sqrt(np.average((value - centre) ** 2, weights=weight)))
+        centre = 0.0 if name == ELECTRIC else float(share @ value)
+        scale = float(np.sqrt(share @ (value - centre) ** 2))
         centres.append(0.0 if condition_of(name) == SEASON else centre)
         scales.append(1.0 if condition_of(name) == SEASON else scale)
         one_kwh = scales[-1] / 100 / usual  # of the electric term: one kWh for each kWh, as a share of consumption

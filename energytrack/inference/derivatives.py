@@ -42,18 +42,18 @@ def exact(problem: Problem, theta: Array, here: Point, curvature: Array | None =
     second derivative. The covariance changes by C X'V^-1 D_k V^-1 X C.
     """
     free = list(problem.free)
-    changes = 2 * np.exp(2 * theta)[:, None, None] * problem.sources  # D_k (4, n, n)
-    covariance = changes.sum(axis=0) / 2
-    covariance[np.diag_indices_from(covariance)] += problem.shape.extra
+    n, variances = len(problem.energy), np.exp(2 * theta)
+    covariance = (variances @ problem.sources.reshape(4, -1)).reshape(n, n) + np.diag(problem.shape.extra)
+    changes = 2 * variances[:, None, None] * problem.sources  # D_k (4, n, n)
     inverse = _inverse(covariance)
     weighted = inverse @ problem.columns
     found = weighted @ here.covariance  # V^-1 X C
     projection = inverse - found @ weighted.T
     residual = projection @ problem.energy
     moved = changes @ residual  # D_k P y (4, n)
-    slope = ((changes * projection).sum(axis=(1, 2)) - moved @ residual) / 2
+    slope = (changes.reshape(4, -1) @ projection.ravel() - moved @ residual) / 2
     gradient = np.zeros((4, *here.covariance.shape))
-    gradient[free] = found.T @ changes[free] @ found
+    gradient[free] = (found.T @ changes @ found)[free]
     if curvature is None:
         products = projection @ changes  # P D_k (4, n, n)
         traces = products.reshape(4, -1) @ products.transpose(0, 2, 1).reshape(4, -1).T
@@ -68,7 +68,8 @@ def _inverse(covariance: Array) -> Array:
     if fault:
         raise np.linalg.LinAlgError("the covariance is not positive definite")
     half, _ = lapack.dpotri(factor, lower=1)
-    whole: Array = np.tril(half) + np.tril(half, -1).T
+    whole: Array = half + half.T  # what dpotri leaves above the diagonal is the factor's, and zero
+    whole[np.diag_indices_from(whole)] /= 2
     return whole
 
 

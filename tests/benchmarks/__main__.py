@@ -5,7 +5,7 @@ from __future__ import annotations
 import tempfile
 from pathlib import Path
 
-from tests.benchmarks import growth, processes
+from tests.benchmarks import answers, growth, processes
 
 
 def benchmarks() -> None:
@@ -15,6 +15,9 @@ def benchmarks() -> None:
         print(processes.describe(logbook), flush=True)
         print(processes.enough(logbook), flush=True)
         print(processes.fillup(logbook), flush=True)
+        print(processes.rehearse(Path(folder) / "rehearsed"), flush=True)
+    for line in answers.answers():
+        print(line, flush=True)
     for line in growth.compare():
         print(line, flush=True)
 

@@ -10,7 +10,7 @@ from pathlib import Path
 
 import numpy as np
 
-from tests.benchmarks.timing import Comparison, compare, energytrack, run
+from tests.benchmarks.timing import Comparison, compare, energytrack, run, seconds_of
 from tests.simulation import simulate
 from tests.uses import STEADY_COMMUTE
 
@@ -24,6 +24,7 @@ app()
 """
 STATISTICS = "import statsmodels.regression.linear_model"
 ENTRIES, LOOKS = 250, 60
+REHEARSED, RUNS, MOST_SECONDS = 100, 500, 120.0
 
 
 def fillup(logbook: Path, rounds: int = 31) -> Comparison:
@@ -46,6 +47,18 @@ def enough(logbook: Path, rounds: int = 9) -> Comparison:
     return compare("enough", lambda _: command, STATISTICS, baseline, target=2.0, rounds=rounds)
 
 
+def rehearse(folder: Path) -> str:
+    """500 logs like one of 100 entries, each looked at after every entry, on all cores."""
+    logbook = write_logbook(folder, entries=REHEARSED, looks=REHEARSED // 2)
+    first, second = (
+        seconds_of(energytrack("--logbook", str(logbook), "rehearse", "--runs", str(runs))) for runs in (1, RUNS)
+    )
+    return (
+        f"rehearse, {REHEARSED} entries, {RUNS} runs / 1 run: {second:.0f} s / {first:.1f} s = {second / first:.0f} "
+        f"(target <= {MOST_SECONDS:g} s on two cores)"
+    )
+
+
 def describe(logbook: Path) -> str:
     """What `enough` is asked, so that a reader sees that it is the case stated."""
     answer = json.loads(run(energytrack("--logbook", str(logbook), "enough", "--json")))["assessments"][0]
@@ -53,12 +66,12 @@ def describe(logbook: Path) -> str:
     return f"enough: {segments} segments, {len(answer['looks'])} looks, verdict {answer['verdict']}"
 
 
-def write_logbook(folder: Path) -> Path:
-    """A logbook file of 250 entries of a steady commute, the part fitted for the last 60, its test still open."""
-    use = replace(STEADY_COMMUTE, fillings=ENTRIES, switches=(1 - LOOKS / ENTRIES,), shift_percent=0.0)
+def write_logbook(folder: Path, entries: int = ENTRIES, looks: int = LOOKS) -> Path:
+    """A logbook file of a steady commute, the part fitted for the last entries, its test still open."""
+    use = replace(STEADY_COMMUTE, fillings=entries, switches=(1 - looks / entries,), shift_percent=0.0)
     log = simulate(use, np.random.default_rng(1), start=dt.date(2018, 1, 1))
     tables = folder / "tables"
-    tables.mkdir()
+    tables.mkdir(parents=True)
     (tables / "vehicles.csv").write_text(f"vehicle,carrier,unit,capacity\n{use.vehicle},petrol,L,{use.capacity}\n")
     for name, frame in (("entries", log.entries), ("modifications", log.modifications.assign(target_percent=1.0))):
         shown = frame.replace({True: "yes", False: "no"}) if name == "entries" else frame
