@@ -28,6 +28,7 @@ _PARTNER_SD = 2.0  # of the other half of a pair, in the opposite direction
 _MERGED_SD = 2.5  # a pair taken together must be as usual
 _HUBER = 1.345  # 95 % efficient for normal scatter
 _ROUNDS = 6
+_SETTLED = 1e-3  # of consumption: a response that moves by less is as good as found
 
 
 @dataclass(frozen=True)
@@ -126,7 +127,9 @@ def _response(observed: Observations, consumption: Array, shape: Array, covariat
         trust = np.minimum(1.0, _HUBER * scale / np.maximum(size, 1e-300)) / (scale * shape) ** 2
         weighted = (local * trust[:, None]).T
         explained = weighted @ difference + foreseen
-        slopes = np.asarray(np.linalg.solve(weighted @ local + held, explained), dtype=np.float64)
+        before, slopes = slopes, np.asarray(np.linalg.solve(weighted @ local + held, explained), dtype=np.float64)
+        if np.abs(slopes - before).max() < _SETTLED * usual:
+            break
     response: Array = columns @ slopes
     return response
 

@@ -19,62 +19,66 @@ _STEP = 0.02  # of the stencil, in log standard deviation
 
 
 @dataclass(frozen=True)
-class Derivatives:
-    """At one theta, over its f free directions."""
+class Local:
+    """The model at given log standard deviations, and how it changes with the f free ones of them."""
 
+    point: Point
     slope: Array  # (f,) of the cost
     curvature: Array  # (f, f)
-    covariance: Array  # (4, p, p) of the coefficients' covariance, zero where theta is not free
+    gradient: Array  # (4, p, p) of the coefficients' covariance, zero where theta is not free
 
 
-def derivatives(problem: Problem, theta: Array, here: Point, curvature: Array | None = None) -> Derivatives:
-    """At theta (4,), where the likelihood is `here`. A curvature found close by may stand in for the one here."""
-    if len(problem.energy) <= DENSE:
-        return exact(problem, theta, here, curvature)
-    return differences(problem, theta, here, curvature)
+def local(problem: Problem, theta: Array, curvature: Array | None = None) -> Local:
+    """At theta (4,). A curvature found close by may stand in for the one here. LinAlgError where columns coincide."""
+    way = exact if len(problem.energy) <= DENSE else differences
+    return way(problem, theta, curvature)
 
 
-def exact(problem: Problem, theta: Array, here: Point, curvature: Array | None = None) -> Derivatives:
-    """First and second derivatives in closed form, O(n^3).
+def exact(problem: Problem, theta: Array, curvature: Array | None = None) -> Local:
+    """Everything in closed form, O(n^3).
 
-    With D_k the derivative of V and P = V^-1 - V^-1 X C X' V^-1: the slope is (tr P D_k - y'P D_k P y) / 2 and the
-    curvature y'P D_k P D_l P y - tr(P D_k P D_l) / 2, plus twice the slope where k = l, for D_k doubles as V's own
-    second derivative. The covariance changes by C X'V^-1 D_k V^-1 X C.
+    With D_k the derivative of V, C the coefficients' covariance and P = V^-1 - V^-1 X C X' V^-1: the slope is
+    (tr P D_k - y'P D_k P y) / 2 and the curvature y'P D_k P D_l P y - tr(P D_k P D_l) / 2, plus twice the slope where
+    k = l, for D_k doubles as V's own second derivative. C changes by C X'V^-1 D_k V^-1 X C.
     """
     free = list(problem.free)
     n, variances = len(problem.energy), np.exp(2 * theta)
     covariance = (variances @ problem.sources.reshape(4, -1)).reshape(n, n) + np.diag(problem.shape.extra)
     changes = 2 * variances[:, None, None] * problem.sources  # D_k (4, n, n)
-    inverse = _inverse(covariance)
+    inverse, log_det = _inverse(covariance)
     weighted = inverse @ problem.columns
-    found = weighted @ here.covariance  # V^-1 X C
+    gain, normal_log_det = _inverse(problem.columns.T @ weighted + np.diag(problem.precision))
+    found = weighted @ gain  # V^-1 X C
     projection = inverse - found @ weighted.T
     residual = projection @ problem.energy
+    cost = (log_det + normal_log_det + float(problem.energy @ residual)) / 2 + problem.prior_cost(theta)
     moved = changes @ residual  # D_k P y (4, n)
     slope = (changes.reshape(4, -1) @ projection.ravel() - moved @ residual) / 2
-    gradient = np.zeros((4, *here.covariance.shape))
+    gradient = np.zeros((4, *gain.shape))
     gradient[free] = (found.T @ changes @ found)[free]
     if curvature is None:
         products = projection @ changes  # P D_k (4, n, n)
         traces = products.reshape(4, -1) @ products.transpose(0, 2, 1).reshape(4, -1).T
         bend = moved @ projection @ moved.T - traces / 2 + np.diag(2 * slope)
         curvature = (bend + problem.prior_precision)[np.ix_(free, free)]
-    return Derivatives((slope + problem.prior_slope(theta))[free], curvature, gradient)
+    point = Point(cost, found.T @ problem.energy, gain)
+    return Local(point, (slope + problem.prior_slope(theta))[free], curvature, gradient)
 
 
-def _inverse(covariance: Array) -> Array:
-    """Of a symmetric positive definite matrix."""
-    factor, fault = lapack.dpotrf(covariance, lower=1)
+def _inverse(matrix: Array) -> tuple[Array, float]:
+    """Of a symmetric positive definite matrix, and the log of its determinant."""
+    factor, fault = lapack.dpotrf(matrix, lower=1)
     if fault:
-        raise np.linalg.LinAlgError("the covariance is not positive definite")
+        raise np.linalg.LinAlgError("the matrix is not positive definite")
     half, _ = lapack.dpotri(factor, lower=1)
-    whole: Array = half + half.T  # what dpotri leaves above the diagonal is the factor's, and zero
+    whole: Array = half + half.T  # above its diagonal there is nothing
     whole[np.diag_indices_from(whole)] /= 2
-    return whole
+    return whole, 2 * float(np.log(np.diag(factor)).sum())
 
 
-def differences(problem: Problem, theta: Array, here: Point, curvature: Array | None = None) -> Derivatives:
+def differences(problem: Problem, theta: Array, curvature: Array | None = None) -> Local:
     """Central differences; the mixed ones need one corner on each side of the diagonal."""
+    here = evaluate(problem, theta)
     ahead, behind = [], []
     gradient = np.zeros((4, *here.covariance.shape))
     for k in problem.free:
@@ -86,7 +90,7 @@ def differences(problem: Problem, theta: Array, here: Point, curvature: Array | 
     if curvature is None:
         bends = (np.array(ahead) + np.array(behind) - 2 * here.cost) / _STEP**2
         curvature = _mixed(problem, theta, here, bends)
-    return Derivatives(slope, curvature, gradient)
+    return Local(here, slope, curvature, gradient)
 
 
 def _mixed(problem: Problem, theta: Array, here: Point, bends: Array) -> Array:

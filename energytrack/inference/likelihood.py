@@ -51,6 +51,12 @@ class Problem:
         precision: Array = self.directions.T @ (self.directions / widths[:, None] ** 2)
         return precision
 
+    def prior_cost(self, theta: Array) -> float:
+        """Minus the log prior at theta (4,), up to a constant."""
+        return sum(
+            0.5 * ((float(np.dot(prior.direction, theta)) - prior.median) / prior.log_sd) ** 2 for prior in self.priors
+        )
+
     def prior_slope(self, theta: Array) -> Array:
         """Of minus the log prior at theta (4,)."""
         off = [(np.dot(prior.direction, theta) - prior.median) / prior.log_sd**2 for prior in self.priors]
@@ -76,7 +82,5 @@ def evaluate(problem: Problem, theta: Array) -> Point:
     inverse_factor, projected = half[:, :-1], half[:, -1]
     covariance = inverse_factor.T @ inverse_factor
     unexplained = cross[-1, -1] - projected @ projected
-    cost = 0.5 * (log_det + 2 * np.log(np.diag(factor)).sum() + unexplained)
-    for prior in problem.priors:
-        cost += 0.5 * ((np.dot(prior.direction, theta) - prior.median) / prior.log_sd) ** 2
-    return Point(float(cost), inverse_factor.T @ projected, covariance)
+    cost = 0.5 * float(log_det + 2 * np.log(np.diag(factor)).sum() + unexplained)
+    return Point(cost + problem.prior_cost(theta), inverse_factor.T @ projected, covariance)

@@ -11,12 +11,12 @@ from dataclasses import dataclass
 import numpy as np
 
 from energytrack.errors import InferenceError
-from energytrack.inference.derivatives import derivatives
-from energytrack.inference.likelihood import Point, Problem, evaluate
+from energytrack.inference.derivatives import Local, local
+from energytrack.inference.likelihood import Problem
 from energytrack.inference.noise import Array, Scatter
 
 _LONGEST = 1.5  # of one Newton step
-_CLOSE = 0.01  # a step shorter than this ends the search
+_CLOSE = 0.004  # a step shorter than this is not worth taking
 _STEADY = 0.05  # after a step shorter than this the curvature is as good as it was
 _ROUNDS = 40
 _FLATTEST = 0.05  # curvature taken at least, so that a flat direction cannot throw the search away
@@ -42,22 +42,23 @@ def fit(problem: Problem, start: Array) -> Fit:
     """Newton's method from `start` (4,). InferenceError where the columns cannot be told apart."""
     theta: Array = np.array(start, dtype=np.float64)
     try:
-        here, curvature = evaluate(problem, theta), None
+        here = local(problem, theta)
         for _ in range(_ROUNDS):
-            local = derivatives(problem, theta, here, curvature)
-            step = _newton_step(local.slope, local.curvature)
-            theta, here, moved = _descend(problem, theta, here, step)
-            if moved < _CLOSE:
+            step = _newton_step(here)
+            if np.abs(step).max() < _CLOSE:
                 break
-            curvature = local.curvature if moved < _STEADY else None
+            found = _descend(problem, theta, here, step)
+            if found is None:
+                break
+            theta, here = found
     except np.linalg.LinAlgError as fault:
         raise InferenceError(
             "two of the effects asked for cannot be told apart in this log: leave one covariate out"
         ) from fault
-    free = list(problem.free)
+    free, point = list(problem.free), here.point
     spread = np.zeros((4, 4))
-    spread[np.ix_(free, free)] = np.linalg.inv(_convex(local.curvature))
-    return Fit(theta, spread, here.coefficients, here.covariance, local.covariance)
+    spread[np.ix_(free, free)] = np.linalg.inv(_convex(here.curvature))
+    return Fit(theta, spread, point.coefficients, point.covariance, here.gradient)
 
 
 def _convex(curvature: Array) -> Array:
@@ -66,22 +67,23 @@ def _convex(curvature: Array) -> Array:
     return convex
 
 
-def _newton_step(slope: Array, curvature: Array) -> Array:
-    step: Array = -np.linalg.solve(_convex(curvature), slope).astype(np.float64)
+def _newton_step(here: Local) -> Array:
+    step: Array = -np.linalg.solve(_convex(here.curvature), here.slope).astype(np.float64)
     longest = float(np.abs(step).max())
     return step if longest <= _LONGEST else step * (_LONGEST / longest)
 
 
-def _descend(problem: Problem, theta: Array, here: Point, step: Array) -> tuple[Array, Point, float]:
-    """The first of step, step/2, ... that lowers the cost, and how far it went."""
-    for _ in range(8):
-        if np.abs(step).max() < _CLOSE / 4:
-            break
+def _descend(problem: Problem, theta: Array, here: Local, step: Array) -> tuple[Array, Local] | None:
+    """The first of step, step/2, ... that lowers the cost; None where all that are worth it have been tried."""
+    while np.abs(step).max() >= _CLOSE:
         there = theta.copy()
         there[list(problem.free)] += step
         np.clip(there, _SMALLEST, _LARGEST, out=there)
-        point = evaluate(problem, there)
-        if point.cost < here.cost:
-            return there, point, float(np.abs(step).max())
+        if np.array_equal(there, theta):  # a log without any scatter: at the edge already
+            return None
+        steady = np.abs(step).max() < _STEADY
+        found = local(problem, there, here.curvature if steady else None)
+        if found.point.cost < here.point.cost:
+            return there, found
         step = step / 2
-    return theta, here, 0.0
+    return None
