@@ -8,6 +8,7 @@ Fieller's (1954).
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
@@ -15,6 +16,8 @@ import numpy as np
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside as sort_out
+from energytrack.consumption.segments import SegmentedLog
+from energytrack.consumption.shares import fitted_shares, shares
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference import bounds
@@ -24,6 +27,7 @@ from energytrack.inference.question import Question
 from energytrack.inference.results import LevelEffect, Response
 from energytrack.inference.several import effect_of
 from energytrack.inference.shift import SHIFT, ratio_interval, shift_along
+from energytrack.logbook.records import Modification
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -87,18 +91,24 @@ def respond(
     )
 
 
-def from_first_level(observed: Observations, name: str) -> Observations:
+def from_first_level(
+    observed: Observations, segmented: SegmentedLog, rows: Sequence[Modification], name: str
+) -> Observations:
     """Where something like a tyre pressure always has a level, the first one driven takes the place of a baseline."""
     column = observed.names.index(name)
     levels = observed.shares[:, column]
     if not len(levels) or observed.fitted[:, column].min() < 1 or np.ptp(levels) == 0:
         return observed
-    return _counted(observed, name, levels - levels[0])
+    own = [replace(row, level=1.0 if row.level is None else row.level) for row in rows if row.name == name]
+    first = min((row.level or 0.0 for row in own), key=lambda level: abs(level - levels[0]))
+    counted = [replace(row, level=(row.level or 0.0) - first) for row in own]
+    column_of, fitted = (np.array(measure(segmented, counted)) for measure in (shares, fitted_shares))
+    return observed.leaving_out([name]).adding(name, column_of, fitted)
 
 
-def _counted(observed: Observations, name: str, shares: Array) -> Observations:
+def _counted(observed: Observations, name: str, column: Array) -> Observations:
     """The part's column counted from its reference level: on where it differs from that."""
-    return observed.leaving_out([name]).adding(name, shares, (shares != 0).astype(float))
+    return observed.leaving_out([name]).adding(name, column, (column != 0).astype(float))
 
 
 def has_levels(modifications: pd.DataFrame, name: str) -> bool:
