@@ -97,7 +97,7 @@ def test_a_day_that_stands_twice(folder: Path, second: str) -> None:
     said = "w.csv:4: 2024-02-01 stands in line 2 already; keep one of the two"
     refused(folder, "weather", "w.csv", said=said)
     written(folder / "tables" / "weather.csv", *(folder / "w.csv").read_text(encoding="utf-8").splitlines())
-    refused(folder, "enough", said="weather.csv:4: 2024-02-01 stands in line 2 already", logbook="tables")
+    refused(folder, "plan", said="weather.csv:4: 2024-02-01 stands in line 2 already", logbook="tables")
 
 
 def test_a_value_that_stands_twice_in_a_station_file(folder: Path) -> None:
