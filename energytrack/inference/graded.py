@@ -57,10 +57,23 @@ def _levels(observed: Observations, column: int) -> Array:
 
 def _columns(observed: Observations, column: int) -> list[Array]:
     """Deviation (n,) of the level from its mean by distance, and with enough levels its square; times the share."""
-    fitted, shares = observed.fitted[:, column], observed.shares[:, column]
-    driven = observed.distance_km * fitted
-    level = np.divide(shares, fitted, out=np.zeros(len(shares)), where=fitted > 0)
-    apart = level - driven @ level / driven.sum()
+    fitted, (mean, spread) = observed.fitted[:, column], centre(observed, observed.names[column])
+    apart = _level(observed, column) - mean
     if _levels(observed, column).size < _FOR_A_BEND:
         return [fitted * apart]
-    return [fitted * apart, fitted * (apart**2 - driven @ apart**2 / driven.sum())]
+    return [fitted * apart, fitted * (apart**2 - spread)]
+
+
+def centre(observed: Observations, name: str) -> tuple[float, float]:
+    """Mean of the level by distance driven with the part, and the mean square of the deviation from it."""
+    column = observed.names.index(name)
+    driven, level = observed.distance_km * observed.fitted[:, column], _level(observed, column)
+    mean = float(driven @ level / driven.sum())
+    return mean, float(driven @ (level - mean) ** 2 / driven.sum())
+
+
+def _level(observed: Observations, column: int) -> Array:
+    """Level of each segment (n,), 0 where nothing of it was driven with the part."""
+    fitted, shares = observed.fitted[:, column], observed.shares[:, column]
+    level: Array = np.divide(shares, fitted, out=np.zeros(len(shares)), where=fitted > 0)
+    return level

@@ -45,9 +45,15 @@ def true_average(tables: Tables, effect: Callable[[float], float]) -> float:
 
 @pytest.mark.parametrize(
     ("levels", "effect"),
-    [(LEVELS, parabola), (LEVELS, UNEVEN), (LEVELS, lambda _: -0.05), ((2.4, 2.7), lambda _: -0.05), ((-5.0, 5.0), lambda _: -0.05)],
+    [
+        (LEVELS, parabola),
+        (LEVELS, UNEVEN),
+        (LEVELS, lambda _: -0.05),
+        ((2.4, 2.7), lambda _: -0.05),
+        ((-5.0, 5.0), lambda _: -0.05),
+    ],
     ids=["bent", "uneven", "the same at all", "far from 0", "both sides of 0"],
-)  # fmt: skip
+)
 def test_the_shift_is_the_average_over_the_levels(
     levels: tuple[float, ...], effect: Callable[[float], float]
 ) -> None:
@@ -62,7 +68,7 @@ def test_the_shift_is_the_average_over_the_levels(
 
 
 def test_average_and_its_error_are_those_of_one_dummy_a_level() -> None:
-    """statsmodels GLS with a dummy for each level, at the noise found: three levels leave the curve nothing to choose."""
+    """statsmodels GLS with a dummy for each level, at the noise found: three levels fix the curve."""
     tables = wing(LEVELS, UNEVEN)
     model = fitted_model(tables)
     observed, _ = observe_frames(*tables, capacity=75.0)

@@ -19,7 +19,7 @@ PAIRS = 10
 
 
 def stretches() -> pd.DataFrame:
-    """Weeks without, pairs, weeks with: gas, temp and insulated share of each stretch, each phase colder then warmer."""
+    """Weeks without, pairs, weeks with: gas, temp and insulated share of each; colder, then warmer."""
     weeks = {phase: whiteside().query("Insul == @phase").sort_values("Temp") for phase in ("Before", "After")}
     chosen = {phase: np.linspace(1, len(own) - 2, PAIRS).astype(int) for phase, own in weeks.items()}
     first, second = (weeks[phase].iloc[chosen[phase]].reset_index() for phase in ("Before", "After"))

@@ -1,4 +1,4 @@
-"""The recursion over looks against the tables of repeated significance tests: Pocock's constants, and 1.96 each time."""
+"""The recursion over looks against tables of repeated significance tests: Pocock's constants, and 1.96 each time."""
 
 from __future__ import annotations
 

@@ -60,7 +60,7 @@ def test_familywise_range_of_equal_groups() -> None:
 
 
 def test_pairwise_shifts_and_their_ranges(found: tuple[Comparison, dict[str, np.ndarray]]) -> None:
-    """The same differences; ranges a little wider, for they hold at every look and pay for drift that might have been."""
+    """The same differences; ranges a little wider: they hold at every look and pay for possible drift."""
     comparison, groups = found
     names = list(groups)
     theirs = tukey_hsd(*groups.values())
