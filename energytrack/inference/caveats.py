@@ -112,7 +112,10 @@ def _span(values: Array) -> str:
 def _several_levels(model: Model) -> list[str]:
     if model.modification is None or level_terms(model.modification)[0] not in model.others:
         return []
-    return ["the shift is the average over the levels driven so far, by the distance at each"]
+    return [
+        "the shift is the average over the levels driven so far, by the distance at each; an earlier look saw only the "
+        "levels driven by then"
+    ]
 
 
 def _filled_in(model: Model) -> list[str]:
