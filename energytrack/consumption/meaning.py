@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import replace
 from typing import Any, Protocol
 
 from energytrack.consumption.segments import Segment, SegmentedLog, close_segments
@@ -240,9 +241,10 @@ def _expected(
             percent += slope * (term(name, value) - expectation["centres"][name])
     own = [row for row in rows if row.name == answer.get("modification")]
     try:
-        levels = [1.0 if row.level is None else abs(row.level) for row in own]
-        highest = max(levels, default=1.0) or 1.0  # the shift is that of this level
-        percent += (expectation["shift_percent"] or 0.0) * shares(segmented, own)[which] / highest
+        by_level = (answer.get("response") or {}).get("levels", ())
+        shifts = {effect["level"]: effect["shift_percent"] for effect in by_level}
+        whatever = expectation["shift_percent"] or 0.0
+        percent += shares(segmented, [replace(row, level=shifts.get(row.level, whatever)) for row in own])[which]
     except ConsumptionError:
         return None  # the rows of the modification contradict each other; said under what is left to go
     return float(expectation["consumption"] * (1 + percent / 100))

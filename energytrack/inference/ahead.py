@@ -13,6 +13,7 @@ from functools import cached_property
 import numpy as np
 
 from energytrack.consumption.conditions import Conditions
+from energytrack.inference.graded import level_terms
 from energytrack.inference.growing import growing_products
 from energytrack.inference.model import Model, stack
 from energytrack.inference.noise import Array, Scatter, Structure, structure
@@ -239,9 +240,11 @@ def _mean_days(end_day: Array) -> float:
 
 
 def _columns_ahead(model: Model, conditions: Conditions, shares: Array) -> Array:
-    """Per unit distance (m, p): other modifications stay as they are now."""
-    others = np.tile(
-        [model.observed.shares[-1, model.observed.names.index(n)] / model.levels[n] for n in model.others],
-        (len(shares), 1),
-    ).reshape(len(shares), len(model.others))
+    """Per unit distance (m, p): other modifications stay as they are now, and the levels are mixed as they were."""
+    own = () if model.modification is None else level_terms(model.modification)
+    now = [
+        0.0 if name in own else model.observed.shares[-1, model.observed.names.index(name)] / model.levels[name]
+        for name in model.others
+    ]
+    others = np.tile(now, (len(shares), 1)).reshape(len(shares), len(model.others))
     return stack(model.terms.columns(conditions), np.hstack([shares[:, None], others]), asked=True)

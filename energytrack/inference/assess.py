@@ -21,6 +21,7 @@ from energytrack.inference.coincidence import coincidences
 from energytrack.inference.confounding import with_confounders
 from energytrack.inference.describe import covariates_of, expectation_of, noise_of
 from energytrack.inference.distance import need, remedies
+from energytrack.inference.graded import averaged
 from energytrack.inference.known import with_known_change
 from energytrack.inference.looks import FEWEST_BASELINE, State, finding, percent, shown, take_looks
 from energytrack.inference.model import Model, fit_model
@@ -87,10 +88,10 @@ def assess(
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     rows = modifications_from_frame(modifications, vehicle or None)
     notes = (*coincidences(() if events is None else events_from_frame(events, vehicle or None), rows, name), *notes)
+    observed = from_first_level(observed, segmented, rows, name)
     partners = never_apart(observed, name)
     if partners:
         observed, notes = observed.leaving_out(partners), (refusal(name, partners), *notes)
-    observed = from_first_level(observed, name)
     found = sort_out(observed, question.covariates) if set_aside == "odd" else None
 
     def decided(odd: bool) -> Assessment:
@@ -165,7 +166,7 @@ def _before_the_first_look(blank: Assessment, observed: Observations, question: 
     fitted = observed.fitted[:, observed.names.index(question.modification)]
     if fitted.any() or len(fitted) < FEWEST_BASELINE:
         return blank
-    model = fit_model(observed, None, covariates=question.covariates)
+    model = fit_model(averaged(observed), None, covariates=question.covariates)
     answer = replace(
         blank,
         information_fraction=0.0,

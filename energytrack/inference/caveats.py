@@ -7,6 +7,7 @@ from numpy.typing import NDArray
 
 from energytrack.consumption.conditions import SPEED, TEMPERATURE
 from energytrack.consumption.terms import ELECTRIC
+from energytrack.inference.graded import level_terms
 from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
 
@@ -21,7 +22,7 @@ def caveats(model: Model) -> tuple[str, ...]:
     """Warnings about an answer, most weighty first."""
     found = (
         *(_took_turns, _not_fitted_now, _charging_changed),
-        *(_little_overlap, _other_level, _filled_in, _no_weather),
+        *(_little_overlap, _several_levels, _filled_in, _no_weather),
     )
     return tuple(caveat for find in found for caveat in find(model))
 
@@ -108,10 +109,13 @@ def _span(values: Array) -> str:
     return f"{low}" if low == high else f"{low} to {high}"
 
 
-def _other_level(model: Model) -> list[str]:
-    if model.modification is None or model.levels[model.modification] in (0.0, 1.0):
+def _several_levels(model: Model) -> list[str]:
+    if model.modification is None or level_terms(model.modification)[0] not in model.others:
         return []
-    return [f"the shift is stated at level {model.levels[model.modification]:g}, in proportion for others"]
+    return [
+        "the shift is the average over the levels driven so far, by the distance at each; an earlier look saw only the "
+        "levels driven by then"
+    ]
 
 
 def _filled_in(model: Model) -> list[str]:

@@ -19,6 +19,7 @@ from energytrack.consumption.oddities import set_aside as sort_out
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference import bounds
+from energytrack.inference.graded import averaged
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
@@ -78,7 +79,7 @@ def compare(
     if set_aside == "odd":
         found = sort_out(observed, question.covariates)
         observed, notes = found.kept, (*notes, *_left_out(len(found.odd)))
-    model = fit_model(observed, chosen[0], covariates=question.covariates)
+    model = fit_model(averaged(observed), chosen[0], covariates=question.covariates)
     missing = [name for name in chosen[1:] if name not in model.others]
     if missing:
         raise InferenceError(f"nothing, or everything, was driven with {missing[0]}: there is nothing to compare")

@@ -11,6 +11,7 @@ import numpy as np
 from energytrack.consumption.terms import condition_of
 from energytrack.inference.ahead import shift_variance
 from energytrack.inference.distance import Course
+from energytrack.inference.graded import together_named
 from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
 
@@ -44,7 +45,7 @@ def cost_shares(model: Model, here: Course, count: int) -> dict[str, float]:
 def _effects(model: Model) -> dict[str, list[int]]:
     """Columns of the road's design by condition, and of each other modification."""
     found: dict[str, list[int]] = {}
-    names = [*map(condition_of, model.terms.names), *model.others]
+    names = [*map(condition_of, model.terms.names), *map(together_named, model.others)]
     for column, name in enumerate(names, start=2):  # after the level and the modification asked about
         found.setdefault(name, []).append(column)
     return found

@@ -9,6 +9,7 @@ from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.oddities import set_aside
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.inference.describe import noise_of
+from energytrack.inference.graded import averaged
 from energytrack.inference.looks import FEWEST_BASELINE
 from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
@@ -55,7 +56,7 @@ def plan(
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     usual = set_aside(observed, question.covariates).kept  # odd entries are no part of the noise to plan with
     ready = len(usual) >= FEWEST_BASELINE
-    model = fit_model(usual, None, covariates=question.covariates) if ready else None
+    model = fit_model(averaged(usual), None, covariates=question.covariates) if ready else None
     return Plan(
         vehicle=vehicle,
         unit=observed.unit,

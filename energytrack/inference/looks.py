@@ -11,6 +11,7 @@ import numpy as np
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside
 from energytrack.inference import bounds, rules
+from energytrack.inference.graded import averaged
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
@@ -46,7 +47,7 @@ class State:
 
 def take_look(observed: Observations, question: Question, start: Array | None, watch: rules.Watch) -> State:
     """Fit what is known so far and hold the shift against the bound of the rule at work."""
-    model = fit_model(observed, question.modification, covariates=question.covariates, start=start)
+    model = fit_model(averaged(observed), question.modification, covariates=question.covariates, start=start)
     return judged(model, question, watch)
 
 

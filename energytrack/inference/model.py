@@ -50,7 +50,7 @@ class Model:
     scale: Scale
     modification: str | None
     others: tuple[str, ...]
-    levels: dict[str, float]  # modification -> highest level so far, at which its effect is stated
+    levels: dict[str, float]  # modification -> highest level so far, at which its column is 1
     problem: Problem
     fit: Fit
 

@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.frames import modifications_from_frame, observe_log
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside
 from energytrack.consumption.two_carriers import TwoCarriers
@@ -25,6 +25,7 @@ from energytrack.inference.looks import FEWEST_BASELINE, look_points
 from energytrack.inference.question import Question
 from energytrack.inference.rates import rate, settled
 from energytrack.inference.rehearsal_results import Placebo, Rehearsal, Scenario
+from energytrack.inference.response import from_first_level
 from energytrack.inference.stage import Outcome, Stage, perform, set_stage
 
 if TYPE_CHECKING:
@@ -68,7 +69,7 @@ def rehearse(
     if seed < 0:
         raise InferenceError(f"the seed must not be negative, but is {seed}: any whole number from 0 on will do")
     question = Question("", float(target_percent) / 100, 1 - confidence, power, tuple(covariates or ()))
-    observed, notes = observe_frames(
+    observed, notes, segmented = observe_log(
         entries,
         modifications,
         events=events,
@@ -79,8 +80,12 @@ def rehearse(
         two_carriers=two_carriers,
     )
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
+    meant = _meant(observed, name)
+    if meant is not None and modifications is not None:
+        rows = modifications_from_frame(modifications, vehicle or None)
+        observed = from_first_level(observed, segmented, rows, meant)
     usual = set_aside(observed, question.covariates).kept  # odd entries are no part of the noise to be drawn
-    stage, named = _stage(usual, question, _meant(observed, name))
+    stage, named = _stage(usual, question, meant)
     pretended = placebo.places(observed, question)
     jobs: list[_Job] = [(stage, each) for each in np.random.SeedSequence(seed).spawn(runs)]
     jobs += [place for some in pretended.values() for place in some]

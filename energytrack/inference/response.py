@@ -1,13 +1,15 @@
 """A graded modification: how consumption answers to its level, and the level of least consumption.
 
 Levels are counted from a reference: none fitted where something was driven so, else the level driven first. Two levels
-give a line, three or more a parabola. The level of least consumption is a ratio of two coefficients, so its range is
-Fieller's (1954).
+give a line, three or more a parabola. A part that was driven at several levels and without need not be at level 0 when
+it is off: it has an effect as such, and the line or parabola runs through its levels alone, unless a level of 0 was
+logged. The level of least consumption is a ratio of two coefficients, so its range is Fieller's (1954).
 """
 
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
@@ -15,15 +17,19 @@ import numpy as np
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside as sort_out
+from energytrack.consumption.segments import SegmentedLog
+from energytrack.consumption.shares import fitted_shares, shares
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference import bounds
+from energytrack.inference.graded import averaged, centre, level_terms
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
 from energytrack.inference.results import LevelEffect, Response
 from energytrack.inference.several import effect_of
 from energytrack.inference.shift import SHIFT, ratio_interval, shift_along
+from energytrack.logbook.records import Modification
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -68,37 +74,42 @@ def respond(
     )
     if set_aside == "odd":
         observed = sort_out(observed, question.covariates).kept
-    graded, levels, reference = _graded(observed, modifications, name)
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
-    model = fit_model(graded, name, covariates=question.covariates)
-    curved = name + _SQUARED in model.others
+    curve = _curve(observed, modifications, question)
+    best, best_range = curve.best()
     return Response(
         vehicle=vehicle,
         modification=name,
-        form="parabola" if curved else "line",
-        reference_level=reference,
-        levels=tuple(_at_level(model, question, float(level), reference, curved) for level in levels),
-        per_level=effect_of(name, shift_along(model.fit, _weights(model, name, 1.0, curved=False)), question),
-        best_level=_best(model, question, levels, reference)[0] if curved else None,
-        best_level_interval=_best(model, question, levels, reference)[1] if curved else None,
-        next_level=_next(model, question, levels, reference, curved),
+        form="line" if curve.squared is None else "parabola",
+        reference_level=curve.reference,
+        levels=tuple(curve.at(level) for level in curve.levels),
+        per_level=effect_of(name, shift_along(curve.model.fit, curve.slope_weights()), question),
+        best_level=best,
+        best_level_interval=best_range,
+        next_level=_next(curve),
         confidence=confidence,
         warnings=notes,
     )
 
 
-def from_first_level(observed: Observations, name: str) -> Observations:
+def from_first_level(
+    observed: Observations, segmented: SegmentedLog, rows: Sequence[Modification], name: str
+) -> Observations:
     """Where something like a tyre pressure always has a level, the first one driven takes the place of a baseline."""
     column = observed.names.index(name)
     levels = observed.shares[:, column]
     if not len(levels) or observed.fitted[:, column].min() < 1 or np.ptp(levels) == 0:
         return observed
-    return _counted(observed, name, levels - levels[0])
+    own = [replace(row, level=1.0 if row.level is None else row.level) for row in rows if row.name == name]
+    first = min((row.level or 0.0 for row in own), key=lambda level: abs(level - levels[0]))
+    counted = [replace(row, level=(row.level or 0.0) - first) for row in own]
+    column_of, fitted = (np.array(measure(segmented, counted)) for measure in (shares, fitted_shares))
+    return observed.leaving_out([name]).adding(name, column_of, fitted)
 
 
-def _counted(observed: Observations, name: str, shares: Array) -> Observations:
+def _counted(observed: Observations, name: str, column: Array) -> Observations:
     """The part's column counted from its reference level: on where it differs from that."""
-    return observed.leaving_out([name]).adding(name, shares, (shares != 0).astype(float))
+    return observed.leaving_out([name]).adding(name, column, (column != 0).astype(float))
 
 
 def has_levels(modifications: pd.DataFrame, name: str) -> bool:
@@ -124,14 +135,43 @@ def _expanded(modifications: pd.DataFrame, name: str) -> pd.DataFrame:
     return pd.concat([modifications, squared, own.assign(name=name + _FITTED, level=1.0)], ignore_index=True)
 
 
+def _curve(observed: Observations, modifications: pd.DataFrame, question: Question) -> _Curve:
+    """The fitted response. Where not fitted is no level, the part as such has an effect of its own."""
+    name = question.modification
+    fitted = observed.fitted[:, observed.names.index(name + _FITTED)]
+    levels = set(modifications.loc[modifications["name"] == name, "level"].astype(float))
+    bare = bool((fitted < _MOSTLY).any())
+    if bare and 0.0 not in levels and len(levels) > 1:
+        return _with_a_step(observed.leaving_out([name + _SQUARED, name + _FITTED]), sorted(levels), question)
+    graded, tried, reference = _graded(observed, levels, name, bare=bare)
+    model = fit_model(graded, name, covariates=question.covariates)
+    squared = _column(model, name + _SQUARED)
+    return _Curve(model, question, tried, tried, reference, reference, 0.0, (SHIFT, model.levels[name]), squared)
+
+
+def _with_a_step(observed: Observations, levels: Sequence[float], question: Question) -> _Curve:
+    name = question.modification
+    model = fit_model(averaged(observed), name, covariates=question.covariates)
+    linear, squared = (_column(model, term) for term in level_terms(name))
+    if linear is None:
+        raise InferenceError(f"{name} was driven at one level only: log a second level, or drive without it")
+    middle, spread = centre(observed, name)
+    return _Curve(model, question, (0.0, *levels), tuple(levels), 0.0, middle, spread, linear, squared, step=True)
+
+
+def _column(model: Model, name: str) -> tuple[int, float] | None:
+    """Number of a column beside that of the part, and what its coefficient is divided by; None where there is none."""
+    if name not in model.others:
+        return None
+    return model.term_columns.stop + model.others.index(name), model.levels[name]
+
+
 def _graded(
-    observed: Observations, modifications: pd.DataFrame, name: str
+    observed: Observations, levels: set[float], name: str, *, bare: bool
 ) -> tuple[Observations, tuple[float, ...], float]:
     """Shares times levels counted from the reference; the levels driven; the reference."""
     by_name = {other: observed.shares[:, k] for k, other in enumerate(observed.names)}
     linear, squared, fitted = by_name[name], by_name[name + _SQUARED], by_name[name + _FITTED]
-    levels = set(modifications.loc[modifications["name"] == name, "level"].astype(float))
-    bare = bool((fitted < _MOSTLY).any())
     reference = 0.0 if bare else min(levels, key=lambda level: abs(level - linear[0]))
     tried = tuple(sorted(levels | {0.0} if bare else levels))
     counted = linear - reference * fitted
@@ -144,58 +184,72 @@ def _graded(
     return graded, tried, reference
 
 
-def _weights(model: Model, name: str, level: float, *, curved: bool) -> Array:
-    """Combination of coefficients that is the effect of a level counted from the reference."""
-    weights = np.zeros(len(model.fit.coefficients))
-    weights[SHIFT] = level / model.levels[name]
-    if curved:
-        column = model.term_columns.stop + model.others.index(name + _SQUARED)
-        weights[column] = level**2 / model.levels[name + _SQUARED]
-    return weights
+@dataclass(frozen=True)
+class _Curve:
+    """Effect of a level: that of the part as such, if it has one, a slope and a bend around the middle."""
+
+    model: Model
+    question: Question
+    levels: tuple[float, ...]  # driven, the reference among them
+    tried: tuple[float, ...]  # those that lie on the curve
+    reference: float
+    middle: float
+    spread: float  # mean square of the deviation from the middle, which the bend is counted from
+    linear: tuple[int, float]  # column and scale
+    squared: tuple[int, float] | None
+    step: bool = False
+
+    def slope_weights(self) -> Array:
+        """Combination of coefficients that is the effect of one unit more, at the middle."""
+        weights = np.zeros(len(self.model.fit.coefficients))
+        weights[self.linear[0]] = 1 / self.linear[1]
+        return weights
+
+    def weights(self, level: float) -> Array:
+        """Combination of coefficients that is the effect of a level."""
+        weights = self.slope_weights() * (level - self.middle)
+        if self.squared is not None:
+            weights[self.squared[0]] = ((level - self.middle) ** 2 - self.spread) / self.squared[1]
+        if self.step:
+            weights[SHIFT] = 1.0
+        return weights
+
+    def at(self, level: float) -> LevelEffect:
+        if level == self.reference:
+            return LevelEffect(level, 0.0, (0.0, 0.0))
+        name = self.question.modification
+        effect = effect_of(name, shift_along(self.model.fit, self.weights(level)), self.question)
+        return LevelEffect(level, effect.shift_percent, effect.interval_percent)
+
+    def best(self) -> tuple[float | None, tuple[float, float] | None]:
+        """Level of least consumption inside the tried range, with its range; None where there is none."""
+        if self.squared is None:
+            return None, None
+        (one, scale), (two, scale_squared), fit = self.linear, self.squared, self.model.fit
+        slope, bend = fit.coefficients[one] / scale, fit.coefficients[two] / scale_squared
+        if bend <= 0 or not min(self.tried) <= self.middle - slope / (2 * bend) <= max(self.tried):
+            return None, None
+        freedom = shift_along(fit, self.slope_weights()).freedom
+        interval = ratio_interval(
+            -float(slope),
+            2 * float(bend),
+            float(fit.covariance[one, one]) / scale**2,
+            4 * float(fit.covariance[two, two]) / scale_squared**2,
+            -2 * float(fit.covariance[one, two]) / scale / scale_squared,
+            bounds.level(self.question.alpha) * bounds.price(freedom, self.question.alpha),
+        )
+        best = self.middle - float(slope / (2 * bend))
+        return best, None if interval is None else (self.middle + interval[0], self.middle + interval[1])
 
 
-def _at_level(model: Model, question: Question, level: float, reference: float, curved: bool) -> LevelEffect:
-    name = question.modification
-    if level == reference:
-        return LevelEffect(level, 0.0, (0.0, 0.0))
-    weights = _weights(model, name, level - reference, curved=curved)
-    effect = effect_of(name, shift_along(model.fit, weights), question)
-    return LevelEffect(level, effect.shift_percent, effect.interval_percent)
-
-
-def _best(
-    model: Model, question: Question, levels: Sequence[float], reference: float
-) -> tuple[float | None, tuple[float, float] | None]:
-    """Level of least consumption inside the tried range, with its range; None where the parabola has none there."""
-    name = question.modification
-    column = model.term_columns.stop + model.others.index(name + _SQUARED)
-    scale, scale_squared = model.levels[name], model.levels[name + _SQUARED]
-    slope, bend = model.fit.coefficients[SHIFT] / scale, model.fit.coefficients[column] / scale_squared
-    if bend <= 0 or not min(levels) <= reference - slope / (2 * bend) <= max(levels):
-        return None, None
-    covariance = model.fit.covariance
-    freedom = shift_along(model.fit, _weights(model, name, 1.0, curved=False)).freedom
-    interval = ratio_interval(
-        -float(slope),
-        2 * float(bend),
-        float(covariance[SHIFT, SHIFT]) / scale**2,
-        4 * float(covariance[column, column]) / scale_squared**2,
-        -2 * float(covariance[SHIFT, column]) / scale / scale_squared,
-        bounds.level(question.alpha) * bounds.price(freedom, question.alpha),
-    )
-    best = reference - float(slope / (2 * bend))
-    return best, None if interval is None else (reference + interval[0], reference + interval[1])
-
-
-def _next(
-    model: Model, question: Question, levels: Sequence[float], reference: float, curved: bool
-) -> float | None:
+def _next(curve: _Curve) -> float | None:
     """The level worth trying next: the fitted best where it has not been driven, else beyond the better end."""
-    low, high = min(levels), max(levels)
-    best = _best(model, question, levels, reference)[0] if curved else None
+    low, high = min(curve.tried), max(curve.tried)
+    best = curve.best()[0]
     if best is not None:
-        nearest = min(abs(best - level) for level in levels)
+        nearest = min(abs(best - level) for level in curve.tried)
         return best if nearest > _APART * (high - low) else None
-    shifts = {level: _at_level(model, question, level, reference, curved).shift_percent for level in (low, high)}
-    step = (high - low) / (len(levels) - 1)
-    return high + step if shifts[high] < shifts[low] else low - step
+    step = (high - low) / (len(curve.tried) - 1)
+    if curve.at(high).shift_percent < curve.at(low).shift_percent:
+        return high + step
+    return max(low - step, low / 2) if low > 0 else low - step  # what was never 0, as a pressure, stays above it

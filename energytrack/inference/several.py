@@ -8,6 +8,7 @@ import numpy as np
 
 from energytrack.consumption.observations import Observations
 from energytrack.inference import bounds
+from energytrack.inference.graded import parts
 from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
@@ -20,13 +21,13 @@ _THROUGHOUT = 0.999  # of a segment's distance
 
 def never_apart(observed: Observations, name: str) -> tuple[str, ...]:
     """Modifications that were on whenever this one was, and off whenever it was off."""
-    own = observed.shares[:, observed.names.index(name)]
+    own = _on(observed, observed.names.index(name))
     if not len(own) or np.ptp(own) == 0:
         return ()
     return tuple(
         other
         for k, other in enumerate(observed.names)
-        if other != name and _correlation(own, observed.shares[:, k]) > _NEVER_APART
+        if other != name and _correlation(own, _on(observed, k)) > _NEVER_APART
     )
 
 
@@ -45,7 +46,8 @@ def together(model: Model, question: Question) -> Together | None:
     With all at once, where two were ever on together.
     """
     columns = {str(model.modification): SHIFT}
-    columns |= {name: model.term_columns.stop + k for k, name in enumerate(model.others)}
+    own = parts((*columns, *model.others))
+    columns |= {name: model.term_columns.stop + k for k, name in enumerate(model.others) if name in own}
     if len(columns) < 2:
         return None
     size = len(model.fit.coefficients)
@@ -59,7 +61,8 @@ def together(model: Model, question: Question) -> Together | None:
 
 def _ever_together(model: Model) -> bool:
     """At least one segment was driven with two of them on throughout; variants of one part never are."""
-    return bool(((model.observed.fitted >= _THROUGHOUT).sum(axis=1) > 1).any())
+    fitted = model.observed.keeping(parts(model.observed.names)).fitted
+    return bool(((fitted >= _THROUGHOUT).sum(axis=1) > 1).any())
 
 
 def effect_of(name: str, shift: Shift, question: Question) -> Effect:
@@ -74,6 +77,13 @@ def effect_of(name: str, shift: Shift, question: Question) -> Effect:
         100 * shift.standard_error,
         shift.freedom,
     )
+
+
+def _on(observed: Observations, column: int) -> Array:
+    """The share driven with it; of one that always has a level, its level."""
+    fitted = observed.fitted[:, column]
+    on: Array = fitted if len(fitted) and np.ptp(fitted) > 0 else observed.shares[:, column]
+    return on
 
 
 def _correlation(one: Array, other: Array) -> float:

@@ -14,6 +14,7 @@ import numpy as np
 from energytrack.consumption.observations import Observations
 from energytrack.inference import rules
 from energytrack.inference.drawing import draw_noise, draw_sizes
+from energytrack.inference.graded import averaged, level_terms
 from energytrack.inference.looks import State, finding, judged, take_looks
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
@@ -30,7 +31,6 @@ class Stage:
     question: Question
     model: Model
     mean: Array  # (n,) energy of each segment without the modification, in the log's unit
-    level: float  # of the modification, at which the shift is stated
 
     @property
     def base(self) -> float:
@@ -64,13 +64,14 @@ class Outcome:
 def set_stage(observed: Observations, question: Question, *, pretended: bool) -> Stage:
     """Fit the user's log; its own shift, if it has one, is taken out of the mean and so kept out of the noise."""
     bare = observed.keeping([n for n in observed.names if n != question.modification]) if pretended else observed
-    model = fit_model(bare, None if pretended else question.modification, covariates=question.covariates)
+    model = fit_model(averaged(bare), None if pretended else question.modification, covariates=question.covariates)
     coefficients = model.fit.coefficients.copy()
     if not pretended:
         coefficients[SHIFT] = 0.0
-    level = 1.0 if pretended else model.levels[question.modification]
+        own = level_terms(question.modification)
+        coefficients[[model.term_columns.stop + k for k, name in enumerate(model.others) if name in own]] = 0.0
     mean: Array = model.problem.columns @ coefficients * model.scale.energy
-    return Stage(observed, question, model, mean, level)
+    return Stage(observed, question, model, mean)
 
 
 def perform(stage: Stage, seed: np.random.SeedSequence) -> tuple[Outcome, Outcome]:
@@ -90,17 +91,12 @@ def draw_log(stage: Stage, rng: np.random.Generator) -> Observations:
 
 
 def with_shift(stage: Stage, state: State, ratio: float) -> State:
-    """The same look, had the modification truly shifted consumption by `ratio` at its highest level."""
+    """The same look, had the modification truly shifted consumption by `ratio`, at whatever level."""
     model = state.model
     coefficients = model.fit.coefficients.copy()
-    coefficients[SHIFT] += _seen_by(stage, state, ratio) * stage.base / model.scale.consumption
+    coefficients[SHIFT] += ratio * stage.base / model.scale.consumption
     moved = replace(model, fit=replace(model.fit, coefficients=coefficients))
     return judged(moved, stage.question, rules.watch("every-look", stage.question.alpha))
-
-
-def _seen_by(stage: Stage, state: State, ratio: float) -> float:
-    """The shift at the highest level a look has seen, which is the one it states."""
-    return ratio * state.model.levels[stage.question.modification] / stage.level
 
 
 def _outcome(stage: Stage, states: Sequence[State], ratio: float) -> Outcome:
@@ -112,7 +108,7 @@ def _outcome(stage: Stage, states: Sequence[State], ratio: float) -> Outcome:
         verdict=None if found is None else found[0],
         saves=deciding.shift.ratio < 0,
         settled_km=float(stage.driven[deciding.segments - 1]) if settled else None,
-        covered=all(_holds(state, _seen_by(stage, state, ratio)) for state in states[: complete + 1]),
+        covered=all(_holds(state, ratio) for state in states[: complete + 1]),
         covered_at_end=_holds(states[-1], ratio),
     )
 

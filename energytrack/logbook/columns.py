@@ -8,6 +8,7 @@ from typing import Any
 
 from energytrack.errors import EntryError
 from energytrack.logbook.cells import CellError, date_reader, number_reader, shown, text_of, yes_or_no
+from energytrack.logbook.checks import LARGEST_TARGET_PERCENT
 from energytrack.logbook.quantities import CONSUMPTION, DISTANCE, ENERGY, celsius
 from energytrack.logbook.records import CARRIERS, KINDS, UNITS
 
@@ -112,7 +113,7 @@ def modification_readers(form: Form) -> dict[str, Reader]:
         "removed_date": date,
         "removed_km": odometer,
         "level": number,
-        "target_percent": _positive(number, "a target"),
+        "target_percent": _target(_positive(number, "a target")),
         "known_low_percent": number,
         "known_high_percent": number,
         "reversible": yes_or_no,
@@ -148,6 +149,16 @@ def _positive(number: Reader, what: str) -> Reader:
         value: float = number(text)
         if value <= 0:
             raise CellError(f"{shown(text)}: {what} is more than 0; leave the cell empty if it is unknown")
+        return value
+
+    return read
+
+
+def _target(positive: Reader) -> Reader:
+    def read(text: str) -> float:
+        value: float = positive(text)
+        if value > LARGEST_TARGET_PERCENT:
+            raise CellError(f"{shown(text)}: a target is at most {LARGEST_TARGET_PERCENT:g} %; write 3 for 3 %")
         return value
 
     return read

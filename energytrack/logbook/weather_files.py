@@ -267,4 +267,7 @@ def _gaps(days: list[dt.date]) -> list[str]:
     count = "1 day is" if missing == 1 else f"{missing} days are"
     first, last = longest[0] + dt.timedelta(1), longest[1] - dt.timedelta(1)
     span = f"{first}" if first == last else f"{first} to {last}"
-    return [f"{count} missing between {ordered[0]} and {ordered[-1]}" + (f", such as {span}" if missing else "")]
+    return [
+        f"{count} missing between {ordered[0]} and {ordered[-1]}, such as {span}: an entry without a day of its own "
+        f"there is filled in from the vehicle's other temperatures"
+    ]

@@ -67,7 +67,9 @@ def import_weather(
         raise BadRowsError(str(path), reading.problems, advice)
     days = [weather for _, weather in reading.rows]
     with store.transaction():
+        before = {day.date: day.temperature_c for day in store.weather()}
         new = merge_weather(store, days)
+    replaced = sum(before.get(day.date, day.temperature_c) != day.temperature_c for day in days)
     dates = sorted(day.date.isoformat() for day in days)
     known = sorted(day.date.toordinal() for day in store.weather())
     return Outcome(
@@ -77,9 +79,14 @@ def import_weather(
         dates[0] if dates else None,
         dates[-1] if dates else None,
         tuple(str(problem) for problem in reading.problems),
-        tuple(reading.notes),
+        (*reading.notes, *_replaced(replaced)),
         tuple(_reach(vehicle.name, store.entries(vehicle.name), known) for vehicle in store.vehicles()),
     )
+
+
+def _replaced(count: int) -> list[str]:
+    days = "1 day" if count == 1 else f"{count} days"
+    return [f"{days} had another temperature in this logbook, which is replaced"] if count else []
 
 
 def _reach(name: str, entries: Sequence[Entry], known: Sequence[int]) -> Reach:

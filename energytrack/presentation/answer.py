@@ -22,7 +22,7 @@ def sentence(a: Assessment, unit: str = "km") -> str:
         "no-baseline": _no_baseline,
         "closed-unclear": _unclear,
     }[a.verdict]
-    return " ".join(filter(None, (say(a, unit), _bent(a), known_sentence(a), follow_up(a))))
+    return " ".join(filter(None, (say(a, unit), _on_average(a), known_sentence(a), follow_up(a))))
 
 
 def named(a: Assessment) -> str:
@@ -33,19 +33,18 @@ def named(a: Assessment) -> str:
     return f"{', '.join(others)} and {last} together"
 
 
-def _bent(a: Assessment) -> str:
-    """Where a level inside the tried range uses least, a shift in proportion to the level is not the whole answer."""
-    graded = a.response
-    if graded is None or graded.best_level is None:
+def _on_average(a: Assessment) -> str:
+    """Of a part driven at several levels: that the answer is their average, and which of them uses least."""
+    driven = [] if a.response is None else [e for e in a.response.levels if e.level != a.response.reference_level]
+    if len(driven) < 2:
         return ""
-    best = min(graded.levels, key=lambda effect: effect.shift_percent)
+    *lower, highest = (f"{effect.level:g}" for effect in driven)
+    best = min(driven, key=lambda effect: effect.shift_percent)
     span = figures.bounded(best.interval_percent)
-    if best.level == graded.reference_level or span is None:
-        return ""
-    shift, within = figures.percent(best.shift_percent, signed=True), figures.percent_range(span)
+    within = "" if span is None else f", look-proof range {figures.percent_range(span)}"
     return (
-        f"That takes its levels in proportion; with a bend allowed for, level {best.level:g} comes to {shift}, "
-        f"look-proof range {within}."
+        f"That is the average over the levels driven ({', '.join(lower)} and {highest}); of these, by the fitted "
+        f"curve, level {best.level:g} uses least: {figures.percent(best.shift_percent, signed=True)}{within}."
     )
 
 

@@ -121,15 +121,21 @@ def test_kept_answer_gives_what_is_expected_at_these_conditions(book):
     ]
 
 
-def test_shift_of_a_graded_part_is_that_of_its_highest_level(book):
-    """One period without a level counts as level 1: above the 0.5 of the other, so the whole shift is expected."""
+@pytest.mark.parametrize(
+    ("levels", "expected"),
+    [
+        ([], "7.84"),  # 8 L less the average of 2 %, at the reference temperature
+        ([{"level": 0.0, "shift_percent": 0.0}, {"level": 2.5, "shift_percent": -5.0}], "7.60"),  # less its own 5 %
+    ],
+)
+def test_shift_of_a_graded_part_is_that_of_its_level_else_the_average(book, levels, expected):
     book.fit("van", "skirts", None, 1500)
     book.fit("van", "skirts", None, 1600, level=0.5)
     book.remove("van", "skirts", None, 1700)
-    book.fit("van", "skirts", None, 4500)
-    book.keep_assessment("van", "skirts", KEPT)
+    book.fit("van", "skirts", None, 4500, level=2.5)
+    book.keep_assessment("van", "skirts", {**KEPT, "response": {"levels": levels} if levels else None})
     told = logged(book, fill(30, 5000, 40, temperature_c=10.0))
-    assert told[1] == "expected at these conditions: 7.84 L/100 km"  # 8 L less 2 %, at the reference temperature
+    assert told[1] == f"expected at these conditions: {expected} L/100 km"
 
 
 def test_distance_to_go_counts_only_what_was_driven_with_the_part_fitted(book):

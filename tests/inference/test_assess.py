@@ -204,7 +204,7 @@ def test_a_graded_part_is_stated_at_its_highest_level_and_counts_every_km() -> N
     graded = et.assess(log.entries, rows, "part", capacity=75.0, every_look=False)
     plain = asked(log, every_look=False)
     assert graded.distance_modified_km == pytest.approx(plain.distance_modified_km)
-    assert any("stated at level 2" in warning for warning in graded.warnings)
+    assert any("average over the levels" in warning for warning in graded.warnings)
 
 
 def test_answers_are_pure_and_speak_json() -> None:

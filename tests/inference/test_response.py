@@ -15,6 +15,11 @@ def parabola(level: float) -> float:
     return 0.0008 * (level - 10) ** 2 - 0.08
 
 
+def parabola0(level: float) -> float:
+    """The same, and exactly nothing at level 0."""
+    return parabola(level) if level else 0.0
+
+
 def wing(levels: tuple[float, ...], effect, seed: int = 6):  # type: ignore[no-untyped-def]
     step = 100 // len(levels)
     periods = [
@@ -65,6 +70,35 @@ def test_pressure_has_a_level_from_the_first_day() -> None:
     assert found.reference_level == 2.4
     assert [effect.level for effect in found.levels] == [2.4, 2.7]
     assert found.levels[1].interval_percent[0] < -3 < found.levels[1].interval_percent[1]
+
+
+def test_not_fitted_is_no_level() -> None:
+    """Consumption without it lies on no curve through the levels: fitted at all, it saves 6 % at level 27."""
+    truth = {24.0: -0.03, 27.0: -0.06, 30.0: -0.02}
+    entries, parts = wing(tuple(truth), truth.__getitem__)
+    found = respond(entries, parts, "wing", capacity=75.0)
+    assert (found.form, found.reference_level) == ("parabola", 0.0)
+    assert [effect.level for effect in found.levels] == [0.0, *truth]
+    for effect in found.levels[1:]:
+        assert effect.interval_percent[0] < 100 * truth[effect.level] < effect.interval_percent[1]
+        assert effect.shift_percent == pytest.approx(100 * truth[effect.level], abs=1.5)
+    assert found.best_level == pytest.approx(26.8, abs=1.0)
+
+
+def test_two_levels_of_a_part_that_acts_as_such() -> None:
+    entries, parts = wing((24.0, 27.0), lambda _: -0.05)
+    found = respond(entries, parts, "wing", capacity=75.0)
+    assert (found.form, found.best_level) == ("line", None)
+    assert found.per_level.interval_percent[0] < 0 < found.per_level.interval_percent[1]
+    assert all(e.interval_percent[0] < -5 < e.interval_percent[1] for e in found.levels[1:])
+    assert found.next_level in (21.0, 30.0)
+
+
+def test_a_level_of_0_that_was_logged_lies_on_the_curve() -> None:
+    entries, parts = wing((0.0, 5.0, 20.0), parabola0)
+    found = respond(entries, parts, "wing", capacity=75.0)
+    assert [effect.level for effect in found.levels] == [0.0, 5.0, 20.0]
+    assert found.best_level == pytest.approx(10.0, abs=1.5)
 
 
 def test_what_has_no_levels_is_refused() -> None:

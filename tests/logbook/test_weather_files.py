@@ -138,7 +138,8 @@ def test_what_is_wrong_is_told_by_its_line(tmp_path: Path, lines: tuple[str, ...
 def test_gaps_are_noted(tmp_path: Path) -> None:
     path = written(tmp_path, "w.csv", "date,temperature_c", "2024-02-01,4", "2024-02-05,4", "2024-02-07,4")
     assert read_weather_file(path, AS_IT_IS).notes == [
-        "4 days are missing between 2024-02-01 and 2024-02-07, such as 2024-02-02 to 2024-02-04"
+        "4 days are missing between 2024-02-01 and 2024-02-07, such as 2024-02-02 to 2024-02-04: an entry without a "
+        "day of its own there is filled in from the vehicle's other temperatures"
     ]
 
 

@@ -103,8 +103,9 @@ def test_the_first_sentence_is_about_all_parts_that_were_never_apart() -> None:
     assert answer.sentence(both).startswith("Yes: skirts, fairing and tyres together lowered consumption by")
 
 
-def test_the_first_sentence_says_where_levels_are_not_in_proportion() -> None:
+def test_the_first_sentence_says_that_several_levels_are_averaged() -> None:
     graded = answer.sentence(replace(NOT_YET, response=RESPONSE))
-    assert "level 5 comes to -6.1\u00a0%, look-proof range -8.0\u00a0to\u00a0-4.2\u00a0%." in graded
-    straight = replace(RESPONSE, form="line", best_level=None, best_level_interval=None)
-    assert "in proportion" not in answer.sentence(replace(NOT_YET, response=straight))
+    assert "That is the average over the levels driven (5 and 20);" in graded
+    assert "level 5 uses least: -6.1\u00a0%, look-proof range -8.0\u00a0to\u00a0-4.2\u00a0%." in graded
+    single = replace(RESPONSE, form="line", best_level=None, best_level_interval=None, levels=RESPONSE.levels[:2])
+    assert "average" not in answer.sentence(replace(NOT_YET, response=single))
