@@ -39,7 +39,10 @@ def _command(kind: str, summary: str) -> Callable[..., None]:
         amount: Annotated[str | None, typer.Argument(help="What was bought.")] = None,
         vehicle: options.VehicleName = None,
         date: options.Date = None,
-        unit: Annotated[str | None, typer.Option(help="Unit of the amount: L, gal-us, gal-imp, kg, kWh ...")] = None,
+        unit: Annotated[
+            str | None,
+            typer.Option(help="Unit of the amount: L, gal-us, gal-imp, kg, kWh ...", callback=options.any_case),
+        ] = None,
         odometer_unit: options.OdometerUnit = None,
         distance: Annotated[str | None, typer.Option(help="Distance since the last entry, without odometer.")] = None,
         partial: Annotated[bool, typer.Option("--partial", help="Not filled to the usual full mark.")] = False,

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from energytrack.cli.context import the_date
+from energytrack.cli.options import any_case
 from energytrack.errors import EntryError
 from energytrack.logbook.quantities import parse_number
 
@@ -21,7 +22,10 @@ SeasonDrift = Annotated[float | None, typer.Option(metavar="PERCENT", help="Stat
 Filling = Annotated[float | None, typer.Option(metavar="AMOUNT", help="Stated error of one fill or level reading.")]
 Capacity = Annotated[float | None, typer.Option(metavar="AMOUNT", help="Stated capacity; 50 if left out.")]
 Consumption = Annotated[float | None, typer.Option(metavar="AMOUNT", help="Stated, per 100 km; 7 if left out.")]
-Unit = Annotated[str | None, typer.Option(metavar="L|kg|kWh", help="Unit of stated amounts; L if left out.")]
+Unit = Annotated[
+    str | None,
+    typer.Option(metavar="L|kg|kWh", help="Unit of stated amounts; L if left out.", callback=any_case),
+]
 DistancePerFill = Annotated[float | None, typer.Option(metavar="KM", help="Stated; 550 if left out.")]
 DaysPerFill = Annotated[float | None, typer.Option(metavar="DAYS", help="Stated; 7 if left out.")]
 Baseline = Annotated[float | None, typer.Option(metavar="KM", help="Stated, before the test; 3000 if left out.")]
