@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
-from energytrack.consumption.frames import observe_frames
+from energytrack.consumption.frames import observe_log
 from energytrack.consumption.oddities import set_aside
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.inference.describe import noise_of
@@ -42,7 +42,7 @@ def plan(
     """
     further = tuple(covariates or ())
     question = Question("", float(target_percent) / 100, 1 - confidence, power, further, reversible=reversible)
-    observed, notes = observe_frames(
+    observed, notes, segmented = observe_log(
         entries,
         modifications,
         events=events,
@@ -68,6 +68,7 @@ def plan(
         designs=() if model is None else designs(model, question),
         warnings=notes,
         reversible=reversible,
+        levels_known=not segmented.lacks_levels,
     )
 
 

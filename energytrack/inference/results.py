@@ -243,6 +243,7 @@ class Assessment:
     set_aside: tuple[SetAside, ...] = ()
     verdict_with_all: WithAll | None = None  # None: nothing was set aside
     reversible: bool = True  # the modification can be taken off again
+    levels_known: bool = True  # False: no two entries tell the level they left, so nothing is measured
 
     @property
     def is_open(self) -> bool:
@@ -289,6 +290,7 @@ class Plan:
     warnings: tuple[str, ...]
     reversible: bool = True  # False: only designs that never take it off
     stated: bool = False  # the noise and the driving are stated, not measured
+    levels_known: bool = True  # False: no two entries tell the level they left, so nothing is measured
 
     def __iter__(self) -> Iterator[Design]:
         return iter(self.designs)

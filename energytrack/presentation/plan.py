@@ -14,7 +14,7 @@ from rich.text import Text
 from energytrack.inference.results import Design, Plan
 from energytrack.logbook.records import Modification
 from energytrack.presentation import figures, ways
-from energytrack.presentation.answer import USUAL_BASELINE_KM, count
+from energytrack.presentation.answer import NO_LEVELS, TELL_LEVELS, USUAL_BASELINE_KM, count
 from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, join, labelled, wrap
 
@@ -37,6 +37,8 @@ def render(
 def sentence(p: Plan, unit: str = "km") -> str:
     """Which way is shorter, and by how much; distances in `unit` (km or mi)."""
     target = figures.target(p.target_percent)
+    if not p.levels_known:
+        return f"No plan yet: {NO_LEVELS}. {TELL_LEVELS}"
     if not p.designs:
         missing = max(USUAL_BASELINE_KM - p.distance_baseline_km, USUAL_BASELINE_KM / 4)
         segments = count(p.segments_baseline, "segment")
