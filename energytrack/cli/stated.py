@@ -33,7 +33,7 @@ TemperatureRange = Annotated[
     str | None, typer.Option(metavar="JAN:JUL", help="Stated means of January and July, C; -2:22 if left out.")
 ]
 Date = Annotated[
-    str | None, typer.Option(metavar="YYYY-MM-DD", help="Stated day the test could begin; today if left out.")
+    str | None, typer.Option(metavar="YYYY-MM-DD", help="Day the test could begin; today if left out.")
 ]
 
 
@@ -46,7 +46,7 @@ def stated(
     """
     given = {name: value for name, value in figures.items() if value is not None}
     if trip_noise is None:
-        if given or temperature_range or date:
+        if given or temperature_range:
             raise EntryError("no noise stated: a plan without a logbook needs at least --trip-noise, such as 5")
         return None
     from energytrack.inference.stated import Stated

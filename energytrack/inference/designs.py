@@ -2,10 +2,15 @@
 
 from __future__ import annotations
 
+import datetime as dt
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
+import numpy as np
+
 from energytrack.consumption.frames import observe_log
+from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside
 from energytrack.consumption.two_carriers import TwoCarriers
 from energytrack.inference.describe import noise_of
@@ -34,11 +39,14 @@ def plan(
     events: pd.DataFrame | None = None,
     reversible: bool = True,
     two_carriers: TwoCarriers | None = None,
+    today: dt.date | None = None,
 ) -> Plan:
     """Distance to the target for each way to run the test, from the log's own noise, habit and seasons.
 
     Tables and errors as for `assess`. Modifications already logged are allowed for, and stay as they are now.
     reversible: whether the part can be taken off again; if not, only ways that never do are compared.
+    today: the day from which distances, days and dates count, if later than the log's last one; what drifts has
+    drifted on until then. None: the log's last day.
     """
     further = tuple(covariates or ())
     question = Question("", float(target_percent) / 100, 1 - confidence, power, further, reversible=reversible)
@@ -56,6 +64,7 @@ def plan(
     usual = set_aside(observed, question.covariates).kept  # odd entries are no part of the noise to plan with
     ready = len(usual) >= FEWEST_BASELINE
     model = fit_model(usual, None, covariates=question.covariates) if ready else None
+    question, waited = _from_today(question, observed, today)
     return Plan(
         vehicle=vehicle,
         unit=observed.unit,
@@ -66,10 +75,26 @@ def plan(
         segments_baseline=len(observed.energy),
         noise=None if model is None else noise_of(model),
         designs=() if model is None else designs(model, question),
-        warnings=notes,
+        warnings=(*waited, *notes),
         reversible=reversible,
         levels_known=not segmented.lacks_levels,
     )
+
+
+def _from_today(question: Question, observed: Observations, today: dt.date | None) -> tuple[Question, list[str]]:
+    """The question asked `today`, and a warning where the log ended longer ago than it ever paused."""
+    if today is None or not len(observed):
+        return question, []
+    last = int(observed.end_day[-1])
+    wait = max(0, today.toordinal() - last)
+    if wait <= max(int(days) for days in np.diff(observed.end_day, prepend=observed.mid_day[0])):
+        return replace(question, wait_days=wait), []
+    ended = dt.date.fromordinal(last).isoformat()
+    said = (
+        f"the log ended on {ended}: the plan counts from {today.isoformat()}, with what may have drifted since. A few "
+        f"entries before the start make it surer."
+    )
+    return replace(question, wait_days=wait), [said]
 
 
 def plan_from(

@@ -36,7 +36,7 @@ class Way:
 
 def designs(model: Model, question: Question) -> tuple[Design, ...]:
     """The best way of each kind; of those that take the modification off, none where that cannot be done."""
-    kinds = ways(dt.date.fromordinal(int(model.observed.end_day[-1])))
+    kinds = ways(dt.date.fromordinal(int(model.observed.end_day[-1] + question.wait_days)))
     fitting = [kind for kind in kinds if question.reversible or kind[0].name not in _TAKEN_OFF]
     return tuple(_design(model, *_best(model, kind, question), question) for kind in fitting)
 
