@@ -19,7 +19,7 @@ from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.results import Plan
 from energytrack.inference.stated import Stated, stated_model
-from energytrack.inference.ways import designs
+from energytrack.inference.ways import designs, left_out
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -65,6 +65,7 @@ def plan(
     ready = len(usual) >= FEWEST_BASELINE
     model = fit_model(usual, None, covariates=question.covariates) if ready else None
     question, waited = _from_today(question, observed, today)
+    found = () if model is None else designs(model, question)
     return Plan(
         vehicle=vehicle,
         unit=observed.unit,
@@ -74,8 +75,8 @@ def plan(
         distance_baseline_km=float(observed.distance_km.sum()),
         segments_baseline=len(observed.energy),
         noise=None if model is None else noise_of(model),
-        designs=() if model is None else designs(model, question),
-        warnings=(*waited, *notes),
+        designs=found,
+        warnings=(*waited, *left_out(found, question), *notes),
         reversible=reversible,
         levels_known=not segmented.lacks_levels,
     )
@@ -111,6 +112,7 @@ def plan_from(
     """
     question = Question("", float(target_percent) / 100, 1 - confidence, power, reversible=reversible)
     model = stated_model(stated)
+    found = designs(model, question)
     return Plan(
         vehicle="",
         unit=stated.unit,
@@ -120,8 +122,8 @@ def plan_from(
         distance_baseline_km=float(model.observed.distance_km.sum()),
         segments_baseline=len(model.observed),
         noise=noise_of(model),
-        designs=designs(model, question),
-        warnings=_left_open(stated),
+        designs=found,
+        warnings=(*left_out(found, question), *_left_open(stated)),
         reversible=reversible,
         stated=True,
     )

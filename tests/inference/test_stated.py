@@ -104,6 +104,16 @@ def test_on_off_on_has_three_phases_and_three_swaps() -> None:
     assert (design.distance_km or 0.0) > 550 * sum(design.phases)
 
 
+@pytest.mark.parametrize("target", [3.0, 20.0, 50.0])
+def test_ways_that_swap_do_so_before_the_target_is_covered(target: float) -> None:
+    found = et.plan_from(NO_DRIFT, target)
+    swapping = [each for each in found if each.name in ("on-off-on", "alternate", "alternate-weekly")]
+    assert all((each.swaps or 0) > 1 for each in swapping)
+    said = [warning for warning in found.warnings if "the same as one switch, and left out" in warning]
+    assert len(said) == (len(swapping) < 5)  # on-off-on, every 1, 2 and 4 fill-ups, every week
+    assert (target > 3.0) == (not swapping)
+
+
 def test_best_date_is_a_first_of_a_month_within_a_year() -> None:
     start = dt.date.fromisoformat(the(et.plan_from(NO_DRIFT, 3.0), "best-date").start or "")
     assert start in months_after(SPRING)
