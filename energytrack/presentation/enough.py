@@ -102,5 +102,5 @@ def _shift(a: Assessment) -> list[Row]:
     known = [f"{figures.percent(value)} {when}" for value, when in limits if value is not None]
     if known:
         power = figures.target(100 * a.power)
-        rows.append(("smallest it can show", f"{', '.join(known)} ({power} chance to show it)"))
+        rows.append(("resolvable shift", f"from {', '.join(known)} ({power} chance to show it)"))
     return rows
