@@ -13,16 +13,22 @@ from energytrack.consumption.frames import observe_log
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside
 from energytrack.consumption.two_carriers import TwoCarriers
+from energytrack.inference.ahead import always_fitted
 from energytrack.inference.describe import noise_of
+from energytrack.inference.distance import course
 from energytrack.inference.looks import FEWEST_BASELINE
 from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
-from energytrack.inference.results import Plan
+from energytrack.inference.results import Design, LongerBaseline, Plan
 from energytrack.inference.stated import Stated, stated_model
 from energytrack.inference.ways import designs, left_out
 
 if TYPE_CHECKING:
     import pandas as pd
+
+
+_FAR_KM = 10_000.0
+_TIMES_THE_BASELINE = (2, 4, 8, 16)
 
 
 def plan(
@@ -126,7 +132,25 @@ def plan_from(
         warnings=(*left_out(found, question), *_left_open(stated)),
         reversible=reversible,
         stated=True,
+        with_longer_baseline=_longer_baseline(stated, question, found),
     )
+
+
+def _longer_baseline(stated: Stated, question: Question, found: tuple[Design, ...]) -> LongerBaseline | None:
+    """Of some longer baselines the one with the shortest way in all, where one switch is far or out of reach."""
+    now = next((design.distance_km for design in found if design.name == "one-switch"), None)
+    if now is not None and now <= _FAR_KM:
+        return None
+    tried = []
+    for factor in _TIMES_THE_BASELINE:
+        longer = replace(stated, baseline_km=factor * stated.baseline_km)
+        reached = course(stated_model(longer), always_fitted, question).reach(1 / question.information)
+        if reached is not None:
+            tried.append(LongerBaseline(longer.baseline_km, reached.distance_km))
+    best = min(tried, key=lambda each: each.baseline_km + each.distance_km, default=None)
+    if best is None or now is None:
+        return best
+    return best if best.baseline_km - stated.baseline_km + best.distance_km < now else None
 
 
 def _left_open(stated: Stated) -> tuple[str, ...]:

@@ -275,6 +275,14 @@ class Design:
 
 
 @dataclass(frozen=True)
+class LongerBaseline:
+    """A longer baseline than the stated one, and the distance one switch would then take (km)."""
+
+    baseline_km: float
+    distance_km: float
+
+
+@dataclass(frozen=True)
 class Plan:
     """Designs compared for one vehicle and target; iterating over a plan gives its designs."""
 
@@ -291,6 +299,8 @@ class Plan:
     reversible: bool = True  # False: only designs that never take it off
     stated: bool = False  # the noise and the driving are stated, not measured
     levels_known: bool = True  # False: no two entries tell the level they left, so nothing is measured
+
+    with_longer_baseline: LongerBaseline | None = None  # of stated driving, where one switch is far or out of reach
 
     def __iter__(self) -> Iterator[Design]:
         return iter(self.designs)

@@ -163,3 +163,16 @@ def test_what_a_log_tells_of_trips_alone_is_two_a_fill_up() -> None:
 def test_impossible_figures_are_refused(change: dict[str, float], says: str) -> None:
     with pytest.raises(InferenceError, match=says):
         replace(Stated(5.0, 1.0), **change)  # type: ignore[arg-type]
+
+
+def test_a_longer_baseline_is_offered_where_it_brings_one_switch_within_reach() -> None:
+    noisy = Stated(5.0, drift=1.0, date=SPRING)
+    short = et.plan_from(noisy, 5.0)
+    assert the(short, "one-switch").distance_km is None
+    offered = short.with_longer_baseline
+    assert offered is not None
+    then = the(et.plan_from(replace(noisy, baseline_km=offered.baseline_km), 5.0), "one-switch").distance_km
+    assert then == pytest.approx(offered.distance_km)
+    assert short.to_dict()["with_longer_baseline"]["baseline_km"] == offered.baseline_km
+    assert et.plan_from(noisy, 3.0).with_longer_baseline is None  # however long it is
+    assert et.plan_from(NO_DRIFT, 5.0).with_longer_baseline is None  # near already
