@@ -183,8 +183,8 @@ def _about_the_baseline(p: Plan) -> list[str]:
     before, so_far, then = (
         figures.distance(km, "km") for km in (longer.baseline_km, p.distance_baseline_km, longer.distance_km)
     )
-    asked = join(f"--baseline {longer.baseline_km:.0f}")
-    return [f"A longer baseline helps: after {before} without it, not {so_far}, one switch takes about {then} ({asked})."]
+    then += f" ({join(f'--baseline {longer.baseline_km:.0f}')})"
+    return [f"A longer baseline helps: after {before} without it, not {so_far}, one switch takes about {then}."]
 
 
 def _table(headings: Sequence[str], left: Sequence[int] = (0,)) -> Table:
