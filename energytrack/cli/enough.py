@@ -155,11 +155,14 @@ def _print_json(answers: list[Assessment]) -> None:
 
 def _print(answers: list[tuple[asking.Question, Assessment]], picture: bool) -> None:
     from energytrack.presentation import terminal
-    from energytrack.presentation.enough import render
+    from energytrack.presentation.enough import render, repeats
 
     screen = terminal.console()
-    for place, (question, answer) in enumerate(answers):
-        unit, several = question.vehicle.distance_unit, len(answers) > 1
+    shown: list[tuple[asking.Question, Assessment]] = []
+    for each in answers:
+        shown += [] if repeats(each[1], (answer for _, answer in shown)) else [each]
+    for place, (question, answer) in enumerate(shown):
+        unit, several = question.vehicle.distance_unit, len(shown) > 1
         if place:
             screen.print()
         terminal.show(render(answer, unit=unit, width=screen.width, title=several, draw=picture), screen)

@@ -15,7 +15,7 @@ from energytrack.logbook.opening import Logbook
 from energytrack.logbook.quantities import consumption_text, distance_text, energy_text
 from energytrack.logbook.records import Entry, Vehicle
 from energytrack.logbook.rows import entry_values
-from energytrack.presentation.columns import aligned
+from energytrack.presentation.columns import aligned, folded
 
 MOST_ENTRIES = 1_000_000_000
 WIDTH = 80
@@ -87,14 +87,14 @@ def _table(vehicle: Vehicle, lines: list[Line], last: int) -> list[str]:
         return [f"{vehicle.name}: no entries yet"]
     title = vehicle.name + (f", the newest {last} (--last N for more)" if len(lines) == last else "")
     rows = aligned([_cells(vehicle, line) for line in lines], right=(1, 2, 3))
-    return [title, *(row if len(row) <= WIDTH else f"{row[: WIDTH - 3]}..." for row in rows)]  # notes are whole in JSON
+    return [title, *folded(rows, [", ".join(_flags(line)) for line in lines], WIDTH)]
 
 
 def _cells(vehicle: Vehicle, line: Line) -> tuple[str, ...]:
     entry = line.entry
     amount = "no amount" if math.isnan(entry.energy) else energy_text(entry.energy, for_kind(vehicle, entry.kind))
     consumption = "" if line.consumption is None else consumption_text(line.consumption, in_total(vehicle))
-    return entry.date.isoformat(), _place(vehicle, entry), amount, consumption, ", ".join(_flags(line))
+    return entry.date.isoformat(), _place(vehicle, entry), amount, consumption
 
 
 def _place(vehicle: Vehicle, entry: Entry) -> str:

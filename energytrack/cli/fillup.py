@@ -4,19 +4,28 @@ Annotations are values here, not strings: compiling twenty of them again, twice,
 """
 
 import datetime as dt
+import math
 from collections.abc import Callable
 from typing import Annotated
 
 import typer
 
 from energytrack.cli import options
-from energytrack.cli.context import distance_unit, kilometres, say, say_json, the_vehicle, writable
+from energytrack.cli.context import distance_unit, kilometres, say, say_json, the_date, the_vehicle, writable
 from energytrack.cli.prompts import ask, on_terminal
 from energytrack.cli.typed import Typed, as_typed, check_kind, entry_from, unit_of
 from energytrack.errors import EntryError
 from energytrack.logbook.carriers import for_kind
-from energytrack.logbook.checks import check_measure, check_place, check_values
-from energytrack.logbook.quantities import distance_text, parse_number
+from energytrack.logbook.checks import (
+    check_distance,
+    check_energy,
+    check_measure,
+    check_odometer,
+    check_place,
+    check_reading,
+    check_values,
+)
+from energytrack.logbook.quantities import distance_text, parse_number, to_base
 from energytrack.logbook.records import Entry, Vehicle
 from energytrack.logbook.store import Store
 
@@ -30,7 +39,10 @@ def _command(kind: str, summary: str) -> Callable[..., None]:
         amount: Annotated[str | None, typer.Argument(help="What was bought.")] = None,
         vehicle: options.VehicleName = None,
         date: options.Date = None,
-        unit: Annotated[str | None, typer.Option(help="Unit of the amount: L, gal-us, gal-imp, kg, kWh ...")] = None,
+        unit: Annotated[
+            str | None,
+            typer.Option(help="Unit of the amount: L, gal-us, gal-imp, kg, kWh ...", callback=options.any_case),
+        ] = None,
         odometer_unit: options.OdometerUnit = None,
         distance: Annotated[str | None, typer.Option(help="Distance since the last entry, without odometer.")] = None,
         partial: Annotated[bool, typer.Option("--partial", help="Not filled to the usual full mark.")] = False,
@@ -79,22 +91,31 @@ def _complete(typed: Typed, store: Store, vehicle: Vehicle) -> None:
         what = "odometer value" if lacks_place else "amount"
         raise EntryError(f"the {what} is missing: type ODOMETER AMOUNT, such as 48230 41.32")
     if lacks_place:
-        _ask_distance(typed, store, vehicle)
+        _ask_place(typed, store, vehicle)
     if typed.amount is None:
         unit = unit_of(typed, vehicle)
-        typed.amount = ask(f"Amount in {unit}", lambda text: parse_number(text, "amount"))
+        typed.amount = ask(
+            f"Amount in {unit}", lambda text: check_energy(to_base(parse_number(text, "amount"), unit), vehicle)
+        )
 
 
-def _ask_distance(typed: Typed, store: Store, vehicle: Vehicle) -> None:
+def _ask_place(typed: Typed, store: Store, vehicle: Vehicle) -> None:
+    """Ask for the odometer value; for the distance where that is what the vehicle's log has."""
     last = next(iter(store.last_entries(vehicle.name, 1)), None)
-    unit = distance_unit(typed.odometer_unit, vehicle)
+    unit, date = distance_unit(typed.odometer_unit, vehicle), the_date(typed.date)
     if last is not None and last.odometer_km is None:
         own = vehicle.distance_unit
         question = f"Distance since the last entry, {last.date}, in {own}"
-        typed.distance = ask(question, lambda text: kilometres(text, own, "distance"))
+        typed.distance = ask(question, lambda text: check_distance(kilometres(text, own, "distance"), vehicle))
         return
+
+    def check(text: str) -> None:
+        km = kilometres(text, unit)
+        check_odometer(km, vehicle)
+        check_reading(date, km, vehicle, *store.neighbours(Entry(vehicle.name, date, math.nan, km)))
+
     hint = f", last {distance_text(last.odometer_km or 0.0, vehicle)} on {last.date}" if last is not None else ""
-    typed.odometer = ask(f"Odometer in {unit}{hint}", lambda text: kilometres(text, unit))
+    typed.odometer = ask(f"Odometer in {unit}{hint}", check)
 
 
 def _write(typed: Typed, store: Store, vehicle: Vehicle, again: bool) -> Entry:

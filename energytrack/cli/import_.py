@@ -9,6 +9,7 @@ from typing import Annotated
 import typer
 
 from energytrack.cli.context import logbook_path
+from energytrack.cli.options import any_case
 
 Text = str | None
 
@@ -25,13 +26,22 @@ def import_table(
         Path | None, typer.Option(metavar="FILE", help="Write bad rows to this new file, import the rest.")
     ] = None,
     odometer_unit: Annotated[
-        Text, typer.Option(metavar="UNIT", help="Of odometer and distance, km or mi. Otherwise km.")
+        Text,
+        typer.Option(metavar="UNIT", help="Of odometer and distance, km or mi. Otherwise km.", callback=any_case),
     ] = None,
     energy_unit: Annotated[
-        Text, typer.Option(metavar="UNIT", help="L, gal-us, gal-imp, kg, lb, kWh or MJ. Otherwise the vehicle's.")
+        Text,
+        typer.Option(
+            metavar="UNIT", help="L, gal-us, gal-imp, kg, lb, kWh or MJ. Otherwise the vehicle's.", callback=any_case
+        ),
     ] = None,
-    speed_unit: Annotated[Text, typer.Option(metavar="UNIT", help="Of speeds, km/h or mph. Otherwise km/h.")] = None,
-    temperature_unit: Annotated[Text, typer.Option(metavar="UNIT", help="C or F. Otherwise C.")] = None,
+    speed_unit: Annotated[
+        Text,
+        typer.Option(metavar="UNIT", help="Of speeds, km/h or mph. Otherwise km/h.", callback=any_case),
+    ] = None,
+    temperature_unit: Annotated[
+        Text, typer.Option(metavar="UNIT", help="C or F. Otherwise C.", callback=any_case)
+    ] = None,
     day_first: Annotated[bool, typer.Option("--day-first", help="03/04/2026 is the third of April.")] = False,
     date_format: Annotated[Text, typer.Option(help="How dates are written, such as %m/%d/%y.")] = None,
     decimal_comma: Annotated[bool, typer.Option("--decimal-comma", help="Numbers are written 41,32.")] = False,

@@ -8,10 +8,25 @@ from typing import Annotated, Any
 import typer
 import typer.core
 
+from energytrack.logbook.quantities import CONSUMPTION, DISTANCE, ENERGY, in_any_case
+
+_OTHERS = ("km/h", "mph", "C", "F")
+
+def any_case(typed: str | None) -> str | None:
+    """A typed unit as it is written: `l` is L, `KWH` is kWh. What is no unit stays, for the command to refuse."""
+    return None if typed is None else in_any_case(typed, (*ENERGY, *DISTANCE, *CONSUMPTION, *_OTHERS))
+
+
 VehicleName = Annotated[str | None, typer.Option("--vehicle", help="Which vehicle; may be left out when there is one.")]
 Date = Annotated[str | None, typer.Option("--date", metavar="YYYY-MM-DD", help="Day; today if left out.")]
 OdometerUnit = Annotated[
-    str | None, typer.Option("--odometer-unit", metavar="km|mi", help="Unit of the odometer, if not the vehicle's own.")
+    str | None,
+    typer.Option(
+        "--odometer-unit",
+        metavar="km|mi",
+        help="Unit of the odometer, if not the vehicle's own.",
+        callback=any_case,
+    ),
 ]
 Note = Annotated[str, typer.Option("--note", help="Anything worth remembering.")]
 Json = Annotated[bool, typer.Option("--json", help="Print JSON.")]

@@ -10,7 +10,7 @@ import typer
 
 from energytrack.cli import options, stated
 from energytrack.cli import questions as asking
-from energytrack.cli.context import readable, say_json
+from energytrack.cli.context import readable, say_json, the_date
 from energytrack.errors import LogbookError
 
 if TYPE_CHECKING:
@@ -54,7 +54,7 @@ def plan(
     asked: dict[str, Any] = {"target_percent": target, "confidence": confidence, "power": power}
     asked["reversible"] = not not_reversible
     if figures is None:
-        _from_logbook(context, vehicle, asked, json)
+        _from_logbook(context, vehicle, asked | {"today": the_date(date)}, json)
         return
     if vehicle is not None:
         raise typer.BadParameter("--trip-noise plans without a logbook: leave --vehicle out")

@@ -26,7 +26,7 @@ def rehearse(
     context: typer.Context,
     name: Annotated[str | None, typer.Argument(help="The modification; all of them if left out.")] = None,
     vehicle: Annotated[str | None, typer.Option(help="The vehicle; all of them if left out.")] = None,
-    runs: Annotated[int, typer.Option(help="Logs to draw.")] = 200,
+    runs: Annotated[int, typer.Option("--runs", "-n", help="Logs to draw.")] = 200,
     seed: Annotated[int, typer.Option(help="Of the random numbers: the same seed draws the same logs.")] = 0,
     target: Annotated[
         float | None, typer.Option(help="Smallest shift worth knowing about, in percent. Otherwise as logged, or 3.")

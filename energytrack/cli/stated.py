@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from energytrack.cli.context import the_date
+from energytrack.cli.options import any_case
 from energytrack.errors import EntryError
 from energytrack.logbook.quantities import parse_number
 
@@ -21,7 +22,10 @@ SeasonDrift = Annotated[float | None, typer.Option(metavar="PERCENT", help="Stat
 Filling = Annotated[float | None, typer.Option(metavar="AMOUNT", help="Stated error of one fill or level reading.")]
 Capacity = Annotated[float | None, typer.Option(metavar="AMOUNT", help="Stated capacity; 50 if left out.")]
 Consumption = Annotated[float | None, typer.Option(metavar="AMOUNT", help="Stated, per 100 km; 7 if left out.")]
-Unit = Annotated[str | None, typer.Option(metavar="L|kg|kWh", help="Unit of stated amounts; L if left out.")]
+Unit = Annotated[
+    str | None,
+    typer.Option(metavar="L|kg|kWh", help="Unit of stated amounts; L if left out.", callback=any_case),
+]
 DistancePerFill = Annotated[float | None, typer.Option(metavar="KM", help="Stated; 550 if left out.")]
 DaysPerFill = Annotated[float | None, typer.Option(metavar="DAYS", help="Stated; 7 if left out.")]
 Baseline = Annotated[float | None, typer.Option(metavar="KM", help="Stated, before the test; 3000 if left out.")]
@@ -29,7 +33,7 @@ TemperatureRange = Annotated[
     str | None, typer.Option(metavar="JAN:JUL", help="Stated means of January and July, C; -2:22 if left out.")
 ]
 Date = Annotated[
-    str | None, typer.Option(metavar="YYYY-MM-DD", help="Stated day the test could begin; today if left out.")
+    str | None, typer.Option(metavar="YYYY-MM-DD", help="Day the test could begin; today if left out.")
 ]
 
 
@@ -42,7 +46,7 @@ def stated(
     """
     given = {name: value for name, value in figures.items() if value is not None}
     if trip_noise is None:
-        if given or temperature_range or date:
+        if given or temperature_range:
             raise EntryError("no noise stated: a plan without a logbook needs at least --trip-noise, such as 5")
         return None
     from energytrack.inference.stated import Stated

@@ -36,11 +36,23 @@ def add(
     name: Annotated[str, typer.Argument(help="What you call it.")],
     carrier: Annotated[str, typer.Option(help=", ".join(CARRIERS))],
     capacity: Annotated[str | None, typer.Option(help="Tank or usable battery capacity, in --unit.")] = None,
-    unit: Annotated[str | None, typer.Option(help=f"Unit amounts are typed in: {', '.join(ENERGY)}.")] = None,
+    unit: Annotated[
+        str | None,
+        typer.Option(help=f"Unit amounts are typed in: {', '.join(ENERGY)}.", callback=options.any_case),
+    ] = None,
     distance_unit_typed: Annotated[
-        str, typer.Option("--distance-unit", metavar="km|mi", help="Unit the odometer counts.")
+        str,
+        typer.Option(
+            "--distance-unit",
+            metavar="km|mi",
+            help="Unit the odometer counts.",
+            callback=options.any_case,
+        ),
     ] = "km",
-    display: Annotated[str | None, typer.Option(help=f"Consumption shown as: {', '.join(CONSUMPTION)}.")] = None,
+    display: Annotated[
+        str | None,
+        typer.Option(help=f"Consumption shown as: {', '.join(CONSUMPTION)}.", callback=options.any_case),
+    ] = None,
     second_carrier: Annotated[
         str | None, typer.Option(help="Of a plug-in hybrid: electricity beside a fuel, or a fuel beside electricity.")
     ] = None,

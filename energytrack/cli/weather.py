@@ -24,7 +24,9 @@ def weather(
     ] = None,
     station: Annotated[str | None, typer.Option(help="Identifier of the station meant, where a file has many.")] = None,
     skip_bad: Annotated[bool, typer.Option("--skip-bad", help="Leave bad rows out, import the rest.")] = False,
-    temperature_unit: Annotated[str, typer.Option(metavar="UNIT", help="C or F.")] = "C",
+    temperature_unit: Annotated[
+        str, typer.Option(metavar="UNIT", help="C or F.", callback=options.any_case)
+    ] = "C",
     day_first: Annotated[bool, typer.Option("--day-first", help="03/04/2026 is the third of April.")] = False,
     date_format: Annotated[str | None, typer.Option(help="How dates are written, such as %m/%d/%y.")] = None,
     decimal_comma: Annotated[bool, typer.Option("--decimal-comma", help="Numbers are written 41,32.")] = False,

@@ -11,6 +11,7 @@ from energytrack.consumption.segments import Segment, SegmentedLog, close_segmen
 from energytrack.consumption.shares import fitted_periods, shares
 from energytrack.consumption.slips import Case, find_slips
 from energytrack.consumption.terms import ELECTRIC, condition_of, term
+from energytrack.consumption.usual import far_from_usual
 from energytrack.errors import ConsumptionError
 from energytrack.logbook.carriers import for_kind, in_total
 from energytrack.logbook.quantities import consumption_text, distance_text, energy_text, from_base, to_base
@@ -209,7 +210,7 @@ def _compared(
         expected, _, spread = _record(others)
         sd, basis = 100 * spread / expected, "from its recent record"
     if expected is None or expected <= 0:
-        return []
+        return far_from_usual(figure, vehicle)
     percent = 100 * (figure / expected - 1)
     scatter = WITHIN_SD * sd / _relative_length(segment, others)
     verdict = "within" if abs(percent) <= scatter else "outside"

@@ -81,6 +81,12 @@ class SegmentedLog:
     problems: tuple[Problem, ...]
     electric: tuple[float, ...] = ()  # kWh from the plug in each segment, where a vehicle has tank and battery
 
+    @property
+    def lacks_levels(self) -> bool:
+        """Driving was logged, and nothing can be measured because no two entries tell the level they left."""
+        spans = bool(self.void or self.open_legs)
+        return spans and not self.segments and all(span.reason == "no known level" for span in self.void)
+
 
 class Level(NamedTuple):
     """A known level: how much is missing from full, and how well that is known."""

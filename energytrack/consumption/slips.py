@@ -27,6 +27,7 @@ _PARTNER_SD = 2.0  # least deviation of the other half of a pair
 _MERGED_SD = 2.5  # a pair taken together
 _OVERFULL = 1.3  # of capacity: no amount is larger
 _NEAR = 20  # segments on each side that tell what amount is usual
+_MISSING = ("an entry missing", "two entries missing", "three entries missing")
 _USUAL_AMOUNT = 0.6  # of the median amount: what a tank after a forgotten entry holds at least
 
 
@@ -185,14 +186,18 @@ def _gallons(case: Case) -> list[Slip]:
 
 
 def _missing_entry(case: Case) -> list[Slip]:
-    """About twice the distance on a usual amount: half of the consumption."""
+    """A multiple of the distance on a usual amount: the fraction of the consumption that fits best tells how many."""
     segment, segments = case.segment, case.segmented.segments
     near = segments[max(0, case.which - _NEAR) : case.which + _NEAR + 1]
     usual = sorted(other.energy for other in near)[len(near) // 2]
-    halved = case.gap(case.which, segment.distance_km / 2, segment.energy)
-    if segment.energy < _USUAL_AMOUNT * usual or halved > FITS_SD:
+    gaps = {
+        missing: case.gap(case.which, segment.distance_km / (count + 1), segment.energy)
+        for count, missing in enumerate(_MISSING, start=1)
+    }
+    what = min(gaps, key=gaps.__getitem__)
+    if segment.energy < _USUAL_AMOUNT * usual or gaps[what] > FITS_SD:
         return []
-    return [Slip("an entry missing", f"say that entries are missing before the one {place(case.entry, case.vehicle)}")]
+    return [Slip(what, f"say that entries are missing before the one {place(case.entry, case.vehicle)}")]
 
 
 def place(entry: Entry, vehicle: Vehicle) -> str:

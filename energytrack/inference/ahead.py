@@ -41,7 +41,7 @@ class Road:
     past: int
     distance: Array
     day: Array
-    ends: Array  # days driven since the last segment of the log, at the end of each of the m segments
+    ends: Array  # days from now, at the end of each of the m segments
     linked: np.ndarray[tuple[int], np.dtype[np.bool_]]
     start_weight: Array
     end_weight: Array
@@ -123,9 +123,9 @@ class Reach:
     days: float
 
 
-def road(model: Model, schedule: Schedule, seed: int) -> Road:
-    """The log of `model`, continued to the horizon."""
-    habit = _habit(model, seed)
+def road(model: Model, schedule: Schedule, seed: int, wait_days: float = 0.0) -> Road:
+    """The log of `model`, continued to the horizon. wait_days: from its last day until now, when driving goes on."""
+    habit = _habit(model, seed, wait_days)
     shares = schedule(habit.ends)
     observed, scale = model.observed, model.scale
     distance = np.concatenate([observed.distance_km, habit.distance_km]) / scale.distance_km
@@ -139,7 +139,7 @@ def road(model: Model, schedule: Schedule, seed: int) -> Road:
         distance=distance,
         day=np.concatenate([observed.mid_day, habit.conditions.day]),
         ends=habit.ends,
-        linked=np.concatenate([observed.linked, np.ones(len(shares), dtype=bool)]),
+        linked=np.concatenate([observed.linked, [habit.linked], np.ones(len(shares) - 1, dtype=bool)]),
         start_weight=np.concatenate([observed.start_weight, habit.start_weight]),
         end_weight=np.concatenate([observed.end_weight, habit.end_weight]),
         extra=np.concatenate([model.problem.shape.extra, np.zeros(len(shares))]),
@@ -212,9 +212,10 @@ class _Habit:
     start_weight: Array
     end_weight: Array
     conditions: Conditions
+    linked: bool  # to the log's last level; not after a wait in which entries must have been made and are not there
 
 
-def _habit(model: Model, seed: int) -> _Habit:
+def _habit(model: Model, seed: int, wait_days: float) -> _Habit:
     rng = np.random.default_rng(seed)
     observed = model.observed
     recent = np.arange(max(0, len(observed.distance_km) - RECENT), len(observed.distance_km))
@@ -225,14 +226,15 @@ def _habit(model: Model, seed: int) -> _Habit:
     drawn = rng.choice(recent, size=count)
     days = np.maximum(days_of[drawn - recent[0]], _SHORTEST_DAYS)
     ends = np.cumsum(days)
-    day = float(observed.end_day[-1]) + ends - days / 2
+    day = float(observed.end_day[-1]) + wait_days + ends - days / 2
     values = {name: value[drawn] for name, value in model.conditions.values.items()}
     if "temperature_c" in values:
         values["temperature_c"] = model.conditions.patterns["temperature_c"].at(day)
     still = {name: np.zeros(count) for name in values}
     start = np.concatenate([observed.end_weight[-1:], observed.end_weight[drawn[:-1]]])
     ahead = Conditions(day, values, still, {}, {})
-    return _Habit(observed.distance_km[drawn], ends, start, observed.end_weight[drawn], ahead)
+    linked = bool(wait_days <= days_of.max())
+    return _Habit(observed.distance_km[drawn], ends, start, observed.end_weight[drawn], ahead, linked)
 
 
 def _mean_days(end_day: Array) -> float:

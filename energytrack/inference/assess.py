@@ -96,7 +96,8 @@ def assess(
 
     def decided(odd: bool) -> Assessment:
         blank = _blank(vehicle, found.kept if odd and found is not None else observed, question, notes)
-        return _decided(replace(blank, never_apart=partners), observed, question, every_look, looks_taken, odd=odd)
+        blank = replace(blank, never_apart=partners, levels_known=not segmented.lacks_levels)
+        return _decided(blank, observed, question, every_look, looks_taken, odd=odd)
 
     answer = with_known_change(decided(found is not None), rows)
     if found is not None and found.odd:

@@ -49,7 +49,7 @@ class Course:
 
 def course(model: Model, schedule: Schedule, question: Question) -> Course:
     """The road under a schedule, with its information."""
-    ahead, theta = road(model, schedule, seed=0), model.fit.theta
+    ahead, theta = road(model, schedule, 0, question.wait_days), model.fit.theta
     variances = ahead.variances(theta)
     freedoms = cache(lambda: ahead.freedoms(theta))  # eight times the work of the variances: only where asked for
 
@@ -84,7 +84,7 @@ def need_along(here: Course, model: Model, schedule: Schedule, question: Questio
     central = here.reach(wanted)
     return Need(
         central=central,
-        interval_km=_holding(central, _interval(model, schedule, wanted / price)),
+        interval_km=_holding(central, _interval(model, schedule, wanted / price, question.wait_days)),
         expected_km=None if sooner is None else sooner.distance_km,
         best_variance=here.priced(last),
     )
@@ -100,11 +100,13 @@ def _holding(
     return min(low, central.distance_km), None if high is None else max(high, central.distance_km)
 
 
-def _interval(model: Model, schedule: Schedule, wanted: float) -> tuple[float, float | None] | None:
+def _interval(
+    model: Model, schedule: Schedule, wanted: float, wait_days: float
+) -> tuple[float, float | None] | None:
     """10th and 90th percentile over the noise's own uncertainty and the habit's."""
     reached = []
     for seed, theta in enumerate(_thetas(model), start=1):
-        ahead = road(model, schedule, seed)
+        ahead = road(model, schedule, seed, wait_days)
         reached.append(reach(ahead, ahead.variances(theta).__getitem__, wanted))
     ordered = sorted(float("inf") if r is None else r.distance_km for r in reached)
     low, high = (ordered[round(q * (len(ordered) - 1))] for q in (_LOW, _HIGH))

@@ -21,6 +21,7 @@ class Question:
     covariates: tuple[str, ...] = ()
     rule: Rule = "every-look"
     reversible: bool = True  # the modification can be taken off again
+    wait_days: float = 0.0  # from the log's last day until driving goes on
 
     def __post_init__(self) -> None:
         if not 0 < 100 * self.target <= LARGEST_TARGET_PERCENT:

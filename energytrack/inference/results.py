@@ -243,6 +243,7 @@ class Assessment:
     set_aside: tuple[SetAside, ...] = ()
     verdict_with_all: WithAll | None = None  # None: nothing was set aside
     reversible: bool = True  # the modification can be taken off again
+    levels_known: bool = True  # False: no two entries tell the level they left, so nothing is measured
 
     @property
     def is_open(self) -> bool:
@@ -274,6 +275,14 @@ class Design:
 
 
 @dataclass(frozen=True)
+class LongerBaseline:
+    """A longer baseline than the stated one, and the distance one switch would then take (km)."""
+
+    baseline_km: float
+    distance_km: float
+
+
+@dataclass(frozen=True)
 class Plan:
     """Designs compared for one vehicle and target; iterating over a plan gives its designs."""
 
@@ -289,6 +298,9 @@ class Plan:
     warnings: tuple[str, ...]
     reversible: bool = True  # False: only designs that never take it off
     stated: bool = False  # the noise and the driving are stated, not measured
+    levels_known: bool = True  # False: no two entries tell the level they left, so nothing is measured
+
+    with_longer_baseline: LongerBaseline | None = None  # of stated driving, where one switch is far or out of reach
 
     def __iter__(self) -> Iterator[Design]:
         return iter(self.designs)

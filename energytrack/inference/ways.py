@@ -35,10 +35,28 @@ class Way:
 
 
 def designs(model: Model, question: Question) -> tuple[Design, ...]:
-    """The best way of each kind; of those that take the modification off, none where that cannot be done."""
-    kinds = ways(dt.date.fromordinal(int(model.observed.end_day[-1])))
+    """The best way of each kind; of those that take the modification off, none where that cannot be done.
+
+    Nor those that cover the target before they would take it off: they are one switch by another name.
+    """
+    kinds = ways(dt.date.fromordinal(int(model.observed.end_day[-1] + question.wait_days)))
     fitting = [kind for kind in kinds if question.reversible or kind[0].name not in _TAKEN_OFF]
-    return tuple(_design(model, *_best(model, kind, question), question) for kind in fitting)
+    found = (_design(model, *_best(model, kind, question), question) for kind in fitting)
+    return tuple(design for design in found if not _never_off(design))
+
+
+def left_out(found: tuple[Design, ...], question: Question) -> list[str]:
+    """A note where ways that take the modification off were left out for covering the target before they would."""
+    swapping = sum(kind[0].name in _TAKEN_OFF for kind in ways(dt.date.min))
+    lacking = swapping - sum(design.name in _TAKEN_OFF for design in found)
+    if not found or not question.reversible or not lacking:
+        return []
+    which = "ways" if lacking == swapping else "some ways"
+    return [f"{which} that take it off would get there before they first do: the same as one switch, and left out"]
+
+
+def _never_off(design: Design) -> bool:
+    return design.name in _TAKEN_OFF and design.distance_km is not None and (design.swaps or 0) <= 1
 
 
 def ways(today: dt.date) -> tuple[tuple[Way, ...], ...]:

@@ -54,6 +54,26 @@ def check_odometer(odometer_km: float, vehicle: Vehicle) -> None:
         raise EntryError(f"odometer {shown} is no odometer value: type what the instrument shows")
 
 
+def check_distance(distance_km: float, vehicle: Vehicle) -> None:
+    """Refuse a distance since the last entry that cannot be. Raises EntryError."""
+    if not 0 < distance_km <= LARGEST_ODOMETER_KM:
+        shown = distance_text(distance_km, vehicle)
+        raise EntryError(f"distance {shown} since the last entry is not possible: correct it")
+
+
+def check_energy(energy: float, vehicle: Vehicle) -> None:
+    """Refuse an amount that was not bought at once. Raises EntryError."""
+    if not (energy > 0 and math.isfinite(energy)):
+        raise EntryError(f"amount {energy:g} must be more than 0: type what was bought")
+    if energy > LARGEST_AMOUNT:
+        raise EntryError(f"amount {energy:g} {vehicle.unit} is more than any vehicle holds: correct it")
+    if vehicle.capacity is not None and energy > OVERFILL * vehicle.capacity:
+        raise EntryError(
+            f"amount {energy_text(energy, vehicle)} is more than {OVERFILL:g} times the capacity of "
+            f"{vehicle.name}, {energy_text(vehicle.capacity, vehicle)}: correct it, or log each filling by itself"
+        )
+
+
 def check_known(low: float, high: float) -> None:
     """A known change lies on one side of zero, from its low to its high end, in percent. Raises EntryError."""
     shown = f"a known change of {low:g} to {high:g} %"
@@ -70,10 +90,9 @@ def check_values(entry: Entry, vehicle: Vehicle, today: dt.date) -> None:
     check_date(entry.date, today)
     if entry.odometer_km is not None:
         check_odometer(entry.odometer_km, vehicle)
-    if entry.distance_km is not None and not 0 < entry.distance_km <= LARGEST_ODOMETER_KM:
-        shown = distance_text(entry.distance_km, vehicle)
-        raise EntryError(f"distance {shown} since the last entry is not possible: correct it")
-    _check_energy(entry, vehicle)
+    if entry.distance_km is not None:
+        check_distance(entry.distance_km, vehicle)
+    check_energy(entry.energy, vehicle)
     if entry.level_percent is not None and not 0 <= entry.level_percent <= 100:
         raise EntryError(f"level {entry.level_percent:g} is outside 0 to 100 %: type the reading after the entry")
     if entry.temperature_c is not None and not COLDEST_C <= entry.temperature_c <= HOTTEST_C:
@@ -141,18 +160,6 @@ def check_measure(entry: Entry, last: Entry | None) -> None:
     if (entry.odometer_km is None) != (last.odometer_km is None):
         needed = "--distance" if last.odometer_km is None else "an odometer value"
         raise EntryError(f"the entries of {entry.vehicle} so far have {needed}: type that for this one too")
-
-
-def _check_energy(entry: Entry, vehicle: Vehicle) -> None:
-    if not (entry.energy > 0 and math.isfinite(entry.energy)):
-        raise EntryError(f"amount {entry.energy:g} must be more than 0: type what was bought")
-    if entry.energy > LARGEST_AMOUNT:
-        raise EntryError(f"amount {entry.energy:g} {vehicle.unit} is more than any vehicle holds: correct it")
-    if vehicle.capacity is not None and entry.energy > OVERFILL * vehicle.capacity:
-        raise EntryError(
-            f"amount {energy_text(entry.energy, vehicle)} is more than {OVERFILL:g} times the capacity of "
-            f"{vehicle.name}, {energy_text(vehicle.capacity, vehicle)}: correct it, or log each filling by itself"
-        )
 
 
 def _check_jump(distance_km: float, start: dt.date, end: dt.date, vehicle: Vehicle) -> None:

@@ -68,9 +68,12 @@ def plan_import(
         held = standing(name) if new else []
         unfit = misfits(new, held, reading.file, again=equal) + jumps(new, held, reading.file)
         problems = bad + unordered + unfit
-        refused |= {problem.line: name for problem in problems if problem.line is not None}
         unfitting = {problem.line for problem in unfit}
-        plan.new += [row for row in new if row[0] not in unfitting]
+        new = [row for row in new if row[0] not in unfitting]
+        rejected = {problem.line for problem in problems}
+        lost = _lost([row for row in rows if row[0] in rejected], [*held, *(entry for _, entry in new + known)])
+        refused |= dict.fromkeys(lost, name)
+        plan.new += new
         plan.known += known
         plan.problems += problems
     plan.problems.sort(key=lambda problem: problem.line or 0)
@@ -134,6 +137,12 @@ def fingerprint(entry: Entry) -> tuple[object, ...]:
     """What makes an entry this entry, as the store counts it: the moment and the amounts, no notes."""
     energy = None if math.isnan(entry.energy) else entry.energy
     return (entry.vehicle, entry.date, entry.odometer_km, entry.distance_km, energy)
+
+
+def _lost(rejected: Iterable[Row], kept: Iterable[Entry]) -> list[int]:
+    """Lines of rejected rows whose moment is nowhere else: a second row at one odometer value leaves no gap."""
+    moments = {(entry.date, entry.odometer_km) for entry in kept if entry.odometer_km is not None}
+    return [line for line, entry in rejected if (entry.date, entry.odometer_km) not in moments]
 
 
 def _mark_missed(

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import math
 import re
+from collections.abc import Iterable
 from contextlib import suppress
 from types import MappingProxyType
 from typing import NamedTuple
@@ -94,6 +95,11 @@ def parse_temperature(text: str) -> float:
 def celsius(fahrenheit: float) -> float:
     """Degrees Celsius of degrees Fahrenheit."""
     return (fahrenheit - 32.0) / 1.8
+
+
+def in_any_case(text: str, words: Iterable[str]) -> str:
+    """The word that `text` is but for capitals: `kwh` is `kWh`; `text` itself where it is none of them."""
+    return next((word for word in words if word.lower() == text.strip().lower()), text)
 
 
 def base_unit(unit: str) -> str:

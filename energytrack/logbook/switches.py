@@ -5,7 +5,7 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Iterable, Sequence
 from dataclasses import replace
-from functools import cmp_to_key
+from itertools import groupby
 from typing import NamedTuple
 
 from energytrack.errors import EntryError
@@ -26,6 +26,9 @@ class Switch(NamedTuple):  # a frozen dataclass takes five times as long to defi
     reversible: bool = True
 
 
+_Logged = tuple[int, Switch]  # the place in the order of logging
+
+
 def pair(vehicle: str, switches: Iterable[Switch]) -> list[Modification]:
     """The periods in which each part was on. Fitting at another level ends the earlier level there."""
     by_name: dict[str, list[Switch]] = {}
@@ -35,8 +38,22 @@ def pair(vehicle: str, switches: Iterable[Switch]) -> list[Modification]:
 
 
 def in_order(switches: Iterable[Switch]) -> list[Switch]:
-    """By odometer where both have one, else by date where both have one, else as logged."""
-    return sorted(switches, key=cmp_to_key(_compare))
+    """The one order that what was logged allows: odometer values first, then dates, then the order of logging.
+
+    Those with an odometer value stand in its order; at one value by date, or as logged where one has no date. Those
+    with a date alone stand among them: after all of an earlier day, before all of a later one, and between these (the
+    same day, or no day known) after all that were logged before. Among themselves they stand by date, then as logged.
+    """
+    logged = list(enumerate(switches))
+    measured = _by_odometer([each for each in logged if each[1].km is not None])
+    dated = sorted(((number, one) for number, one in logged if one.km is None and one.date), key=_day)
+    nowhere = [(number, one) for number, one in logged if one.km is None and not one.date]
+    placed: list[tuple[int, int, Switch]] = [(place, -1, one) for place, (_, one) in enumerate(measured)]
+    least = -1
+    for rank, each in enumerate(dated):
+        least = max(least, _last_before(each, measured))
+        placed.append((least, rank, each[1]))
+    return [one for *_, one in sorted(placed, key=lambda each: each[:2])] + [one for _, one in nowhere]
 
 
 def check_switch(vehicle: str, switches: Sequence[Switch], new: Switch) -> None:
@@ -65,12 +82,28 @@ def place(switch: Switch) -> str:
     return ", ".join(parts)
 
 
-def _compare(one: Switch, other: Switch) -> int:
-    if one.km is not None and other.km is not None and one.km != other.km:
-        return -1 if one.km < other.km else 1
-    if one.date is not None and other.date is not None and one.date != other.date:
-        return -1 if one.date < other.date else 1
-    return 0
+def _day(logged: _Logged) -> dt.date:
+    return logged[1].date or dt.date.min
+
+
+def _by_odometer(measured: list[_Logged]) -> list[_Logged]:
+    ordered: list[_Logged] = []
+    for _, same in groupby(sorted(measured, key=lambda each: each[1].km or 0.0), key=lambda each: each[1].km):
+        at_one_value = list(same)
+        ordered += sorted(at_one_value, key=_day) if all(one.date for _, one in at_one_value) else at_one_value
+    return ordered
+
+
+def _last_before(logged: _Logged, measured: Sequence[_Logged]) -> int:
+    """Place of the last of those with an odometer value that comes before one with a date alone; -1 for none."""
+    number, own = logged[0], _day(logged)
+    last = -1
+    for place, (other, switch) in enumerate(measured):
+        if switch.date is not None and switch.date > own:
+            break
+        if other < number or (switch.date is not None and switch.date < own):
+            last = place
+    return last
 
 
 def _periods(vehicle: str, ordered: Iterable[Switch]) -> list[Modification]:

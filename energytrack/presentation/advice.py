@@ -23,7 +23,7 @@ def next_steps(a: Assessment, unit: str) -> list[str]:
         "no-baseline": _build_baseline,
         "closed-unclear": _sharper_question,
     }[a.verdict](a, unit)
-    known = known_step(a)
+    known = known_step(a) if a.levels_known else None
     return steps[:MOST] if known is None else [*steps[: MOST - 1], known]
 
 
@@ -68,6 +68,8 @@ def _bring_within_reach(a: Assessment, unit: str) -> list[str]:
 
 
 def _build_baseline(a: Assessment, unit: str) -> list[str]:
+    if not a.levels_known:
+        return ["Measuring starts at the first entry whose level is known: from there, drive as usual without it."]
     if a.distance_modified_km > 0 and not a.reversible:
         return ["It cannot be taken off again, and too little was logged before: this log cannot say what it does."]
     if a.distance_modified_km > 0:

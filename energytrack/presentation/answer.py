@@ -10,6 +10,8 @@ from energytrack.presentation.set_aside import follow_up
 from energytrack.presentation.text import join
 
 USUAL_BASELINE_KM = 3200.0  # four working weeks of a 160 km commute; common practice, no source
+NO_LEVELS = "nothing can be measured, as no two entries tell how full the tank or battery was after them"
+TELL_LEVELS = f"Log the level with each entry ({join('--level 80')}), or fill or charge to full (no --partial)."
 
 
 def sentence(a: Assessment, unit: str = "km") -> str:
@@ -183,6 +185,8 @@ def _best_remedy(a: Assessment) -> Remedy | None:
 
 def _no_baseline(a: Assessment, unit: str) -> str:
     name = named(a)
+    if not a.levels_known:
+        return f"No baseline: {NO_LEVELS}. {TELL_LEVELS}"
     have = f"only {figures.driven(a.distance_baseline_km, unit)} in {count(a.segments_baseline, 'segment')}"
     have = have if a.segments_baseline else "nothing measured"
     return (

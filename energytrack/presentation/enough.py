@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from math import isfinite
 
 from rich.text import Text
 
 from energytrack.inference.results import Assessment
 from energytrack.presentation import advice, bar, conditions, figures, picture, scatter, set_aside, several
-from energytrack.presentation.answer import count, sentence, so_far
+from energytrack.presentation.answer import count, named, sentence, so_far
 from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, labelled, wrap
 
@@ -27,13 +28,24 @@ def render(
     """Lines of at most `width` cells; distances in `unit` (km or mi); `draw` adds the picture of all looks."""
     lines: list[Text] = []
     if title:
-        heading = f"{plain_text(a.vehicle)}: {plain_text(a.modification)}"
+        heading = f"{plain_text(a.vehicle)}: {named(a)}"
         lines += [Text(line, style="underline") for line in wrap(heading, width)]
     lines += [Text(line, style="bold") for line in wrap(sentence(a, unit), width)]
     for block in _blocks(a, unit, width, draw):
         if block:
             lines += [Text(), *map(Text, block)]
     return lines
+
+
+def repeats(a: Assessment, shown: Iterable[Assessment]) -> bool:
+    """Whether one of those shown is this answer already: for parts never apart there is one answer, for all of them."""
+    return any(
+        other.modification in a.never_apart
+        and a.modification in other.never_apart
+        and (other.vehicle, other.target_percent, other.known_percent) == (a.vehicle, a.target_percent, a.known_percent)
+        and (other.verdict, other.response) == (a.verdict, a.response)
+        for other in shown
+    )
 
 
 def _blocks(a: Assessment, unit: str, width: int, draw: bool) -> list[list[str]]:
@@ -102,5 +114,5 @@ def _shift(a: Assessment) -> list[Row]:
     known = [f"{figures.percent(value)} {when}" for value, when in limits if value is not None]
     if known:
         power = figures.target(100 * a.power)
-        rows.append(("smallest it can show", f"{', '.join(known)} ({power} chance to show it)"))
+        rows.append(("resolvable shift", f"from {', '.join(known)} ({power} chance to show it)"))
     return rows

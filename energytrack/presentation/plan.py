@@ -14,7 +14,7 @@ from rich.text import Text
 from energytrack.inference.results import Design, Plan
 from energytrack.logbook.records import Modification
 from energytrack.presentation import figures, ways
-from energytrack.presentation.answer import USUAL_BASELINE_KM, count
+from energytrack.presentation.answer import NO_LEVELS, TELL_LEVELS, USUAL_BASELINE_KM, count
 from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, join, labelled, wrap
 
@@ -37,6 +37,8 @@ def render(
 def sentence(p: Plan, unit: str = "km") -> str:
     """Which way is shorter, and by how much; distances in `unit` (km or mi)."""
     target = figures.target(p.target_percent)
+    if not p.levels_known:
+        return f"No plan yet: {NO_LEVELS}. {TELL_LEVELS}"
     if not p.designs:
         missing = max(USUAL_BASELINE_KM - p.distance_baseline_km, USUAL_BASELINE_KM / 4)
         segments = count(p.segments_baseline, "segment")
@@ -154,9 +156,9 @@ def _range(d: Design, unit: str) -> str:
 
 
 def _resolvable(p: Plan, unit: str) -> Table:
-    """The smallest shift each way can show after so much further driving."""
+    """The smallest shift each way can resolve after so much further driving."""
     distances = list(p.designs[0].resolvable_percent)
-    table = _table(["smallest shift within", *(figures.distance(float(km), unit) for km in distances)])
+    table = _table(["resolvable shift within", *(figures.distance(float(km), unit) for km in distances)])
     for d in p.designs:
         shifts = [d.resolvable_percent.get(km) for km in distances]
         table.add_row(ways.name(d), *("-" if shift is None else figures.percent(shift) for shift in shifts))
@@ -170,6 +172,19 @@ def _costs(p: Plan) -> Table:
         source, share = ways.cost(d, p.unit)
         table.add_row(ways.name(d), share, source)
     return table
+
+
+def _about_the_baseline(p: Plan) -> list[str]:
+    """What a longer baseline would do for one switch that is far or out of reach; stated plans are in km."""
+    longer, one = p.with_longer_baseline, _one_switch(p)
+    if longer is None:
+        never = "A longer baseline alone does not bring one switch within reach: such scatter is too large for it."
+        return [never] if p.stated and one is None else []
+    before, so_far, then = (
+        figures.distance(km, "km") for km in (longer.baseline_km, p.distance_baseline_km, longer.distance_km)
+    )
+    then += f" ({join(f'--baseline {longer.baseline_km:.0f}')})"
+    return [f"A longer baseline helps: after {before} without it, not {so_far}, one switch takes about {then}."]
 
 
 def _table(headings: Sequence[str], left: Sequence[int] = (0,)) -> Table:
@@ -194,7 +209,7 @@ def _next_steps(p: Plan) -> list[str]:
         return ["Record the outside temperature with each entry: weather is the largest thing to tell apart."]
     best = min((d for d in (one, other) if d is not None), key=lambda d: d.distance_km or 0.0, default=None)
     advice = ways.remedy(best or p.designs[0], p.reversible)
-    steps = [] if advice is None else [advice]
+    steps = [*_about_the_baseline(p), *([] if advice is None else [advice])]
     if best is None:
         larger = min(2 * p.target_percent, _LARGEST_TARGET)
         return [*steps, "Ask for a larger shift: " + join(f"energytrack plan --target {larger:g}")]

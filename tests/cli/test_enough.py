@@ -96,6 +96,24 @@ def test_one_answer_for_each_modification_of_each_vehicle(logbook: Path) -> None
     assert "\x1b" not in done.stdout
 
 
+def test_parts_fitted_together_get_their_joint_answer_once(tmp_path: Path) -> None:
+    book = open_logbook(tmp_path / "my.logbook", create=True)
+    assert isinstance(book, Store)
+    book.add_vehicle(Vehicle("van", "diesel", "L", 70.0))
+    drive(book, "van", 50, -0.12, 0.3, seed=1)
+    for part in ("skirts", "fairing", "mirrors"):
+        book.fit("van", part, dt.date(2025, 6, 5), FITTED_KM, 3.0 if part != "mirrors" else 8.0)
+    said = " ".join(run(book.path, "enough", "--target", "3").stdout.split())
+    assert said.startswith("Yes: skirts, fairing and mirrors together lowered consumption by")
+    assert said.count("lowered consumption") == said.count("were never apart in this log") == 1
+    assert "drive some full tanks with only one of them fitted" in said
+    other_targets = run(book.path, "enough").stdout  # another question has an answer of its own
+    assert other_targets.count("were never apart") == 2
+    assert "van: skirts, fairing and mirrors together" in other_targets
+    assert [a["modification"] for a in answers(run(book.path, "enough", "--json"))] == ["skirts", "fairing", "mirrors"]
+    book.close()
+
+
 def test_one_question_is_answered_without_a_heading_and_in_the_vehicles_own_miles(logbook: Path) -> None:
     done = run(logbook, "enough", "grille blanking")
     assert done.stdout.split(":")[0] in {"Not yet", "Out of reach"}

@@ -304,3 +304,18 @@ def test_logging_loads_no_heavy_library(run: Terminal, arguments: list[str]) -> 
     done = subprocess.run(command, env=run.environment, capture_output=True, text=True, timeout=60, check=False)
     assert (done.returncode, done.stderr) == (0, "")
     assert done.stdout.splitlines()[-1] == "heavy: []"
+
+
+def test_units_are_taken_in_any_case_and_kept_as_they_are_written(run: Terminal) -> None:
+    units = ("--unit", "KG", "--distance-unit", "KM", "--display", "KM/KG")
+    run.done("vehicle", "add", "tractor", "--carrier", "cng", *units)
+    run.done("fillup", "100", "12", "--vehicle", "tractor", "--date", "2026-05-03", "--unit", "LB")
+    tractor = json.loads(run.done("vehicle", "list", "--json"))["vehicles"][1]
+    assert (tractor["unit"], tractor["typed_unit"], tractor["distance_unit"]) == ("kg", "kg", "km")
+    assert tractor["display"] == "km/kg"
+    kept = json.loads(run.done("entries", "--vehicle", "tractor", "--json"))["entries"][0]
+    assert kept["energy"] == pytest.approx(12 * 0.45359237)  # the pound is exact (NIST SP 811)
+    units = ("--unit", "l", "--odometer-unit", "Km")
+    run.done("fillup", "49500", "40", "--date", "2026-05-17", *units, "--vehicle", "van")
+    refusal = run.refused("fillup", "49900", "40", "--date", "2026-05-20", "--unit", "kwh", "--vehicle", "van")
+    assert "not measured in 'kWh'" in refusal

@@ -89,3 +89,11 @@ def test_a_bad_weather_file_changes_nothing(logbook: Path, tmp_path: Path) -> No
     assert "weather.csv:3: " in refusal
     assert refusal.count("\n") == 1
     assert "1 day added" in run(logbook, "weather", path, "--skip-bad")
+
+
+def test_what_would_fit_is_listed_whole_within_80_columns(logbook: Path) -> None:
+    every = json.loads(run(logbook, "entries", "--last", 40, "--json"))["entries"]
+    (odd,) = [entry for entry in every if entry["slips"]]
+    listed = run(logbook, "entries", "--last", 40)
+    assert max(map(len, listed.splitlines())) <= 80
+    assert odd["slips"][0] in " ".join(listed.split())

@@ -76,3 +76,13 @@ def test_refusals_are_one_line_and_status_1(words: tuple[str, ...], said: str, t
 
 def test_a_vehicle_of_no_logbook_is_wrong_usage(tmp_path: Path) -> None:
     assert run("plan", *STATED, "--vehicle", "van", folder=tmp_path).returncode == 2
+
+
+def test_dates_of_a_plan_from_a_log_count_from_the_day_given(tmp_path: Path) -> None:
+    book = str(Path(__file__).parents[2] / "demo_logbook")
+    done = run("plan", "--vehicle", "van", "--date", "2030-05-02", "--json", folder=tmp_path, logbook=book)
+    (found,) = json.loads(done.stdout)["plans"]
+    best = next(design for design in found["designs"] if design["name"] == "best-date")
+    assert "2030-06-01" <= best["start"] <= "2031-05-01"
+    refused = run("plan", "--vehicle", "van", "--date", "soon", folder=tmp_path, logbook=book)
+    assert (refused.returncode, "'soon'" in refused.stderr) == (1, True)

@@ -72,6 +72,43 @@ def test_only_the_amount_is_asked_where_the_odometer_was_typed(logbook: Path) ->
     assert entries(logbook) == [(48230.0, 41.32)]
 
 
+def test_an_answer_out_of_range_is_refused_at_once_and_asked_again(logbook: Path) -> None:
+    start(logbook, "fillup", "48230", "41.32", "--date", "2026-05-03").expect(pexpect.EOF)
+    asked = start(logbook, "fillup", "--date", "2026-05-10")
+    for odometer, reason in (
+        ("-5", "is no odometer value"),
+        ("47000", "odometer goes back"),
+        ("489000", "a jump no vehicle drives"),
+    ):
+        asked.expect("Odometer in km, last 48,230 km on 2026-05-03: ")
+        asked.sendline(odometer)
+        asked.expect(reason)
+    asked.expect("Odometer in km")
+    asked.sendline("48900")
+    for amount, reason in (("0", "must be more than 0"), ("400", "more than 1.3 times the capacity of van, 70.00 L")):
+        asked.expect("Amount in L: ")
+        asked.sendline(amount)
+        asked.expect(reason)
+    asked.expect("Amount in L: ")
+    asked.sendline("40.1")
+    asked.expect(pexpect.EOF)
+    assert entries(logbook) == [(48230.0, 41.32), (48900.0, 40.1)]
+
+
+def test_a_distance_out_of_range_is_asked_again(logbook: Path) -> None:
+    start(logbook, "fillup", "40", "--distance", "500", "--date", "2026-05-03").expect(pexpect.EOF)
+    asked = start(logbook, "fillup")
+    asked.expect("Distance since the last entry, 2026-05-03, in km: ")
+    asked.sendline("-500")
+    asked.expect("is not possible")
+    asked.expect("Distance since the last entry, 2026-05-03, in km: ")
+    asked.sendline("510")
+    asked.expect("Amount in L: ")
+    asked.sendline("40.1")
+    asked.expect(pexpect.EOF)
+    assert [energy for _, energy in entries(logbook)] == [40.0, 40.1]
+
+
 @pytest.mark.parametrize(("key", "status"), [("\x04", 1), ("\x03", 130)])
 def test_leaving_the_questions_writes_nothing(logbook: Path, key: str, status: int) -> None:
     """End of input and interrupt; 128 + SIGINT is the shell's convention."""

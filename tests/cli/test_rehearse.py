@@ -55,7 +55,7 @@ def test_json_is_the_same_for_a_seed_and_has_what_was_asked(logbook: Path):
 
 
 def test_every_vehicle_is_answered_and_refusals_named(logbook: Path):
-    done = run(logbook, "rehearse", "--runs", "2", "--target", "10")
+    done = run(logbook, "rehearse", "-n", "2", "--target", "10")
     assert done.returncode == 1
     assert done.stderr.startswith("energytrack: new: too short to rehearse")
     assert done.stderr.count("\n") == 1

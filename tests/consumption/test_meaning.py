@@ -72,6 +72,23 @@ def test_full_tank_is_compared_with_the_recent_record(book):
     ]
 
 
+@pytest.mark.parametrize(
+    ("energy", "flagged"), [(40.0, False), (9.9, True), (10.1, False), (160.1, True), (159.9, False)]
+)
+def test_without_a_record_a_consumption_four_times_off_the_usual_is_flagged(tmp_path, energy, flagged):
+    """500 km; 8 L/100 km of diesel is usual for cars and vans (common practice, no source): 2 to 32 pass."""
+    store = open_logbook(tmp_path / "my.logbook", create=True)
+    store.add_vehicle(replace(VAN, capacity=None))
+    store.add_entry(fill(0, 1000, 40), {})
+    said = logged(store, fill(3, 1500, energy), replace(VAN, capacity=None))
+    flag = "far from what is usual for diesel (about 8.00 L/100 km): kept; check amount, odometer and their units"
+    assert (flag in said) == flagged
+
+
+def test_with_a_record_its_own_figures_count(book):
+    assert not any("usual for diesel" in line for line in logged(book, fill(30, 5000, 2.0)))
+
+
 def test_entry_without_a_number_is_found_by_what_it_says(book):
     entry = fill(30, 5000, 40.3)
     book.add_entry(entry, {})

@@ -88,6 +88,21 @@ def test_unknown_start_level_is_void():
     assert len(log.segments) == 1
 
 
+@pytest.mark.parametrize(
+    ("entries", "lacks"),
+    [
+        ([fill(n, 1000 + 200 * n, 30, full=False) for n in range(6)], True),
+        ([fill(0, 1000, 30), fill(1, 1200, 30, full=False)], True),
+        ([fill(0, 1000, 30), fill(1, 1200, 30, full=False), fill(2, 1400, 30)], False),
+        ([fill(0, 1000, 30), fill(1, 1200, 30, missed=True)], False),  # two are known, yet what was used is not
+        ([fill(0, 1000, 30)], False),  # nothing driven yet
+        ([], False),
+    ],
+)
+def test_whether_levels_are_what_is_lacking(entries, lacks):
+    assert close_segments(entries).lacks_levels == lacks
+
+
 def test_open_driving_after_a_missed_entry_is_void_and_not_open():
     log = close_segments([fill(0, 1000, 40), fill(3, 1500, 20, full=False, missed=True)])
     assert not log.open_legs

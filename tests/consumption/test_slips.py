@@ -6,6 +6,7 @@ Conversion factors: 1.609344 km in a mile and 3.785411784 L in a US gallon are e
 from __future__ import annotations
 
 import re
+from collections.abc import Callable
 from dataclasses import replace
 
 import pytest
@@ -95,10 +96,22 @@ def test_a_partial_fill_not_marked_is_named_from_either_side(place: int) -> None
     assert "partial fill not marked? mark the entry at 33,000 km as partial" in found(entries, place)
 
 
-def test_a_missing_entry() -> None:
-    entries = by_odometer()
-    entries = [*entries[:6], *(replace(e, odometer_km=e.odometer_km + 500) for e in entries[6:])]
-    assert "an entry missing? say that entries are missing before the one at 33,500 km" in found(entries, 6)
+@pytest.mark.parametrize(("missing", "said"), [(1, "an entry"), (2, "two entries"), (3, "three entries")])
+@pytest.mark.parametrize("log", [by_odometer, by_distance])
+def test_missing_entries_in_a_row(missing: int, said: str, log: Callable[[], list[Entry]]) -> None:
+    entries = log()
+    entries = [*entries[:6], replace(entries[6], distance_km=500.0 * (missing + 1)), *entries[7:]]
+    where = "of 2026-01-19"
+    if log is by_odometer:
+        later = [replace(e, odometer_km=(e.odometer_km or 0.0) + 500 * missing) for e in log()[6:]]
+        entries, where = [*log()[:6], *later], f"at {33_000 + 500 * missing:,} km"
+    assert f"{said} missing? say that entries are missing before the one {where}" in found(entries, 6)
+
+
+@pytest.mark.parametrize(("missing", "amount"), [(4, 40.0), (2, 13.0)])
+def test_many_missing_entries_and_small_amounts_are_not_called_that(missing: int, amount: float) -> None:
+    entries = changed(by_distance(), 6, distance_km=500.0 * (missing + 1), energy=amount)
+    assert not any("missing" in line and "digit" not in line for line in found(entries, 6))
 
 
 def test_what_fits_nothing_is_not_named() -> None:

@@ -305,3 +305,14 @@ def test_tyres_of_another_circumference_do_not_fake_a_shift() -> None:
     tyres = pd.DataFrame({"date": [date], "odometer_km": [fitted], "what": ["tyres"], "odometer_factor": [1.02]})
     difference = asked(log).shift_percent - asked(log, events=tyres).shift_percent
     assert difference == pytest.approx(2.0, abs=0.1)
+
+
+def test_charges_whose_level_nobody_knows_measure_nothing() -> None:
+    charges = pd.DataFrame({"odometer_km": 200.0 * np.arange(30), "energy": 35.0, "full": "no", "kind": "charge"})
+    charges["date"] = pd.date_range("2026-01-01", periods=30).date
+    fitted = pd.DataFrame({"name": ["skirts"], "fitted_km": [3000.0]})
+    answer = et.assess(charges, fitted, "skirts", unit="kWh", capacity=60.0)
+    assert (answer.verdict, answer.levels_known) == ("no-baseline", False)
+    assert not et.plan(charges, unit="kWh").levels_known
+    read = charges.assign(level_percent=80.0)
+    assert et.assess(read, fitted, "skirts", unit="kWh", capacity=60.0).levels_known

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 from dataclasses import replace
 
 import numpy as np
@@ -114,3 +115,25 @@ def test_too_short_a_log_gives_no_designs() -> None:
 def test_impossible_target_is_refused() -> None:
     with pytest.raises(InferenceError, match="target"):
         et.plan(drawn(STEADY_COMMUTE).entries, 0.0)
+
+
+def test_an_old_log_plans_from_today_with_what_may_have_drifted_since() -> None:
+    entries = baseline(drawn(DRIFTING))
+    last = dt.date.fromisoformat(str(entries["date"].max())[:10])
+    then, now = et.plan(entries, 10.0, today=last), et.plan(entries, 10.0, today=last + dt.timedelta(days=2 * 365))
+    assert et.plan(entries, 10.0) == then
+    assert et.plan(entries, 10.0, today=last - dt.timedelta(days=9)) == then
+    best = next(design for design in now if design.name == "best-date")
+    assert dt.date.fromisoformat(best.start or "") > last + dt.timedelta(days=2 * 365)
+    assert now.warnings[0].startswith(f"the log ended on {last}: the plan counts from {last + dt.timedelta(days=730)}")
+    one = [next(design for design in each if design.name == "one-switch") for each in (then, now)]
+    soonest, aged = (design.resolvable_percent["10000"] or np.inf for design in one)
+    assert aged > 1.1 * soonest  # the baseline has drifted away
+    assert (one[1].days or 0.0) < 365  # counted from today
+
+
+def test_the_days_since_the_last_entry_are_no_gap() -> None:
+    entries = baseline(drawn(STEADY_COMMUTE))
+    last = dt.date.fromisoformat(str(entries["date"].max())[:10])
+    found = et.plan(entries, 3.0, today=last + dt.timedelta(days=1))
+    assert not any("the log ended" in warning for warning in found.warnings)

@@ -104,6 +104,16 @@ def test_on_off_on_has_three_phases_and_three_swaps() -> None:
     assert (design.distance_km or 0.0) > 550 * sum(design.phases)
 
 
+@pytest.mark.parametrize("target", [3.0, 20.0, 50.0])
+def test_ways_that_swap_do_so_before_the_target_is_covered(target: float) -> None:
+    found = et.plan_from(NO_DRIFT, target)
+    swapping = [each for each in found if each.name in ("on-off-on", "alternate", "alternate-weekly")]
+    assert all((each.swaps or 0) > 1 for each in swapping)
+    said = [warning for warning in found.warnings if "the same as one switch, and left out" in warning]
+    assert len(said) == (len(swapping) < 5)  # on-off-on, every 1, 2 and 4 fill-ups, every week
+    assert (target > 3.0) == (not swapping)
+
+
 def test_best_date_is_a_first_of_a_month_within_a_year() -> None:
     start = dt.date.fromisoformat(the(et.plan_from(NO_DRIFT, 3.0), "best-date").start or "")
     assert start in months_after(SPRING)
@@ -153,3 +163,16 @@ def test_what_a_log_tells_of_trips_alone_is_two_a_fill_up() -> None:
 def test_impossible_figures_are_refused(change: dict[str, float], says: str) -> None:
     with pytest.raises(InferenceError, match=says):
         replace(Stated(5.0, 1.0), **change)  # type: ignore[arg-type]
+
+
+def test_a_longer_baseline_is_offered_where_it_brings_one_switch_within_reach() -> None:
+    noisy = Stated(5.0, drift=1.0, date=SPRING)
+    short = et.plan_from(noisy, 5.0)
+    assert the(short, "one-switch").distance_km is None
+    offered = short.with_longer_baseline
+    assert offered is not None
+    then = the(et.plan_from(replace(noisy, baseline_km=offered.baseline_km), 5.0), "one-switch").distance_km
+    assert then == pytest.approx(offered.distance_km)
+    assert short.to_dict()["with_longer_baseline"]["baseline_km"] == offered.baseline_km
+    assert et.plan_from(noisy, 3.0).with_longer_baseline is None  # however long it is
+    assert et.plan_from(NO_DRIFT, 5.0).with_longer_baseline is None  # near already

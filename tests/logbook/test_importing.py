@@ -136,6 +136,22 @@ def test_skip_bad_keeps_the_good_rows_and_marks_the_gap(tmp_path: Path, logbook:
     assert [entry.missed for entry in _entries(logbook)] == [False, True]
 
 
+def test_a_rejected_duplicate_leaves_no_gap(tmp_path: Path, logbook: Path) -> None:
+    rows = ["2026-05-01,1000,40", "2026-05-03,1500,41", "2026-05-03,1500,41", "2026-05-05,2000,39"]
+    outcome = _import(logbook, _file(tmp_path, HEADER, *rows), skip_bad=tmp_path / "rejected.csv")
+    assert [problem.line for problem in outcome.rejected] == [4]
+    assert [entry.missed for entry in _entries(logbook)] == [False] * 3
+    assert outcome.notes == []
+
+
+def test_another_amount_where_the_logbook_has_an_entry_leaves_no_gap(tmp_path: Path, logbook: Path) -> None:
+    _import(logbook, _file(tmp_path, HEADER, "2026-05-01,1000,40", "2026-05-03,1500,41"))
+    longer = _file(tmp_path, HEADER, "2026-05-01,1000,40", "2026-05-03,1500,42", "2026-05-05,2000,39")
+    outcome = _import(logbook, longer, skip_bad=tmp_path / "rejected.csv")
+    assert [problem.line for problem in outcome.rejected] == [3]
+    assert [entry.missed for entry in _entries(logbook)] == [False] * 3
+
+
 def test_the_file_of_rejected_rows_is_never_overwritten(tmp_path: Path, logbook: Path) -> None:
     path = _file(tmp_path, HEADER, "2026-05-01,1000,40", "2026-05-02,1500,x")
     taken = _file(tmp_path, "mine", name="rejected.csv")

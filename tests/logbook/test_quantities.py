@@ -20,6 +20,7 @@ from energytrack.logbook.quantities import (
     distance_text,
     energy_text,
     from_base,
+    in_any_case,
     parse_number,
     parse_temperature,
     rounded,
@@ -151,3 +152,13 @@ def test_significant_digits(value: float, shown: str) -> None:
 def test_an_unknown_unit_lists_those_known() -> None:
     with pytest.raises(EntryError, match="unknown unit 'gallon': use one of L, gal-us"):
         to_base(1.0, "gallon")
+
+
+@pytest.mark.parametrize("unit", [*ENERGY, *DISTANCE, *CONSUMPTION])
+def test_units_are_known_in_any_case(unit: str) -> None:
+    words = (*ENERGY, *DISTANCE, *CONSUMPTION)
+    assert {in_any_case(text, words) for text in (unit.lower(), unit.upper(), f" {unit} ")} == {unit}
+
+
+def test_what_is_no_unit_stays_as_typed() -> None:
+    assert in_any_case("Bushel", ENERGY) == "Bushel"

@@ -10,7 +10,7 @@ from hypothesis import strategies as st
 
 from energytrack.errors import EntryError
 from energytrack.logbook.records import Modification
-from energytrack.logbook.switches import Switch, check_switch, pair
+from energytrack.logbook.switches import Switch, check_switch, in_order, pair
 
 DAY = dt.date(2026, 5, 3)
 
@@ -48,6 +48,54 @@ def test_parts_are_kept_apart() -> None:
     other = Switch("roof box", True, None, 150)
     names = [(each.name, each.removed_km) for each in pair("van", [on(100), other, off(200)])]
     assert names == [("skirts", 200), ("roof box", None)]
+
+
+def day(number: int) -> dt.date:
+    return DAY + dt.timedelta(days=number)
+
+
+def test_dates_stand_among_odometer_values() -> None:
+    """By date where both have one; without a date, as logged."""
+    one, three = on(100, date=day(1)), off(300, day(5))
+    between = off(None, day(3))
+    assert in_order([three, between, one]) == [one, between, three]
+    undated = off(200)
+    assert in_order([one, undated, on(None, date=day(3)), three]) == [one, undated, on(None, date=day(3)), three]
+    assert in_order([one, off(None, day(3)), on(200), three]) == [one, off(None, day(3)), on(200), three]
+
+
+def test_on_one_day_and_at_one_value_the_order_of_logging_counts() -> None:
+    assert in_order([on(100, date=DAY), off(None, DAY)]) == [on(100, date=DAY), off(None, DAY)]
+    assert in_order([off(None, DAY), on(100, date=DAY)]) == [off(None, DAY), on(100, date=DAY)]
+    assert in_order([off(100, DAY), on(100)]) == [off(100, DAY), on(100)]
+    assert in_order([on(100, date=day(2)), off(100, DAY)]) == [off(100, DAY), on(100, date=day(2))]
+
+
+@given(
+    st.lists(st.tuples(st.one_of(st.none(), st.integers(1, 6)), st.one_of(st.none(), st.integers(1, 6))), max_size=7),
+    st.randoms(use_true_random=False),
+)
+def test_odometer_values_rise_and_so_do_dates_alone(places: list[tuple[int | None, int | None]], random) -> None:
+    """Whatever lacks a value: the order holds for those that have one, and keeps its own under sorting again."""
+    switches = [
+        Switch("skirts", True, day(date or at or 1) if date or not at else None, at and 100.0 * at)
+        for at, date in places
+    ]
+    random.shuffle(switches)
+    found = in_order(switches)
+    assert sorted(map(id, found)) == sorted(map(id, switches))
+    values = [each.km for each in found if each.km is not None]
+    assert values == sorted(values)
+    alone = [each.date for each in found if each.km is None and each.date is not None]
+    assert alone == sorted(alone)
+    assert in_order(found) == found
+
+
+@given(st.permutations(range(6)))
+def test_any_order_of_logging_gives_the_same_where_every_place_is_known(order: list[int]) -> None:
+    """Odometer values and dates that agree, some with a date alone on a day of its own."""
+    truth = [Switch("skirts", n % 2 == 0, day(n), None if n in (1, 4) else 100.0 * n) for n in range(6)]
+    assert in_order([truth[n] for n in order]) == truth
 
 
 @pytest.mark.parametrize(

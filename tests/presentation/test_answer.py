@@ -123,3 +123,11 @@ def test_no_baseline_says_what_is_missing_and_how_far_to_drive() -> None:
     nothing = replace(NO_BASELINE, distance_baseline_km=0.0, segments_baseline=0)
     assert "there is nothing measured without side skirts" in said(nothing)
     assert "Drive about 1,500 km" in said(replace(NO_BASELINE, distance_to_go_km=1500.0))
+
+
+def test_without_known_levels_it_says_what_to_enter_and_not_to_drive_more() -> None:
+    unknown = replace(NO_BASELINE, levels_known=False, segments_baseline=0, segments_modified=0)
+    assert said(unknown) == (
+        "No baseline: nothing can be measured, as no two entries tell how full the tank or battery was after them. "
+        "Log the level with each entry (--level 80), or fill or charge to full (no --partial)."
+    )

@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 from rich.cells import cell_len
 
-from energytrack.inference.results import Plan
+from energytrack.inference.results import LongerBaseline, Plan
 from energytrack.logbook.records import Modification
 from energytrack.presentation.plan import periods, render, sentence
 from tests.presentation.samples import PLAN
@@ -125,3 +125,14 @@ def test_a_stated_plan_says_that_nothing_was_measured() -> None:
 def test_what_would_shorten_the_best_way() -> None:
     assert "> Fill to the first click" in shown(replace(PLAN, designs=PLAN.designs[:2]))
     assert "first click" not in shown(PLAN)
+
+
+def test_a_stated_plan_says_what_a_longer_baseline_would_do() -> None:
+    one = replace(PLAN.designs[0], distance_km=None, distance_interval_km=None, days=None)
+    far = replace(PLAN, stated=True, distance_baseline_km=3000.0, designs=(one, *PLAN.designs[1:]))
+    never = "A longer baseline alone does not bring one switch within reach"
+    assert never in " ".join(shown(far).split())
+    told = " ".join(shown(replace(far, with_longer_baseline=LongerBaseline(24_000.0, 13_600.0))).split())
+    assert "after 24,000 km without it, not 3,000 km, one switch takes about 13,600 km (--baseline 24000)" in told
+    assert never not in told
+    assert "longer baseline" not in shown(PLAN)
