@@ -61,6 +61,8 @@ class Promise:
 
     def _missed_by(self) -> str:
         kinds = {name: one for name, one in self.measured.items() if name != ALL and one is not None}
+        if not kinds:
+            return "-"
         missed = [f"{name} ({self.goal.figure(one)})" for name, one in kinds.items() if self._is(MISSED, one)]
         perhaps = [f"{name} ({self.goal.figure(one)})" for name, one in kinds.items() if self._is(PERHAPS, one)]
         said = [", ".join(missed), "within sampling: " + ", ".join(perhaps) if perhaps else ""]
