@@ -95,6 +95,12 @@ class Road:
         found[first:] = np.maximum(2 * variance**2 / wobble, 1.0)
         return found
 
+    def learnt(self, count: int) -> Array:
+        """What `count` more segments will tell of the noise: how much the covariance of theta (4, 4) falls."""
+        now, then = self.noise_known, self.noise_known * (self.past + count) / self.past
+        less: Array = np.linalg.inv(self.noise_prior + now) - np.linalg.inv(self.noise_prior + then)
+        return less
+
     @cached_property
     def _shape(self) -> Structure:
         return structure(

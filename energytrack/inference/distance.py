@@ -11,7 +11,7 @@ from typing import Literal
 import numpy as np
 
 from energytrack.inference import bounds
-from energytrack.inference.ahead import Reach, Road, Schedule, always_fitted, reach, road
+from energytrack.inference.ahead import Reach, Road, Schedule, always_fitted, reach, road, segments_begun
 from energytrack.inference.model import Model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
@@ -80,11 +80,13 @@ def need_along(here: Course, model: Model, schedule: Schedule, question: Questio
     wanted = 1 / question.information
     sooner = here.reach(wanted / bounds.expected_share(question.alpha, question.power))
     last = here.road.ahead
-    price = here.price(last) if np.isfinite(here.variances[last]) else 1.0
     central = here.reach(wanted)
+    end = last if central is None else segments_begun(here.road, central.distance_km)
+    price = here.price(end) if np.isfinite(here.variances[end]) else 1.0
+    learnt = here.road.learnt(end)
     return Need(
         central=central,
-        interval_km=_holding(central, _interval(model, schedule, wanted / price, question.wait_days)),
+        interval_km=_holding(central, _interval(model, schedule, wanted / price, question.wait_days, learnt)),
         expected_km=None if sooner is None else sooner.distance_km,
         best_variance=here.priced(last),
     )
@@ -101,11 +103,11 @@ def _holding(
 
 
 def _interval(
-    model: Model, schedule: Schedule, wanted: float, wait_days: float
+    model: Model, schedule: Schedule, wanted: float, wait_days: float, learnt: Array
 ) -> tuple[float, float | None] | None:
-    """10th and 90th percentile over the noise's own uncertainty and the habit's."""
+    """10th and 90th percentile over what the noise may be found to be by then, and over the habit."""
     reached = []
-    for seed, theta in enumerate(_thetas(model), start=1):
+    for seed, theta in enumerate(_thetas(model, learnt), start=1):
         ahead = road(model, schedule, seed, wait_days)
         reached.append(reach(ahead, ahead.variances(theta).__getitem__, wanted))
     ordered = sorted(float("inf") if r is None else r.distance_km for r in reached)
@@ -115,10 +117,15 @@ def _interval(
     return low, None if high == float("inf") else high
 
 
-def _thetas(model: Model) -> Array:
-    """Draws of the log standard deviations (draws, 4) from their normal approximation."""
+def _thetas(model: Model, learnt: Array) -> Array:
+    """Draws of the log standard deviations (draws, 4) as the longer log will estimate them.
+
+    The test ends by the estimate of that day, not by the truth. Seen from today it is spread by what will have been
+    learnt (law of total variance); what will still be unknown then is in the price.
+    """
     rng = np.random.default_rng(20)
-    factor = np.linalg.cholesky(model.fit.theta_covariance)
+    values, vectors = np.linalg.eigh(learnt)
+    factor = vectors * np.sqrt(np.maximum(values, 0.0))
     strays = np.clip(rng.standard_normal((_DRAWS, 4)), -_WIDEST, _WIDEST)
     draws: Array = model.fit.theta + strays @ factor.T
     return draws

@@ -1,4 +1,4 @@
-"""Many independent runs on both cores."""
+"""The jobs of all parts on every core there is."""
 
 from __future__ import annotations
 
@@ -6,18 +6,30 @@ import os
 from collections.abc import Callable, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from multiprocessing import get_context
-from typing import TypeVar
+from typing import Any
 
-CORES = 2
-FEW = 30  # jobs not worth starting processes for
-Job = TypeVar("Job")
-Result = TypeVar("Result")
+import numpy as np
+
+from energytrack.inference.jobs import run_all
+from energytrack.presentation.progress import progress
+from tests.evidence.parts import Part
 
 
-def across_cores(work: Callable[[Job], Result], jobs: Sequence[Job]) -> list[Result]:
-    """Results in the order of the jobs. One thread of linear algebra a process: the matrices are small."""
-    if len(jobs) <= FEW:
-        return [work(job) for job in jobs]
-    os.environ["OPENBLAS_NUM_THREADS"] = "1"
-    with ProcessPoolExecutor(CORES, mp_context=get_context("spawn")) as pool:  # numpy is loaded after the line above
-        return list(pool.map(work, jobs, chunksize=1 + len(jobs) // 100))
+def measured(chosen: Sequence[Part]) -> list[list[Any]]:
+    """Results of each part, in the order of its jobs.
+
+    The jobs of all parts are mixed, so that the time left is well estimated all along.
+    """
+    tasks = [(part.work, job) for part in chosen for job in part.jobs]
+    order = np.random.default_rng(0).permutation(len(tasks)).tolist()
+    os.environ["OPENBLAS_NUM_THREADS"] = "1"  # small matrices: one thread each; numpy loads anew in each process
+    with ProcessPoolExecutor(mp_context=get_context("spawn")) as pool, progress("measuring") as tell:
+        mixed = run_all(_done, [tasks[k] for k in order], pool, tell)
+    by_place = dict(zip(order, mixed, strict=True))
+    found = iter([by_place[k] for k in range(len(tasks))])
+    return [[next(found) for _ in part.jobs] for part in chosen]
+
+
+def _done(task: tuple[Callable[[Any], Any], Any]) -> Any:
+    work, job = task
+    return work(job)

@@ -5,9 +5,11 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from energytrack.inference.looks import finding, take_looks
-from tests.evidence import usual
-from tests.evidence.block import Block, rate
-from tests.evidence.logs import QUESTION, Job, drawn, sample, without_shift
+from tests.evidence import goals, usual
+from tests.evidence.block import Block
+from tests.evidence.goals import Promise
+from tests.evidence.logs import QUESTION, Job, by_kind, drawn, sample, without_shift
+from tests.evidence.measure import Measured, proportion, rate
 from tests.uses import Use
 
 FIRST_SEED = 1_000
@@ -17,6 +19,8 @@ HEADING = (
     "two averages, once",
     "regression, once",
     "energytrack, each look",
+    "goal",
+    "verdict",
     "range held zero at every look",
 )
 
@@ -47,15 +51,18 @@ def claims(job: Job) -> Claims:
     )
 
 
+def promises(results: list[Claims], uses: tuple[Use, ...]) -> list[Promise]:
+    measured = {name: _ours(of_kind) for name, of_kind in by_kind(results, uses).items()}
+    return [Promise("false alarms, with a look after every entry", goals.FALSE_ALARMS, measured)]
+
+
 def block(results: list[Claims], uses: tuple[Use, ...], logs: int) -> Block:
-    rows = [_row(use.vehicle, [one for one in results if one.use == use.vehicle]) for use in uses]
-    return Block(
-        "false alarms",
-        "simulated",
-        sample(uses, logs, FIRST_SEED),
-        HEADING,
-        (*rows, _row("all", results)),
-    )
+    rows = tuple(_row(name, of_kind) for name, of_kind in by_kind(results, uses).items())
+    return Block("false alarms", "", sample(uses, logs, FIRST_SEED), HEADING, rows)
+
+
+def _ours(results: list[Claims]) -> Measured | None:
+    return proportion(one.ours for one in results)
 
 
 def _row(name: str, results: list[Claims]) -> tuple[str, ...]:
@@ -65,5 +72,7 @@ def _row(name: str, results: list[Claims]) -> tuple[str, ...]:
         rate(one.averages_once for one in results),
         rate(one.regression_once for one in results),
         rate(one.ours for one in results),
+        goals.FALSE_ALARMS.words,
+        goals.FALSE_ALARMS.verdict(_ours(results)),
         rate(one.held for one in results),
     )

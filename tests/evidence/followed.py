@@ -1,4 +1,8 @@
-"""Long tests of a true shift as large as the target, followed entry by entry until the information is complete."""
+"""Long tests of a true shift as large as the target, followed entry by entry until the information is complete.
+
+Two kinds of use are too noisy for a target of 3 %: of them the test asks for what their logs can settle, so that few
+logs are left out.
+"""
 
 from __future__ import annotations
 
@@ -12,13 +16,15 @@ from energytrack.inference import bounds
 from energytrack.inference.ahead import always_fitted
 from energytrack.inference.distance import need
 from energytrack.inference.looks import State, take_looks
+from energytrack.inference.question import Question
 from tests.evidence.logs import QUESTION, Job, drawn
-from tests.uses import Use
+from tests.uses import DRIFTING, HOUSEHOLD, Use
 
 FIRST_SEED = 30_000
 LONGER = 2  # times as many fillings as tests/uses.py says, all of the further ones with the part
 SMALLEST_TAIL = 1e-200
-TOLD_AFTER = (6, 12, 24)  # segments driven with the part
+ON_THE_WAY = (0.30, 0.45, 0.60)  # of the distance really needed, at which the one foretold is noted down
+LARGER_TARGETS = {DRIFTING.vehicle: 0.05, HOUSEHOLD.vehicle: 0.10}
 Quantile = Callable[[float, float], float]  # of a tail and a freedom
 
 
@@ -34,8 +40,6 @@ class Ending:
 class Told:
     """A forecast of the distance with the part at which the information is complete. None: beyond the horizon."""
 
-    after: int  # segments driven with the part
-    already: bool  # complete by then: nothing was forecast
     needed_km: float | None
     low_km: float | None
     high_km: float | None
@@ -50,26 +54,34 @@ class Followed:
     unpriced: Ending | None  # information as 1 / variance, as if the noise were known
     student: Ending | None  # bound and price by Student's t
     complete_km: float | None  # with the part, when the information was first complete
-    held: bool  # the true shift lay in the look-proof range of every look
-    told: tuple[Told, ...]
+    held: bool  # the true shift lay in the look-proof range of every look, up to the one that completed it
+    told: tuple[Told | None, ...]  # at each of ON_THE_WAY; None: no look there; empty where never complete
+
+
+def question_of(use: Use) -> Question:
+    return replace(QUESTION, target=LARGER_TARGETS.get(use.vehicle, QUESTION.target))
 
 
 def lengthened(use: Use) -> Use:
-    """The same baseline, and three times the distance with the part."""
-    return replace(use, fillings=LONGER * use.fillings, switches=(use.switches[0] / LONGER,))
+    """The same baseline, three times the distance with the part, and a shift as large as the target."""
+    shift = -100 * question_of(use).target
+    return replace(use, fillings=LONGER * use.fillings, switches=(use.switches[0] / LONGER,), shift_percent=shift)
 
 
 def follow(job: Job) -> Followed:
-    states = take_looks(drawn(Job(lengthened(job.use), job.seed)), QUESTION, every=True)
-    truth = job.use.shift_percent / 100
+    question, use = question_of(job.use), lengthened(job.use)
+    states = take_looks(drawn(Job(use, job.seed)), question, every=True)
+    truth = use.shift_percent / 100
+    last = next((k for k, state in enumerate(states) if state.complete), len(states) - 1)
+    needed = _complete_km(states, question)
     return Followed(
-        job.use.vehicle,
-        _ending(states, bounds.mixture_quantile, priced=True),
-        _ending(states, bounds.mixture_quantile, priced=False),
-        _ending(states, _student_quantile, priced=True),
-        _complete_km(states),
-        all(state.interval is None or state.interval[0] <= truth <= state.interval[1] for state in states),
-        tuple(_told(states, after) for after in TOLD_AFTER),
+        use.vehicle,
+        _ending(states, question, bounds.mixture_quantile, priced=True),
+        _ending(states, question, bounds.mixture_quantile, priced=False),
+        _ending(states, question, _student_quantile, priced=True),
+        needed,
+        all(state.interval is None or state.interval[0] <= truth <= state.interval[1] for state in states[: last + 1]),
+        tuple(_told(states[:last], question, part * needed) for part in ON_THE_WAY) if needed else (),
     )
 
 
@@ -77,13 +89,13 @@ def _student_quantile(tail: float, freedom: float) -> float:
     return -float(stdtrit(freedom, tail))
 
 
-def _ending(states: Sequence[State], quantile: Quantile, *, priced: bool) -> Ending | None:
+def _ending(states: Sequence[State], question: Question, quantile: Quantile, *, priced: bool) -> Ending | None:
     """The test as in looks.py and bounds.py, with another quantile, or with information as if the noise were known."""
-    level = bounds.level(QUESTION.alpha)
+    level = bounds.level(question.alpha)
     for state in states:
         freedom = state.shift.freedom
         price = quantile(float(ndtr(-level)), freedom) / level if priced else 1.0
-        share = min(1.0, 1 / (state.shift.standard_error * price) ** 2 / QUESTION.information)
+        share = min(1.0, 1 / (state.shift.standard_error * price) ** 2 / question.information)
         tail = float(ndtr(-level / np.sqrt(share)))
         crossed = tail > SMALLEST_TAIL and abs(state.shift.z) > quantile(tail, freedom)
         if crossed or share >= 1:
@@ -91,7 +103,7 @@ def _ending(states: Sequence[State], quantile: Quantile, *, priced: bool) -> End
     return None
 
 
-def _complete_km(states: Sequence[State]) -> float | None:
+def _complete_km(states: Sequence[State], question: Question) -> float | None:
     """Between two looks the information is taken to grow in proportion to the distance, as a forecast does."""
     first = next((k for k, state in enumerate(states) if state.complete), None)
     if first is None:
@@ -99,33 +111,27 @@ def _complete_km(states: Sequence[State]) -> float | None:
     if first == 0:
         return _driven(states[0])
     before, at = states[first - 1], states[first]
-    part = (1 - before.share) / (_information(at) / QUESTION.information - before.share)
+    part = (1 - before.share) / (_information(at, question) / question.information - before.share)
     return _driven(before) + part * (_driven(at) - _driven(before))
 
 
-def _information(state: State) -> float:
+def _information(state: State, question: Question) -> float:
     """Priced as in energytrack, and not cut off when complete."""
-    return (state.shift.standard_error * bounds.price(state.shift.freedom, QUESTION.alpha)) ** -2
+    return (state.shift.standard_error * bounds.price(state.shift.freedom, question.alpha)) ** -2
 
 
-def _told(states: Sequence[State], after: int) -> Told:
-    state = next(state for state in states if _segments_with(state) >= after)
-    driven = _driven(state)
-    if any(earlier.complete for earlier in states[: states.index(state) + 1]):
-        return Told(after, True, None, None, None)
-    required = need(state.model, always_fitted, QUESTION)
+def _told(states: Sequence[State], question: Question, after_km: float) -> Told | None:
+    """At the first look after so much driven with the part."""
+    state = next((state for state in states if _driven(state) >= after_km), None)
+    if state is None:
+        return None
+    driven, required = _driven(state), need(state.model, always_fitted, question)
     low, high = required.interval_km or (None, None)
     return Told(
-        after,
-        False,
         None if required.central is None else driven + required.central.distance_km,
         None if low is None else driven + low,
         None if high is None else driven + high,
     )
-
-
-def _segments_with(state: State) -> int:
-    return int(np.count_nonzero(state.model.observed.shares[:, 0]))
 
 
 def _driven(state: State) -> float:

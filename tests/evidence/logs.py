@@ -2,13 +2,16 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from typing import Protocol, TypeVar
 
 import numpy as np
 
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
 from energytrack.inference.question import Question
+from tests.evidence.goals import ALL
 from tests.simulation import simulate
 from tests.uses import Use
 
@@ -39,3 +42,19 @@ def drawn(job: Job) -> Observations:
 
 def without_shift(use: Use) -> Use:
     return replace(use, shift_percent=0.0)
+
+
+class OfAKind(Protocol):
+    """A result that knows its kind of use."""
+
+    @property
+    def use(self) -> str: ...
+
+
+Result = TypeVar("Result", bound=OfAKind)
+
+
+def by_kind(results: Sequence[Result], uses: tuple[Use, ...]) -> dict[str, list[Result]]:
+    """Results of each kind of use by name, and under `all` every one."""
+    kinds = {use.vehicle: [one for one in results if one.use == use.vehicle] for use in uses}
+    return {**kinds, ALL: list(results)}

@@ -17,4 +17,4 @@ def block() -> Block:
         for nu in FREEDOMS
     ]
     known = ("noise known", *(f"{-float(ndtri(tail)):.2f}" for tail in TAILS))
-    return Block("quantiles", "simulated", "computed, no sample", HEADING, (*rows, known))
+    return Block("quantiles", "", "computed, no sample", HEADING, (*rows, known))

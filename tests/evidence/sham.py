@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, fields, replace
 from pathlib import Path
 
@@ -12,14 +12,18 @@ from scipy.special import stdtrit
 
 from energytrack.consumption.frames import observe_frames
 from energytrack.consumption.observations import Observations
-from energytrack.inference.bounds import mixture_quantile
-from energytrack.inference.looks import finding, take_looks
-from tests.evidence import usual
-from tests.evidence.block import Block, middle, rate
-from tests.evidence.cores import across_cores
+from energytrack.inference import bounds, rules
+from energytrack.inference.looks import State, finding, judged, take_looks
+from energytrack.inference.question import Question
+from energytrack.logbook.checks import LARGEST_TARGET_PERCENT
+from tests.evidence import goals, usual
+from tests.evidence.block import Block
+from tests.evidence.goals import ALL, Promise
 from tests.evidence.logs import QUESTION
+from tests.evidence.measure import Measured, middle, proportion, rate
 
 SIDES = (10, 20, 40)  # segments before the cut, and as many after it
+OPTIONS = "--sham FOLDER"
 FEWEST_SEGMENTS = 2 * max(SIDES)  # of a log that is used at all
 COLUMNS = {"energy_litres": "energy", "energy_kwh": "energy", "mean_speed_kmh": "speed_kmh"}
 HEADING = (
@@ -29,7 +33,12 @@ HEADING = (
     "regression",
     "energytrack, Student's t",
     "energytrack, mixture",
+    "goal",
+    "verdict",
     "energytrack, each look: shifted",
+    "verdict",
+    "each look, target within reach: shifted",
+    "verdict",
     "median standard error, %",
 )
 
@@ -52,6 +61,7 @@ class Claims:
     student: bool
     mixture: bool
     each_look: bool
+    within_reach: bool  # each look, asked for what the stretch can just settle
     standard_error: float  # %
 
 
@@ -92,39 +102,93 @@ def _stretch(observed: Observations, start: int, side: int) -> Observations:
 
 def claims(cut: Cut) -> Claims:
     states = take_looks(cut.observed, QUESTION, every=True)
-    now, found = states[-1], finding(states, QUESTION.target)
+    now = states[-1]
     size, freedom = abs(now.shift.z), now.shift.freedom
     return Claims(
         cut.side,
         usual.averages_differ(cut.observed),
         usual.regression_differs(now.model),
         size > -float(stdtrit(freedom, 0.025)),
-        size > mixture_quantile(0.025, freedom),
-        found is not None and found[0] == "shifted",
+        size > bounds.mixture_quantile(0.025, freedom),
+        _shifted(states, QUESTION),
+        _shifted_within_reach(states),
         100 * now.shift.standard_error,
     )
 
 
-def blocks(folder: Path) -> Iterator[Block]:
-    """The one table, from every CSV file of a folder whose log is long enough. Raises ValueError where none is."""
+def _shifted(states: Sequence[State], question: Question) -> bool:
+    found = finding(states, question.target)
+    return found is not None and found[0] == "shifted"
+
+
+def _shifted_within_reach(states: Sequence[State]) -> bool:
+    """The same looks, asked for a target that makes the information complete at the last of them."""
+    last = states[-1].shift
+    target = QUESTION.drift * last.standard_error * bounds.price(last.freedom, QUESTION.alpha)
+    question = replace(QUESTION, target=min(target, LARGEST_TARGET_PERCENT / 100))
+    watch = rules.watch(question.rule, question.alpha)
+    return _shifted([judged(state.model, question, watch) for state in states], question)
+
+
+def logs_of(folder: Path) -> list[Observations]:
+    """Every CSV file of a folder whose log is long enough. Raises ValueError where none is."""
     logs = [log for log in map(read_log, sorted(folder.glob("*.csv"))) if len(log) >= FEWEST_SEGMENTS]
     if not logs:
         raise ValueError(f"{folder} has no log of {FEWEST_SEGMENTS} segments or more")
-    results = across_cores(claims, [cut for log in logs for side in SIDES for cut in cuts(log, side)])
-    disjoint = {side: sum(len(log) // (2 * side) for log in logs) for side in SIDES}
-    rows = [_row(str(side), [one for one in results if one.side == side], disjoint[side]) for side in SIDES]
+    return logs
+
+
+def all_cuts(logs: Sequence[Observations]) -> list[Cut]:
+    return [cut for log in logs for side in SIDES for cut in cuts(log, side)]
+
+
+def blocks(results: Sequence[Claims], logs: Sequence[Observations]) -> list[Block]:
+    """The goals and the one table."""
     text = f"{len(logs)} logs of {', '.join(str(len(log)) for log in logs)} segments, nothing drawn at random"
-    yield Block("sham", "sham FOLDER", text, HEADING, tuple(rows))
+    sizes = [(side, [one for one in results if one.side == side], _disjoint(logs, side)) for side in SIDES]
+    promises = [promise for side, of_side, apart in sizes for promise in _promises(side, of_side, apart)]
+    rows = tuple(_row(str(side), of_side, apart) for side, of_side, apart in sizes)
+    return [
+        goals.block("goals on real logs", OPTIONS, text, promises),
+        Block("sham", OPTIONS, text, HEADING, rows),
+    ]
+
+
+def _disjoint(logs: Sequence[Observations], side: int) -> int:
+    """Cuts that do not overlap."""
+    return sum(len(log) // (2 * side) for log in logs)
+
+
+def _promises(side: int, results: Sequence[Claims], disjoint: int) -> list[Promise]:
+    at = f"sham changes, {side} tanks a side"
+    return [
+        Promise(f"{at}: {what}", goals.FALSE_ALARMS, {ALL: measured})
+        for what, measured in (
+            ("called a shift", proportion((one.each_look for one in results), disjoint)),
+            ("called a shift, target within reach", proportion((one.within_reach for one in results), disjoint)),
+            ("95 % range of a single look leaves out zero", proportion((one.mixture for one in results), disjoint)),
+        )
+    ]
 
 
 def _row(name: str, results: Sequence[Claims], disjoint: int) -> tuple[str, ...]:
+    mixture = proportion((one.mixture for one in results), disjoint)
+    each_look = proportion((one.each_look for one in results), disjoint)
+    within_reach = proportion((one.within_reach for one in results), disjoint)
     return (
         name,
         f"{len(results)} ({disjoint})",
         rate((one.averages for one in results), disjoint),
         rate((one.regression for one in results), disjoint),
         rate((one.student for one in results), disjoint),
-        rate((one.mixture for one in results), disjoint),
-        rate((one.each_look for one in results), disjoint),
+        *_judged(mixture, with_goal=True),
+        *_judged(each_look),
+        *_judged(within_reach),
         middle((one.standard_error for one in results), 1),
     )
+
+
+def _judged(measured: Measured | None, *, with_goal: bool = False) -> tuple[str, ...]:
+    goal = goals.FALSE_ALARMS
+    words = (goal.words,) if with_goal else ()
+    return goal.shown(measured), *words, goal.verdict(measured)

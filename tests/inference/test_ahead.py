@@ -32,6 +32,17 @@ def test_a_longer_log_tells_no_less_of_the_noise(use: Use, seed: int) -> None:
     assert np.linalg.eigvalsh(ahead.noise_known).min() > -1e-6
 
 
+@pytest.mark.parametrize("use", [STEADY_COMMUTE, HOUSEHOLD])
+def test_what_will_be_learnt_of_the_noise_grows_up_to_what_is_unknown_now(use: Use) -> None:
+    ahead = road(fitted_model(use, 1, keep=4), always_fitted, 0)
+    unknown = np.linalg.inv(ahead.noise_prior + ahead.noise_known)
+    np.testing.assert_allclose(ahead.learnt(0), 0, atol=1e-12)
+    soon, later = ahead.learnt(10), ahead.learnt(100)
+    assert 0 < np.trace(soon) < np.trace(later) < np.trace(unknown)
+    for less in (soon, later - soon, unknown - later):
+        assert np.linalg.eigvalsh(less).min() > -1e-9
+
+
 def test_nothing_is_reached_before_the_part_is_driven_with() -> None:
     ahead = road(fitted_model(STEADY_COMMUTE, 1, keep=0), off_first(10), 0)
     theta = np.log([0.05, 0.02, 0.01, 0.01])
