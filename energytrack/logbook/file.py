@@ -102,6 +102,10 @@ class LogbookFile:
                 self._db.execute("ROLLBACK")
             raise
 
+    def query(self, select: str, *values: Any) -> list[tuple[Any, ...]]:
+        """The rows a SELECT finds."""
+        return self._rows(select, *values)
+
     def _rows(self, select: str, *values: Any) -> list[tuple[Any, ...]]:
         with self._guard():
             return self._db.execute(select, values).fetchall()

@@ -98,7 +98,7 @@ def _import_entries(request: Request, store: Store | None, logbook: Path, today:
     outcome = Outcome(str(request.path), rejected=plan.problems, notes=plan.notes + _unit_notes(request, plan, known))
     with _rejects(request, request.path, plan.problems, outcome):
         store = store or Store.create(logbook)
-        with store.transaction():
+        with store.transaction("imported"):
             if added:
                 store.add_vehicle(added)
             _add(store, plan, request, outcome)
@@ -113,7 +113,7 @@ def _import_folder(request: Request, store: Store, today: dt.date) -> Outcome:
     entries = request.path / "entries.csv"
     plan = _planned(request, entries, store, known, today)
     outcome = Outcome(str(request.path), rejected=plan.problems, notes=plan.notes)
-    with _rejects(request, entries, plan.problems, outcome), store.transaction():
+    with _rejects(request, entries, plan.problems, outcome), store.transaction("imported"):
         outcome.count("vehicles", merging.merge_vehicles(store, folder.vehicles()), len(folder.vehicles()))
         _add(store, plan, request, outcome)
         modifications = [row for vehicle in folder.vehicles() for row in folder.modifications(vehicle.name)]
@@ -137,7 +137,7 @@ def _import_other(request: Request, store: Store) -> Outcome:
         for name in dict.fromkeys(row.vehicle for row in rows):
             store.vehicle(name)
     outcome = Outcome(str(request.path), rejected=reading.problems, notes=reading.notes)
-    with _rejects(request, request.path, reading.problems, outcome), store.transaction():
+    with _rejects(request, request.path, reading.problems, outcome), store.transaction("imported"):
         outcome.count(request.table, merge(store, rows), len(rows))
     return outcome
 
