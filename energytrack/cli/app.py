@@ -34,6 +34,7 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "undo": ("undo", "undo"),
     "history": ("history", "history"),
     "import": ("import_", "import_table"),
+    "export": ("export", "export"),
     "weather": ("weather", "weather"),
     "enough": ("enough", "enough"),
     "plan": ("plan", "plan"),

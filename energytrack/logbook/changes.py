@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from typing import Any
 
@@ -50,3 +50,14 @@ class ChangingFile(LogbookFile):
         """Add one row to the open change; its number. Raises LogbookError. Table and columns are ours, never typed."""
         with self._guard():
             return rows.insert(self._db, table, {**values, "change_id": self._change})
+
+    def defer_references(self) -> None:
+        """Let rows of the open transaction refer to others that are still to come."""
+        with self._guard():
+            self._db.execute("PRAGMA defer_foreign_keys = ON")
+
+    def fill(self, table: str, columns: Sequence[str], values: Iterable[Sequence[Any]]) -> int:
+        """Add whole rows as they were kept before; how many. Table and columns are ours, never typed."""
+        insert = f"INSERT INTO {table} ({', '.join(columns)}) VALUES ({', '.join('?' * len(columns))})"
+        with self._guard():
+            return max(0, self._db.executemany(insert, values).rowcount)
