@@ -25,7 +25,7 @@ def lines(change: Change, vehicles: Sequence[Vehicle], moment: str = "") -> list
     by_name = {vehicle.name: vehicle for vehicle in vehicles}
     what = change.what if change.undoes is None else f"{change.what} (change {change.undoes})"
     title = "  ".join(part for part in (f"{change.number}", moment, what) if part)
-    told = [_line(each, by_name[each.vehicle]) for each in change.revisions]
+    told = [_line(each, by_name[each.vehicle], change.undoes is not None) for each in change.revisions]
     told += [f"vehicle {name}" for name in change.vehicles]
     if change.entries > TOLD:
         told.append(f"... {change.entries} entries in all")
@@ -56,7 +56,7 @@ def columns(change: Change) -> dict[str, Any]:
     }
 
 
-def _line(each: Revision, vehicle: Vehicle) -> str:
+def _line(each: Revision, vehicle: Vehicle, undoes: bool) -> str:
     said = each.became or each.was
     place = f"{vehicle.name}, {_place(said, vehicle)}"
     if isinstance(each.was, Entry) and isinstance(each.became, Entry):
@@ -64,7 +64,7 @@ def _line(each: Revision, vehicle: Vehicle) -> str:
         return f"{vehicle.name}, {_place(each.was, vehicle)}: {'; '.join(differences) or 'kept as it is'}"
     if each.became is None:
         return f"{place}: {_what(said, vehicle)}, counts no more"
-    return f"{place}: {_what(said, vehicle)}"
+    return f"{place}: {_what(said, vehicle)}" + (", counts again" if undoes else "")
 
 
 def _place(record: Record | None, vehicle: Vehicle) -> str:
