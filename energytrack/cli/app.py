@@ -35,6 +35,8 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "history": ("history", "history"),
     "import": ("import_", "import_table"),
     "export": ("export", "export"),
+    "backup": ("backup", "backup"),
+    "check": ("check", "check"),
     "weather": ("weather", "weather"),
     "enough": ("enough", "enough"),
     "plan": ("plan", "plan"),

@@ -169,7 +169,9 @@ class Store(ChangingFile):
             if not new:
                 return 0
             change = self.change("imported")
-            rows.insert_all(self._db, "entry", [{**values, "change_id": change} for values in new])
+            for values in new:
+                values["change_id"] = change
+            rows.insert_all(self._db, "entry", new)
             first = self._rows("SELECT coalesce(max(id), 0) FROM entry")[0][0] - len(new) + 1  # numbers never have gaps
             kept = [{"entry_id": first + n, "change_id": change} for n, sure in enumerate(confirmed) if sure]
             rows.insert_all(self._db, "confirmation", kept)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 import math
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 
 from energytrack.logbook.formulas import neutralised
 
@@ -27,10 +27,13 @@ def cell(value: object) -> str:
     return value.isoformat() if isinstance(value, dt.date) else neutralised(str(value))
 
 
-def lines(rows: Iterable[Iterable[str]]) -> Iterator[str]:
+def lines(rows: Iterable[Sequence[str]]) -> Iterator[str]:
     """Rows of cells as lines. The csv module leaves a lone carriage return unquoted, and cannot read it back."""
     for row in rows:
-        yield ",".join(map(_quoted, row)) + "\n"
+        plain = ",".join(row)
+        if plain.count(",") >= len(row) or any(mark in plain for mark in _QUOTED[1:]):
+            plain = ",".join(map(_quoted, row))
+        yield plain + "\n"
 
 
 def _quoted(text: str) -> str:

@@ -187,3 +187,34 @@ def test_without_an_answer_nothing_heavy_is_loaded(logbook: Path) -> None:
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     assert done.stdout.splitlines()[-1] == "[]"
+
+
+def test_export_import_backup_and_check(logbook: Path, tmp_path: Path) -> None:
+    run(logbook, "amend", 48_500, "--note", "=2+3", "--why", "-")
+    assert "15 files" in run(logbook, "export", tmp_path / "out")
+    assert "not empty" in run(logbook, "export", tmp_path / "out", status=1)
+    again = tmp_path / "again.logbook"
+    run(again, "new")
+    run(again, "import", tmp_path / "out")
+    assert run(again, "history", "--json") == run(logbook, "history", "--json")
+    assert listed(tmp_path / "out")[1]["note"] == "=2+3"
+    assert "folder of tables" in run(tmp_path / "out", "amend", 48_500, "--note", "x", status=1)
+    assert "keeps no history" in run(tmp_path / "out", "history", status=1)
+    run(logbook, "backup", tmp_path / "copy")
+    assert run(tmp_path / "copy", "check").split()[-4:] == ["entries", "3", "changes", "5"]
+    content = bytearray(logbook.read_bytes())
+    content[4096:] = b"\xff" * (len(content) - 4096)
+    logbook.write_bytes(content)
+    (tmp_path / "my.logbook-wal").unlink(missing_ok=True)
+    assert "SQLite" in json.loads(fault_report(logbook))["faults"][0]["what"]
+    assert run(logbook, "check", "--repair-from", tmp_path / "copy").split()[-2:] == ["changes", "5"]
+    assert listed(logbook) == listed(again)
+    assert (tmp_path / "my.logbook.damaged-1").read_bytes() == content
+
+
+def fault_report(logbook: Path) -> str:
+    """What `check --json` prints on a damaged logbook."""
+    command = [sys.executable, "-m", "energytrack", "--logbook", str(logbook), "check", "--json"]
+    done = subprocess.run(command, capture_output=True, text=True, check=False)
+    assert (done.returncode, "Traceback" in done.stderr) == (1, False)
+    return done.stdout
