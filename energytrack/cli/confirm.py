@@ -7,15 +7,12 @@ from typing import Annotated
 import typer
 
 from energytrack.cli import options
-from energytrack.cli.context import distance_unit, kilometres, say, say_json, the_vehicle, writable
+from energytrack.cli.context import say, say_json, the_vehicle, writable
+from energytrack.cli.which import entries_named
 from energytrack.consumption.slips import place
 from energytrack.errors import EntryError
-from energytrack.logbook.checks import parse_date
-from energytrack.logbook.quantities import distance_text
-from energytrack.logbook.records import Entry, Vehicle
+from energytrack.logbook.records import Entry
 from energytrack.logbook.store import Store
-
-_SAME_KM = 0.55  # shown are whole km: what is shown must find its entry
 
 
 def confirm(
@@ -31,26 +28,14 @@ def confirm(
     """Keep an entry that looks odd and is right. `enough` sets it aside no longer."""
     store = writable(context)
     chosen = the_vehicle(store, vehicle)
-    if odometer is not None:
-        km = kilometres(odometer, distance_unit(odometer_unit, chosen))
-        found = [entry for entry in store.entries(chosen.name) if _is_at(entry, km, chosen)]
-        where = f"at {distance_text(km, chosen)}"
-    elif date is not None:
-        day = parse_date(date)
-        found = [entry for entry in store.entries(chosen.name) if entry.date == day]
-        where = f"of {day}"
-    else:
+    if odometer is None and date is None:
         raise EntryError("say which entry: type its odometer value, or its --date")
+    found, where = entries_named(store, chosen, odometer or date, odometer_unit)
     _keep(store, found, f"{chosen.name} has no entry {where}: `entries` lists them")
     if json:
         say_json({"confirmed": [entry.id for entry in found]})
     else:
         say([f"{chosen.name}: the entry {place(entry, chosen)}, {entry.date}, is kept" for entry in found])
-
-
-def _is_at(entry: Entry, km: float, vehicle: Vehicle) -> bool:
-    tolerance = _SAME_KM * (1.61 if vehicle.distance_unit == "mi" else 1.0)
-    return entry.odometer_km is not None and abs(entry.odometer_km - km) < tolerance
 
 
 def _keep(store: Store, found: list[Entry], missing: str) -> None:

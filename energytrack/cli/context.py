@@ -39,6 +39,17 @@ def readable(context: typer.Context) -> Logbook:
     return logbook
 
 
+def readable_as_of(context: typer.Context, day: str | None) -> Logbook:
+    """The logbook as it stood at the end of a day, by what had been recorded then; as it is where no day is named."""
+    if day is None:
+        return readable(context)
+    from energytrack.logbook.as_of import as_of
+
+    logbook = as_of(logbook_path(context), parse_date(day))
+    context.call_on_close(logbook.close)
+    return logbook
+
+
 def writable(context: typer.Context) -> Store:
     """The logbook to write to. Raises LogbookError for a folder of tables."""
     logbook = readable(context)

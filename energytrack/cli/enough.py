@@ -12,7 +12,7 @@ import typer
 from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.app import ExitStatus
-from energytrack.cli.context import readable, say_json
+from energytrack.cli.context import readable_as_of, say, say_json
 from energytrack.errors import EnergytrackError, LogbookError
 from energytrack.logbook.store import Store
 
@@ -53,18 +53,21 @@ def enough(
         str | None, typer.Option(metavar="FUEL=KWH", help="kWh in a L or kg of the fuel, of a plug-in hybrid.")
     ] = None,
     picture: Annotated[bool, typer.Option("--picture", help="Draw how the range narrowed with distance.")] = False,
+    as_of: options.AsOf = None,
     json: options.Json = False,
     exit_code: Annotated[bool, typer.Option("--exit-code", help='Exit with 10 while an answer is "not yet".')] = False,
 ) -> None:
     """Say whether a modification shifted consumption. By how much, and how far is still to go to be sure."""
     rule = _rule(looks, open_ended)
-    logbook = readable(context)
+    logbook = readable_as_of(context, as_of)
     vehicles = asking.vehicles_asked(logbook, vehicle)
     if compare and (name is not None or rule != "every-look" or picture or exit_code):
         raise typer.BadParameter("--compare takes no modification, --looks, --open-ended, --picture or --exit-code")
     if compare:
         _compare(vehicles, logbook, target, confidence, covariate, json, keep_all)
         return
+    if rule == "counted" and as_of is not None:
+        raise typer.BadParameter("--as-of takes no look: leave --looks counted out")
     if rule == "counted" and not isinstance(logbook, Store):
         raise LogbookError(f"{logbook.path} is a folder of tables and keeps no looks: use --looks every, or import it")
     contents = asking.energy_content(energy_content, vehicles)
@@ -74,8 +77,12 @@ def enough(
     )
     if target is None and not covariate and not contents and (confidence, power) == USUAL_CERTAINTY:
         for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
-            _keep(logbook, question, answer)
-    _print_json([a for _, a in answers]) if json else _print(answers, picture)
+            keep(logbook, question, answer)
+    if json:
+        _print_json([a for _, a in answers])
+    else:
+        say(asking.as_of_lines(as_of))
+        _print(answers, picture)
     waiting = exit_code and any(answer.verdict == "not-yet" for _, answer in answers)
     asking.leave(refusals, ExitStatus.NOT_YET if waiting else ExitStatus.DONE)
 
@@ -114,6 +121,11 @@ def _assess(
         typed_in=(question.vehicle.distance_unit, question.vehicle.typed_unit),
     )
     return replace(answer, vehicle=question.vehicle.name)
+
+
+def usual_answer(logbook: Logbook, question: asking.Question) -> Assessment:
+    """The answer that `enough` gives and keeps when nothing but the target is asked for."""
+    return _assess(logbook, question, *USUAL_CERTAINTY, None, "every-look", False)
 
 
 def _compare(
@@ -168,7 +180,7 @@ def _print(answers: list[tuple[asking.Question, Assessment]], picture: bool) -> 
         terminal.show(render(answer, unit=unit, width=screen.width, title=several, draw=picture), screen)
 
 
-def _keep(logbook: Logbook, question: asking.Question, answer: Assessment) -> None:
+def keep(logbook: Logbook, question: asking.Question, answer: Assessment) -> None:
     """Keep the answer for the echo of later entries, and that someone looked; a refusal never hides the answer."""
     from energytrack.presentation.as_json import without_nan
 

@@ -3,19 +3,23 @@
 from __future__ import annotations
 
 import math
+import shlex
 from dataclasses import dataclass, replace
-from typing import Annotated, Any
+from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
 from energytrack.cli import options
-from energytrack.cli.context import readable, say, say_json, the_vehicles
+from energytrack.cli.context import readable_as_of, say, say_json, the_vehicles
 from energytrack.logbook.carriers import for_kind, in_total
 from energytrack.logbook.opening import Logbook
 from energytrack.logbook.quantities import consumption_text, distance_text, energy_text
 from energytrack.logbook.records import Entry, Vehicle
 from energytrack.logbook.rows import entry_values
 from energytrack.presentation.columns import aligned, folded
+
+if TYPE_CHECKING:
+    from energytrack.consumption.slips import Slip
 
 MOST_ENTRIES = 1_000_000_000
 WIDTH = 80
@@ -25,17 +29,18 @@ def entries(
     context: typer.Context,
     vehicle: options.VehicleName = None,
     last: Annotated[int, typer.Option(min=1, max=MOST_ENTRIES, metavar="N", help="How many of the newest.")] = 20,
+    as_of: options.AsOf = None,
     json: options.Json = False,
 ) -> None:
     """List the newest entries of each vehicle. Oldest first, with what is special about them."""
-    logbook = readable(context)
+    logbook = readable_as_of(context, as_of)
     vehicles = the_vehicles(logbook, vehicle)
     listed = [(each, _newest(logbook, each, last)) for each in vehicles]
     if json:
         say_json({"entries": [_columns(line) for _, lines in listed for line in lines]})
         return
     for each, lines in listed:
-        say(_table(each, lines, last))
+        say([*_table(each, lines, last), *_corrections(each, lines, len(logbook.vehicles()) > 1)])
     if not vehicles:
         say(["no vehicles yet: add one with `vehicle add`"])
 
@@ -47,19 +52,19 @@ class Line:
     entry: Entry
     consumption: float | None
     is_unusual: bool
-    slips: tuple[str, ...] = ()  # what may have happened, where it is unusual
+    slips: tuple[Slip, ...] = ()  # what may have happened, where it is unusual
 
 
 def _newest(logbook: Logbook, vehicle: Vehicle, last: int) -> list[Line]:
     """The newest `last` entries, judged by the record of those before them too."""
-    from energytrack.consumption.meaning import RECENT_ENTRIES, slip_lines, unusual
+    from energytrack.consumption.meaning import RECENT_ENTRIES, slips_of, unusual
     from energytrack.consumption.two_carriers import close_vehicle
 
     recent = logbook.last_entries(vehicle.name, last + RECENT_ENTRIES)
     segmented = close_vehicle(vehicle, recent, logbook.events(vehicle.name))
     lines = [Line(entry, None, False) for entry in segmented.entries]
     flags = unusual(segmented.segments)
-    slips = slip_lines(segmented, [which for which, flag in enumerate(flags) if flag], vehicle)
+    slips = slips_of(segmented, [which for which, flag in enumerate(flags) if flag], vehicle)
     for which, segment in enumerate(segmented.segments):
         closing = segmented.entries[segment.legs[-1].entry]
         told = Line(closing, segment.energy / segment.distance_km, False)
@@ -78,8 +83,9 @@ def entry_columns(entry: Entry) -> dict[str, Any]:
 
 
 def _columns(line: Line) -> dict[str, Any]:
-    judged = {"energy_per_km": line.consumption, "unusual": line.is_unusual, "slips": list(line.slips)}
-    return {**entry_columns(line.entry), **judged}
+    amend = [f"energytrack amend {slip.amend}" for slip in line.slips]
+    judged = {"energy_per_km": line.consumption, "unusual": line.is_unusual, "slips": [*map(str, line.slips)]}
+    return {**entry_columns(line.entry), **judged, "amend": amend}
 
 
 def _table(vehicle: Vehicle, lines: list[Line], last: int) -> list[str]:
@@ -88,6 +94,17 @@ def _table(vehicle: Vehicle, lines: list[Line], last: int) -> list[str]:
     title = vehicle.name + (f", the newest {last} (--last N for more)" if len(lines) == last else "")
     rows = aligned([_cells(vehicle, line) for line in lines], right=(1, 2, 3))
     return [title, *folded(rows, [", ".join(_flags(line)) for line in lines], WIDTH)]
+
+
+def _corrections(vehicle: Vehicle, lines: list[Line], several: bool) -> list[str]:
+    """What to type if an entry is unusual by a slip."""
+    whose = f" --vehicle {shlex.quote(vehicle.name)}" if several else ""
+    told = [
+        f"{str(slip).partition('?')[0]}, {line.entry.date}? energytrack amend {slip.amend}{whose}"
+        for line in lines
+        for slip in line.slips
+    ]
+    return ["", *told] if told else []
 
 
 def _cells(vehicle: Vehicle, line: Line) -> tuple[str, ...]:
@@ -105,7 +122,7 @@ def _place(vehicle: Vehicle, entry: Entry) -> str:
 
 def _flags(line: Line) -> list[str]:
     entry = line.entry
-    unlike = ["unusual", *line.slips[:1]] if line.is_unusual else []
+    unlike = ["unusual", *map(str, line.slips[:1])] if line.is_unusual else []
     level = [] if entry.level_percent is None else [f"level {entry.level_percent:g} %"]
     partial = ["partial"] if not entry.full and entry.level_percent is None else []
     missed = ["entries missing before"] if entry.missed else []

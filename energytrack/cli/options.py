@@ -29,6 +29,9 @@ OdometerUnit = Annotated[
     ),
 ]
 Note = Annotated[str, typer.Option("--note", help="Anything worth remembering.")]
+AsOf = Annotated[
+    str | None, typer.Option("--as-of", metavar="YYYY-MM-DD", help="By what had been recorded by the end of that day.")
+]
 Json = Annotated[bool, typer.Option("--json", help="Print JSON.")]
 
 

@@ -103,6 +103,11 @@ def energy_content(typed: str | None, vehicles: Iterable[Vehicle]) -> dict[str, 
     return {fuel: parse_number(value, f"energy content of {fuel}")}
 
 
+def as_of_lines(as_of: str | None) -> list[str]:
+    """What stands above an answer from an earlier state of the logbook."""
+    return [] if as_of is None else [f"by what was recorded up to the end of {as_of}:", ""]
+
+
 def answered(asked: Iterable[Asked], answer: Callable[[Asked], Answer]) -> tuple[list[Answer], list[str]]:
     """Every answer there is, and why the others have none. Raises the refusal where only one question was asked."""
     answers, refusals = [], []

@@ -54,25 +54,38 @@ def unit_of(typed: Typed, vehicle: Vehicle) -> str:
 
 def entry_from(typed: Typed, vehicle: Vehicle) -> Entry:
     """The entry in base units; odometer or distance, and the amount, must be there. Raises EntryError."""
-    unit = distance_unit(typed.odometer_unit, vehicle)
+    values = values_of(typed, vehicle)
+    if "energy" not in values:
+        values["energy"] = parse_number("", "amount")
     return Entry(
         vehicle=vehicle.name,
         date=the_date(typed.date),
-        energy=to_base(parse_number(typed.amount or "", "amount"), unit_of(typed, vehicle)),
-        odometer_km=None if typed.odometer is None else kilometres(typed.odometer, unit),
         kind=typed.kind,
         full=not typed.partial,
-        level_percent=_number(typed.level, "level"),
         missed=typed.missed,
-        distance_km=None if typed.distance is None else kilometres(typed.distance, vehicle.distance_unit, "distance"),
-        cost=_number(typed.cost, "cost"),
-        currency=_currency(typed.currency),
-        temperature_c=None if typed.temperature is None else parse_temperature(typed.temperature),
-        speed_kmh=None if typed.speed is None else kilometres(typed.speed, vehicle.distance_unit, "speed"),
         place=typed.place,
         note=typed.note,
-        extra=_extra(typed.extra),
+        **values,
     )
+
+
+def values_of(typed: Typed, vehicle: Vehicle) -> dict[str, Any]:
+    """The figures that were typed, in base units, by the entry's own names. Raises EntryError."""
+    unit = distance_unit(typed.odometer_unit, vehicle)
+    own = vehicle.distance_unit
+    amount = _number(typed.amount, "amount")
+    values = {
+        "energy": None if amount is None else to_base(amount, unit_of(typed, vehicle)),
+        "odometer_km": None if typed.odometer is None else kilometres(typed.odometer, unit),
+        "level_percent": _number(typed.level, "level"),
+        "distance_km": None if typed.distance is None else kilometres(typed.distance, own, "distance"),
+        "cost": _number(typed.cost, "cost"),
+        "currency": _currency(typed.currency),
+        "temperature_c": None if typed.temperature is None else parse_temperature(typed.temperature),
+        "speed_kmh": None if typed.speed is None else kilometres(typed.speed, own, "speed"),
+        "extra": _extra(typed.extra) or None,
+    }
+    return {name: value for name, value in values.items() if value is not None}
 
 
 def as_typed(typed: Typed, vehicle: Vehicle, date: dt.date) -> dict[str, Any]:

@@ -9,7 +9,7 @@ from typing import Any, Protocol
 
 from energytrack.consumption.segments import Segment, SegmentedLog, close_segments
 from energytrack.consumption.shares import fitted_periods, shares
-from energytrack.consumption.slips import Case, find_slips
+from energytrack.consumption.slips import Case, Slip, find_slips
 from energytrack.consumption.terms import ELECTRIC, condition_of, term
 from energytrack.consumption.usual import far_from_usual
 from energytrack.errors import ConsumptionError
@@ -109,7 +109,7 @@ def unusual(segments: Sequence[Segment]) -> list[bool]:
     return [abs(deviation) > UNUSUAL_SD * sd for deviation in deviations]
 
 
-def slip_lines(segmented: SegmentedLog, unlike: Sequence[int], vehicle: Vehicle) -> dict[int, list[str]]:
+def slips_of(segmented: SegmentedLog, unlike: Sequence[int], vehicle: Vehicle) -> dict[int, list[Slip]]:
     """What may have happened in each of the unusual segments, held against the vehicle's own record."""
     segments = segmented.segments
     if vehicle.second_carrier is not None:  # its segments are in kWh, what was typed is not
@@ -120,10 +120,7 @@ def slip_lines(segmented: SegmentedLog, unlike: Sequence[int], vehicle: Vehicle)
     usual_km = _median(segment.distance_km for segment in segments)
     scatter = [sd / min(1.0, segment.distance_km / usual_km) for segment in segments]
     expected = [usual] * len(segments)
-    return {
-        which: [str(slip) for slip in find_slips(Case(segmented, which, expected, scatter, vehicle))]
-        for which in unlike
-    }
+    return {which: find_slips(Case(segmented, which, expected, scatter, vehicle)) for which in unlike}
 
 
 def _record(segments: Sequence[Segment]) -> tuple[float, list[float], float]:
@@ -221,7 +218,7 @@ def _compared(
     ]
     if unusual(segmented.segments)[which]:
         lines.append("unusual for this vehicle: kept; check the amount and the odometer")
-        lines += slip_lines(segmented, [which], vehicle)[which]
+        lines += map(str, slips_of(segmented, [which], vehicle)[which])
     return lines
 
 

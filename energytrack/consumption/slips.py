@@ -31,12 +31,16 @@ _MISSING = ("an entry missing", "two entries missing", "three entries missing")
 _USUAL_AMOUNT = 0.6  # of the median amount: what a tank after a forgotten entry holds at least
 
 
+Fit = tuple[float, str, str]  # gap in sd, what is said of it, the option that would say so
+
+
 @dataclass(frozen=True, slots=True)
 class Slip:
-    """What may have happened, and what would fit."""
+    """What may have happened, what would fit, and what to type after `energytrack amend` to say so."""
 
     what: str
     suggestion: str
+    amend: str
 
     def __str__(self) -> str:
         return f"{self.what}? {self.suggestion}"
@@ -94,19 +98,20 @@ def _missing_digit(case: Case) -> list[Slip]:
 def _retyped(case: Case, what: str, variants: Callable[[str], Iterable[str]]) -> list[Slip]:
     """The retyped odometer value, distance or amount that fits best, if one does."""
     entry, vehicle = case.entry, case.vehicle
-    fits: list[tuple[float, str]] = []
+    fits: list[Fit] = []
     if entry.odometer_km is not None and case.amount_is_possible:
         for typed in variants(_typed(from_base(entry.odometer_km, vehicle.distance_unit))):
             moved = to_base(float(typed), vehicle.distance_unit) - entry.odometer_km
             old, new = distance_text(entry.odometer_km, vehicle), distance_text(entry.odometer_km + moved, vehicle)
-            fits.append((_moved_gap(case, moved), f"odometer {_number(old)} -> {new} fits"))
+            said = f"odometer {_number(old)} -> {new} fits"
+            fits.append((_moved_gap(case, moved), said, f"--odometer {typed}"))
     elif entry.distance_km is not None and case.amount_is_possible:
         for typed in variants(_typed(from_base(entry.distance_km, vehicle.distance_unit))):
             fits.append(_other_distance(case, to_base(float(typed), vehicle.distance_unit)))
     unit = vehicle.typed_unit or vehicle.unit
     for typed in variants(f"{from_base(entry.energy, unit):.2f}"):
         fits.append(_other_amount(case, to_base(float(typed), unit)))
-    return _best(what, fits)
+    return _best(case, what, fits)
 
 
 def _moved_gap(case: Case, moved: float) -> float:
@@ -122,23 +127,29 @@ def _moved_gap(case: Case, moved: float) -> float:
     return gap
 
 
-def _other_distance(case: Case, km: float) -> tuple[float, str]:
+def _other_distance(case: Case, km: float) -> Fit:
     old = case.entry.distance_km or 0.0
     said = f"distance {_number(distance_text(old, case.vehicle))} -> {distance_text(km, case.vehicle)} fits"
-    return case.gap(case.which, case.segment.distance_km + km - old, case.segment.energy), said
+    option = f"--distance {_typed(from_base(km, case.vehicle.distance_unit))}"
+    return case.gap(case.which, case.segment.distance_km + km - old, case.segment.energy), said, option
 
 
-def _other_amount(case: Case, amount: float) -> tuple[float, str]:
+def _other_amount(case: Case, amount: float) -> Fit:
     old, capacity = case.entry.energy, case.segmented.capacity
     if capacity is not None and amount > _OVERFULL * capacity:
-        return inf, ""
+        return inf, "", ""
     said = f"amount {_number(energy_text(old, case.vehicle))} -> {energy_text(amount, case.vehicle)} fits"
-    return case.gap(case.which, case.segment.distance_km, case.segment.energy + amount - old), said
+    option = f"--amount {from_base(amount, case.vehicle.typed_unit or case.vehicle.unit):.2f}"
+    return case.gap(case.which, case.segment.distance_km, case.segment.energy + amount - old), said, option
 
 
-def _best(what: str, fits: Iterable[tuple[float, str]]) -> list[Slip]:
-    gap, said = min(fits, default=(inf, ""))
-    return [Slip(what, said)] if gap <= FITS_SD else []
+def _best(case: Case, what: str, fits: Iterable[Fit]) -> list[Slip]:
+    gap, said, option = min(fits, default=(inf, "", ""))
+    return [_slip(what, said, case.entry, case.vehicle, option)] if gap <= FITS_SD else []
+
+
+def _slip(what: str, said: str, entry: Entry, vehicle: Vehicle, option: str) -> Slip:
+    return Slip(what, said, f"{named(entry, vehicle)} {option}")
 
 
 def _unmarked_partial(case: Case) -> list[Slip]:
@@ -155,7 +166,8 @@ def _unmarked_partial(case: Case) -> list[Slip]:
         if opposite and abs(sum(excess)) <= _MERGED_SD * hypot(*scatter):
             between = case.segmented.entries[segments[first].legs[-1].entry]
             what = "partial fill not marked" if excess[0] < 0 else "filled beyond the usual mark"
-            return [Slip(what, f"mark the entry {place(between, case.vehicle)} as partial")]
+            said = f"mark the entry {place(between, case.vehicle)} as partial"
+            return [_slip(what, said, between, case.vehicle, "--partial")]
     return []
 
 
@@ -170,7 +182,7 @@ def _miles(case: Case) -> list[Slip]:
         return []
     miles = case.vehicle.distance_unit == "km"
     other = entry.distance_km * (KM_PER_MILE if miles else 1 / KM_PER_MILE)
-    return _best("miles typed for km" if miles else "km typed for miles", [_other_distance(case, other)])
+    return _best(case, "miles typed for km" if miles else "km typed for miles", [_other_distance(case, other)])
 
 
 def _gallons(case: Case) -> list[Slip]:
@@ -179,10 +191,11 @@ def _gallons(case: Case) -> list[Slip]:
     if typed == "L":
         gallons = {"US gallons": LITRES_PER_US_GALLON, "imperial gallons": LITRES_PER_IMPERIAL_GALLON}
         fits = [(*_other_amount(case, amount * factor), name) for name, factor in gallons.items()]
-        gap, said, name = min(fits)
-        return [Slip(f"{name} typed for litres", said)] if gap <= FITS_SD else []
+        gap, said, option, name = min(fits)
+        what = f"{name} typed for litres"
+        return [_slip(what, said, case.entry, case.vehicle, option)] if gap <= FITS_SD else []
     factor = {"gal-us": LITRES_PER_US_GALLON, "gal-imp": LITRES_PER_IMPERIAL_GALLON}.get(typed)
-    return [] if factor is None else _best("litres typed for gallons", [_other_amount(case, amount / factor)])
+    return [] if factor is None else _best(case, "litres typed for gallons", [_other_amount(case, amount / factor)])
 
 
 def _missing_entry(case: Case) -> list[Slip]:
@@ -197,7 +210,8 @@ def _missing_entry(case: Case) -> list[Slip]:
     what = min(gaps, key=gaps.__getitem__)
     if segment.energy < _USUAL_AMOUNT * usual or gaps[what] > FITS_SD:
         return []
-    return [Slip(what, f"say that entries are missing before the one {place(case.entry, case.vehicle)}")]
+    said = f"say that entries are missing before the one {place(case.entry, case.vehicle)}"
+    return [_slip(what, said, case.entry, case.vehicle, "--missed")]
 
 
 def place(entry: Entry, vehicle: Vehicle) -> str:
@@ -205,6 +219,13 @@ def place(entry: Entry, vehicle: Vehicle) -> str:
     if entry.odometer_km is not None:
         return f"at {distance_text(entry.odometer_km, vehicle)}"
     return f"of {entry.date}"
+
+
+def named(entry: Entry, vehicle: Vehicle) -> str:
+    """How a command names an entry: its odometer value, else its day."""
+    if entry.odometer_km is None:
+        return entry.date.isoformat()
+    return f"{from_base(entry.odometer_km, vehicle.distance_unit):.0f}"
 
 
 def swapped(typed: str) -> Iterator[str]:

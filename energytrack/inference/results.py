@@ -185,6 +185,7 @@ class SetAside:
     suggestion: str  # what would fit
     merged_with_next: bool  # only the level after it is doubted: its driving counts, together with the next
     end_km: float  # position on the log's own scale
+    amend: tuple[str, ...] = ()  # what to type after `energytrack amend` if that is so
 
 
 @dataclass(frozen=True)

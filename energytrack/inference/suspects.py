@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from energytrack.consumption.oddities import Odd, Sorted
 from energytrack.consumption.segments import SegmentedLog
-from energytrack.consumption.slips import Case, find_slips, place
+from energytrack.consumption.slips import Case, find_slips, named, place
 from energytrack.inference.results import SetAside
 from energytrack.logbook.records import Vehicle
 
@@ -25,11 +25,13 @@ def _told(case: Case, odd: Odd, as_typed: bool) -> SetAside:
     slips = find_slips(case) if as_typed else []
     if odd.is_pair and not slips:
         suspicion, suggestion = "level wrong", f"mark the entry {place(entry, case.vehicle)} as partial"
+        amend: tuple[str, ...] = (f"{named(entry, case.vehicle)} --partial",)
     else:
         suspicion = slips[0].what if slips else UNEXPLAINED
         suggestion = "; or ".join(
             [slip.suggestion if slip is slips[0] else f"{slip.what}: {slip.suggestion}" for slip in slips]
         )
+        amend = tuple(slip.amend for slip in slips)
     return SetAside(
         odometer_km=entry.odometer_km,
         date=entry.date.isoformat(),
@@ -39,4 +41,5 @@ def _told(case: Case, odd: Odd, as_typed: bool) -> SetAside:
         suggestion=suggestion or _LOOK,
         merged_with_next=odd.is_pair,
         end_km=segment.end_km,
+        amend=amend,
     )

@@ -8,6 +8,8 @@ import unicodedata
 from collections.abc import Callable
 from functools import lru_cache
 
+from energytrack.logbook.formulas import restored
+
 LARGEST = 1e15
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]{1,3})?")
 _ISO = re.compile(r"([0-9]{4})-([0-9]{2})-([0-9]{2})(?:[T ][0-9]{2}:[0-9]{2}\S*)?")
@@ -26,7 +28,8 @@ def shown(text: str) -> str:
 
 
 def text_of(text: str) -> str:
-    """Free text without control characters and line breaks."""
+    """Free text without control characters and line breaks, and without the mark that made it inert."""
+    text = restored(text)
     if text.isprintable():
         return text
     return "".join(" " if unicodedata.category(c) in ("Cc", "Zl", "Zp") else c for c in text).strip()

@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import TextIO
 
 from energytrack.errors import EntryError
+from energytrack.logbook.formulas import restored
 from energytrack.logbook.records import Problem
 
 DELIMITERS = (",", ";", "\t")
@@ -54,7 +55,7 @@ def open_csv(path: Path, *, delimiter: str | None = None, encoding: str | None =
     first = next(_rows(path, encoding, delimiter), None)
     if first is None:
         raise UnreadableTableError(Problem("is empty; the first line must name the columns", str(path)))
-    return CsvFile(path, encoding, delimiter, tuple(cell.strip() for cell in first[1]))
+    return CsvFile(path, encoding, delimiter, tuple(restored(cell.strip()) for cell in first[1]))
 
 
 def _named(path: Path, encoding: str) -> str:

@@ -102,6 +102,25 @@ class LogbookFile:
                 self._db.execute("ROLLBACK")
             raise
 
+    def query(self, select: str, *values: Any) -> list[tuple[Any, ...]]:
+        """The rows a SELECT finds."""
+        return self._rows(select, *values)
+
+    def each(self, select: str) -> Iterator[tuple[Any, ...]]:
+        """The rows a SELECT finds, one by one."""
+        with self._guard():
+            yield from self._db.execute(select)
+
+    @contextmanager
+    def snapshot(self) -> Iterator[None]:
+        """What is read inside is of one moment, whoever writes meanwhile."""
+        with self._guard():
+            self._db.execute("BEGIN")
+        try:
+            yield
+        finally:
+            self._db.execute("ROLLBACK")
+
     def _rows(self, select: str, *values: Any) -> list[tuple[Any, ...]]:
         with self._guard():
             return self._db.execute(select, values).fetchall()

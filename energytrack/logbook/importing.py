@@ -98,7 +98,7 @@ def _import_entries(request: Request, store: Store | None, logbook: Path, today:
     outcome = Outcome(str(request.path), rejected=plan.problems, notes=plan.notes + _unit_notes(request, plan, known))
     with _rejects(request, request.path, plan.problems, outcome):
         store = store or Store.create(logbook)
-        with store.transaction():
+        with store.transaction("imported"):
             if added:
                 store.add_vehicle(added)
             _add(store, plan, request, outcome)
@@ -106,14 +106,20 @@ def _import_entries(request: Request, store: Store | None, logbook: Path, today:
 
 
 def _import_folder(request: Request, store: Store, today: dt.date) -> Outcome:
+    from energytrack.logbook import restoring  # only here: a folder seldom comes in
+
+    left_out = restoring.why_not(store, request.path)
+    if left_out is None:
+        return _restored(request, store)
     folder = Folder(request.path)
     names = {vehicle.name for vehicle in store.vehicles()}
     known = [*store.vehicles(), *(vehicle for vehicle in folder.vehicles() if vehicle.name not in names)]
     request = replace(_with_defaults(request, known), again=True)
     entries = request.path / "entries.csv"
     plan = _planned(request, entries, store, known, today)
-    outcome = Outcome(str(request.path), rejected=plan.problems, notes=plan.notes)
-    with _rejects(request, entries, plan.problems, outcome), store.transaction():
+    notes = [*plan.notes, *([left_out] if left_out else [])]
+    outcome = Outcome(str(request.path), rejected=plan.problems, notes=notes)
+    with _rejects(request, entries, plan.problems, outcome), store.transaction("imported"):
         outcome.count("vehicles", merging.merge_vehicles(store, folder.vehicles()), len(folder.vehicles()))
         _add(store, plan, request, outcome)
         modifications = [row for vehicle in folder.vehicles() for row in folder.modifications(vehicle.name)]
@@ -121,6 +127,16 @@ def _import_folder(request: Request, store: Store, today: dt.date) -> Outcome:
         events = [row for vehicle in folder.vehicles() for row in folder.events(vehicle.name)]
         outcome.count("events", merging.merge_events(store, events), len(events))
         outcome.count("weather", merging.merge_weather(store, folder.weather()), len(folder.weather()))
+    return outcome
+
+
+def _restored(request: Request, store: Store) -> Outcome:
+    """An exported folder into a new logbook: every row, the history too."""
+    from energytrack.logbook.restoring import restore
+
+    outcome = Outcome(str(request.path))
+    for table, rows in restore(store, request.path).items():
+        outcome.count(table, rows, rows)
     return outcome
 
 
@@ -137,7 +153,7 @@ def _import_other(request: Request, store: Store) -> Outcome:
         for name in dict.fromkeys(row.vehicle for row in rows):
             store.vehicle(name)
     outcome = Outcome(str(request.path), rejected=reading.problems, notes=reading.notes)
-    with _rejects(request, request.path, reading.problems, outcome), store.transaction():
+    with _rejects(request, request.path, reading.problems, outcome), store.transaction("imported"):
         outcome.count(request.table, merge(store, rows), len(rows))
     return outcome
 

@@ -19,9 +19,10 @@ VEHICLE_COLUMNS = (
 )
 ENTRY_COLUMNS = (
     "date, energy, odometer_km, kind, full, level_percent, missed, distance_km, cost, currency, "
-    "temperature_c, speed_kmh, place, note, extra, id"
+    "temperature_c, speed_kmh, place, note, extra"
 )
-ENTRY_SELECT = f"{ENTRY_COLUMNS}, EXISTS (SELECT 1 FROM confirmation WHERE entry_id = id)"
+NUMBER = "coalesce(origin, id)"  # of an entry, through all its corrections
+ENTRY_SELECT = f"{ENTRY_COLUMNS}, {NUMBER}, EXISTS (SELECT 1 FROM confirmation WHERE entry_id = id)"
 SWITCH_COLUMNS = (
     "modification, action, date, odometer_km, level, target_percent, note, "
     "known_low_percent, known_high_percent, reversible"
@@ -34,7 +35,7 @@ def vehicle_of(row: tuple[Any, ...]) -> Vehicle:
 
 
 def entry_of(vehicle: str, row: tuple[Any, ...]) -> Entry:
-    values = dict(zip((*ENTRY_COLUMNS.split(", "), "confirmed"), row, strict=True))
+    values = dict(zip((*ENTRY_COLUMNS.split(", "), "id", "confirmed"), row, strict=True))
     values["date"] = dt.date.fromisoformat(values["date"])
     values["energy"] = math.nan if values["energy"] is None else values["energy"]
     values |= {name: bool(values[name]) for name in ("full", "missed", "confirmed")}
@@ -105,8 +106,13 @@ def insert_all(connection: sqlite3.Connection, table: str, values: Sequence[Mapp
         connection.executemany(_statement(table, stamped[0]), stamped)
 
 
+def moment_of(time: dt.datetime) -> str:
+    """A moment as it is kept: UTC, to the second, so that texts compare as moments do."""
+    return time.astimezone(dt.UTC).isoformat(timespec="seconds")
+
+
 def _stamped(values: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
-    now = dt.datetime.now(dt.UTC).isoformat(timespec="seconds")
+    now = moment_of(dt.datetime.now(dt.UTC))
     return [{**row, "recorded_at": now} for row in values]
 
 

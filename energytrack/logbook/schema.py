@@ -1,7 +1,9 @@
 """The tables of a logbook file, as the steps that lead from one version to the next.
 
 What was logged is never overwritten. A correction is a further row that supersedes the earlier one; striking an entry
-is such a row with `struck` set. `supersedes` is unique, so that each row has one successor at most.
+is such a row with `struck` set. `supersedes` is unique, so that each row has one successor at most. `origin` names the
+first row of such a chain: the number its entry keeps. What was recorded in one go shares a row of `change`, whose
+number gives the order of recording, whatever the clock said.
 """
 
 from __future__ import annotations
@@ -172,8 +174,90 @@ CREATE TABLE confirmation (      -- an entry that looks odd and is right
 {_kept_for_good("confirmation", "entry_id")}
 """
 
+_DATED = ("entry", "switch", "event", "vehicle", "confirmation")  # rows that were recorded at a moment
+
+
+def _written_again(table: str, advice: str) -> tuple[str, str]:
+    """Take the guard against UPDATE away, and put it back."""
+    refuse = f"BEGIN SELECT RAISE(ABORT, 'rows of {table} are never changed{advice}'); END;"
+    return (
+        f"DROP TRIGGER {table}_kept_as_written;",
+        f"CREATE TRIGGER {table}_kept_as_written BEFORE UPDATE ON {table} {refuse}",
+    )
+
+
+def _recorded(table: str) -> str:
+    """Number and moment of recording of each row; where the clock was set back, the latest moment before."""
+    key = "entry_id" if table == "confirmation" else "id"
+    return f"SELECT {key} AS number, max(recorded_at) OVER (ORDER BY {key}) AS moment FROM {table}"
+
+
+def _ascribe(table: str) -> str:
+    """Give the rows that are there the change of their moment."""
+    key = "entry_id" if table == "confirmation" else "id"
+    return f"""
+ALTER TABLE {table} ADD COLUMN change_id INTEGER REFERENCES change (id);
+UPDATE {table} SET change_id = (SELECT id FROM change WHERE recorded_at = seen.moment)
+    FROM ({_recorded(table)}) AS seen WHERE {key} = seen.number;
+"""
+
+
+_lines = "\n".join
+_GUARDED = [_written_again(table, ": add one that supersedes it") for table in ("entry", "switch", "event")]
+_GUARDED += [_written_again("confirmation", "")]
+
+_VERSION_3 = f"""
+CREATE TABLE change (            -- what was recorded in one go; numbered in the order of recording
+    id INTEGER PRIMARY KEY,
+    what TEXT NOT NULL CHECK (what <> ''),
+    why TEXT NOT NULL,
+    undoes INTEGER UNIQUE REFERENCES change (id),
+    recorded_at TEXT NOT NULL    -- UTC
+) STRICT;
+
+CREATE INDEX change_by_moment ON change (recorded_at);
+
+INSERT INTO change (what, why, recorded_at)
+    SELECT DISTINCT 'logged', '', moment FROM ({" UNION ".join(f"SELECT moment FROM ({_recorded(t)})" for t in _DATED)})
+    ORDER BY moment;
+
+{_lines(off for off, _ in _GUARDED)}
+{_lines(_ascribe(table) for table in _DATED)}
+ALTER TABLE entry ADD COLUMN origin INTEGER REFERENCES entry (id);  -- null: the first row of its chain
+UPDATE entry SET origin = (
+    WITH RECURSIVE back (id, supersedes) AS (
+        SELECT entry.id, entry.supersedes
+        UNION ALL SELECT earlier.id, earlier.supersedes FROM entry AS earlier JOIN back ON earlier.id = back.supersedes
+    ) SELECT id FROM back WHERE supersedes IS NULL
+) WHERE supersedes IS NOT NULL;
+{_lines(on for _, on in _GUARDED)}
+{_kept_for_good("change", "id")}
+{_kept_for_good("vehicle", "name")}
+
+DROP INDEX entry_in_driving_order;
+CREATE INDEX entry_in_driving_order ON entry (vehicle_id, date, odometer_km, coalesce(origin, id));
+CREATE INDEX entry_revisions ON entry (origin) WHERE origin IS NOT NULL;
+
+ALTER TABLE weather RENAME TO weather_before;
+CREATE TABLE weather (
+    id INTEGER PRIMARY KEY,
+    date TEXT NOT NULL,
+    temperature_c REAL,          -- null: what was given is taken back
+    change_id INTEGER REFERENCES change (id),
+    recorded_at TEXT NOT NULL    -- empty: before version 3
+) STRICT;
+INSERT INTO weather (date, temperature_c, recorded_at) SELECT date, temperature_c, '' FROM weather_before ORDER BY date;
+DROP TABLE weather_before;
+CREATE INDEX weather_by_date ON weather (date, id);
+CREATE VIEW standing_weather AS
+    SELECT * FROM weather AS this
+    WHERE temperature_c IS NOT NULL
+    AND NOT EXISTS (SELECT 1 FROM weather AS later WHERE later.date = this.date AND later.id > this.id);
+{_kept_for_good("weather", "id")}
+"""
+
 # step n leads from version n to n + 1; never change one that was released
-MIGRATIONS: tuple[str, ...] = (_VERSION_1, _VERSION_2)
+MIGRATIONS: tuple[str, ...] = (_VERSION_1, _VERSION_2, _VERSION_3)
 
 
 def version_of(connection: sqlite3.Connection) -> int:

@@ -10,20 +10,22 @@ from typing import Any
 
 from energytrack.errors import LogbookError, UnknownNameError
 from energytrack.logbook import rows
-from energytrack.logbook.file import LogbookFile
+from energytrack.logbook.changes import ChangingFile
 from energytrack.logbook.records import Entry, Event, Modification, Vehicle, Weather
 from energytrack.logbook.switches import Switch, check_switch, pair
 
 TYPED = "terminal"  # source of entries that were typed
 SAME_PLACE_KM = 0.5  # no odometer shows less
 _NO_REPEAT = (  # of a chain of corrections, those that changed what makes an entry this entry, and the first
-    "NOT EXISTS (SELECT 1 FROM entry AS earlier WHERE earlier.id = this.supersedes "
+    "(this.origin IS NULL OR NOT EXISTS (SELECT 1 FROM entry AS earlier WHERE earlier.id < this.id "
+    "AND earlier.id IN (SELECT this.origin UNION ALL SELECT id FROM entry WHERE origin = this.origin) "
     "AND (earlier.date, earlier.odometer_km, earlier.distance_km, earlier.energy) "
-    "IS (this.date, this.odometer_km, this.distance_km, this.energy))"
+    "IS (this.date, this.odometer_km, this.distance_km, this.energy))) "
+    "AND coalesce(change_id, 0) NOT IN (SELECT undoes FROM change WHERE undoes IS NOT NULL)"  # as if never logged
 )
 
 
-class Store(LogbookFile):
+class Store(ChangingFile):
     """A logbook file, open for reading and writing. Every method raises LogbookError where the file fails it."""
 
     writable = True
@@ -43,8 +45,8 @@ class Store(LogbookFile):
         return rows.vehicle_of(found[0])
 
     def entries(self, vehicle_name: str) -> list[Entry]:
-        """All standing entries in driving order: by date, on one day by odometer, then as logged."""
-        return self._entries(vehicle_name, "ORDER BY date, odometer_km, id")
+        """All standing entries in driving order: by date, on one day by odometer, then as first logged."""
+        return self._entries(vehicle_name, f"ORDER BY date, odometer_km, {rows.NUMBER}")
 
     def ever_logged(self, vehicle_name: str) -> list[Entry]:
         """Every entry as first logged, struck ones too, and every correction that changed its moment or amounts."""
@@ -55,33 +57,37 @@ class Store(LogbookFile):
 
     def last_entries(self, vehicle_name: str, count: int) -> list[Entry]:
         """The newest `count` standing entries in driving order, at a cost that does not grow with the logbook."""
-        newest_first = "ORDER BY date DESC, odometer_km DESC, id DESC LIMIT ?"
+        newest_first = f"ORDER BY date DESC, odometer_km DESC, {rows.NUMBER} DESC LIMIT ?"
         return self._entries(vehicle_name, newest_first, count)[::-1]
 
     def entry(self, vehicle_name: str, number: int) -> Entry:
         """The standing entry of that number. Raises UnknownNameError where there is none."""
-        found = self._entries(vehicle_name, "AND id = ?", number)
+        found = self._entries(vehicle_name, "AND id = ?", self.standing_row(number))
         if not found:
             raise UnknownNameError(f"{vehicle_name} has no entry {number}: `entries` lists them")
         return found[0]
 
     def neighbours(self, entry: Entry) -> tuple[Entry | None, Entry | None]:
-        """The standing entries just before and after the place of a new one: by odometer, or by date without one."""
+        """The standing entries just before and after the place of another: by odometer, or by date without one.
+
+        An entry that has a number is no neighbour of itself.
+        """
+        others = f"AND {rows.NUMBER} IS NOT ?"
         if entry.odometer_km is not None:
-            before = "AND odometer_km <= ? ORDER BY odometer_km DESC, date DESC LIMIT 1"
-            after = "AND odometer_km > ? ORDER BY odometer_km, date LIMIT 1"
+            before = f"AND odometer_km <= ? {others} ORDER BY odometer_km DESC, date DESC LIMIT 1"
+            after = f"AND odometer_km > ? {others} ORDER BY odometer_km, date LIMIT 1"
             place: float | str = entry.odometer_km
         else:
-            before = "AND date <= ? ORDER BY date DESC, odometer_km DESC, id DESC LIMIT 1"
-            after = "AND date > ? ORDER BY date, odometer_km, id LIMIT 1"
+            before = f"AND date <= ? {others} ORDER BY date DESC, odometer_km DESC, {rows.NUMBER} DESC LIMIT 1"
+            after = f"AND date > ? {others} ORDER BY date, odometer_km, {rows.NUMBER} LIMIT 1"
             place = entry.date.isoformat()
-        found = [self._entries(entry.vehicle, part, place) for part in (before, after)]
+        found = [self._entries(entry.vehicle, part, place, entry.id) for part in (before, after)]
         return next(iter(found[0]), None), next(iter(found[1]), None)
 
     def twin(self, entry: Entry) -> Entry | None:
-        """A standing entry of the same kind, day and odometer; without an odometer, of the same distance and amount."""
-        part = "AND kind = ? AND date = ? AND odometer_km IS ? LIMIT 1"
-        values: list[Any] = [entry.kind, entry.date.isoformat(), entry.odometer_km]
+        """Another entry of the same kind, day and odometer; without an odometer, of the same distance and amount."""
+        part = f"AND kind = ? AND date = ? AND odometer_km IS ? AND {rows.NUMBER} IS NOT ? LIMIT 1"
+        values: list[Any] = [entry.kind, entry.date.isoformat(), entry.odometer_km, entry.id]
         if entry.odometer_km is None:
             part = f"AND distance_km IS ? AND energy = ? {part}"
             values = [entry.distance_km, entry.energy, *values]
@@ -100,7 +106,7 @@ class Store(LogbookFile):
 
     def weather(self) -> list[Weather]:
         """Mean outside temperature by date."""
-        found = self._rows("SELECT date, temperature_c FROM weather ORDER BY date")
+        found = self._rows("SELECT date, temperature_c FROM standing_weather ORDER BY date")
         with self._guard():
             return [Weather(dt.date.fromisoformat(date), temperature) for date, temperature in found]
 
@@ -125,12 +131,14 @@ class Store(LogbookFile):
             if self._rows("SELECT 1 FROM vehicle WHERE name = ?", vehicle.name):
                 raise LogbookError(f"there is a vehicle {vehicle.name!r} already: choose another name")
             columns = rows.VEHICLE_COLUMNS.split(", ")
-            rows.insert(self._db, "vehicle", {column: getattr(vehicle, column) for column in columns})
+            values = {column: getattr(vehicle, column) for column in columns}
+            rows.insert(self._db, "vehicle", {**values, "change_id": self.change("vehicle added")})
 
     def add_entry(self, entry: Entry, typed: Mapping[str, Any]) -> int:
         """Append one entry with what was typed for it; its number."""
         with self.transaction(), self._guard():
-            number = rows.insert(self._db, "entry", self._written(self._number(entry.vehicle), entry, typed, TYPED))
+            values = self._written(self._number(entry.vehicle), entry, typed, TYPED)
+            number = rows.insert(self._db, "entry", {**values, "change_id": self.change("logged")})
             if entry.confirmed:
                 self.confirm(number)
             return number
@@ -158,20 +166,23 @@ class Store(LogbookFile):
                 else:
                     new.append(values)
                     confirmed.append(entry.confirmed)
+            if not new:
+                return 0
+            change = self.change("imported")
+            for values in new:
+                values["change_id"] = change
             rows.insert_all(self._db, "entry", new)
             first = self._rows("SELECT coalesce(max(id), 0) FROM entry")[0][0] - len(new) + 1  # numbers never have gaps
-            rows.insert_all(
-                self._db, "confirmation", [{"entry_id": first + n} for n, kept in enumerate(confirmed) if kept]
-            )
+            kept = [{"entry_id": first + n, "change_id": change} for n, sure in enumerate(confirmed) if sure]
+            rows.insert_all(self._db, "confirmation", kept)
         return len(new)
 
     def confirm(self, number: int) -> None:
         """Keep a standing entry that looks odd; once is enough. Raises UnknownNameError where there is none."""
         with self.transaction(), self._guard():
-            if not self._rows("SELECT 1 FROM standing_entry WHERE id = ?", number):
-                raise UnknownNameError(f"there is no entry {number}: `entries` lists them")
-            if not self._rows("SELECT 1 FROM confirmation WHERE entry_id = ?", number):
-                rows.insert(self._db, "confirmation", {"entry_id": number})
+            row = self.standing_row(number)
+            if not self._rows("SELECT 1 FROM confirmation WHERE entry_id = ?", row):
+                rows.insert(self._db, "confirmation", {"entry_id": row, "change_id": self.change("confirmed")})
 
     def fit(
         self,
@@ -196,14 +207,18 @@ class Store(LogbookFile):
         """Append one event."""
         values = {name: getattr(event, name) for name in ("what", "odometer_km", "odometer_factor", "note")}
         with self.transaction(), self._guard():
-            number = self._number(event.vehicle)
-            rows.insert(self._db, "event", {"vehicle_id": number, "date": event.date.isoformat(), **values})
+            values |= {"vehicle_id": self._number(event.vehicle), "date": event.date.isoformat()}
+            rows.insert(self._db, "event", {**values, "change_id": self.change("event logged")})
 
     def add_weather(self, weather: Sequence[Weather]) -> None:
-        """Keep temperatures by day; a day given again replaces the earlier value."""
-        values = [(day.date.isoformat(), day.temperature_c) for day in weather]
+        """Keep temperatures by day; of a day given again the newest counts."""
         with self.transaction(), self._guard():
-            self._db.executemany("INSERT OR REPLACE INTO weather (date, temperature_c) VALUES (?, ?)", values)
+            change = self.change("weather brought in")
+            values = [
+                {"date": day.date.isoformat(), "temperature_c": day.temperature_c, "change_id": change}
+                for day in weather
+            ]
+            rows.insert_all(self._db, "weather", values)
 
     def keep_assessment(self, vehicle: str, modification: str, result: Mapping[str, Any]) -> None:
         """Keep an answer, without its looks, for the echo of the entries to come."""
@@ -258,4 +273,6 @@ class Store(LogbookFile):
     def _switch(self, vehicle: str, switch: Switch) -> None:
         with self.transaction(), self._guard():
             check_switch(vehicle, self._switches(vehicle), switch)
-            rows.insert(self._db, "switch", {"vehicle_id": self._number(vehicle), **rows.switch_values(switch)})
+            values = {"vehicle_id": self._number(vehicle), **rows.switch_values(switch)}
+            action = "part fitted" if switch.fitted else "part removed"
+            rows.insert(self._db, "switch", {**values, "change_id": self.change(action)})

@@ -5,8 +5,6 @@ Columns as in the reference of tables; optional columns may be absent.
 
 from __future__ import annotations
 
-import csv
-import datetime as dt
 import math
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
@@ -22,6 +20,7 @@ from energytrack.logbook.columns import Form, Reader
 from energytrack.logbook.csvfile import UnreadableTableError, open_csv
 from energytrack.logbook.matching import match_columns
 from energytrack.logbook.records import UNIT_OF_CARRIER, Entry, Event, Modification, Problem, Vehicle, Weather
+from energytrack.logbook.written import cell, cells_of, lines
 
 Record = TypeVar("Record")
 AS_WRITTEN_HERE = Form()
@@ -217,51 +216,35 @@ def without_repeats(reading: Reading[Record], key: Callable[[Record], Any]) -> R
 def write_entries(path: Path, entries: Sequence[Entry]) -> None:
     """Write an entries table that `read_entries` brings back. Raises LogbookError; never overwrites."""
     extra = list(dict.fromkeys(name for entry in entries for name in entry.extra))
-    rows = ([*_values(entry, columns.ENTRIES), *(_cell(entry.extra.get(name)) for name in extra)] for entry in entries)
-    _write(path, (*columns.ENTRIES, *extra), rows)
+    rows = ([*cells_of(entry, columns.ENTRIES), *(cell(entry.extra.get(name)) for name in extra)] for entry in entries)
+    _write(path, (*columns.ENTRIES, *map(cell, extra)), rows)
 
 
 def write_vehicles(path: Path, vehicles: Sequence[Vehicle]) -> None:
     """Write a vehicles table. Raises LogbookError; never overwrites."""
-    rows = ([vehicle.name, *_values(vehicle, columns.VEHICLES[1:])] for vehicle in vehicles)
+    rows = ([vehicle.name, *cells_of(vehicle, columns.VEHICLES[1:])] for vehicle in vehicles)
     _write(path, columns.VEHICLES, rows)
 
 
 def write_modifications(path: Path, modifications: Sequence[Modification]) -> None:
     """Write a modifications table. Raises LogbookError; never overwrites."""
-    _write(path, columns.MODIFICATIONS, (_values(each, columns.MODIFICATIONS) for each in modifications))
+    _write(path, columns.MODIFICATIONS, (cells_of(each, columns.MODIFICATIONS) for each in modifications))
 
 
 def write_events(path: Path, events: Sequence[Event]) -> None:
     """Write an events table. Raises LogbookError; never overwrites."""
-    _write(path, columns.EVENTS, (_values(event, columns.EVENTS) for event in events))
+    _write(path, columns.EVENTS, (cells_of(event, columns.EVENTS) for event in events))
 
 
 def write_weather(path: Path, weather: Sequence[Weather]) -> None:
     """Write a weather table. Raises LogbookError; never overwrites."""
-    _write(path, columns.WEATHER, (_values(day, columns.WEATHER) for day in weather))
-
-
-def _values(record: object, names: Iterable[str]) -> list[str]:
-    return [_cell(getattr(record, name)) for name in names]
-
-
-def _cell(value: object) -> str:
-    if value is None or (isinstance(value, float) and math.isnan(value)):
-        return ""
-    if isinstance(value, bool):
-        return "yes" if value else "no"
-    if isinstance(value, float):
-        return repr(value).removesuffix(".0")
-    return value.isoformat() if isinstance(value, dt.date) else str(value)
+    _write(path, columns.WEATHER, (cells_of(day, columns.WEATHER) for day in weather))
 
 
 def _write(path: Path, header: Sequence[str], rows: Iterable[Sequence[str]]) -> None:
     try:
         with path.open("x", encoding="utf-8", newline="") as file:
-            writer = csv.writer(file, lineterminator="\n")
-            writer.writerow(header)
-            writer.writerows(rows)
+            file.writelines(lines([header, *rows]))
     except FileExistsError:
         raise LogbookError(f"{path} exists already; move it away or name another place") from None
     except OSError as error:

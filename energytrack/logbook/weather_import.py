@@ -66,7 +66,7 @@ def import_weather(
     if reading.problems and not skip_bad:
         raise BadRowsError(str(path), reading.problems, advice)
     days = [weather for _, weather in reading.rows]
-    with store.transaction():
+    with store.transaction("imported"):
         before = {day.date: day.temperature_c for day in store.weather()}
         new = merge_weather(store, days)
     replaced = sum(before.get(day.date, day.temperature_c) != day.temperature_c for day in days)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import shlex
+
 from energytrack.inference.results import Assessment, SetAside, Verdict
 from energytrack.presentation import figures
 from energytrack.presentation.plain import plain_text
@@ -31,11 +33,16 @@ def told(a: Assessment, unit: str) -> list[str]:
     """One line an entry, and how to keep it."""
     if not a.set_aside:
         return []
-    lines = [_line(each, unit) for each in a.set_aside[-MOST:]]
+    lines = [line for each in a.set_aside[-MOST:] for line in (_line(each, unit), *_corrections(each, a.vehicle))]
     if len(a.set_aside) > MOST:
         lines.insert(0, f"{len(a.set_aside)} entries stand out and are set aside; the newest {MOST} are:")
     which = "ODOMETER" if a.set_aside[-1].odometer_km is not None else "--date DAY"
     return [*lines, f"an entry that is right all the same: energytrack confirm {which}, or ask with --keep-all"]
+
+
+def _corrections(each: SetAside, vehicle: str) -> list[str]:
+    whose = f" --vehicle {shlex.quote(vehicle)}" if vehicle else ""
+    return [plain_text(f"if so: energytrack amend {option}{whose}") for option in each.amend]
 
 
 def _line(each: SetAside, unit: str) -> str:
