@@ -16,6 +16,8 @@ from energytrack.inference.noise import Array
 _DRAWS = 1_000
 _SEED = 19  # any: fixed, so that one log has one answer
 _SMALLEST = 1e-300
+_NODES, _WEIGHTS = np.polynomial.hermite_e.hermegauss(81)
+_WEIGHTS = _WEIGHTS / _WEIGHTS.sum()
 
 
 def chance(rows: Array, bound: float) -> float:
@@ -35,3 +37,12 @@ def chance(rows: Array, bound: float) -> float:
     reached = ((noise @ rows.reshape(-1, size).T).reshape(_DRAWS, count, width) ** 2).sum(axis=2)
     exceeding = np.maximum((reached > bound).sum(axis=1), 1)  # the first one does, up to rounding
     return min(1.0, count * alone * float(np.mean(1 / exceeding)))
+
+
+def as_if_known(statistic: float, width: int, freedom: float) -> float:
+    """The chi-square statistic of known noise that is as unusual as this one of noise estimated with `freedom`.
+
+    The log variance is taken as normal with variance 2 / freedom, as it is for the bounds of `enough`.
+    """
+    tail = float(_WEIGHTS @ chdtrc(width, statistic * np.exp(-np.sqrt(2 / freedom) * _NODES)))
+    return float(chdtri(width, max(tail, _SMALLEST)))
