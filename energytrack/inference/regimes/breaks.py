@@ -100,12 +100,13 @@ def find_breaks(
     max_breaks: int = 5,
     confidence: float = 0.95,
     trimming: float = 0.15,
+    temporary: bool = True,
 ) -> Found:
     """Breaks by tests for one more, given those found, until none is significant.
 
     declared: the modifications of `observed` are columns of the regression, and only what they do not account for is
     found; otherwise they are left out and found like anything else. slopes: the responses to the conditions may break
-    along with the level. Needs `places.FEWEST` segments; raises InferenceError where columns cannot be told apart.
+    along with the level. temporary: where no single break is significant, look for two at once. Needs `places.FEWEST` segments; raises InferenceError where columns cannot be told apart.
     """
     own = observed if declared else observed.keeping(())
     bare = fit_model(own, None, covariates=covariates)
@@ -116,7 +117,7 @@ def find_breaks(
     model, found = bare, ()
     trials: list[Trial] = []
     while len(found) < max_breaks:
-        tried = _try_more(search, model, found, max_breaks, 1 - confidence)
+        tried = _try_more(search, model, found, max_breaks if temporary else len(found) + 1, 1 - confidence)
         trials += [trial for trial, _ in tried]
         if not tried or trials[-1].p_value > 1 - confidence:
             break
