@@ -67,7 +67,7 @@ class Search:
 
     @property
     def width(self) -> int:
-        return self.terms.shape[1]
+        return int(self.terms.shape[1])
 
     def fit(self, places: Sequence[float], start: Array) -> Model:
         """The regression with breaks at these places (ascending); the last one's level has no prior."""
@@ -106,7 +106,8 @@ def find_breaks(
 
     declared: the modifications of `observed` are columns of the regression, and only what they do not account for is
     found; otherwise they are left out and found like anything else. slopes: the responses to the conditions may break
-    along with the level. temporary: where no single break is significant, look for two at once. Needs `places.FEWEST` segments; raises InferenceError where columns cannot be told apart.
+    along with the level. temporary: where no single break is significant, look for two at once. Needs
+    `places.FEWEST` segments; raises InferenceError where columns cannot be told apart.
     """
     own = observed if declared else observed.keeping(())
     bare = fit_model(own, None, covariates=covariates)
@@ -114,7 +115,8 @@ def find_breaks(
     search = Search(
         own, covariates, bare, np.column_stack([np.ones(len(own)), terms]), where.margin(len(own), trimming)
     )
-    model, found = bare, ()
+    model = bare
+    found: tuple[float, ...] = ()
     trials: list[Trial] = []
     while len(found) < max_breaks:
         tried = _try_more(search, model, found, max_breaks if temporary else len(found) + 1, 1 - confidence)

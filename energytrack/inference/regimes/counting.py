@@ -28,7 +28,8 @@ def bic(residual: float, n: int, parameters: int) -> float:
 def lwz(residual: float, n: int, parameters: int) -> float:
     """As bic, with a penalty of 0.299 log(n)^2.1 for each parameter."""
     strict, power = _LWZ
-    return n * (log(residual / n) + 1 + log(2 * pi)) + parameters * strict * log(n) ** (2 + power)
+    penalty: float = strict * log(n) ** (2 + power)
+    return n * (log(residual / n) + 1 + log(2 * pi)) + parameters * penalty
 
 
 def criteria(search: Search, scatter: Scatter, most: int) -> tuple[Criterion, ...]:

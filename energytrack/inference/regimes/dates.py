@@ -36,7 +36,7 @@ def beyond(place: float, slope: float = 1.0, variance: float = 1.0) -> float:
     depends on their sum r alone once the two are put together.
     """
     rate, drift = slope / variance, slope / 2
-    scale = 2 / (variance**1.5 * sqrt(2 * pi * place**3))
+    scale = 2 / sqrt(2 * pi * (variance * place) ** 3)
 
     def density(r: float) -> float:
         height = r - rate / (1 + rate) * (1 - exp(-r))

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from math import sqrt
+from itertools import pairwise
+from math import inf, sqrt
 
 import numpy as np
 
@@ -15,6 +16,7 @@ from energytrack.inference.regimes.breaks import Found
 from energytrack.inference.regimes.explain import CAUTION, explanation, matches, suspects
 from energytrack.inference.regimes.range import place_range
 from energytrack.inference.regimes.results import Break, Point, Regime
+from energytrack.inference.reml import Fit
 from energytrack.inference.shift import LEVEL, ratio_interval, shift_along
 from energytrack.logbook.records import Event, Modification
 
@@ -61,13 +63,11 @@ def _shift(found: Found, number: int, confidence: float) -> tuple[float, tuple[f
     step = np.zeros(len(before))
     step[found.coefficients_of(number)[0]] = 1.0
     a, b = float(step @ fit.coefficients), float(before @ fit.coefficients)
-    vaa, vbb, vab = (float(one @ fit.covariance @ other) for one, other in _pairs(step, before))
+    vaa, vbb, vab = (
+        float(one @ fit.covariance @ other) for one, other in ((step, step), (before, before), (step, before))
+    )
     bound = mixture_quantile((1 - confidence) / 2, shift_along(fit, step).freedom)
     return a / b, ratio_interval(a, b, vaa, vbb, vab, bound)
-
-
-def _pairs(a: Array, b: Array) -> tuple[tuple[Array, Array], ...]:
-    return ((a, a), (b, b), (a, b))
 
 
 def _level(found: Found, breaks: int) -> Array:
@@ -92,14 +92,9 @@ def regimes_of(found: Found, confidence: float) -> tuple[Regime, ...]:
     observed, fit, scale = found.observed, found.model.fit, found.model.scale.consumption
     ends = (0.0, *found.places, float(len(observed)))
     regimes = []
-    for number, (start, end) in enumerate(zip(ends[:-1], ends[1:], strict=True)):
+    for number, (start, end) in enumerate(pairwise(ends)):
         weights = _level(found, number)
-        value = float(weights @ fit.coefficients)
-        variance = float(weights @ fit.covariance @ weights)
-        slope = np.einsum("i,kij,j->k", weights, fit.covariance_gradient, weights)
-        wobble = float(slope @ fit.theta_covariance @ slope)
-        freedom = max(1.0, 2 * variance**2 / wobble) if wobble > 0 else np.inf
-        half = mixture_quantile((1 - confidence) / 2, freedom) * sqrt(variance)
+        value, half = float(weights @ fit.coefficients), _half_width(fit, weights, confidence)
         regimes.append(
             Regime(
                 where.odometer(observed, start),
@@ -114,22 +109,29 @@ def regimes_of(found: Found, confidence: float) -> tuple[Regime, ...]:
     return tuple(regimes)
 
 
+def _half_width(fit: Fit, weights: Array, confidence: float) -> float:
+    """Of the interval of a combination of coefficients, with Satterthwaite's (1946) degrees of freedom."""
+    variance = float(weights @ fit.covariance @ weights)
+    slope = np.einsum("i,kij,j->k", weights, fit.covariance_gradient, weights)
+    wobble = float(slope @ fit.theta_covariance @ slope)
+    freedom = max(1.0, 2 * variance**2 / wobble) if wobble > 0 else inf
+    return mixture_quantile((1 - confidence) / 2, freedom) * sqrt(variance)
+
+
 def points_of(found: Found) -> tuple[Point, ...]:
     """Every segment's consumption brought to the reference conditions, declared modifications in it taken out."""
-    observed, bare = found.observed, found.bare
-    own = found.model.fit.coefficients
-    count = bare.problem.columns.shape[1]
-    same = [LEVEL, *range(found.model.term_columns.start, found.model.term_columns.stop)]
-    same += [_index(found, name) for name in bare.others]
-    slopes = own[same[:count]]
-    relative = bare.problem.columns
-    conditions = relative[:, 1:] @ slopes[1:] * bare.scale.energy
-    consumption = (observed.energy - conditions) / observed.distance_km
+    observed, bare, model = found.observed, found.bare, found.model
+    same = list(range(bare.problem.columns.shape[1])) if not found.places else _in_both(found)
+    effects = bare.problem.columns[:, 1:] @ model.fit.coefficients[same][1:] * bare.scale.energy
+    consumption = (observed.energy - effects) / observed.distance_km
     return tuple(
         Point(float(start), float(end), where.date(observed, k + 0.5), float(value))
         for k, (start, end, value) in enumerate(zip(observed.start_km, observed.end_km, consumption, strict=True))
     )
 
 
-def _index(found: Found, name: str) -> int:
-    return found.model.term_columns.stop + found.model.others.index(name)
+def _in_both(found: Found) -> list[int]:
+    """Where the columns of the regression without breaks stand in the one with them."""
+    terms = found.model.term_columns
+    others = [terms.stop + found.model.others.index(name) for name in found.bare.others]
+    return [LEVEL, *range(terms.start, terms.stop), *others]

@@ -10,7 +10,8 @@ from energytrack.inference.results import Range
 from energytrack.logbook.records import Event, Modification
 
 CAUTION = (
-    "A sudden unexplained rise: have brakes, tyres and leaks inspected by a qualified person before further driving tests."
+    "A sudden unexplained rise: have brakes, tyres and leaks inspected by a qualified person "
+    "before further driving tests."
 )
 _LARGE = 8.0  # percent; beyond the usual swing of habits: common practice, no source
 _COLD, _WARM = (10, 11, 12, 1), (3, 4, 5, 6)  # months in which the north turns to winter and to summer
@@ -80,8 +81,8 @@ def _of_a_rise(shift_percent: float, month: int, unit: str) -> tuple[str, ...]:
     if month in _COLD:
         winter = "winter blend, winter tyres" if unit != "kWh" else "a cold battery, winter tyres"
         places.append(f"the cold season, where it begins then: {winter}, heating")
-    leak = "a leak of fuel, or another place or brand of filling" if unit != "kWh" else "charging losses of another charger"
-    return (*places, leak, "another driver, route or habit")
+    leak = "a leak of fuel, or another brand of it"
+    return (*places, "losses of another charger" if unit == "kWh" else leak, "another driver, route or habit")
 
 
 def _of_a_fall(shift_percent: float, month: int, unit: str) -> tuple[str, ...]:

@@ -43,7 +43,7 @@ def find_regimes(
     trimming: float = 0.15,
     set_aside: Literal["odd", "none"] = "odd",
 ) -> RegimeReport:
-    """Find lasting changes of consumption in one vehicle's log, date and size them, and hold them against what was logged.
+    """Find lasting changes of consumption in one vehicle's log: where, when, how large, and what was logged there.
 
     Tables as for `assess`. Modifications and events take no part in the search: a break is found without them and then
     compared. `slopes`: the responses to temperature, speed and covariates may break along with the level. No regime is
@@ -136,8 +136,8 @@ def missing(observed: Observations) -> str | None:
     consumption = observed.energy / observed.distance_km
     if float(np.ptp(consumption)) <= _SAME * float(consumption.mean()):
         return (
-            f"all {count} segments have the same consumption: nothing scatters, so there is no change, and no chance to "
-            f"hold one against; check that amounts are what was bought"
+            f"all {count} segments have the same consumption: nothing scatters, so no change can be "
+            f"told from chance; check that amounts are what was bought"
         )
     return None
 

@@ -94,7 +94,7 @@ def partial_partitions(
     """
     if common.shape[1] == 0:
         return partitions(y, columns, most=most, shortest=shortest)
-    found = []
+    found: list[Partition] = []
     for count in range(min(most, len(y) // max(shortest, 1) - 1) + 1):
         breaks, residual = _fitted(y, columns, common, found[-1].breaks if found else ())
         here = Partition(found[-1].breaks if found else (), np.inf)
@@ -131,8 +131,7 @@ def _prefix_sums(y: Array, columns: Array) -> tuple[float, Array]:
     """
     n, q = columns.shape
     left, sizes, _ = np.linalg.svd(columns, full_matrices=False)
-    kept = sizes > _SINGULAR * sizes.max(initial=0.0)
-    basis = np.where(kept, left, 0.0)
+    basis = left * (sizes > _SINGULAR * sizes.max(initial=0.0))
     rest = y - basis @ (basis.T @ y)
     scale = float(np.sqrt(np.mean(rest**2))) or 1.0
     stacked = np.column_stack([basis * np.sqrt(n), rest / scale])

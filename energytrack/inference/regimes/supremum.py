@@ -36,7 +36,8 @@ def chance(rows: Array, bound: float) -> float:
     noise += np.einsum("dqm,dq->dm", own, radius[:, None] * direction - np.einsum("dqm,dm->dq", own, noise))
     reached = ((noise @ rows.reshape(-1, size).T).reshape(_DRAWS, count, width) ** 2).sum(axis=2)
     exceeding = np.maximum((reached > bound).sum(axis=1), 1)  # the first one does, up to rounding
-    return min(1.0, count * alone * float(np.mean(1 / exceeding)))
+    found: float = count * alone * float(np.mean(1 / exceeding))
+    return min(1.0, found)
 
 
 def as_if_known(statistic: float, width: int, freedom: float) -> float:
