@@ -5,7 +5,7 @@ from __future__ import annotations
 import tempfile
 from pathlib import Path
 
-from tests.benchmarks import growth, processes
+from tests.benchmarks import growth, partitions, processes
 
 
 def benchmarks() -> None:
@@ -15,7 +15,7 @@ def benchmarks() -> None:
         print(processes.describe(logbook), flush=True)
         print(processes.enough(logbook), flush=True)
         print(processes.fillup(logbook), flush=True)
-    for line in growth.compare():
+    for line in (*partitions.compare(), *growth.compare()):
         print(line, flush=True)
 
 

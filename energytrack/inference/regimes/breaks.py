@@ -101,16 +101,18 @@ def find_breaks(
     confidence: float = 0.95,
     trimming: float = 0.15,
     temporary: bool = True,
+    start: Array | None = None,
 ) -> Found:
     """Breaks by tests for one more, given those found, until none is significant.
 
     declared: the modifications of `observed` are columns of the regression, and only what they do not account for is
     found; otherwise they are left out and found like anything else. slopes: the responses to the conditions may break
-    along with the level. temporary: where no single break is significant, look for two at once. Needs
-    `places.FEWEST` segments; raises InferenceError where columns cannot be told apart.
+    along with the level. temporary: where no single break is significant, look for two at once. start: a guess of the
+    log standard deviations (4,), such as another fit's. Needs `places.FEWEST` segments; raises InferenceError where
+    columns cannot be told apart.
     """
     own = observed if declared else observed.keeping(())
-    bare = fit_model(own, None, covariates=covariates)
+    bare = fit_model(own, None, covariates=covariates, start=start)
     terms = bare.terms.columns(bare.conditions) if slopes else np.zeros((len(own), 0))
     search = Search(
         own, covariates, bare, np.column_stack([np.ones(len(own)), terms]), where.margin(len(own), trimming)

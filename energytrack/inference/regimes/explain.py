@@ -50,9 +50,10 @@ def _inside(match: Match, interval_km: Range, interval_dates: tuple[str, str]) -
 
 def explanation(found: Sequence[Match], interval_km: Range, interval_dates: tuple[str, str]) -> str:
     """What agrees with the break, or that nothing logged does."""
-    km = f"{interval_km[0]:,.0f}-{interval_km[1]:,.0f} km"
+    low, high = interval_km
+    km = f"{low:,.0f}-{high:,.0f} km"
     if not found:
-        return f"unexplained: nothing was logged between {km} ({interval_dates[0]} to {interval_dates[1]})"
+        return f"unexplained: nothing was logged from {low:,.0f} to {high:,.0f} km ({' to '.join(interval_dates)})"
     first = found[0]
     happened = first.what if first.kind == "event" else f"{first.what} {first.kind}"
     if first.odometer_km is not None:

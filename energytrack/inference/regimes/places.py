@@ -19,7 +19,7 @@ _MOST = 200  # places tried at once; all segments of most logs
 
 def margin(count: int, trimming: float) -> int:
     """Segments that a regime has at least."""
-    return max(_FEWEST_A_SIDE, min(ceil(trimming * count - 1e-9), _MOST_A_SIDE))
+    return max(_FEWEST_A_SIDE, min(ceil(trimming * count - 1e-9), _MOST_A_SIDE, count // 2))
 
 
 def candidates(count: int, shortest: int, taken: tuple[float, ...] = ()) -> Array:
