@@ -111,7 +111,7 @@ def partial_partitions(
 def _fitted(y: Array, columns: Array, common: Array, breaks: tuple[int, ...]) -> tuple[Array, float]:
     """Common coefficients (p,) and the residual sum at given breaks."""
     design = np.column_stack([common, by_regime(columns, breaks)])
-    coefficients: Array = np.linalg.lstsq(design, y, rcond=None)[0]
+    coefficients: Array = np.linalg.lstsq(design, y, rcond=None)[0].astype(np.float64)
     residual = y - design @ coefficients
     return coefficients[: common.shape[1]], float(residual @ residual)
 

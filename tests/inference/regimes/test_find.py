@@ -1,4 +1,4 @@
-"""From a logbook to breaks: what is found, what is said of it, and what is asked for where nothing can be looked for."""
+"""From a logbook to breaks: what is found and said of it, and what is asked for where nothing can be looked for."""
 
 from __future__ import annotations
 
