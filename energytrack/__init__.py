@@ -1,6 +1,7 @@
 """Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
 
-The Python interface: open_logbook, assess, plan, plan_from Stated figures, compare, respond, rehearse, TwoCarriers.
+The Python interface: open_logbook, assess, plan, plan_from Stated figures, compare, respond, rehearse, find_regimes,
+TwoCarriers.
 Each is loaded when it is first used, so that importing the package costs nothing.
 """
 
@@ -16,6 +17,7 @@ _HOMES = {
     "compare": "energytrack.inference.comparison",
     "respond": "energytrack.inference.response",
     "rehearse": "energytrack.inference.rehearsal",
+    "find_regimes": "energytrack.inference.regimes.find",
     "plan_from": "energytrack.inference.designs",
     "Stated": "energytrack.inference.stated",
     "TwoCarriers": "energytrack.consumption.two_carriers",

@@ -14,6 +14,7 @@ LAYERS = ["errors", "logbook", "consumption", "inference", "presentation", "cli"
 LIGHT = [
     "inference.results",
     "inference.rehearsal_results",
+    "inference.regimes.results",
     *(f"consumption.{name}" for name in ("positions", "segments", "shares", "slips", "meaning", "terms")),
     *("consumption.two_carriers", "consumption.energy_content"),
 ]

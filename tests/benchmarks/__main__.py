@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import tempfile
+from itertools import chain
 from pathlib import Path
 
-from tests.benchmarks import answers, growth, processes
+from tests.benchmarks import answers, growth, partitions, processes
 
 
 def benchmarks() -> None:
@@ -16,9 +17,7 @@ def benchmarks() -> None:
         print(processes.enough(logbook), flush=True)
         print(processes.fillup(logbook), flush=True)
         print(processes.rehearse(Path(folder) / "rehearsed"), flush=True)
-    for line in answers.answers():
-        print(line, flush=True)
-    for line in growth.compare():
+    for line in chain(answers.answers(), partitions.compare(), growth.compare()):
         print(line, flush=True)
 
 
