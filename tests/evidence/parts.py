@@ -7,14 +7,25 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
-from tests.evidence import against_oracle, coverage, false_alarms, followed, forecast, goals, power, quantiles, sham
+from tests.evidence import (
+    against_oracle,
+    coverage,
+    false_alarms,
+    followed,
+    forecast,
+    goals,
+    power,
+    quantiles,
+    sham,
+    undeclared,
+)
 from tests.evidence.block import Block
 from tests.evidence.goals import Promise
 from tests.evidence.logs import jobs
 from tests.uses import Use
 
 Uses = tuple[Use, ...]
-LOGS, LONG_LOGS = 200, 100  # of each kind
+LOGS, LONG_LOGS, SEARCHED_LOGS = 200, 100, 40  # of each kind
 
 
 @dataclass(frozen=True)
@@ -29,8 +40,8 @@ class Part:
 
 def simulated(uses: Uses, most: int | None) -> list[Part]:
     """Logs drawn from a known truth, at most so many of each kind where `most` is given."""
-    logs, long_logs = (min(usual, most or usual) for usual in (LOGS, LONG_LOGS))
-    drifting = coverage.drifting_uses()
+    logs, long_logs, searched = (min(usual, most or usual) for usual in (LOGS, LONG_LOGS, SEARCHED_LOGS))
+    drifting, commutes = coverage.drifting_uses(), undeclared.drifting_uses()
     return [
         Part(
             false_alarms.claims,
@@ -54,6 +65,16 @@ def simulated(uses: Uses, most: int | None) -> list[Part]:
             jobs(uses, long_logs, followed.FIRST_SEED),
             lambda found: [power.block(found, uses, long_logs), forecast.block(found, uses, long_logs)],
             lambda found: [*power.promises(found, uses), *forecast.promises(found, uses)],
+        ),
+        Part(
+            undeclared.reports,
+            jobs(uses, searched, undeclared.FIRST_SEED),
+            lambda found: [undeclared.block("undeclared", found, uses, searched)],
+        ),
+        Part(
+            undeclared.reports,
+            jobs(commutes, searched, undeclared.FIRST_SEED),
+            lambda found: [undeclared.block("undeclared, drift", found, commutes, searched)],
         ),
     ]
 

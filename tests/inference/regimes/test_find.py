@@ -91,7 +91,7 @@ def test_an_event_explains_it_by_its_date(risen: SimulatedLog) -> None:
 
 
 def test_on_and_off_again_is_found_where_no_single_step_is() -> None:
-    log = a_log(ELECTRIC, -6.0, (0.3, 0.7), seed=4)
+    log = a_log(ELECTRIC, -9.0, (0.3, 0.7), seed=4)
     found = regimes(log, modifications=log.modifications)
     assert [test.more for test in found.tests[:2]] == [1, 2]
     assert found.tests[0].p_value > 0.05 > found.tests[1].p_value == found.p_value
