@@ -51,6 +51,11 @@ class ChangingFile(LogbookFile):
         with self._guard():
             return rows.insert(self._db, table, {**values, "change_id": self._change})
 
+    def write(self, insert: str, *values: Any) -> int:
+        """Add the rows that an INSERT of ours makes from others; how many."""
+        with self._guard():
+            return max(0, self._db.execute(insert, values).rowcount)
+
     def defer_references(self) -> None:
         """Let rows of the open transaction refer to others that are still to come."""
         with self._guard():
