@@ -29,7 +29,8 @@ class ChangingFile(LogbookFile):
         """The change of the open transaction; it starts with the first that is written."""
         if self._change is None:
             values: dict[str, Any] = {"what": self._called or what, "why": why, "undoes": undoes}
-            self._change = rows.insert(self._db, "change", values)
+            with self._guard():
+                self._change = rows.insert(self._db, "change", values)
         return self._change
 
     def last_change(self) -> int:
