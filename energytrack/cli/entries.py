@@ -42,7 +42,7 @@ def entries(
     for each, lines in listed:
         say([*_table(each, lines, last), *_corrections(each, lines, len(logbook.vehicles()) > 1)])
     if not vehicles:
-        say(["no vehicles yet: add one with `vehicle add`"])
+        say(["no vehicles yet: add one with `vehicle add`" if as_of is None else f"nothing was recorded by {as_of}"])
 
 
 @dataclass(frozen=True, slots=True)

@@ -29,7 +29,8 @@ class ChangingFile(LogbookFile):
         """The change of the open transaction; it starts with the first that is written."""
         if self._change is None:
             values: dict[str, Any] = {"what": self._called or what, "why": why, "undoes": undoes}
-            self._change = rows.insert(self._db, "change", values)
+            with self._guard():
+                self._change = rows.insert(self._db, "change", values)
         return self._change
 
     def last_change(self) -> int:
@@ -50,6 +51,11 @@ class ChangingFile(LogbookFile):
         """Add one row to the open change; its number. Raises LogbookError. Table and columns are ours, never typed."""
         with self._guard():
             return rows.insert(self._db, table, {**values, "change_id": self._change})
+
+    def write(self, insert: str, *values: Any) -> int:
+        """Add the rows that an INSERT of ours makes from others; how many."""
+        with self._guard():
+            return max(0, self._db.execute(insert, values).rowcount)
 
     def defer_references(self) -> None:
         """Let rows of the open transaction refer to others that are still to come."""

@@ -72,13 +72,34 @@ def _number(entry: Entry) -> int:
 
 def _restore(store: Store, table: str, change: int) -> int:
     """Supersede the rows of a change by what stood before them; how many they are."""
-    found = store.query(f"SELECT id, supersedes FROM {table} WHERE change_id = ? ORDER BY id DESC", change)
+    struck_at_once = _strike_new(store, table, change)
+    left = f"NOT EXISTS (SELECT 1 FROM {table} AS later WHERE later.supersedes = this.id AND later.change_id = ?)"
+    select = f"SELECT id, supersedes FROM {table} AS this WHERE change_id = ? AND {left} ORDER BY id DESC"
+    found = store.query(select, change, store.last_change())
     for row, earlier in found:
         head = _head(store, table, row)
         struck = earlier is None or store.query(f"SELECT struck FROM {table} WHERE id = ?", earlier)[0][0]
         sure = table == "entry" and earlier is not None and _is_confirmed(store, earlier)
         _supersede(store, table, head, row if earlier is None else earlier, {"struck": int(struck)}, confirmed=sure)
-    return len(found)
+    return struck_at_once + len(found)
+
+
+def _strike_new(store: Store, table: str, change: int) -> int:
+    """Strike the rows that a change added and nothing corrected since, all at once: an import may have added many."""
+    columns = _columns(store, table)
+    kept = ", ".join(name for name in columns if name not in _OF_THE_ROW)
+    own, numbers = (", origin", ", id") if "origin" in columns else ("", "")
+    moment = "(SELECT recorded_at FROM change WHERE id = ?)"
+    alone = f"supersedes IS NULL AND NOT EXISTS (SELECT 1 FROM {table} AS later WHERE later.supersedes = this.id)"
+    return store.write(
+        f"INSERT INTO {table} ({kept}, supersedes, struck{own}, change_id, recorded_at) "
+        f"SELECT {kept}, id, 1{numbers}, ?, {moment} FROM {table} AS this WHERE change_id = ? AND {alone} ORDER BY id",
+        *(store.last_change(), store.last_change(), change),
+    )
+
+
+def _columns(store: Store, table: str) -> list[str]:
+    return [name for (name,) in store.query("SELECT name FROM pragma_table_info(?)", table)]
 
 
 def _unconfirm(store: Store, change: int) -> int:
@@ -116,7 +137,7 @@ def _supersede(
     store: Store, table: str, row: int, like: int, content: Mapping[str, Any], *, confirmed: bool = False
 ) -> None:
     """Put a row in the place of `row` that says what `like` says, but for `content`."""
-    columns = [name for (name,) in store.query("SELECT name FROM pragma_table_info(?)", table)]
+    columns = _columns(store, table)
     kept = [name for name in columns if name not in _OF_THE_ROW]
     values = dict(zip(kept, store.query(f"SELECT {', '.join(kept)} FROM {table} WHERE id = ?", like)[0], strict=True))
     if "origin" in columns:

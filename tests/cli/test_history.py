@@ -112,7 +112,7 @@ def test_a_field_is_cleared(logbook: Path) -> None:
 
 
 def test_as_of_goes_by_the_day_of_recording(logbook: Path) -> None:
-    assert run(logbook, "entries", "--as-of", "2026-05-30") == "no vehicles yet: add one with `vehicle add`\n"
+    assert run(logbook, "entries", "--as-of", "2026-05-30") == "nothing was recorded by 2026-05-30\n"
     assert listed(logbook, "--as-of", TODAY) == listed(logbook)
     assert "in the future" in run(logbook, "entries", "--as-of", "2999-01-01", status=1)
 

@@ -85,6 +85,15 @@ def test_amending_to_the_same_is_refused(store: Store) -> None:
     assert kept_rows(store) == before
 
 
+def test_a_reason_that_is_no_utf8_is_refused(store: Store) -> None:
+    (entry,) = logged(store, at(1_000))
+    before = kept_rows(store)
+    for correct in (lambda: revisions.strike(store, entry, "\udcff"), lambda: revisions.undo(store, "\ud800")):
+        with pytest.raises(LogbookError, match="not valid UTF-8"):
+            correct()
+    assert kept_rows(store) == before
+
+
 def test_a_confirmed_entry_stays_so_unless_what_was_measured_changes(store: Store) -> None:
     (entry,) = logged(store, at(1_000))
     store.confirm(1)
