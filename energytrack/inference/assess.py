@@ -30,6 +30,7 @@ from energytrack.inference.response import from_first_level, has_levels, respond
 from energytrack.inference.results import Assessment, Rule, Verdict, WithAll
 from energytrack.inference.several import never_apart, refusal, together
 from energytrack.inference.suspects import suspects
+from energytrack.inference.undeclared import Logged, agreeing, inside, undeclared, with_events
 from energytrack.logbook.records import Vehicle
 
 if TYPE_CHECKING:
@@ -87,17 +88,22 @@ def assess(
         raise UnknownNameError(f"no modification named {name!r}; logged: {', '.join(observed.names) or 'none'}")
     vehicle = str(entries["vehicle"].iloc[0]) if "vehicle" in entries and len(entries) else ""
     rows = modifications_from_frame(modifications, vehicle or None)
-    notes = (*coincidences(() if events is None else events_from_frame(events, vehicle or None), rows, name), *notes)
+    logged = Logged(rows, () if events is None else events_from_frame(events, vehicle or None))
+    notes = (*coincidences(logged.events, rows, name), *notes)
     observed = from_first_level(observed, segmented, rows, name)
     partners = never_apart(observed, name)
     if partners:
         observed, notes = observed.leaving_out(partners), (refusal(name, partners), *notes)
+    observed, apart = with_events(observed, segmented, question, logged)
+    notes = (*apart, *notes)
     found = sort_out(observed, question.covariates) if set_aside == "odd" else None
 
     def decided(odd: bool) -> Assessment:
-        blank = _blank(vehicle, found.kept if odd and found is not None else observed, question, notes)
+        kept = found.kept if odd and found is not None else observed
+        blank = _blank(vehicle, kept, question, notes)
         blank = replace(blank, never_apart=partners, levels_known=not segmented.lacks_levels)
-        return _decided(blank, observed, question, every_look, looks_taken, odd=odd)
+        states = take_looks(observed, question, every=every_look, taken=looks_taken, odd=odd)
+        return _answer(blank, question, logged, states) if states else _before_the_first_look(blank, kept, question)
 
     answer = with_known_change(decided(found is not None), rows)
     if found is not None and found.odd:
@@ -128,18 +134,7 @@ def assess(
     return replace(answer, response=graded)
 
 
-def _decided(
-    blank: Assessment, observed: Observations, question: Question, every: bool, taken: Sequence[float], *, odd: bool
-) -> Assessment:
-    """The answer from the whole log, or with what is odd in it set aside."""
-    states = take_looks(observed, question, every=every, taken=taken, odd=odd)
-    if states:
-        return _answer(blank, question, states)
-    left = sort_out(observed, question.covariates).kept if odd else observed
-    return _before_the_first_look(blank, left, question)
-
-
-def _answer(blank: Assessment, question: Question, states: list[State]) -> Assessment:
+def _answer(blank: Assessment, question: Question, logged: Logged, states: list[State]) -> Assessment:
     now, found = states[-1], finding(states, question.target)
     shift, theta = now.shift, question.drift
     answer = replace(
@@ -154,9 +149,14 @@ def _answer(blank: Assessment, question: Question, states: list[State]) -> Asses
         covariates=covariates_of(now.model),
         looks=tuple(shown(state) for state in states),
         expectation=expectation_of(now.model),
-        together=together(now.model, question),
+        together=together(now.model, question, {row.name for row in logged.modifications}),
         warnings=(*blank.warnings, *caveats(now.model)),
+        undeclared=undeclared(now.model, question, logged),
     )
+    if found is not None and found[0] == "shifted":
+        if inside(answer.undeclared, found[1]):
+            return replace(answer, verdict="not-yet", withheld=True)
+        answer = replace(answer, agreeing=agreeing(now.model, question, logged))
     if found is not None:
         return _closed(answer, *found, question)
     return with_confounders(_open(answer, now.model, question), now.model, question)

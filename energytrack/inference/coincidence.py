@@ -15,17 +15,21 @@ def coincidences(events: Sequence[Event], modifications: Sequence[Modification],
 
     Tyres of another circumference count as well: the factor mends the odometer, not the tyres' own resistance.
     """
-    switches = [
-        (date, km)
-        for row in modifications
-        if row.name == name
-        for date, km in ((row.fitted_date, row.fitted_km), (row.removed_date, row.removed_km))
-    ]
     return tuple(
         f"{event.what} ({event.date}) came with {name}: whatever it did is counted as the modification's. "
         f"Take one of the two back for some full tanks, or test again where only one changes"
         for event in events
-        if any(_near(event, date, km) for date, km in switches)
+        if coincident(event, modifications, name)
+    )
+
+
+def coincident(event: Event, modifications: Sequence[Modification], name: str) -> bool:
+    """Whether an event lies near a fitting or removal of this modification."""
+    return any(
+        _near(event, date, km)
+        for row in modifications
+        if row.name == name
+        for date, km in ((row.fitted_date, row.fitted_km), (row.removed_date, row.removed_km))
     )
 
 

@@ -8,7 +8,10 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from dataclasses import asdict, dataclass, field
-from typing import Any, Literal
+from typing import TYPE_CHECKING, Any, Literal
+
+if TYPE_CHECKING:
+    from energytrack.inference.regimes.results import Break
 
 Verdict = Literal["shifted", "no-shift-of-target-size", "not-yet", "out-of-reach", "no-baseline", "closed-unclear"]
 Rule = Literal["every-look", "counted", "open-ended"]
@@ -245,6 +248,9 @@ class Assessment:
     verdict_with_all: WithAll | None = None  # None: nothing was set aside
     reversible: bool = True  # the modification can be taken off again
     levels_known: bool = True  # False: no two entries tell the level they left, so nothing is measured
+    undeclared: tuple[Break, ...] = ()  # changes of consumption beside the modifications that nothing logged explains
+    withheld: bool = False  # a shift was found, but one of those lies inside the test
+    agreeing: Break | None = None  # the change that a search blind to modifications finds at this one
 
     @property
     def is_open(self) -> bool:

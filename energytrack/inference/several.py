@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 
 import numpy as np
 
@@ -40,13 +40,13 @@ def refusal(name: str, partners: Sequence[str]) -> str:
     )
 
 
-def together(model: Model, question: Question) -> Together | None:
-    """Each modification's shift beside the others; None where there is only one.
+def together(model: Model, question: Question, declared: Collection[str]) -> Together | None:
+    """Each modification's shift beside the others; None where there is only one of those declared.
 
     With all at once, where two were ever on together.
     """
     columns = {str(model.modification): SHIFT}
-    own = parts((*columns, *model.others))
+    own = [name for name in parts((*columns, *model.others)) if name in declared]
     columns |= {name: model.term_columns.stop + k for k, name in enumerate(model.others) if name in own}
     if len(columns) < 2:
         return None
@@ -55,13 +55,13 @@ def together(model: Model, question: Question) -> Together | None:
     whole = np.zeros(size)
     whole[list(columns.values())] = 1.0
     names = " + ".join(columns)
-    all_at_once = effect_of(names, shift_along(model.fit, whole), question) if _ever_together(model) else None
+    all_at_once = effect_of(names, shift_along(model.fit, whole), question) if _ever_together(model, own) else None
     return Together(tuple(each.values()), all_at_once)
 
 
-def _ever_together(model: Model) -> bool:
+def _ever_together(model: Model, names: Sequence[str]) -> bool:
     """At least one segment was driven with two of them on throughout; variants of one part never are."""
-    fitted = model.observed.keeping(parts(model.observed.names)).fitted
+    fitted = model.observed.keeping(names).fitted
     return bool(((fitted >= _THROUGHOUT).sum(axis=1) > 1).any())
 
 

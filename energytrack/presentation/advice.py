@@ -7,6 +7,7 @@ from energytrack.presentation import figures, scatter
 from energytrack.presentation.answer import baseline_to_drive, contradicted, remedy
 from energytrack.presentation.known import known_step
 from energytrack.presentation.text import join
+from energytrack.presentation.undeclared import withheld_steps
 
 MOST = 3
 _LARGE_SHARE = 0.4  # of the variance, from which a source of scatter is worth working on
@@ -15,6 +16,8 @@ _SHARPER = 0.5  # a question worth planning next, as a share of the target
 
 def next_steps(a: Assessment, unit: str) -> list[str]:
     """What to do next for each verdict."""
+    if a.withheld:
+        return withheld_steps(a, unit)
     steps = {
         "shifted": _after_shift,
         "no-shift-of-target-size": _sharper_question,

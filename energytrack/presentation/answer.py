@@ -8,6 +8,7 @@ from energytrack.presentation.known import known_sentence
 from energytrack.presentation.plain import plain_text
 from energytrack.presentation.set_aside import follow_up
 from energytrack.presentation.text import join
+from energytrack.presentation.undeclared import agreeing_sentence, withheld_sentence
 
 USUAL_BASELINE_KM = 3200.0  # four working weeks of a 160 km commute; common practice, no source
 NO_LEVELS = "nothing can be measured, as no two entries tell how full the tank or battery was after them"
@@ -24,7 +25,9 @@ def sentence(a: Assessment, unit: str = "km") -> str:
         "no-baseline": _no_baseline,
         "closed-unclear": _unclear,
     }[a.verdict]
-    return " ".join(filter(None, (say(a, unit), _on_average(a), known_sentence(a), follow_up(a))))
+    said = withheld_sentence(a, named(a), so_far(a), unit) if a.withheld else say(a, unit)
+    more = (_on_average(a), agreeing_sentence(a, unit), known_sentence(a), follow_up(a))
+    return " ".join(filter(None, (said, *more)))
 
 
 def named(a: Assessment) -> str:

@@ -8,7 +8,7 @@ from math import isfinite
 from rich.text import Text
 
 from energytrack.inference.results import Assessment
-from energytrack.presentation import advice, bar, conditions, figures, picture, scatter, set_aside, several
+from energytrack.presentation import advice, bar, conditions, figures, picture, scatter, set_aside, several, undeclared
 from energytrack.presentation.answer import count, named, sentence, so_far
 from energytrack.presentation.plain import plain_text
 from energytrack.presentation.text import bullets, labelled, wrap
@@ -60,7 +60,7 @@ def _blocks(a: Assessment, unit: str, width: int, draw: bool) -> list[list[str]]
         ),
         _headed("parts side by side", labelled(several.side_by_side(a.together), width) if a.together else []),
         _headed("by level", labelled(several.levels(a.response), width) if a.response else []),
-        bullets([*set_aside.told(a, unit), *map(plain_text, a.warnings)], "! ", width),
+        bullets([*undeclared.told(a, unit), *set_aside.told(a, unit), *map(plain_text, a.warnings)], "! ", width),
         bullets(advice.next_steps(a, unit), "> ", width),
     ]
 
