@@ -18,6 +18,7 @@ from tests.evidence import (
     quantiles,
     sham,
     undeclared,
+    withheld,
 )
 from tests.evidence.block import Block
 from tests.evidence.goals import Promise
@@ -75,6 +76,11 @@ def simulated(uses: Uses, most: int | None) -> list[Part]:
             undeclared.reports,
             jobs(commutes, searched, undeclared.FIRST_SEED),
             lambda found: [undeclared.block("undeclared, drift", found, commutes, searched)],
+        ),
+        Part(
+            withheld.verdicts,
+            jobs(uses, searched, withheld.FIRST_SEED),
+            lambda found: [withheld.block(found, uses, searched)],
         ),
     ]
 
