@@ -13,8 +13,8 @@ from energytrack.inference.results import (
     Standing,
     Together,
 )
-from energytrack.presentation import answer, several
-from tests.presentation.samples import NOT_YET, SHIFTED
+from energytrack.presentation import advice, answer, several
+from tests.presentation.samples import CONTRADICTED, NOT_YET, SHIFTED
 
 SKIRTS = Effect("skirts", -5.03, (-6.9, -3.1), 0.71, 9.0)
 TYRES = Effect("tyres", 3.96, (1.8, 6.2), 0.80, 9.0)
@@ -119,6 +119,14 @@ def test_the_first_sentence_says_that_several_levels_are_averaged() -> None:
     assert "level 5 uses least: -6.1\u00a0%, look-proof range -8.0\u00a0to\u00a0-4.2\u00a0%." in graded
     single = replace(RESPONSE, form="line", best_level=None, best_level_interval=None, levels=RESPONSE.levels[:2])
     assert "average" not in answer.sentence(replace(NOT_YET, response=single))
+
+
+def test_what_was_settled_on_earlier_levels_sends_to_the_levels() -> None:
+    """Not to what else changed: the level did."""
+    (step,) = advice.next_steps(replace(CONTRADICTED, response=RESPONSE), "km")
+    assert step.endswith("read them one by one, under `by level`.")
+    single = replace(RESPONSE, form="line", best_level=None, best_level_interval=None, levels=RESPONSE.levels[:2])
+    assert advice.next_steps(replace(CONTRADICTED, response=single), "km")[0].startswith("Look for what else changed")
 
 
 def test_the_first_sentence_says_against_which_level() -> None:
