@@ -100,7 +100,7 @@ def _corrections(vehicle: Vehicle, lines: list[Line], several: bool) -> list[str
     """What to type if an entry is unusual by a slip."""
     whose = f" --vehicle {shlex.quote(vehicle.name)}" if several else ""
     told = [
-        f"{str(slip).partition('?')[0]}, {line.entry.date}? energytrack amend {slip.amend}{whose}"
+        f"{slip.what}? energytrack amend {slip.amend}{whose}"
         for line in lines
         for slip in line.slips
     ]

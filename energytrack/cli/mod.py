@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import datetime as dt
 import math
+from collections.abc import Sequence
+from textwrap import wrap
 from typing import Annotated, Any
 
 import typer
@@ -33,11 +35,14 @@ from energytrack.logbook.checks import (
 from energytrack.logbook.quantities import distance_text, parse_number
 from energytrack.logbook.records import Entry, Modification, Vehicle
 from energytrack.logbook.store import Store
-from energytrack.presentation.columns import aligned
+from energytrack.presentation.columns import aligned, folded
+from energytrack.presentation.plain import plain_text
 
 mod_commands = typer.Typer(
     no_args_is_help=True, add_completion=False, rich_markup_mode=None, help="Log parts fitted and removed."
 )
+
+WIDTH = 80
 
 Name = Annotated[str, typer.Argument(help="What you call the part or setting.")]
 Odometer = Annotated[str | None, typer.Argument(help="Odometer value; may be left out with --date.")]
@@ -69,7 +74,7 @@ def fitted(
         check_name(name, "modification")
         expected = _known(known)
         store.fit(chosen.name, name, day, km, _target(target), graded, note, expected, not not_reversible)
-    _echo(chosen, "fitted", name, day, km, json, expected)
+    _echo(chosen, "fitted", name, day, km, json, _declared(graded, expected))
 
 
 @mod_commands.command("removed", cls=options.NegativeNumbers)
@@ -101,13 +106,12 @@ def list_modifications(
     if json:
         say_json({"modifications": [_columns(period) for _, own in found for period in own]})
         return
-    rows = [_cells(each, period) for each, own in found for period in own]
+    rows = [(each, period) for each, own in found for period in own]
     if not rows:
         say(["no modifications yet: log one with `mod fitted`"])
         return
-    header = ("vehicle", "modification", "fitted", "removed", "level", "target", "expected")
-    shown = len(header) if any(row[-1] for row in rows) else len(header) - 1  # few changes are known beforehand
-    say(aligned([row[:shown] for row in (header, *rows)], right=(4, 5)))
+    heads = aligned([(each.name, period.name) for each, period in rows])
+    say(folded(heads, [_period(each, period) for each, period in rows], WIDTH))
 
 
 def _place(
@@ -151,6 +155,12 @@ def _known(text: str | None) -> tuple[float, float] | None:
     return ends
 
 
+def _declared(level: float | None, known: tuple[float, float] | None) -> list[str]:
+    """What was said of the part beside where it was fitted."""
+    at_level = [] if level is None else [f"level {level:g}"]
+    return at_level + ([] if known is None else [f"a known change, {known[0]:+g} to {known[1]:+g} % expected"])
+
+
 def _echo(
     vehicle: Vehicle,
     action: str,
@@ -158,7 +168,7 @@ def _echo(
     day: dt.date | None,
     km: float | None,
     json: bool,
-    known: tuple[float, float] | None = None,
+    declared: Sequence[str] = (),
 ) -> None:
     cautions = list(CAUTIONS) if action == "fitted" else []
     if json:
@@ -166,8 +176,8 @@ def _echo(
         place: dict[str, Any] = {"date": date, "odometer_km": km}
         say_json({"vehicle": vehicle.name, "name": name, "action": action, **place, "cautions": cautions})
         return
-    expected = "" if known is None else f"; a known change, {known[0]:+g} to {known[1]:+g} % expected"
-    say([f"{vehicle.name}: {name} {action}, {_where(vehicle, day, km)}{expected}"])
+    said = "; ".join([f"{vehicle.name}: {name} {action}, {_where(vehicle, day, km)}", *declared])
+    say(wrap(plain_text(said), WIDTH, subsequent_indent="  "))
     if cautions:
         say(["", *caution_lines()])
 
@@ -177,13 +187,13 @@ def _where(vehicle: Vehicle, day: dt.date | None, km: float | None) -> str:
     return ", ".join(parts)
 
 
-def _cells(vehicle: Vehicle, period: Modification) -> tuple[str, ...]:
-    level = "" if period.level is None else f"{period.level:g}"
-    target = "" if period.target_percent is None else f"{period.target_percent:g} %"
-    expected = "" if period.known is None else f"{period.known[0]:+g} to {period.known[1]:+g} %"
+def _period(vehicle: Vehicle, period: Modification) -> str:
+    """Where a part was on, and what was said of it."""
     start = _where(vehicle, period.fitted_date, period.fitted_km)
     end = _where(vehicle, period.removed_date, period.removed_km)
-    return vehicle.name, period.name, start, end or "still on", level, target, expected
+    span = f"{start} to {end}" if end else f"{start}, still on"
+    target = [] if period.target_percent is None else [f"target {period.target_percent:g} %"]
+    return "; ".join([span, *target, *_declared(period.level, period.known)])
 
 
 def _columns(period: Modification) -> dict[str, Any]:

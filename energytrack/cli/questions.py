@@ -98,8 +98,8 @@ def energy_content(typed: str | None, vehicles: Iterable[Vehicle]) -> dict[str, 
     fuels = [carrier for carrier in dict.fromkeys(fuels) if carrier != "electricity"]
     fuel, _, value = typed.partition("=")
     if fuel not in fuels:
-        known = f"write one of {', '.join(f'{each}=KWH' for each in fuels)}" if fuels else "none asked about has"
-        raise EntryError(f"--energy-content {typed!r} is of fuels of vehicles with tank and battery: {known}")
+        known = f"write one of {', '.join(f'{each}=KWH' for each in fuels)}" if fuels else "none is asked about"
+        raise EntryError(f"--energy-content {typed!r} names no fuel of a vehicle with tank and battery: {known}")
     return {fuel: parse_number(value, f"energy content of {fuel}")}
 
 
@@ -109,17 +109,16 @@ def as_of_lines(as_of: str | None) -> list[str]:
 
 
 def answered(asked: Iterable[Asked], answer: Callable[[Asked], Answer]) -> tuple[list[Answer], list[str]]:
-    """Every answer there is, and why the others have none. Raises the refusal where only one question was asked."""
-    answers, refusals = [], []
-    every = list(asked)
-    for question in every:
+    """Every answer there is, and why the others have none. Raises the refusal where all are refused for one reason."""
+    answers, refused = [], []
+    for question in asked:
         try:
             answers.append(answer(question))
         except EnergytrackError as refusal:
-            if len(every) == 1:
-                raise
-            refusals.append(f"{question}: {refusal}")
-    return answers, refusals
+            refused.append((question, refusal))
+    if not answers and len({str(refusal) for _, refusal in refused}) == 1:
+        raise refused[0][1]
+    return answers, [f"{question}: {refusal}" for question, refusal in refused]
 
 
 def leave(refusals: list[str], status: ExitStatus = ExitStatus.DONE) -> None:

@@ -6,7 +6,7 @@ Standard library only: the echo of an entry names them too.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import pairwise
 from math import hypot, inf
 
@@ -96,22 +96,33 @@ def _missing_digit(case: Case) -> list[Slip]:
 
 
 def _retyped(case: Case, what: str, variants: Callable[[str], Iterable[str]]) -> list[Slip]:
-    """The retyped odometer value, distance or amount that fits best, if one does."""
+    """The retyped odometer value, distance or amount that fits best, if one does; else the odometer value before it."""
     entry, vehicle = case.entry, case.vehicle
-    fits: list[Fit] = []
-    if entry.odometer_km is not None and case.amount_is_possible:
-        for typed in variants(_typed(from_base(entry.odometer_km, vehicle.distance_unit))):
-            moved = to_base(float(typed), vehicle.distance_unit) - entry.odometer_km
-            old, new = distance_text(entry.odometer_km, vehicle), distance_text(entry.odometer_km + moved, vehicle)
-            said = f"odometer {_number(old)} -> {new} fits"
-            fits.append((_moved_gap(case, moved), said, f"--odometer {typed}"))
-    elif entry.distance_km is not None and case.amount_is_possible:
+    fits = _odometer_fits(case, variants)
+    if entry.odometer_km is None and entry.distance_km is not None and case.amount_is_possible:
         for typed in variants(_typed(from_base(entry.distance_km, vehicle.distance_unit))):
             fits.append(_other_distance(case, to_base(float(typed), vehicle.distance_unit)))
     unit = vehicle.typed_unit or vehicle.unit
     for typed in variants(f"{from_base(entry.energy, unit):.2f}"):
         fits.append(_other_amount(case, to_base(float(typed), unit)))
-    return _best(case, what, fits)
+    found = _best(case, what, fits)
+    if found or case.which == 0 or not case.segment.linked:
+        return found
+    before = replace(case, which=case.which - 1)
+    return _best(before, what, _odometer_fits(before, variants))
+
+
+def _odometer_fits(case: Case, variants: Callable[[str], Iterable[str]]) -> list[Fit]:
+    """Every retyped odometer value at the end of the segment."""
+    odometer_km, vehicle = case.entry.odometer_km, case.vehicle
+    if odometer_km is None or not case.amount_is_possible:
+        return []
+    fits = []
+    for typed in variants(_typed(from_base(odometer_km, vehicle.distance_unit))):
+        moved = to_base(float(typed), vehicle.distance_unit) - odometer_km
+        old, new = distance_text(odometer_km, vehicle), distance_text(odometer_km + moved, vehicle)
+        fits.append((_moved_gap(case, moved), f"odometer {_number(old)} -> {new} fits", f"--odometer {typed}"))
+    return fits
 
 
 def _moved_gap(case: Case, moved: float) -> float:

@@ -58,12 +58,12 @@ class Stated:
     def __post_init__(self) -> None:
         if self.unit not in UNITS:
             raise InferenceError(f"unit {self.unit!r} is unknown; use one of {', '.join(UNITS)}")
-        for name in ("trip_noise", "capacity", "consumption", "km_per_fill", "days_per_fill"):
+        _check("trip_noise", self.trip_noise, above=0.0, at_most=100.0)
+        for name in ("capacity", "consumption", "km_per_fill", "days_per_fill"):
             _check(name, getattr(self, name), above=0.0)
-        for name in ("drift", "season_drift", "filling"):
-            _check(name, getattr(self, name) or 0.0)
-        for name in ("trip_noise", "drift", "season_drift"):
+        for name in ("drift", "season_drift"):
             _check(name, getattr(self, name) or 0.0, at_most=100.0)
+        _check("filling", self.filling or 0.0)
         for name in ("january_c", "july_c"):
             _check(name, getattr(self, name), at_least=-60.0, at_most=60.0)
         fewest = FEWEST_BASELINE * self.km_per_fill
@@ -96,7 +96,9 @@ def stated_model(stated: Stated) -> Model:
 
 def _check(name: str, value: float, above: float = -math.inf, at_least: float = 0.0, at_most: float = math.inf) -> None:
     if not (math.isfinite(value) and value > above and at_least <= value <= at_most):
-        raise InferenceError(f"{name.replace('_', ' ')} of {value:g} cannot be: it is a stated figure of the driving")
+        low = f"more than {above:g}" if above > -math.inf else f"{at_least:g} or more"
+        high = "" if at_most == math.inf else f", {at_most:g} at most"
+        raise InferenceError(f"{name.replace('_', ' ')} of {value:g} cannot be: state {low}{high}")
 
 
 def _driven(stated: Stated, count: int) -> Observations:

@@ -11,6 +11,7 @@ from energytrack.presentation.undeclared import withheld_steps
 
 MOST = 3
 _LARGE_SHARE = 0.4  # of the variance, from which a source of scatter is worth working on
+_WITH_ONE_LEVEL = 2  # the reference, and the one level driven
 _SHARPER = 0.5  # a question worth planning next, as a share of the target
 
 
@@ -31,6 +32,8 @@ def next_steps(a: Assessment, unit: str) -> list[str]:
 
 
 def _after_shift(a: Assessment, unit: str) -> list[str]:
+    if contradicted(a) and a.response is not None and len(a.response.levels) > _WITH_ONE_LEVEL:
+        return ["It was settled on the levels driven by then: read them one by one, under `by level`."]
     if contradicted(a):
         off = ["Take it off for a while: a true shift goes away with it and comes back with it."]
         return ["Look for what else changed since: tyres, load, route, brakes.", *(off if a.reversible else [])]

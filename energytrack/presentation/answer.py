@@ -39,17 +39,21 @@ def named(a: Assessment) -> str:
 
 
 def _on_average(a: Assessment) -> str:
-    """Of a part driven at several levels: that the answer is their average, and which of them uses least."""
-    driven = [] if a.response is None else [e for e in a.response.levels if e.level != a.response.reference_level]
-    if len(driven) < 2:
+    """Of a part driven at several levels: what the answer is the average of, and which of them uses least."""
+    if a.response is None:
         return ""
+    reference = a.response.reference_level
+    against = f" against level {reference:g}" if reference else ""
+    driven = [effect for effect in a.response.levels if effect.level != reference]
+    if len(driven) < 2:
+        return f"That is level {driven[0].level:g}{against}." if driven and against else ""
     *lower, highest = (f"{effect.level:g}" for effect in driven)
     best = min(driven, key=lambda effect: effect.shift_percent)
     span = figures.bounded(best.interval_percent)
     within = "" if span is None else f", look-proof range {figures.percent_range(span)}"
     return (
-        f"That is the average over the levels driven ({', '.join(lower)} and {highest}); of these, by the fitted "
-        f"curve, level {best.level:g} uses least: {figures.percent(best.shift_percent, signed=True)}{within}."
+        f"That is the average over the levels driven ({', '.join(lower)} and {highest}){against}; of these, by the "
+        f"fitted curve, level {best.level:g} uses least: {figures.percent(best.shift_percent, signed=True)}{within}."
     )
 
 

@@ -111,7 +111,7 @@ def _shift(a: Assessment) -> list[Row]:
         rows.append(("standard error", figures.percent(error, error) + free))
     now, best = a.resolvable_now_percent, a.resolvable_at_best_percent
     limits = ((now, "now"), (best, "at best"))
-    known = [f"{figures.percent(value)} {when}" for value, when in limits if value is not None]
+    known = [f"{figures.percent(value, value)} {when}" for value, when in limits if value is not None]
     if known:
         power = figures.target(100 * a.power)
         rows.append(("resolvable shift", f"from {', '.join(known)} ({power} chance to show it)"))

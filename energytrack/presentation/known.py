@@ -47,4 +47,4 @@ def _expected(a: Assessment) -> str:
 def _smallest(a: Assessment, words: str) -> str:
     if a.resolvable_now_percent is None:
         return ""
-    return f"{words} a shift of {figures.percent(a.resolvable_now_percent)} or more now"
+    return f"{words} a shift of {figures.percent(a.resolvable_now_percent, a.resolvable_now_percent)} or more now"

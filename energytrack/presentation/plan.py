@@ -157,11 +157,11 @@ def _range(d: Design, unit: str) -> str:
 
 def _resolvable(p: Plan, unit: str) -> Table:
     """The smallest shift each way can resolve after so much further driving."""
-    distances = list(p.designs[0].resolvable_percent)
+    distances = list(p.designs[0].resolvable_percent)  # no shift is shown finer than it is large: whole from 10 % on
     table = _table(["resolvable shift within", *(figures.distance(float(km), unit) for km in distances)])
     for d in p.designs:
         shifts = [d.resolvable_percent.get(km) for km in distances]
-        table.add_row(ways.name(d), *("-" if shift is None else figures.percent(shift) for shift in shifts))
+        table.add_row(ways.name(d), *("-" if shift is None else figures.percent(shift, shift) for shift in shifts))
     return table
 
 
@@ -212,7 +212,7 @@ def _next_steps(p: Plan) -> list[str]:
     steps = [*_about_the_baseline(p), *([] if advice is None else [advice])]
     if best is None:
         larger = min(2 * p.target_percent, _LARGEST_TARGET)
-        return [*steps, "Ask for a larger shift: " + join(f"energytrack plan --target {larger:g}")]
+        return [*steps, "Ask for a larger shift: the same with " + join(f"--target {larger:g}")]
     if (best.swaps or 0) > 1:
         steps.append("Swap only what comes off and on quickly and safely, parked, as its maker says.")
     if p.stated:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 
 from rich.text import Text
@@ -34,9 +35,11 @@ def levels(response: Response) -> list[Row]:
     ]
     rows.insert(0, ("  counted from", reference))
     if response.best_level is not None:
-        rows.append(("  least consumption", f"at level {response.best_level:.3g}{_level_range(response)}"))
+        best = _level(response, response.best_level)
+        rows.append(("  least consumption", f"at level {best}{_level_range(response)}"))
     if response.next_level is not None:
-        rows.append(("  worth trying next", f"level {response.next_level:.3g}, if its maker and the law allow it"))
+        following = _level(response, response.next_level)
+        rows.append(("  worth trying next", f"level {following}, if its maker and the law allow it"))
     return rows
 
 
@@ -49,7 +52,7 @@ def compared(found: Comparison, width: int = 80, *, title: bool = False) -> list
     sure = figures.target(100 * found.confidence)
     lines += [Text(), *map(Text, wrap(f"pair by pair ({sure} confidence for all pairs and however many looks)", width))]
     lines += _text(labelled([(f"  {_short(pair)}", _pair(pair)) for pair in found.pairs], width))
-    lines += [Text(), Text("chance that none of the others uses less")]
+    lines += [Text(), Text("chance that none of the others uses less, by this look alone")]
     rows = [
         (
             f"  {plain_text(standing.name)}",
@@ -101,8 +104,16 @@ def _range(interval: Range | None) -> str:
 def _level_range(response: Response) -> str:
     if response.best_level_interval is None:
         return ""
-    low, high = response.best_level_interval
-    return f" (range {low:.3g} to {high:.3g})"
+    low, high = (_level(response, level) for level in response.best_level_interval)
+    return f" (range {low} to {high})"
+
+
+def _level(response: Response, level: float) -> str:
+    """A computed level, in steps of at most a tenth of its range; of the levels driven, where it has none."""
+    driven = [effect.level for effect in response.levels]
+    low, high = response.best_level_interval or (min(driven), max(driven))
+    places = max(0, 1 - math.floor(math.log10(high - low))) if high > low else 2
+    return f"{round(level, places):g}"
 
 
 def _chance(share: float) -> str:

@@ -36,7 +36,7 @@ def name(design: Design) -> str:
         on, off = design.phases
         return f"on {on}, off {off}, on (fill-ups)"
     if design.name == "longer-baseline":
-        return f"one switch, {design.phases[0]} fill-ups on"
+        return f"one switch after {design.phases[0]} fill-ups"
     if design.name == "alternate-weekly":
         return "off and on every week"
     every = design.every_fillups

@@ -84,10 +84,18 @@ def test_targets_out_of_range_of_a_logged_part(folder: Path) -> None:
     refused(folder, "rehearse", "--target", "51", said="not 51: try 3", logbook="tables")
 
 
+def test_what_no_question_can_be_asked_with_is_said_once(folder: Path) -> None:
+    """One line, however many parts were asked about."""
+    written(folder / "tables" / "modifications.csv", HEADER, "van,wing,3000,,3", "van,skirts,4000,,3")
+    for words in (("enough", "--target", "0"), ("enough", "--confidence", "2"), ("rehearse", "-n", "0")):
+        refused(folder, *words, said="energytrack: the " if "2" not in words else "confidence", logbook="tables")
+
+
 def test_a_plan_needs_a_log_or_the_noise(folder: Path) -> None:
     refused(folder, "plan", said="no logbook named, and no noise stated", logbook=None)
     refused(folder, "plan", "--drift", "1", said="no noise stated", logbook=None)
-    refused(folder, "plan", "--trip-noise", "0", said="trip noise of 0 cannot be", logbook=None)
+    refused(folder, "plan", "--trip-noise", "0", said="of 0 cannot be: state more than 0, 100 at most", logbook=None)
+    refused(folder, *STATED, "--drift=-1", said="drift of -1 cannot be: state 0 or more", logbook=None)
 
 
 @pytest.mark.parametrize("second", ["2024-02-01,4", "2024-02-01,6"])

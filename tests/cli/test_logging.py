@@ -227,7 +227,8 @@ def test_modifications(run: Terminal) -> None:
     assert all(len(line) <= 80 for line in first.splitlines())
     assert "is fitted to van since" in run.refused("mod", "fitted", "side skirts", "48950")
     assert "fitted now: 'side skirts'" in run.refused("mod", "removed", "spoiler", "48950")
-    run.done("mod", "fitted", "side skirts", "49000", "--level", "2.4", "--date", "2026-05-12")
+    graded = run.done("mod", "fitted", "side skirts", "49000", "--level", "2.4", "--date", "2026-05-12")
+    assert graded.startswith("van: side skirts fitted, 49,000 km, 2026-05-12; level 2.4\n")
     run.done("mod", "removed", "side skirts", "--date", "2026-06-01")
     told = json.loads(run.done("mod", "list", "--json"))["modifications"]
     assert [(each["fitted_km"], each["removed_km"], each["level"]) for each in told] == [
@@ -235,6 +236,19 @@ def test_modifications(run: Terminal) -> None:
         (49000, None, 2.4),
     ]
     assert told[1]["removed_date"] == "2026-06-01"
+
+
+def test_modifications_are_listed_within_eighty_columns(run: Terminal) -> None:
+    long = "side skirts with rear wheel covers"
+    fitted = run.done("mod", "fitted", long, "48900", "--date", "2026-05-10", "--level", "5", "--known", "4:9")
+    run.done("mod", "removed", long, "49000", "--date", "2026-05-12")
+    run.done("mod", "fitted", "skirts", "49000", "--date", "2026-05-12", "--target", "2")
+    listed = run.done("mod", "list").splitlines()
+    assert max(map(len, [*fitted.splitlines(), *listed])) <= 80
+    assert " ".join(" ".join(listed).split()) == (
+        f"van {long} 48,900 km, 2026-05-10 to 49,000 km, 2026-05-12; level 5; a known change, +4 to +9 % expected "
+        "van skirts 49,000 km, 2026-05-12, still on; target 2 %"
+    )
 
 
 def test_a_switch_logged_after_the_fact_has_no_day(run: Terminal) -> None:

@@ -45,9 +45,10 @@ def changed(entries: list[Entry], place: int, **values: object) -> list[Entry]:
 
 def test_two_digits_of_the_odometer() -> None:
     entries = [replace(entry, odometer_km=entry.odometer_km + 250) for entry in by_odometer()]  # 33,250 for the sixth
-    assert found(changed(entries, 6, odometer_km=33_520.0), 6)[0] == (
-        "two digits swapped? odometer 33,520 -> 33,250 km fits"
-    )
+    said = "two digits swapped? odometer 33,520 -> 33,250 km fits"
+    entries = changed(entries, 6, odometer_km=33_520.0)
+    assert found(entries, 6)[0] == said
+    assert found(entries, 7)[0] == said, "it spoils the segment after it as much"
 
 
 def test_two_digits_of_the_amount() -> None:

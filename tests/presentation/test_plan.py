@@ -98,7 +98,7 @@ def test_every_kind_of_way_has_a_name_that_fits() -> None:
     text = shown(replace(PLAN, designs=(one, *kinds)))
     for name in ("one switch in Sep 2026", "on 16, off 8, on (fill-ups)", "off and on every week"):
         assert text.count(name) >= 3
-    assert text.count("one switch, 160 fill-ups on") >= 3
+    assert text.count("one switch after 160 fill-ups") >= 3
     assert max(map(cell_len, text.splitlines())) <= 80
 
 
@@ -136,3 +136,16 @@ def test_a_stated_plan_says_what_a_longer_baseline_would_do() -> None:
     assert "after 24,000 km without it, not 3,000 km, one switch takes about 13,600 km (--baseline 24000)" in told
     assert never not in told
     assert "longer baseline" not in shown(PLAN)
+
+
+def test_out_of_reach_asks_for_the_same_with_a_larger_shift() -> None:
+    """Whatever else was stated stays: the suggestion is no command of its own."""
+    none = tuple(replace(way, distance_km=None, distance_interval_km=None, days=None) for way in PLAN.designs)
+    text = shown(replace(PLAN, designs=none, stated=True))
+    assert "> Ask for a larger shift: the same with --target 6" in text
+    assert "energytrack plan --target" not in text
+
+
+def test_a_large_resolvable_shift_is_shown_in_whole_percent() -> None:
+    one = replace(PLAN.designs[0], resolvable_percent={1000: 26.63, 2500: 9.81})
+    assert ["27", "%", "9.8", "%"] in [line.split()[-4:] for line in shown(replace(PLAN, designs=(one,))).splitlines()]

@@ -13,8 +13,8 @@ from energytrack.inference.results import (
     Standing,
     Together,
 )
-from energytrack.presentation import answer, several
-from tests.presentation.samples import NOT_YET, SHIFTED
+from energytrack.presentation import advice, answer, several
+from tests.presentation.samples import CONTRADICTED, NOT_YET, SHIFTED
 
 SKIRTS = Effect("skirts", -5.03, (-6.9, -3.1), 0.71, 9.0)
 TYRES = Effect("tyres", 3.96, (1.8, 6.2), 0.80, 9.0)
@@ -54,7 +54,7 @@ pair by pair (95 % confidence for all pairs and however many looks)
   dam B / nothing fitted
                       -8.0 %, look-proof range -11.1 to -4.8 %: differ
 
-chance that none of the others uses less
+chance that none of the others uses less, by this look alone
   dam B               over 99 %, -8.0 %
   dam A               under 1 %, -1.8 %
   nothing fitted      under 1 %, 0.0 %
@@ -76,6 +76,16 @@ def test_levels_of_a_graded_part() -> None:
     assert rows["  least consumption"] == "at level 10.1 (range 8.9 to 11.6)"
     assert rows["  worth trying next"] == "level 10.1, if its maker and the law allow it"
     assert "  level 0" not in rows
+
+
+def test_a_level_has_the_digits_that_its_range_deserves() -> None:
+    wide = dict(several.levels(replace(RESPONSE, best_level=11.32, best_level_interval=(8.354, 12.81))))
+    assert wide["  least consumption"] == "at level 11.3 (range 8.4 to 12.8)"
+    heavy = dict(several.levels(replace(RESPONSE, best_level=1_134.2, best_level_interval=(905.1, 1_301.0))))
+    assert heavy["  least consumption"] == "at level 1134 (range 905 to 1301)"
+    pressures = tuple(LevelEffect(level, 0.0, None) for level in (2.2, 2.6, 3.0))
+    unbounded = replace(RESPONSE, levels=pressures, best_level=None, best_level_interval=None, next_level=3.4000001)
+    assert dict(several.levels(unbounded))["  worth trying next"].startswith("level 3.4, ")
 
 
 def test_variants_compared() -> None:
@@ -109,3 +119,21 @@ def test_the_first_sentence_says_that_several_levels_are_averaged() -> None:
     assert "level 5 uses least: -6.1\u00a0%, look-proof range -8.0\u00a0to\u00a0-4.2\u00a0%." in graded
     single = replace(RESPONSE, form="line", best_level=None, best_level_interval=None, levels=RESPONSE.levels[:2])
     assert "average" not in answer.sentence(replace(NOT_YET, response=single))
+
+
+def test_what_was_settled_on_earlier_levels_sends_to_the_levels() -> None:
+    """Not to what else changed: the level did."""
+    (step,) = advice.next_steps(replace(CONTRADICTED, response=RESPONSE), "km")
+    assert step.endswith("read them one by one, under `by level`.")
+    single = replace(RESPONSE, form="line", best_level=None, best_level_interval=None, levels=RESPONSE.levels[:2])
+    assert advice.next_steps(replace(CONTRADICTED, response=single), "km")[0].startswith("Look for what else changed")
+
+
+def test_the_first_sentence_says_against_which_level() -> None:
+    """Where there always is a level, as with a tyre pressure, there is no `without`."""
+    first, *others = (LevelEffect(level, 7 - 3 * level, (-5.0, 1.0)) for level in (2.2, 2.6, 3.0))
+    pressure = replace(RESPONSE, reference_level=2.2, levels=(first, *others))
+    said = answer.sentence(replace(SHIFTED, response=pressure))
+    assert "over the levels driven (2.6 and 3) against level 2.2;" in said
+    two = replace(pressure, levels=(first, others[0]))
+    assert "That is level 2.6 against level 2.2." in answer.sentence(replace(SHIFTED, response=two))
