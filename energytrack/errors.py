@@ -25,3 +25,7 @@ class ConsumptionError(EnergytrackError):
 
 class InferenceError(EnergytrackError):
     """A question the log cannot be asked, such as a confidence outside 0 to 1."""
+
+
+class ReportError(EnergytrackError):
+    """A drawing or report that cannot be made or written."""

@@ -40,6 +40,7 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "weather": ("weather", "weather"),
     "enough": ("enough", "enough"),
     "plan": ("plan", "plan"),
+    "regimes": ("regimes", "regimes"),
     "rehearse": ("rehearse", "rehearse"),
 }
 

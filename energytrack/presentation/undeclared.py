@@ -37,14 +37,18 @@ def told(a: Assessment, unit: str) -> list[str]:
 
 def withheld_steps(a: Assessment, unit: str) -> list[str]:
     """What to do about the change that holds an answer back."""
-    against = a.undeclared[0]
-    at = figures.driven(against.odometer_km, unit).split(" ")[0].replace(",", "")
+    return steps(a.undeclared[0], unit)
+
+
+def steps(found: Break, unit: str) -> list[str]:
+    """What to do about a change that nothing logged explains."""
+    at = figures.driven(found.odometer_km, unit).split(" ")[0].replace(",", "")
     command = join(f'energytrack event "WHAT HAPPENED" {at}')
-    steps = [
+    said = [
         f"If something happened there, log it, and it is counted apart: {command}",
-        f"Places to look: {'; '.join(against.suspects)}.",
+        f"Places to look: {'; '.join(found.suspects)}.",
     ]
-    return [against.caution, *steps] if against.caution else steps
+    return [found.caution, *said] if found.caution else said
 
 
 def _line(found: Break, unit: str) -> str:

@@ -113,8 +113,9 @@ def report(
         criteria=numbers,
         points=points_of(found),
         judged_km=reach,
+        later_km=search.shortest * float(observed.distance_km[-10:].mean()),
         note=None,
-        warnings=(*notes, _reach(observed, search.shortest, reach)),
+        warnings=notes,
     )
 
 
@@ -140,14 +141,6 @@ def missing(observed: Observations) -> str | None:
             f"told from chance; check that amounts are what was bought"
         )
     return None
-
-
-def _reach(observed: Observations, shortest: int, reach: tuple[float, float]) -> str:
-    far = shortest * float(observed.distance_km[-10:].mean())
-    return (
-        f"a change is looked for from {reach[0]:,.0f} to {reach[1]:,.0f} km; one later than that can be told after "
-        f"{shortest} segments, about {_about(far)} km"
-    )
 
 
 def _about(km: float) -> str:
@@ -185,6 +178,7 @@ def _blank(vehicle: str, unit: str, confidence: float, note: str, notes: tuple[s
         criteria=(),
         points=(),
         judged_km=None,
+        later_km=None,
         note=note,
         warnings=notes,
     )

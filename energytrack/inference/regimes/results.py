@@ -100,6 +100,7 @@ class RegimeReport:
     criteria: tuple[Criterion, ...]
     points: tuple[Point, ...]
     judged_km: Range | None  # a break before or after cannot be told yet
+    later_km: float | None  # to drive until a change at the end of the log could be told
     note: str | None  # what is missing, where nothing could be looked for
     warnings: tuple[str, ...]
 

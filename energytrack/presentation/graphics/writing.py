@@ -1,0 +1,40 @@
+"""A drawing to a file, named .svg or .png."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from energytrack.errors import ReportError
+from energytrack.presentation.graphics import canvas
+
+_PROLOGUE = '<?xml version="1.0" encoding="utf-8"?>\n'
+
+
+def check(path: Path, *, force: bool = False) -> None:
+    """Raises ReportError where `write` could not draw to this file."""
+    if path.suffix.lower() not in (".svg", ".png"):
+        raise ReportError(f"cannot draw to {path}: name a file that ends in .svg or .png")
+    if path.is_dir() or (path.exists() and not force):
+        raise ReportError(_taken(path))
+    if not path.parent.is_dir():
+        raise ReportError(f"cannot write {path}: {path.parent} is no folder; make it first, or name another")
+    canvas.need_matplotlib()
+
+
+def write(drawing: canvas.Drawing, path: Path, *, force: bool = False) -> None:
+    """Draw to a new file, or over an earlier one with `force`. Raises ReportError."""
+    check(path, force=force)
+    data = canvas.png(drawing) if path.suffix.lower() == ".png" else (_PROLOGUE + canvas.svg(drawing)).encode()
+    try:
+        with path.open("wb" if force else "xb") as file:
+            file.write(data)
+    except FileExistsError:
+        raise ReportError(_taken(path)) from None
+    except OSError as failure:
+        raise ReportError(f"cannot write {path}: {failure.strerror}; name another file") from failure
+
+
+def _taken(path: Path) -> str:
+    if path.is_dir():
+        return f"cannot write {path}: it is a folder; name a file"
+    return f"{path} is there already: name another file, or replace it with --force"
