@@ -41,6 +41,7 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "enough": ("enough", "enough"),
     "plan": ("plan", "plan"),
     "rehearse": ("rehearse", "rehearse"),
+    "review": ("review", "review"),
 }
 
 
