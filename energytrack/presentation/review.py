@@ -5,7 +5,7 @@ from __future__ import annotations
 from rich.text import Text
 
 from energytrack.inference.review.results import Difference, Driven, Review
-from energytrack.logbook.quantities import consumption_text, energy_text
+from energytrack.logbook.quantities import DISTANCE, consumption_text, energy_text
 from energytrack.logbook.records import Vehicle
 from energytrack.presentation import figures, months, review_rows
 from energytrack.presentation.columns import aligned, cells_wide
@@ -31,7 +31,7 @@ def sentence(found: Review, vehicle: Vehicle) -> str:
     this, name = found.this, plain_text(found.vehicle) or "the vehicle"
     driven = figures.driven(this.distance_km, vehicle.distance_unit)
     if this.consumption is None:
-        return f"{name} in {found.month}: {driven} driven; no consumption is known. {_note(found)}".strip()
+        return f"{name} in {found.month}: {driven} driven, consumption not known yet. {_note(found)}".strip()
     said = f"{name} in {found.month}: {driven} at {join(consumption_text(this.consumption, vehicle))} as measured."
     if found.level is None:
         return f"{said} {_note(found)}"
@@ -113,7 +113,7 @@ _LABELS = (
 
 def _column(month: Driven, found: Review, vehicle: Vehicle) -> Row:
     currency = "" if found.price is None else found.price.currency
-    far = 100.0 if vehicle.distance_unit == "km" else figures.DISTANCE["mi"]
+    far = 100.0 if vehicle.distance_unit == "km" else DISTANCE["mi"]
     distance = "100 km" if vehicle.distance_unit == "km" else "mi"
     level = next((each for each in found.levels if each.month == month.month), None)
     per = None if month.cost_per_km is None else month.cost_per_km * far

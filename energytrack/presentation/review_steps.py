@@ -16,7 +16,9 @@ MOST = 3
 def next_steps(found: Review, vehicle: Vehicle) -> list[str]:
     """The most urgent first: safety, doubtful entries, more used than before, open tests, better records."""
     steps = [*_cautions(found), *_odd(found), *_more_used(found), *_tests(found, vehicle), *_records(found)]
-    return steps[:MOST] or ["Nothing stands out: drive on and log every entry."]
+    usual = "Nothing stands out: drive on and log every entry."
+    young = "Drive on, fill or charge to full as a habit, and log every entry."
+    return steps[:MOST] or [usual if found.level else young]
 
 
 def _cautions(found: Review) -> list[str]:

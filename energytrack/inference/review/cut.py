@@ -49,10 +49,10 @@ def check_month(log: SegmentedLog, month: Month, vehicle: str, today: dt.date) -
         return
     if not log.entries:
         raise InferenceError(f"{vehicle or 'the vehicle'} has no entry yet: log the next full tank or charge")
-    days = sorted(log.days)
-    before = [day for day in days if day < month.first]
-    near = dt.date.fromordinal(before[-1] if before else days[0])
-    first, last = (dt.date.fromordinal(day).isoformat() for day in (days[0], days[-1]))
+    days = log.days
+    nearest = min(days, key=lambda day: min(abs(day - month.first), abs(day - month.last)))
+    near = dt.date.fromordinal(nearest)
+    first, last = (dt.date.fromordinal(day).isoformat() for day in (min(days), max(days)))
     raise InferenceError(
         f"{vehicle or 'the vehicle'} has no entry in {month}: its entries run from {first} to {last}; "
         f"the nearest month with one is {near.isoformat()[:7]}"

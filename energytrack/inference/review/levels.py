@@ -2,9 +2,9 @@
 
 The noise is that of the log as a whole. At it, generalised least squares gives a month's level with a column for that
 month alone, and a difference of two months with a column for each: everything else in the log says what the conditions
-do. Neighbouring months share a level of the tank at the month's end and much of the drift, so their difference is better
-known than two levels that were estimated apart; the covariance accounts for that. Drift counts as noise: a difference is
-told from what the vehicle does from month to month anyway.
+do. Neighbouring months share a level of the tank at the month's end and much of the drift, so their difference is
+better known than two levels that were estimated apart; the covariance accounts for that. Drift counts as noise: a
+difference is told from what the vehicle does from month to month anyway.
 
 Intervals of ratios by Fieller (1954), degrees of freedom by Satterthwaite (1946).
 """
@@ -17,7 +17,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from energytrack.consumption.conditions import SEASON
-from energytrack.consumption.terms import condition_of
+from energytrack.consumption.terms import ELECTRIC, condition_of
 from energytrack.errors import InferenceError
 from energytrack.inference.bounds import mixture_quantile
 from energytrack.inference.derivatives import local
@@ -76,10 +76,10 @@ class Months:
         return estimate, self.model.scale.consumption * b
 
     def reference_conditions(self) -> dict[str, float]:
-        """The conditions that levels are brought to: their means over the distance of the log."""
+        """The conditions that levels are brought to: means over the distance of the log; driving on fuel alone."""
         distance = self.model.observed.distance_km
         named = dict.fromkeys(map(condition_of, self.model.terms.names))
-        values = self.model.conditions.values
+        values = {**self.model.conditions.values, ELECTRIC: np.zeros(len(distance))}
         return {name: float(distance @ values[name] / distance.sum()) for name in named if name != SEASON}
 
     def _bound(self, freedom: float) -> float:

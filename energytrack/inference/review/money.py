@@ -14,11 +14,8 @@ YEAR_DAYS = 365
 FEWEST_DAYS = 60  # of log, from which a year's distance may be scaled
 
 
-def price_of(accounted: Account, both: TwoCarriers | None, consumption: float) -> tuple[Price | None, str | None]:
-    """Price and yearly distance over the last 365 days of the log, or why there is none.
-
-    consumption: energy per km at the reference conditions.
-    """
+def price_of(accounted: Account, both: TwoCarriers | None) -> tuple[Price | None, str | None]:
+    """Price, consumption as measured and yearly distance over the last 365 days of the log, or why there is none."""
     if accounted.mixed is not None:
         return None, f"costs in several currencies are not added up ({accounted.mixed})"
     bought = accounted.bought(both)
@@ -33,9 +30,14 @@ def price_of(accounted: Account, both: TwoCarriers | None, consumption: float) -
     per_unit = math.fsum(entry.cost or 0.0 for entry in priced) / math.fsum(entry.energy for entry in priced)
     driven = math.fsum(km * _share(start, end, since, last) for start, end, km in pieces(accounted.log))
     yearly = driven * YEAR_DAYS / (last - since)
+    measured = [each for each in accounted.log.segments if each.end_day > since]
+    if not measured:
+        return None, "no consumption is known of the last 12 months"
+    consumption = math.fsum(each.energy for each in measured) / math.fsum(each.distance_km for each in measured)
     day = dt.date.fromordinal(since).isoformat()
     scaled = last - since < YEAR_DAYS
-    return Price(accounted.currency, per_unit, yearly, yearly * consumption * per_unit, day, scaled), None
+    cost = yearly * consumption * per_unit
+    return Price(accounted.currency, per_unit, consumption, yearly, cost, day, scaled), None
 
 
 def _share(start: int, end: int, since: int, last: int) -> float:
@@ -45,11 +47,16 @@ def _share(start: int, end: int, since: int, last: int) -> float:
     return max(0.0, min(end, last) - max(start, since)) / (end - start)
 
 
-def worth(answer: Assessment, price: Price, part_cost: float | None) -> Worth | None:
-    """Of one modification; None while there is no shift to speak of."""
+def worth(answer: Assessment, price: Price, both: TwoCarriers | None, part_cost: float | None) -> Worth | None:
+    """Of one modification; None while there is no shift to speak of.
+
+    The shift is relative to consumption without it at the reference conditions. With tank and battery those are driving
+    on fuel alone, and the same shift holds for whatever mix was bought: there it is relative to that.
+    """
     if answer.shift_percent is None or answer.expectation is None:
         return None
-    per_km = answer.expectation.consumption * price.per_unit / 100  # cost of one percent
+    usual = answer.expectation.consumption if both is None else price.consumption
+    per_km = usual * price.per_unit / 100  # cost of one percent
     low, high = answer.interval_percent or (-math.inf, math.inf)
     saved = (-high * per_km, -low * per_km)  # a km, at least and at most
     bounded = all(map(math.isfinite, saved))

@@ -69,8 +69,9 @@ class Price:
 
     currency: str | None
     per_unit: float  # of energy
+    consumption: float  # as measured over that time
     yearly_km: float
-    yearly_cost: float  # at the reference conditions
+    yearly_cost: float
     since: str  # date from which both are counted
     scaled: bool  # the log is shorter than a year
 

@@ -31,7 +31,7 @@ from energytrack.inference.review.carbon import carbon_of
 from energytrack.inference.review.changes import changes
 from energytrack.inference.review.cut import check_month, entries_until, fitted_until
 from energytrack.inference.review.driven import Account, account, driven, month_shares
-from energytrack.inference.review.levels import FEWEST, Estimate, Months
+from energytrack.inference.review.levels import FEWEST, FEWEST_OUTSIDE, Estimate, Months
 from energytrack.inference.review.money import price_of, worth
 from energytrack.inference.review.month import Month, month_of, month_with
 from energytrack.inference.review.quality import quality_of
@@ -120,7 +120,7 @@ def review(
     this, before, ago = (_driven(log, asked, asked.month.later(-back)) for back in (0, 1, 12))
     assert this is not None  # the month has entries
     level, differences = _compared(log, asked, this, before, ago)
-    price, why_not = _price(log, asked, level)
+    price, why_not = price_of(log.accounted, asked.both)
     return Review(
         vehicle=asked.vehicle,
         month=str(asked.month),
@@ -197,6 +197,10 @@ def _log(asked: _Asked) -> _Log:
     months, note = None, None
     if len(kept) < FEWEST:
         note = _too_short(len(kept), segmented)
+    elif not shares[names[0]].any():
+        note = "none of the month's driving lies between known levels that are kept"
+    elif (1 - shares[names[0]]).sum() < FEWEST_OUTSIDE:
+        note = f"{FEWEST_OUTSIDE} full tanks or charges outside this month are needed to tell what weather and speed do"
     else:
         months = Months(fit_model(averaged(kept), None), shares, asked.confidence)
     return _Log(segmented, account(segmented), months, note, odd, notes, kept)
@@ -211,8 +215,8 @@ def _too_short(count: int, segmented: SegmentedLog) -> str:
     if segmented.lacks_levels:
         return "no two entries tell how full the tank or battery was after them, so no consumption is known"
     return (
-        f"{count} segments between known levels: from {FEWEST} on, and some outside this month, weather and speed "
-        f"can be taken out"
+        f"weather and speed can be taken out from {FEWEST} full tanks or charges on, {FEWEST_OUTSIDE} of them outside "
+        f"this month; {count} so far"
     )
 
 
@@ -285,15 +289,6 @@ def _levels(log: _Log, asked: _Asked) -> tuple[Level, ...]:
     return tuple(level for level in every if level is not None)
 
 
-def _price(log: _Log, asked: _Asked, level: Level | None) -> tuple[Price | None, str | None]:
-    if log.months is None or level is None:
-        if log.accounted.mixed is not None:
-            return price_of(log.accounted, asked.both, 0.0)
-        return None, "the log is too short to tell a year from it"
-    base = log.months.model
-    return price_of(log.accounted, asked.both, float(base.fit.coefficients[0]) * base.scale.consumption)
-
-
 def _tested(asked: _Asked, name: str, price: Price | None) -> Tested:
     answer: Assessment = assess(
         **asked.tables,
@@ -315,7 +310,7 @@ def _tested(asked: _Asked, name: str, price: Price | None) -> Tested:
         days_to_go=answer.days_to_go,
         settled_on=answer.settled_on,
         is_open=answer.is_open,
-        worth=None if price is None else worth(answer, price, asked.part_costs.get(name)),
+        worth=None if price is None else worth(answer, price, asked.both, asked.part_costs.get(name)),
     )
 
 
