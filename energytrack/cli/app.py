@@ -42,6 +42,7 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "plan": ("plan", "plan"),
     "regimes": ("regimes", "regimes"),
     "rehearse": ("rehearse", "rehearse"),
+    "review": ("review", "review"),
 }
 
 

@@ -52,7 +52,7 @@ class FramedLogbook:
 
     def vehicles(self) -> pd.DataFrame:
         """One row a vehicle."""
-        frame = _frame(self._logbook.vehicles(), VEHICLE_COLUMNS)
+        frame = records_to_frame(self._logbook.vehicles(), VEHICLE_COLUMNS)
         return frame.rename(columns={"name": "vehicle"})
 
     def entries(self, vehicle: str) -> pd.DataFrame:
@@ -61,15 +61,15 @@ class FramedLogbook:
 
     def modifications(self, vehicle: str) -> pd.DataFrame:
         """One row a period in which a modification was fitted. Raises UnknownNameError."""
-        return _frame(self._logbook.modifications(self._known(vehicle)), MODIFICATION_COLUMNS)
+        return records_to_frame(self._logbook.modifications(self._known(vehicle)), MODIFICATION_COLUMNS)
 
     def events(self, vehicle: str) -> pd.DataFrame:
         """Raises UnknownNameError."""
-        return _frame(self._logbook.events(self._known(vehicle)), EVENT_COLUMNS)
+        return records_to_frame(self._logbook.events(self._known(vehicle)), EVENT_COLUMNS)
 
     def weather(self) -> pd.DataFrame:
         """One row a day."""
-        return _frame(self._logbook.weather(), WEATHER_COLUMNS)
+        return records_to_frame(self._logbook.weather(), WEATHER_COLUMNS)
 
     def _known(self, vehicle: str) -> str:
         return self._logbook.vehicle(vehicle).name
@@ -82,7 +82,7 @@ def open_logbook(path: str | Path) -> FramedLogbook:
 
 def entries_to_frame(entries: Sequence[Entry]) -> pd.DataFrame:
     """A frame with the columns of the entries table, and one for each further numeric column."""
-    frame = _frame(entries, ENTRY_COLUMNS)
+    frame = records_to_frame(entries, ENTRY_COLUMNS)
     for name in dict.fromkeys(name for entry in entries for name in entry.extra):
         frame[name] = np.array([entry.extra.get(name, math.nan) for entry in entries], dtype=np.float64)
     return frame
@@ -273,7 +273,10 @@ def the_vehicle(entries: Sequence[Entry]) -> str:
     return names[0]
 
 
-def _frame(records: Sequence[Entry | Modification | Event | Weather | Vehicle], columns: Sequence[str]) -> pd.DataFrame:
+def records_to_frame(
+    records: Sequence[Entry | Modification | Event | Weather | Vehicle], columns: Sequence[str]
+) -> pd.DataFrame:
+    """One row a record, in columns of the tables."""
     data: dict[str, Any] = {}
     for name in columns:
         values = [getattr(record, name) for record in records]
