@@ -75,9 +75,9 @@ def enough(
     answers, refusals = asking.answered(
         asked, lambda question: (question, _assess(logbook, question, confidence, power, covariate, rule, keep_all))
     )
-    if target is None and not covariate and not contents and (confidence, power) == USUAL_CERTAINTY:
-        for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
-            keep(logbook, question, answer)
+    in_passing = target is not None or covariate or contents or keep_all or (confidence, power) != USUAL_CERTAINTY
+    for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
+        (_write_look_down if in_passing else keep)(logbook, question, answer)
     if json:
         _print_json([a for _, a in answers])
     else:
@@ -186,15 +186,25 @@ def keep(logbook: Logbook, question: asking.Question, answer: Assessment) -> Non
 
     if not isinstance(logbook, Store) or not logbook.writable:
         return
-    vehicle, modification = question.vehicle.name, question.modification
     result = without_nan(answer.to_dict())
     del result["looks"]
     try:
-        last = logbook.last_entries(vehicle, 1)
+        last = logbook.last_entries(question.vehicle.name, 1)
         result["at_km"] = last[0].odometer_km if last else None
-        logbook.keep_assessment(vehicle, modification, result)
-        if answer.looks:
-            newest = answer.looks[-1]
-            logbook.record_look(vehicle, modification, newest.odometer_km, dt.date.fromisoformat(newest.date))
+        logbook.keep_assessment(question.vehicle.name, question.modification, result)
     except EnergytrackError as refusal:
         print(f"energytrack: the answer was not kept: {refusal}", file=sys.stderr)
+        return
+    _write_look_down(logbook, question, answer)
+
+
+def _write_look_down(logbook: Logbook, question: asking.Question, answer: Assessment) -> None:
+    """That someone looked, whatever target or confidence was asked for: the shift shown is the same."""
+    if not isinstance(logbook, Store) or not logbook.writable or not answer.looks:
+        return
+    newest = answer.looks[-1]
+    date = dt.date.fromisoformat(newest.date)
+    try:
+        logbook.record_look(question.vehicle.name, question.modification, newest.odometer_km, date)
+    except EnergytrackError as refusal:
+        print(f"energytrack: the look was not written down: {refusal}", file=sys.stderr)

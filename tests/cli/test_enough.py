@@ -298,6 +298,20 @@ def test_looks_taken_are_recorded_once_for_each_new_segment(logbook: Path) -> No
     assert book.looks("car", "grille blanking") == [STEP_KM * 29]
 
 
+@pytest.mark.parametrize("asked", [("--target", "2"), ("--confidence", "0.9"), ("--keep-all",)])
+def test_a_question_in_passing_is_a_look_but_its_answer_is_not_kept(tmp_path: Path, asked: tuple[str, str]) -> None:
+    """The shift shown is the same whatever the target, so whoever counts looks must count this one."""
+    path = tmp_path / "my.logbook"
+    book = open_logbook(path, create=True)
+    assert isinstance(book, Store)
+    book.add_vehicle(Vehicle("car", "petrol", "L", 50.0))
+    drive(book, "car", 30, 0.0, 0.8, seed=2)
+    book.fit("car", "grille blanking", dt.date(2025, 6, 5), FITTED_KM)
+    assert run(path, "enough", "--looks", "counted", *asked).returncode == 0
+    assert book.looks("car", "grille blanking") == [STEP_KM * 29]
+    assert book.assessments("car") == []
+
+
 def test_only_looks_taken_count_when_they_are_counted(tmp_path: Path) -> None:
     path = tmp_path / "my.logbook"
     book = open_logbook(path, create=True)
