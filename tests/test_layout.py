@@ -102,3 +102,10 @@ def test_subpackage_init_is_empty(name: str):
 def test_every_module_has_its_layer():
     outside = [name for name in MODULES if layer(f"energytrack.{name}") is None]
     assert outside == ["__init__", "__main__"]
+
+
+def test_matplotlib_is_loaded_in_one_place_and_only_to_draw():
+    using = [name for name in MODULES if any(each.split(".")[0] == "matplotlib" for each in imported(tree_of(name)))]
+    loading = [name for name in using if any(each.startswith("matplotlib") for each in at_import(tree_of(name)))]
+    assert "presentation.graphics.canvas" in using
+    assert loading == []

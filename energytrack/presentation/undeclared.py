@@ -42,8 +42,7 @@ def withheld_steps(a: Assessment, unit: str) -> list[str]:
 
 def steps(found: Break, unit: str) -> list[str]:
     """What to do about a change that nothing logged explains."""
-    at = figures.driven(found.odometer_km, unit).split(" ")[0].replace(",", "")
-    command = join(f'energytrack event "WHAT HAPPENED" {at}')
+    command = join(f'energytrack event "WHAT HAPPENED" {figures.in_unit(found.odometer_km, unit):.0f}')
     said = [
         f"If something happened there, log it, and it is counted apart: {command}",
         f"Places to look: {'; '.join(found.suspects)}.",

@@ -20,7 +20,7 @@ def changes(report: RegimeReport, unit: str, width: int) -> list[str]:
     """Each change in two rows, its place above the range of its place, and below what was logged there."""
     if not report.breaks:
         return []
-    rows = [("shift", f"{100 * report.confidence:g} % range", f"at, {unit}", "on", "p")]
+    rows = [("shift", f"{100 * report.confidence:g} % range", f"at, {unit}", "on")]
     for found in report.breaks:
         rows += _rows(found, unit)
     table = aligned(rows)
@@ -30,15 +30,15 @@ def changes(report: RegimeReport, unit: str, width: int) -> list[str]:
     return lines
 
 
-def _rows(found: Break, unit: str) -> list[tuple[str, str, str, str, str]]:
+def _rows(found: Break, unit: str) -> list[tuple[str, str, str, str]]:
     span = figures.bounded(found.interval_percent)
     size, ends = figures.percent(found.shift_percent, signed=True), figures.percent_range(span) if span else "open"
     place, low, high = (
         figures.significant(figures.in_unit(km, unit), 3) for km in (found.odometer_km, *found.interval_km)
     )
     return [
-        (_plain(size), _plain(ends), place, found.date, _p(found.p_value)),
-        ("", "", f"{low} to {high}", " to ".join(found.interval_dates), ""),
+        (_plain(size), _plain(ends), place, found.date),
+        (f"p {_p(found.p_value)}", "", f"{low} to {high}", " to ".join(found.interval_dates)),
     ]
 
 
