@@ -20,6 +20,7 @@ from tests.evidence import (
     undeclared,
     withheld,
 )
+from tests.evidence import watching
 from tests.evidence.block import Block
 from tests.evidence.goals import Promise
 from tests.evidence.logs import jobs
@@ -81,6 +82,11 @@ def simulated(uses: Uses, most: int | None) -> list[Part]:
             withheld.verdicts,
             jobs(uses, searched, withheld.FIRST_SEED),
             lambda found: [withheld.block(found, uses, searched)],
+        ),
+        Part(
+            watching.watch,
+            jobs(uses, min(watching.LOGS, logs), watching.FIRST_SEED),
+            lambda found: [watching.block(found, uses, min(watching.LOGS, logs))],
         ),
     ]
 

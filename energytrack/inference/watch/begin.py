@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from math import exp, sqrt
 
 import numpy as np
@@ -13,7 +13,7 @@ from energytrack.consumption.conditions import fill
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside
 from energytrack.inference.model import Model, fit_model
-from energytrack.inference.noise import Array, Scatter
+from energytrack.inference.noise import Array
 from energytrack.inference.regimes.places import FEWEST
 from energytrack.inference.watch import runs
 from energytrack.inference.watch.kept import Column, Watch
@@ -31,29 +31,35 @@ _VAGUE = 100.0  # variance of the level before anything is known
 _UNKNOWN = 0.2  # prior sd of a modification's shift, as in inference/model.py
 
 
-@dataclass(frozen=True)
-class Delay:
-    """How long a shift of this size goes unseen, on average; None where chance alarms come as soon."""
-
-    shift_percent: float
-    tanks: float | None
-    km: float | None
-
-
-def begin(observed: Observations, *, false_alarm_every_km: float = FALSE_ALARM_EVERY_KM) -> Watch | None:
+def begin(
+    observed: Observations,
+    events_km: Sequence[float] = (),
+    *,
+    false_alarm_every_km: float = FALSE_ALARM_EVERY_KM,
+    with_delays: bool = False,
+) -> Watch | None:
     """The monitor after all of a log's segments, the newest 200 at most; None for fewer than twelve.
 
     The noise is fitted without the newest ten, so that what is watched does not set its own measure. Segments that
-    stand out from their neighbours count in neither fit. Raises InferenceError where effects cannot be told apart.
+    stand out from their neighbours do not count in it. At each event (odometer positions, km) the level may have moved
+    and the sums start anew. `with_delays`: how soon a shift would be told as well. Raises InferenceError where effects
+    cannot be told apart.
     """
     recent = observed.part(max(0, len(observed) - _NEWEST), len(observed))
     if len(recent) < FEWEST:
         return None
     model = fit_model(set_aside(recent.head(max(FEWEST, len(recent) - _YARDSTICK))).kept, None)
-    return watched(recent, model, false_alarm_every_km)
+    return watched(recent, model, false_alarm_every_km, events_km, with_delays=with_delays)
 
 
-def watched(observed: Observations, model: Model, false_alarm_every_km: float) -> Watch:
+def watched(
+    observed: Observations,
+    model: Model,
+    false_alarm_every_km: float,
+    events_km: Sequence[float] = (),
+    *,
+    with_delays: bool = False,
+) -> Watch:
     """The monitor after all segments of `observed`, with the noise, terms and scale of a model fitted to some."""
     names = tuple(name for name in observed.names if np.ptp(observed.shares[:, observed.names.index(name)]) > 0)
     segments = segments_of(observed, model, names)
@@ -61,7 +67,7 @@ def watched(observed: Observations, model: Model, false_alarm_every_km: float) -
     priors = [0.0, *model.terms.prior_mean.tolist(), *[0.0] * len(names)]
     variances = [_VAGUE, *(model.terms.prior_sd**2).tolist(), *[_UNKNOWN**2] * len(names)]
     filtered = _filtered(start(noise, priors, variances), segments)
-    effects = responses(filtered, segments, WORTH, _AFTER)
+    effects = WORTH * responses(filtered, segments, _AFTER)
     kept = float(effects.mean() / effects[0])
     recent_km = float(observed.distance_km[-_RECENT:].mean())
     expected = float(effects.mean())
@@ -69,7 +75,9 @@ def watched(observed: Observations, model: Model, false_alarm_every_km: float) -
         expected / 2, max(2.0, false_alarm_every_km / recent_km), _doubt(model, filtered, segments), LARGEST_SHARE
     )
     begun = Monitor(start(noise, priors, variances), Sum(), Sum(), WORTH, kept, share * expected)
-    for segment in segments:
+    for segment, end_km in zip(segments, observed.end_km.tolist(), strict=True):
+        if any(segment.start_km <= place < end_km for place in events_km):
+            begun = begun._replace(filter=_loosened(begun.filter), rise=Sum(), fall=Sum())
         begun = advance(begun, segment)
     return Watch(
         monitor=begun,
@@ -82,7 +90,7 @@ def watched(observed: Observations, model: Model, false_alarm_every_km: float) -
         end_km=float(observed.end_km[-1]),
         end_date=_iso(observed.end_day[-1]),
         last_energy=float(observed.energy[-1]),
-        delays=delays(begun, expected, share, segments, recent_km),
+        delays=delays(begun, expected, share, segments, recent_km) if with_delays else (),
     )
 
 
@@ -91,16 +99,16 @@ def delays(
 ) -> tuple[tuple[float, float | None], ...]:
     """Shift in percent -> km until its alarm on average, both sums at zero before it."""
     found = []
+    effects = responses(monitor.filter, segments, _HORIZON)
     for shift in (0.03, 0.05, 0.10):
-        effects = responses(monitor.filter, segments, shift, _HORIZON)
-        running = runs.chances_to_run(expected / 2, share, effects.tolist(), LARGEST_SHARE * share)
+        running = runs.chances_to_run(expected / 2, share, (shift * effects).tolist(), LARGEST_SHARE * share)
         lost = running[-1] > 0.05
         found.append((100 * shift, None if lost else float(running[:-1].sum()) * recent_km))
     return tuple(found)
 
 
-def responses(filtered: Filter, segments: Sequence[Segment], shift: float, count: int) -> Array:
-    """What a lasting shift adds to the standardised errors of the next `count` average segments, drift adapting."""
+def responses(filtered: Filter, segments: Sequence[Segment], count: int) -> Array:
+    """What a lasting shift of 100 % adds to the standardised errors of the next `count` average segments."""
     newest = segments[-_RECENT:]
     days = np.diff([segment.day for segment in newest])
     gap = float(np.median(days)) if len(days) else 7.0
@@ -115,7 +123,7 @@ def responses(filtered: Filter, segments: Sequence[Segment], shift: float, count
     found = []
     for number in range(count):
         day = (filtered.day or 0.0) + gap * (number + 1)
-        step = typical._replace(day=day, energy=shift * level * typical.distance)
+        step = typical._replace(day=day, energy=level * typical.distance)
         moved, error, variance, reached = predict(here, step)
         found.append(error / sqrt(variance))
         here = learned(moved, error, variance, reached)
@@ -128,18 +136,23 @@ def _filtered(filtered: Filter, segments: Sequence[Segment]) -> Filter:
     return filtered
 
 
+def _loosened(filtered: Filter) -> Filter:
+    """The level may have moved as far as a modification moves it."""
+    covariance = [list(line) for line in filtered.covariance]
+    covariance[0][0] += _UNKNOWN**2
+    return filtered._replace(covariance=covariance)
+
+
 def _doubt(model: Model, filtered: Filter, segments: Sequence[Segment]) -> float:
     """Sd of the log of a prediction error's standard deviation, from that of the noise sizes (delta method)."""
     slopes = []
     last = segments[-1]._replace(day=(filtered.day or 0.0) + 7.0)
-    base = predict(filtered, last)[2]
     for source in range(4):
         noise = list(filtered.noise)
         noise[source] *= exp(0.1)
         more = _filtered(start((noise[0], noise[1], noise[2], noise[3]), *_prior(model, filtered)), segments[-60:])
         same = _filtered(start(filtered.noise, *_prior(model, filtered)), segments[-60:])
         slopes.append(0.5 * np.log(predict(more, last)[2] / predict(same, last)[2]) / 0.1)
-    del base
     slope = np.array(slopes)
     return float(np.sqrt(max(0.0, slope @ model.fit.theta_covariance @ slope)))
 
@@ -154,7 +167,7 @@ def _prior(model: Model, filtered: Filter) -> tuple[list[float], list[float]]:
 
 def segments_of(observed: Observations, model: Model, names: Sequence[str]) -> list[Segment]:
     conditions = fill(observed)
-    known = {name: values for name, values in conditions.values.items()}
+    known = dict(conditions.values)
     missing = [name for name in model.conditions.values if name not in known]
     if missing:  # a condition of the fit that the newest segments lack
         conditions = replace(conditions, values={**known, **{name: np.full(len(observed), np.nan) for name in missing}})

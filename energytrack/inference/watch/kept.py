@@ -10,8 +10,9 @@ from energytrack.consumption.meaning import condition_in
 from energytrack.consumption.segments import SegmentedLog
 from energytrack.consumption.shares import shares
 from energytrack.consumption.terms import condition_of, term
-from energytrack.inference.watch.monitor import Filter, Monitor, Segment, Sum, advance
-from energytrack.logbook.records import Modification
+from energytrack.inference.watch.monitor import Filter, Monitor, Segment, Sum, advance, alarm
+from energytrack.logbook.quantities import distance_text
+from energytrack.logbook.records import Modification, Vehicle
 
 _SAME_KM, _SAME_ENERGY = 0.5, 1e-6
 
@@ -85,6 +86,27 @@ def carried_on(watch: Watch, log: SegmentedLog, modifications: Sequence[Modifica
             segments=watch.segments + len(new), end_km=newest.end_km, end_date=end, last_energy=newest.energy
         )
     return watch._replace(monitor=monitor)
+
+
+def alarm_lines(watch: Watch, vehicle: Vehicle) -> list[str]:
+    """One line where consumption stands apart from what is expected, and where to look; nothing otherwise."""
+    found = alarm(watch.monitor)
+    if found is None or found[0].since_km is None:
+        return []
+    since, shift = found
+    place = distance_text(since.since_km or 0.0, vehicle)
+    line = (
+        f"consumption has stood about {abs(100 * shift):.0f} % {'above' if shift > 0 else 'below'} what is expected "
+        f"since about {place} ({since.since_date}): "
+    )
+    electric = vehicle.unit == "kWh"
+    if shift < 0:
+        return [line + "if something was fitted, mended or changed then, log it with `mod` or `event`"]
+    look = "tyre pressure, a dragging brake, " + ("charging losses" if electric else "a leak") + ", load, roof or route"
+    return [
+        f"{line}look at {look}; have brakes, tyres and leaks inspected by a qualified person before further driving "
+        "tests; log what you find with `event`"
+    ]
 
 
 def _segment(watch: Watch, log: SegmentedLog, which: int, parts: Mapping[str, Sequence[float]]) -> Segment:

@@ -19,6 +19,7 @@ _CELLS = 60
 _NODES, _WEIGHTS = np.polynomial.hermite_e.hermegauss(9)
 _WEIGHTS = _WEIGHTS / _WEIGHTS.sum()
 _LONGEST = 1e12
+_NONE_LEFT = 1e-4
 _LOWEST, _HIGHEST = log(0.05), log(60.0)  # thresholds tried
 
 
@@ -34,13 +35,15 @@ def average_run_length(reference: float, threshold: float, mean: float = 0.0, sd
 
 
 def chances_to_run(reference: float, threshold: float, means: Sequence[float], largest: float = inf) -> Array:
-    """Chance (k + 1,) that there was no alarm after 0, 1, ... k errors whose means are given one by one, sd 1."""
+    """Chance of no alarm after 0, 1, ... errors whose means are given one by one, sd 1, until hardly any is left."""
     state = np.zeros(_CELLS)
     state[0] = 1.0
     running = [1.0]
     for mean in means:
         state = state @ _transitions(reference, threshold, mean, 1.0, largest)
         running.append(float(state.sum()))
+        if running[-1] < _NONE_LEFT:
+            break
     return np.array(running)
 
 
