@@ -259,7 +259,8 @@ class Store(ChangingFile):
             number = self._number(vehicle_name)
             self._db.execute("DELETE FROM watch WHERE vehicle_id = ?", (number,))
             if state is not None:
-                newest = {f"{name}_row": self._rows(f"SELECT coalesce(max(id), 0) FROM {name}")[0][0] for name in tables}
+                newest = {f"{table}_row": self._rows(f"SELECT coalesce(max(id), 0) FROM {table}")[0][0]
+                          for table in tables}  # fmt: skip
                 kept = {"vehicle_id": number, "state": json.dumps(state, allow_nan=False), **newest}
                 rows.insert(self._db, "watch", kept)
 

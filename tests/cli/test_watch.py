@@ -1,4 +1,4 @@
-"""The watch in a real logbook: begun by a heavy command, carried on by the echo of each entry, void after corrections."""
+"""The watch in a real logbook: begun by a heavy command, carried on by each echo, void after corrections."""
 
 from __future__ import annotations
 
@@ -39,8 +39,8 @@ def logged(store: Store, number: int, times: float) -> str:
     new = entry(number, times)
     code = (
         "import sys\nfrom energytrack.cli.app import app\n"
-        f"sys.argv = ['energytrack', '--logbook', {str(store.path)!r}, 'fillup', '{new.odometer_km}', '{new.energy:.2f}',"
-        f" '--date', '{new.date}']\n"
+        f"sys.argv = ['energytrack', '--logbook', {str(store.path)!r}, 'fillup', "
+        f"'{new.odometer_km}', '{new.energy:.2f}', '--date', '{new.date}']\n"
         "try:\n    app()\nfinally:\n"
         "    print('heavy:', sorted({'numpy', 'pandas', 'scipy', 'statsmodels', 'rich'} & set(sys.modules)))\n"
     )

@@ -18,9 +18,9 @@ from tests.evidence import (
     quantiles,
     sham,
     undeclared,
+    watching,
     withheld,
 )
-from tests.evidence import watching
 from tests.evidence.block import Block
 from tests.evidence.goals import Promise
 from tests.evidence.logs import jobs

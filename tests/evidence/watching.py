@@ -21,7 +21,7 @@ from tests.simulation import simulate
 from tests.uses import Use
 
 FIRST_SEED = 70_000
-LOGS = 20  # of each kind: each is watched for 400 fillings
+LOGS = 12  # of each kind: each is watched for 400 fillings
 BASELINE = 40  # segments before the watch begins
 FURTHER = 400  # fillings without a change, after them
 AFTER = 150  # fillings after a change

@@ -21,7 +21,7 @@ from tests.uses import SLOPPY_FILLS, STEADY_COMMUTE, Use
 
 
 def drawn(use: Use, seed: int, fillings: int = 60) -> Observations:
-    log = simulate(replace(use, fillings=fillings, switches=()), np.random.default_rng(seed))
+    log = simulate(replace(use, fillings=fillings, shift_percent=0.0), np.random.default_rng(seed))
     return observe_frames(log.entries, log.modifications, unit=use.unit, capacity=use.capacity)[0].keeping(())
 
 
@@ -53,7 +53,8 @@ def steady() -> Monitor:
 
 
 def at(number: int, energy: float) -> Segment:
-    return Segment(1.0, energy, 7.0 * number, [1.0], 0.0, number > 0, 1.0, 1.0, 500.0 * number, f"2026-01-{number + 1:02}")
+    place, date = 500.0 * number, f"2026-01-{number + 1:02}"
+    return Segment(1.0, energy, 7.0 * number, [1.0], 0.0, number > 0, 1.0, 1.0, place, date)
 
 
 @pytest.mark.parametrize(("size", "sign"), [(1.06, 1), (0.94, -1)])

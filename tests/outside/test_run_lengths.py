@@ -16,6 +16,8 @@ from energytrack.inference.watch.runs import average_run_length, chances_to_run,
 # threshold 4 and 5. Shift in sd -> average run length. From memory.
 PRINTED = {4: {0.0: 168.0, 1.0: 8.38}, 5: {0.0: 465.0, 1.0: 10.4}}
 
+REC_CUSUM_OF_NILE = 2.06692088890315  # R 4.2.2, strucchange 1.5.3: sctest(efp(Nile ~ 1, type = "Rec-CUSUM"))
+
 
 @pytest.mark.parametrize("threshold", PRINTED)
 @pytest.mark.parametrize("shift", [0.0, 1.0])
@@ -45,12 +47,19 @@ def test_chances_add_up_to_the_mean() -> None:
 
 def test_prediction_errors_are_recursive_residuals() -> None:
     """Brown, Durbin and Evans (1975); statsmodels on its own Nile series, independent errors and a flat start."""
-    flow = sm.datasets.nile.load_pandas().data["volume"].to_numpy()
-    oracle = recursive_olsresiduals(sm.OLS(flow, np.ones(len(flow))).fit(), skip=1)[0]
-    filtered, errors = start((1.0, 1e-9, 1e-9, 1e-9), [0.0], [1e9]), []
+    flow = sm.datasets.nile.load_pandas().data["volume"].to_numpy() / 200  # so that every error is believed
+    oracle = recursive_olsresiduals(sm.OLS(flow, np.ones(len(flow))).fit(), skip=1)[4]
+    filtered, errors = start((1.0, 1e-9, 1e-9, 1e-9), [0.0], [1e7]), []
     for place, volume in enumerate(flow):
         step = Segment(1.0, volume, float(place), [1.0], 0.0, False, 0.0, 0.0, 0.0, "")
         moved, error, variance, reached = predict(filtered, step)
         errors.append(error / sqrt(variance))
-        filtered = learn(moved, min(error, 3.9 * sqrt(variance)) if place < 1 else error, variance, reached)
-    np.testing.assert_allclose(errors[1:4], oracle[1:4], rtol=1e-5)
+        filtered = learn(moved, error, variance, reached)
+    np.testing.assert_allclose(errors[1:], oracle[1:], rtol=1e-4, atol=1e-5)
+    assert rec_cusum(200 * np.array(errors[1:])) == pytest.approx(REC_CUSUM_OF_NILE, rel=1e-4)
+
+
+def rec_cusum(errors: np.ndarray) -> float:
+    """Largest cumulative sum of standardised errors, relative to the line 1 + 2 t (Brown, Durbin and Evans, 1975)."""
+    sums = np.cumsum(errors) / (errors.std(ddof=1) * sqrt(len(errors)))
+    return float(np.max(np.abs(sums) / (1 + 2 * np.arange(1, len(errors) + 1) / len(errors))))
