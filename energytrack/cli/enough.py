@@ -13,6 +13,7 @@ from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.app import ExitStatus
 from energytrack.cli.context import readable_as_of, say, say_json
+from energytrack.cli.watch import keep_watch
 from energytrack.errors import EnergytrackError, LogbookError
 from energytrack.logbook.store import Store
 
@@ -78,6 +79,9 @@ def enough(
     in_passing = target is not None or covariate or contents or keep_all or (confidence, power) != USUAL_CERTAINTY
     for question, answer in answers:  # first: a reader such as `head` may end the command while it prints
         (_write_look_down if in_passing else keep)(logbook, question, answer)
+    if not in_passing:
+        for vehicle_name in dict.fromkeys(question.vehicle.name for question, _ in answers):
+            keep_watch(logbook, logbook.vehicle(vehicle_name))
     if json:
         _print_json([a for _, a in answers])
     else:

@@ -133,10 +133,20 @@ def _write(typed: Typed, store: Store, vehicle: Vehicle, again: bool) -> Entry:
 def _echo(store: Store, vehicle: Vehicle, entry: Entry, json: bool) -> None:
     from energytrack.consumption.meaning import echo_lines
 
-    lines = echo_lines(store, vehicle, entry)
+    lines = [*echo_lines(store, vehicle, entry), *_watched(store, vehicle)]
     if json:
         from energytrack.cli.entries import entry_columns
 
         say_json({**entry_columns(entry), "meaning": lines})
     else:
         say(lines)
+
+
+def _watched(store: Store, vehicle: Vehicle) -> list[str]:
+    """What the kept monitor says with this entry; nothing where none is kept. A refusal never hides the entry."""
+    kept = store.watch(vehicle.name)
+    if kept is None:
+        return []
+    from energytrack.inference.watch.echo import watch_lines
+
+    return watch_lines(store, vehicle, kept)

@@ -49,7 +49,7 @@ def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str
     recent = logbook.last_entries(vehicle.name, RECENT_ENTRIES)
     if len(recent) == RECENT_ENTRIES and all(row.odometer_km is None for row in recent):
         recent = logbook.entries(vehicle.name)  # without an odometer, positions count from the first entry
-    segmented = _segmented(vehicle, recent, logbook.events(vehicle.name))
+    segmented = segmented_of(vehicle, recent, logbook.events(vehicle.name))
     index = _index_of(segmented, entry)
     if index is None or (index == 0 and len(recent) >= RECENT_ENTRIES):
         return ["kept among the older entries"]
@@ -65,7 +65,7 @@ def echo_lines(logbook: EchoLogbook, vehicle: Vehicle, entry: Entry) -> list[str
     return lines + _still_to_go(segmented, vehicle, index, kept, rows)
 
 
-def _segmented(vehicle: Vehicle, entries: Sequence[Entry], events: Sequence[Event]) -> SegmentedLog:
+def segmented_of(vehicle: Vehicle, entries: Sequence[Entry], events: Sequence[Event]) -> SegmentedLog:
     if vehicle.second_carrier is None:
         return close_segments(entries, events, capacity=vehicle.capacity, unit=vehicle.unit)
     from energytrack.consumption.two_carriers import close_vehicle  # only where it is needed: logging starts fast
@@ -234,7 +234,7 @@ def _expected(
     expectation = answer["expectation"]
     percent = 0.0
     for name, slope in expectation["terms"].items():
-        value = _condition(segmented, which, condition_of(name))
+        value = condition_in(segmented, which, condition_of(name))
         if value is not None:
             percent += slope * (term(name, value) - expectation["centres"][name])
     own = [row for row in rows if row.name == answer.get("modification")]
@@ -248,7 +248,7 @@ def _expected(
     return float(expectation["consumption"] * (1 + percent / 100))
 
 
-def _condition(segmented: SegmentedLog, which: int, name: str) -> float | None:
+def condition_in(segmented: SegmentedLog, which: int, name: str) -> float | None:
     """Distance-weighted condition of a segment, None where unknown on more than half of its distance."""
     segment = segmented.segments[which]
     if name == ELECTRIC:

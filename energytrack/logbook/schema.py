@@ -256,8 +256,19 @@ CREATE VIEW standing_weather AS
 {_kept_for_good("weather", "id")}
 """
 
+_VERSION_4 = """
+CREATE TABLE watch (             -- how far the monitor of a vehicle's consumption has come; made anew at any time
+    vehicle_id INTEGER PRIMARY KEY REFERENCES vehicle (id),
+    state TEXT NOT NULL,         -- JSON
+    entry_row INTEGER NOT NULL,  -- the newest rows it knows of
+    switch_row INTEGER NOT NULL,
+    event_row INTEGER NOT NULL,
+    recorded_at TEXT NOT NULL
+) STRICT;
+"""
+
 # step n leads from version n to n + 1; never change one that was released
-MIGRATIONS: tuple[str, ...] = (_VERSION_1, _VERSION_2, _VERSION_3)
+MIGRATIONS: tuple[str, ...] = (_VERSION_1, _VERSION_2, _VERSION_3, _VERSION_4)
 
 
 def version_of(connection: sqlite3.Connection) -> int:

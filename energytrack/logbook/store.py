@@ -235,6 +235,35 @@ class Store(ChangingFile):
             values = {"modification": modification, "at_km": at_km, "date": date.isoformat()}
             rows.insert(self._db, "look", {"vehicle_id": self._number(vehicle), **values})
 
+    def watch(self, vehicle_name: str) -> dict[str, Any] | None:
+        """The state kept of a vehicle's monitor; None where none is, or where what it was made of has changed since:
+        an entry corrected, struck or brought in among the older ones, a part fitted or removed, an event logged.
+        """
+        select = "SELECT state, entry_row, switch_row, event_row FROM watch WHERE vehicle_id = ?"
+        number = self._number(vehicle_name)
+        found = self._rows(select, number)
+        if not found:
+            return None
+        with self._guard():
+            state: dict[str, Any] = json.loads(found[0][0])
+        older = "SELECT 1 FROM entry WHERE id > ? AND vehicle_id = ? AND (supersedes IS NOT NULL OR date < ?) LIMIT 1"
+        changed = self._rows(older, found[0][1], number, state.get("end_date", ""))
+        for table, row in zip(("switch", "event"), found[0][2:], strict=True):
+            changed += self._rows(f"SELECT 1 FROM {table} WHERE id > ? AND vehicle_id = ? LIMIT 1", row, number)
+        return None if changed else state
+
+    def keep_watch(self, vehicle_name: str, state: Mapping[str, Any] | None) -> None:
+        """Keep the state of a vehicle's monitor in the place of the last one, or none."""
+        tables = ("entry", "switch", "event")
+        with self.transaction(), self._guard():
+            number = self._number(vehicle_name)
+            self._db.execute("DELETE FROM watch WHERE vehicle_id = ?", (number,))
+            if state is not None:
+                newest = {f"{table}_row": self._rows(f"SELECT coalesce(max(id), 0) FROM {table}")[0][0]
+                          for table in tables}  # fmt: skip
+                kept = {"vehicle_id": number, "state": json.dumps(state, allow_nan=False), **newest}
+                rows.insert(self._db, "watch", kept)
+
     # Inside
 
     def _number(self, vehicle_name: str) -> int:

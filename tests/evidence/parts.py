@@ -18,6 +18,7 @@ from tests.evidence import (
     quantiles,
     sham,
     undeclared,
+    watching,
     withheld,
 )
 from tests.evidence.block import Block
@@ -81,6 +82,11 @@ def simulated(uses: Uses, most: int | None) -> list[Part]:
             withheld.verdicts,
             jobs(uses, searched, withheld.FIRST_SEED),
             lambda found: [withheld.block(found, uses, searched)],
+        ),
+        Part(
+            watching.watch,
+            jobs(uses, min(watching.LOGS, logs), watching.FIRST_SEED),
+            lambda found: [watching.block(found, uses, min(watching.LOGS, logs))],
         ),
     ]
 

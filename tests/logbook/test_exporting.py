@@ -158,7 +158,7 @@ def test_the_descriptor_says_what_the_standard_asks_for(store: Store, tmp_path: 
     package: dict[str, Any] = json.loads((tmp_path / "out" / "datapackage.json").read_text(encoding="utf-8"))
     assert package["$schema"] == "https://datapackage.org/profiles/2.0/datapackage.json"
     resources = package["resources"]
-    assert len(resources) == len({each["name"] for each in resources}) == 5 + 9  # at least one, names unique
+    assert len(resources) == len({each["name"] for each in resources}) == 5 + 10  # at least one, names unique
     assert {each["path"] for each in resources} == set(contents(tmp_path / "out")) - {"datapackage.json"}
     for resource in resources:
         assert set(resource["name"]) <= set("abcdefghijklmnopqrstuvwxyz0123456789-_./")

@@ -244,7 +244,7 @@ def test_settings_of_the_file(store: Store, path: Path) -> None:
     assert setting("user_version") == len(schema.MIGRATIONS)
     strict = raw(path, "SELECT name, strict FROM pragma_table_list WHERE schema = 'main' AND type = 'table'")
     assert {name: flag for name, flag in strict if not str(name).startswith("sqlite_")} == dict.fromkeys(
-        ("vehicle", "entry", "switch", "event", "weather", "assessment", "look", "confirmation", "change"), 1
+        ("vehicle", "entry", "switch", "event", "weather", "assessment", "look", "confirmation", "change", "watch"), 1
     )
 
 
