@@ -11,7 +11,7 @@ import typer
 from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.context import readable, say_json
-from energytrack.errors import EntryError
+from energytrack.errors import EntryError, UnknownNameError
 from energytrack.logbook.quantities import parse_number
 
 if TYPE_CHECKING:
@@ -45,8 +45,9 @@ def review(
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
     factors, costs = _factors(grid_factor, co2), _named_amounts(part_cost, "--part-cost")
+    _check_parts(costs, logbook, vehicles)
     found, refusals = asking.answered(
-        vehicles, lambda each: (each, _review(logbook, each, month, factors, costs, one=len(vehicles) == 1))
+        vehicles, lambda each: (each, _review(logbook, each, month, factors, costs))
     )
     _print_json([one for _, one in found]) if json else _print(found)
     asking.leave(refusals)
@@ -58,8 +59,6 @@ def _review(
     month: str | None,
     factors: Mapping[str, float],
     costs: Mapping[str, float],
-    *,
-    one: bool,
 ) -> Review:
     from energytrack.inference.review.review import review as reviewed
 
@@ -69,10 +68,17 @@ def _review(
         month=month,
         carrier=vehicle.carrier,
         co2_kg_per_unit=factors,
-        part_costs={name: cost for name, cost in costs.items() if one or name in own},
+        part_costs={name: cost for name, cost in costs.items() if name in own},
         typed_in=(vehicle.distance_unit, vehicle.typed_unit),
         today=dt.date.today(),
     )
+
+
+def _check_parts(costs: Mapping[str, float], logbook: Logbook, vehicles: list[Vehicle]) -> None:
+    names = {row.name for each in vehicles for row in logbook.modifications(each.name)}
+    unknown = next((name for name in costs if name not in names), None)
+    if unknown is not None:
+        raise UnknownNameError(f"no modification named {unknown!r}; logged: {', '.join(sorted(names)) or 'none'}")
 
 
 def _factors(grid: str | None, typed: list[str] | None) -> dict[str, float]:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import shlex
 
-from energytrack.inference.review.results import Review, Tested
+from energytrack.inference.review.results import Review, UnderTest
 from energytrack.logbook.records import Vehicle
 from energytrack.presentation import figures
 from energytrack.presentation.plain import plain_text
@@ -50,7 +50,7 @@ def _tests(found: Review, vehicle: Vehicle) -> list[str]:
     return [step for each in found.modifications if each.is_open for step in [_test(each, found, vehicle)] if step]
 
 
-def _test(each: Tested, found: Review, vehicle: Vehicle) -> str:
+def _test(each: UnderTest, found: Review, vehicle: Vehicle) -> str:
     name, whose = plain_text(each.name), f"--vehicle {shlex.quote(plain_text(found.vehicle))}"
     if each.verdict == "not-yet" and each.distance_to_go_km:
         far = figures.distance(each.distance_to_go_km, vehicle.distance_unit)
