@@ -38,9 +38,10 @@ def review(
     ] = None,
     json: options.Json = False,
 ) -> None:
-    """Review a month: distance, energy, cost, CO2, and consumption with weather and speed taken out.
+    """Review a month with weather and speed taken out.
 
-    By the log up to the end of that month. Against the month before, the same month a year ago and the baseline.
+    Distance, energy, cost, CO2 and consumption, by the log up to the end of that month: against the month before, the
+    same month a year ago and the baseline.
     """
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
