@@ -68,7 +68,7 @@ def _review(
         **asking.tables(logbook, vehicle),
         month=month,
         carrier=vehicle.carrier,
-        co2_kg_per_unit=factors,
+        co2_kg_per_unit={**_own_factors(vehicle), **factors},
         part_costs={name: cost for name, cost in costs.items() if name in own},
         typed_in=(vehicle.distance_unit, vehicle.typed_unit),
         today=dt.date.today(),
@@ -80,6 +80,12 @@ def _check_parts(costs: Mapping[str, float], logbook: Logbook, vehicles: list[Ve
     unknown = next((name for name in costs if name not in names), None)
     if unknown is not None:
         raise UnknownNameError(f"no modification named {unknown!r}; logged: {', '.join(sorted(names)) or 'none'}")
+
+
+def _own_factors(vehicle: Vehicle) -> dict[str, float]:
+    """kg of CO2 per unit of each carrier, as the logbook states them for this vehicle."""
+    stated = {vehicle.carrier: vehicle.co2_kg, vehicle.second_carrier: vehicle.second_co2_kg}
+    return {carrier: kg for carrier, kg in stated.items() if carrier is not None and kg is not None}
 
 
 def _factors(grid: str | None, typed: list[str] | None) -> dict[str, float]:

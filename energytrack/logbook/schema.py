@@ -256,8 +256,13 @@ CREATE VIEW standing_weather AS
 {_kept_for_good("weather", "id")}
 """
 
+_CO2_OF_VEHICLES = """
+ALTER TABLE vehicle ADD COLUMN co2_kg REAL CHECK (co2_kg >= 0);
+ALTER TABLE vehicle ADD COLUMN second_co2_kg REAL CHECK (second_co2_kg >= 0);
+"""
+
 # step n leads from version n to n + 1; never change one that was released
-MIGRATIONS: tuple[str, ...] = (_VERSION_1, _VERSION_2, _VERSION_3)
+MIGRATIONS: tuple[str, ...] = (_VERSION_1, _VERSION_2, _VERSION_3, _CO2_OF_VEHICLES)
 
 
 def version_of(connection: sqlite3.Connection) -> int:

@@ -112,6 +112,31 @@ def test_currencies_are_not_added_up_and_the_entries_are_named(tmp_path: Path) -
     assert "130" not in said
 
 
+def test_a_factor_kept_in_the_logbook_counts_unless_another_is_stated(tmp_path: Path) -> None:
+    book = tmp_path / "a.logbook"
+    write(
+        book,
+        "vehicle add cart --carrier electricity --capacity 50 --co2 0.35",
+        "charge 1000 20 --vehicle cart --date 2026-11-03",
+        "charge 1200 40 --vehicle cart --date 2026-11-13",
+    )
+    asked = ("review", "--vehicle", "cart", "--json")
+    kept, stated = (json.loads(run(book, *asked, *more).stdout) for more in ((), ("--grid-factor", "100")))
+    assert kept["reviews"][0]["carbon"][0]["kg"] == pytest.approx(0.35 * 40)
+    assert stated["reviews"][0]["carbon"][0]["kg"] == pytest.approx(0.1 * 40)
+    done = run(book, "export", str(tmp_path / "out"))
+    assert done.returncode == 0, done.stderr
+    assert json.loads(run(tmp_path / "out", *asked).stdout) == kept
+
+
+def test_factors_below_nothing_are_refused(tmp_path: Path) -> None:
+    book = tmp_path / "a.logbook"
+    write(book)
+    for words in (("--co2", "-1"), ("--second-co2", "0.3"), ("--co2", "much")):
+        done = run(book, "vehicle", "add", "car", "--carrier", "petrol", *words)
+        assert (done.returncode, len(done.stderr.splitlines())) == (1, 1)
+
+
 def test_one_vehicle_without_that_month_does_not_hide_the_others(tmp_path: Path) -> None:
     book = tmp_path / "a.logbook"
     write(
