@@ -15,7 +15,8 @@ MOST = 3
 
 def next_steps(found: Review, vehicle: Vehicle) -> list[str]:
     """The most urgent first: safety, doubtful entries, more used than before, open tests, better records."""
-    steps = [*_cautions(found), *_odd(found), *_more_used(found), *_tests(found, vehicle), *_records(found)]
+    steps = [*_cautions(found), *_odd(found), *_unlogged(found, vehicle), *_more_used(found)]
+    steps += [*_tests(found, vehicle), *_records(found)]
     usual = "Nothing stands out: drive on and log every entry."
     young = "Drive on, fill or charge to full as a habit, and log every entry."
     return steps[:MOST] or [usual if found.level else young]
@@ -33,6 +34,18 @@ def _odd(found: Review) -> list[str]:
         command = join(plain_text(f"energytrack amend {worst.amend[0]} --vehicle {shlex.quote(found.vehicle)}"))
         return [f"The entry of {worst.date} looks wrong ({worst.suspicion}); if so: {command}"]
     return [f"The entry of {worst.date} stands out: {plain_text(worst.suggestion)}."]
+
+
+def _unlogged(found: Review, vehicle: Vehicle) -> list[str]:
+    """Changes that are news and that nothing logged explains."""
+    steps = []
+    for each in found.regimes:
+        if each.new and not each.found.matches:
+            at = f"{figures.in_unit(each.found.odometer_km, vehicle.distance_unit):.0f}"
+            whose = f"--vehicle {shlex.quote(plain_text(found.vehicle))}"
+            command = join(f'energytrack event "WHAT HAPPENED" {at} {whose}')
+            steps.append(f"If something happened at about {at} {vehicle.distance_unit}, log it: {command}")
+    return steps
 
 
 def _more_used(found: Review) -> list[str]:

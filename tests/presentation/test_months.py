@@ -7,6 +7,8 @@ from typing import Any
 
 import pytest
 
+from energytrack.inference.regimes.results import Break
+from energytrack.inference.results import SetAside
 from energytrack.inference.review.results import (
     Carbon,
     Difference,
@@ -14,6 +16,7 @@ from energytrack.inference.review.results import (
     Level,
     Price,
     Quality,
+    RegimeChange,
     Review,
     UnderTest,
     Worth,
@@ -160,3 +163,25 @@ def test_hostile_names_reach_no_terminal() -> None:
     text = shown(replace(REVIEW, vehicle=bad, modifications=(a_test(name=bad),)))
     assert "\x1b" not in text
     assert "\u202e" not in text
+
+
+def test_a_change_nobody_logged_is_asked_about() -> None:
+    found = Break(
+        46_186.0, "2026-02-01", (45_000.0, 47_000.0), ("2026-01-20", "2026-02-10"), 6.2, (3.0, 9.0), 0.001, None, (),
+        "nothing logged", ("tyres",), "Have brakes inspected by a qualified person.",
+    )  # fmt: skip
+    news = replace(REVIEW, regimes=(RegimeChange(found, new=True),))
+    caution, asked = next_steps(news, VAN)
+    assert caution == found.caution
+    assert asked.replace("\u00a0", " ").endswith('log it: energytrack event "WHAT HAPPENED" 46186 --vehicle van')
+    assert "new this month: +6.2 %" in shown(news)
+    old = replace(REVIEW, regimes=(RegimeChange(found, new=False),))
+    assert next_steps(old, VAN) == ["Nothing stands out: drive on and log every entry."]
+
+
+def test_an_odd_entry_is_not_blamed_on_the_weather() -> None:
+    before = Difference("month-before", "2026-02", 0.08, 0.4, (-2.0, 3.0), 20.0, 9.0)
+    odd = SetAside(1200.0, "2026-03-07", 60.0, 8.0, "twice", "strike one", False, 1200.0, ("1200 --energy 30",))
+    text = shown(replace(REVIEW, differences=(before,), set_aside=(odd,))).replace("\n", " ")
+    assert "once the conditions and what stands out are taken out" in text
+    assert "energytrack amend 1200 --energy 30 --vehicle van" in text
