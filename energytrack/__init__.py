@@ -1,7 +1,7 @@
 """Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
 
 The Python interface: open_logbook, assess, plan, plan_from Stated figures, compare, respond, rehearse, find_regimes,
-TwoCarriers.
+review, TwoCarriers.
 Each is loaded when it is first used, so that importing the package costs nothing.
 """
 
@@ -18,6 +18,7 @@ _HOMES = {
     "respond": "energytrack.inference.response",
     "rehearse": "energytrack.inference.rehearsal",
     "find_regimes": "energytrack.inference.regimes.find",
+    "review": "energytrack.inference.review.review",
     "plan_from": "energytrack.inference.designs",
     "Stated": "energytrack.inference.stated",
     "TwoCarriers": "energytrack.consumption.two_carriers",

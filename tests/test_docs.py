@@ -16,6 +16,7 @@ from energytrack.cli.app import LOGBOOK_VARIABLE, ExitStatus, app
 from energytrack.inference import rehearsal_results as rehearsed
 from energytrack.inference import results
 from energytrack.inference.regimes import results as regimes
+from energytrack.inference.review import results as reviewed
 from energytrack.logbook import columns
 from tests.documents import DOCUMENTS, ROOT, WIDTH, FailedCommandError, commands_of, console_lines, replay
 
@@ -36,6 +37,8 @@ RESULTS = (
     *(rehearsed.Rehearsal, rehearsed.Scenario, rehearsed.Rate, rehearsed.Settled, rehearsed.Placebo),
     *(regimes.RegimeReport, regimes.Break, regimes.Match, regimes.Regime, regimes.BreakTest, regimes.Criterion),
     regimes.Point,
+    *(reviewed.Review, reviewed.Driven, reviewed.Level, reviewed.Difference, reviewed.Carbon, reviewed.Price),
+    *(reviewed.UnderTest, reviewed.Worth, reviewed.RegimeChange, reviewed.Quality),
 )
 
 

@@ -16,6 +16,7 @@ LIGHT = [
     "inference.rehearsal_results",
     "inference.regimes.results",
     *(f"inference.watch.{name}" for name in ("monitor", "kept", "echo")),
+    *("inference.review.results", "inference.review.month"),
     *(f"consumption.{name}" for name in ("positions", "segments", "shares", "slips", "meaning", "terms")),
     *("consumption.two_carriers", "consumption.energy_content"),
 ]

@@ -11,7 +11,7 @@ import typer
 from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.context import readable, say_json
-from energytrack.errors import EntryError
+from energytrack.errors import EntryError, UnknownNameError
 from energytrack.logbook.quantities import parse_number
 
 if TYPE_CHECKING:
@@ -38,15 +38,17 @@ def review(
     ] = None,
     json: options.Json = False,
 ) -> None:
-    """Review a month: distance, energy, cost, CO2, and consumption with weather and speed taken out.
+    """Review a month with weather and speed taken out.
 
-    By the log up to the end of that month. Against the month before, the same month a year ago and the baseline.
+    Distance, energy, cost, CO2 and consumption, by the log up to the end of that month: against the month before, the
+    same month a year ago and the baseline.
     """
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
     factors, costs = _factors(grid_factor, co2), _named_amounts(part_cost, "--part-cost")
+    _check_parts(costs, logbook, vehicles)
     found, refusals = asking.answered(
-        vehicles, lambda each: (each, _review(logbook, each, month, factors, costs, one=len(vehicles) == 1))
+        vehicles, lambda each: (each, _review(logbook, each, month, factors, costs))
     )
     _print_json([one for _, one in found]) if json else _print(found)
     asking.leave(refusals)
@@ -58,8 +60,6 @@ def _review(
     month: str | None,
     factors: Mapping[str, float],
     costs: Mapping[str, float],
-    *,
-    one: bool,
 ) -> Review:
     from energytrack.inference.review.review import review as reviewed
 
@@ -68,11 +68,24 @@ def _review(
         **asking.tables(logbook, vehicle),
         month=month,
         carrier=vehicle.carrier,
-        co2_kg_per_unit=factors,
-        part_costs={name: cost for name, cost in costs.items() if one or name in own},
+        co2_kg_per_unit={**_own_factors(vehicle), **factors},
+        part_costs={name: cost for name, cost in costs.items() if name in own},
         typed_in=(vehicle.distance_unit, vehicle.typed_unit),
         today=dt.date.today(),
     )
+
+
+def _check_parts(costs: Mapping[str, float], logbook: Logbook, vehicles: list[Vehicle]) -> None:
+    names = {row.name for each in vehicles for row in logbook.modifications(each.name)}
+    unknown = next((name for name in costs if name not in names), None)
+    if unknown is not None:
+        raise UnknownNameError(f"no modification named {unknown!r}; logged: {', '.join(sorted(names)) or 'none'}")
+
+
+def _own_factors(vehicle: Vehicle) -> dict[str, float]:
+    """kg of CO2 per unit of each carrier, as the logbook states them for this vehicle."""
+    stated = {vehicle.carrier: vehicle.co2_kg, vehicle.second_carrier: vehicle.second_co2_kg}
+    return {carrier: kg for carrier, kg in stated.items() if carrier is not None and kg is not None}
 
 
 def _factors(grid: str | None, typed: list[str] | None) -> dict[str, float]:

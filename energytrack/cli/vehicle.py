@@ -57,12 +57,18 @@ def add(
         str | None, typer.Option(help="Of a plug-in hybrid: electricity beside a fuel, or a fuel beside electricity.")
     ] = None,
     second_capacity: Annotated[str | None, typer.Option(help="Of the second carrier, in L, kg or kWh.")] = None,
+    co2: Annotated[
+        str | None,
+        typer.Option(metavar="KG", help="CO2 of a L, kg or kWh it takes, if not the usual; of the grid for a battery."),
+    ] = None,
+    second_co2: Annotated[str | None, typer.Option(metavar="KG", help="The same of the second carrier.")] = None,
     note: options.Note = "",
     json: options.Json = False,
 ) -> None:
     """Add a vehicle."""
     vehicle = described(name, carrier, capacity, unit, distance_unit_typed, display, note)
     vehicle = _with_second(vehicle, second_carrier, second_capacity)
+    vehicle = _with_co2(vehicle, co2, second_co2)
     writable(context).add_vehicle(vehicle)
     if json:
         say_json(_columns(vehicle))
@@ -122,6 +128,17 @@ def _with_second(vehicle: Vehicle, carrier: str | None, capacity: str | None) ->
     return replace(vehicle, second_carrier=carrier, second_unit=UNIT_OF_CARRIER[carrier], second_capacity=room)
 
 
+def _with_co2(vehicle: Vehicle, co2: str | None, second: str | None) -> Vehicle:
+    """The vehicle with CO2 factors of its own, if any. Raises EntryError."""
+    if second is not None and vehicle.second_carrier is None:
+        raise EntryError("a second CO2 factor needs its carrier: add --second-carrier")
+    factors = [None if typed is None else parse_number(typed, "CO2 factor") for typed in (co2, second)]
+    wrong = next((factor for factor in factors if factor is not None and factor < 0), None)
+    if wrong is not None:
+        raise EntryError(f"CO2 factor {wrong:g} must be 0 or more: type kg per L, kg or kWh")
+    return replace(vehicle, co2_kg=factors[0], second_co2_kg=factors[1])
+
+
 def _check_shown(vehicle: Vehicle) -> None:
     distance_unit(None, vehicle)
     fitting = [key for key, shown in CONSUMPTION.items() if base_unit(shown.energy) == vehicle.unit]
@@ -155,5 +172,7 @@ def _columns(vehicle: Vehicle) -> dict[str, object]:
         "second_carrier": vehicle.second_carrier,
         "second_unit": vehicle.second_unit,
         "second_capacity": vehicle.second_capacity,
+        "co2_kg": vehicle.co2_kg,
+        "second_co2_kg": vehicle.second_co2_kg,
         "note": vehicle.note,
     }

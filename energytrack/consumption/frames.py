@@ -33,14 +33,14 @@ EVENT_COLUMNS = ("vehicle", "date", "odometer_km", "what", "odometer_factor", "n
 WEATHER_COLUMNS = ("date", "temperature_c")
 VEHICLE_COLUMNS = (
     *("name", "carrier", "unit", "capacity", "distance_unit", "display", "typed_unit"),
-    *("second_carrier", "second_unit", "second_capacity", "note"),
+    *("second_carrier", "second_unit", "second_capacity", "co2_kg", "second_co2_kg", "note"),
 )
 MOST_PROBLEMS = 5  # named one by one in the notes
 DATES = ("date", "fitted_date", "removed_date")
 NUMBERS = (
     *("odometer_km", "energy", "level_percent", "distance_km", "cost", "temperature_c", "speed_kmh"),
     *("fitted_km", "removed_km", "level", "target_percent", "odometer_factor", "capacity"),
-    *("known_low_percent", "known_high_percent", "second_capacity"),
+    *("known_low_percent", "known_high_percent", "second_capacity", "co2_kg", "second_co2_kg"),
 )
 
 class FramedLogbook:

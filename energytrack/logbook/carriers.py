@@ -27,6 +27,7 @@ def for_kind(vehicle: Vehicle, kind: str) -> Vehicle:
         carrier=vehicle.second_carrier,
         unit=vehicle.second_unit,
         capacity=vehicle.second_capacity,
+        co2_kg=vehicle.second_co2_kg,
         typed_unit=vehicle.second_unit,
         display=None,
     )

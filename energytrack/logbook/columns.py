@@ -20,7 +20,7 @@ ENTRIES = (
 )  # fmt: skip
 VEHICLES = (
     "vehicle", "carrier", "unit", "capacity", "distance_unit", "display", "typed_unit",
-    "second_carrier", "second_unit", "second_capacity", "note",
+    "second_carrier", "second_unit", "second_capacity", "co2_kg", "second_co2_kg", "note",
 )  # fmt: skip
 MODIFICATIONS = (
     "vehicle", "name", "fitted_date", "fitted_km", "removed_date", "removed_km", "level", "target_percent",
@@ -97,6 +97,8 @@ def vehicle_readers(form: Form) -> dict[str, Reader]:
         "second_carrier": _one_of(CARRIERS),
         "second_unit": _one_of(UNITS),
         "second_capacity": _positive(number, "a capacity"),
+        "co2_kg": _at_least_zero(number, "a CO2 factor"),
+        "second_co2_kg": _at_least_zero(number, "a CO2 factor"),
         "note": text_of,
     }
 

@@ -42,6 +42,8 @@ class Vehicle:
     second_carrier: str | None = None  # of a vehicle with tank and battery; None: it has one carrier
     second_unit: str | None = None  # of amounts of the second carrier
     second_capacity: float | None = None  # in `second_unit`
+    co2_kg: float | None = None  # of one `unit` of energy, tank to wheel or by the grid; None: the carrier's usual one
+    second_co2_kg: float | None = None  # of one `second_unit`
 
 
 @dataclass(frozen=True, slots=True)

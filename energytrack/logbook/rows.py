@@ -15,7 +15,7 @@ from energytrack.logbook.switches import Switch
 
 VEHICLE_COLUMNS = (
     "name, carrier, unit, capacity, distance_unit, display, note, typed_unit, "
-    "second_carrier, second_unit, second_capacity"
+    "second_carrier, second_unit, second_capacity, co2_kg, second_co2_kg"
 )
 ENTRY_COLUMNS = (
     "date, energy, odometer_km, kind, full, level_percent, missed, distance_km, cost, currency, "

@@ -265,6 +265,9 @@ CREATE TABLE watch (             -- how far the monitor of a vehicle's consumpti
     event_row INTEGER NOT NULL,
     recorded_at TEXT NOT NULL
 ) STRICT;
+
+ALTER TABLE vehicle ADD COLUMN co2_kg REAL CHECK (co2_kg >= 0);
+ALTER TABLE vehicle ADD COLUMN second_co2_kg REAL CHECK (second_co2_kg >= 0);
 """
 
 # step n leads from version n to n + 1; never change one that was released

@@ -69,8 +69,8 @@ def read_vehicles(path: Path, form: Form = AS_WRITTEN_HERE) -> Reading[Vehicle]:
             values.setdefault("second_unit", UNIT_OF_CARRIER[values["second_carrier"]])
             if kind_of(values["carrier"]) == kind_of(values["second_carrier"]):
                 raise CellError("has two carriers of one kind; one must be electricity, the other a fuel")
-        elif values.keys() & {"second_unit", "second_capacity"}:
-            raise CellError("has a second unit or capacity and no second carrier; fill in second_carrier")
+        elif values.keys() & {"second_unit", "second_capacity", "second_co2_kg"}:
+            raise CellError("has a second unit, capacity or CO2 factor and no second carrier; fill in second_carrier")
         return Vehicle(name=values.pop("vehicle"), **values)
 
     reading = read_rows(path, form, columns.vehicle_readers(form), ("vehicle", "carrier"), build)

@@ -62,7 +62,8 @@ def _conditions(found: Review) -> str:
     if before is None or before.measured_percent is None or abs(before.measured_percent - before.percent) < _TOLD:
         return ""
     measured, left = (figures.percent(value, signed=True) for value in (before.measured_percent, before.percent))
-    return f"Against {before.what} it is {measured} as measured, {left} once the conditions are taken out."
+    odd = " and what stands out" if found.set_aside else ""
+    return f"Against {before.what} it is {measured} as measured, {left} once the conditions{odd} are taken out."
 
 
 def _blocks(found: Review, vehicle: Vehicle, width: int) -> list[list[str]]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from energytrack.inference.review.carbon import total
-from energytrack.inference.review.results import Price, RegimeChange, Review, Tested, Worth
+from energytrack.inference.review.results import Price, RegimeChange, Review, UnderTest, Worth
 from energytrack.logbook.quantities import rounded
 from energytrack.logbook.records import Vehicle
 from energytrack.presentation import figures
@@ -30,7 +30,7 @@ def tests(found: Review, vehicle: Vehicle) -> list[Row]:
     return [(f"  {plain_text(each.name)}", _test(each, vehicle)) for each in found.modifications]
 
 
-def _test(each: Tested, vehicle: Vehicle) -> str:
+def _test(each: UnderTest, vehicle: Vehicle) -> str:
     said = IN_WORDS[each.verdict]
     if each.settled_on is not None:
         said += f" (settled on {each.settled_on})"

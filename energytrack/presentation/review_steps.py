@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import shlex
 
-from energytrack.inference.review.results import Review, Tested
+from energytrack.inference.review.results import Review, UnderTest
 from energytrack.logbook.records import Vehicle
 from energytrack.presentation import figures
 from energytrack.presentation.plain import plain_text
@@ -15,7 +15,8 @@ MOST = 3
 
 def next_steps(found: Review, vehicle: Vehicle) -> list[str]:
     """The most urgent first: safety, doubtful entries, more used than before, open tests, better records."""
-    steps = [*_cautions(found), *_odd(found), *_more_used(found), *_tests(found, vehicle), *_records(found)]
+    steps = [*_cautions(found), *_odd(found), *_unlogged(found, vehicle), *_more_used(found)]
+    steps += [*_tests(found, vehicle), *_records(found)]
     usual = "Nothing stands out: drive on and log every entry."
     young = "Drive on, fill or charge to full as a habit, and log every entry."
     return steps[:MOST] or [usual if found.level else young]
@@ -35,6 +36,18 @@ def _odd(found: Review) -> list[str]:
     return [f"The entry of {worst.date} stands out: {plain_text(worst.suggestion)}."]
 
 
+def _unlogged(found: Review, vehicle: Vehicle) -> list[str]:
+    """Changes that are news and that nothing logged explains."""
+    steps = []
+    for each in found.regimes:
+        if each.new and not each.found.matches:
+            at = f"{figures.in_unit(each.found.odometer_km, vehicle.distance_unit):.0f}"
+            whose = f"--vehicle {shlex.quote(plain_text(found.vehicle))}"
+            command = join(f'energytrack event "WHAT HAPPENED" {at} {whose}')
+            steps.append(f"If something happened at about {at} {vehicle.distance_unit}, log it: {command}")
+    return steps
+
+
 def _more_used(found: Review) -> list[str]:
     """Where the month is told apart from another, upwards."""
     for each in found.differences:
@@ -50,7 +63,7 @@ def _tests(found: Review, vehicle: Vehicle) -> list[str]:
     return [step for each in found.modifications if each.is_open for step in [_test(each, found, vehicle)] if step]
 
 
-def _test(each: Tested, found: Review, vehicle: Vehicle) -> str:
+def _test(each: UnderTest, found: Review, vehicle: Vehicle) -> str:
     name, whose = plain_text(each.name), f"--vehicle {shlex.quote(plain_text(found.vehicle))}"
     if each.verdict == "not-yet" and each.distance_to_go_km:
         far = figures.distance(each.distance_to_go_km, vehicle.distance_unit)

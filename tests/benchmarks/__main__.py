@@ -15,6 +15,7 @@ def benchmarks() -> None:
         logbook = processes.write_logbook(Path(folder))
         print(processes.describe(logbook), flush=True)
         print(processes.enough(logbook), flush=True)
+        print(processes.review(logbook), flush=True)
         print(processes.fillup(logbook), flush=True)
         print(processes.rehearse(Path(folder) / "rehearsed"), flush=True)
     for line in chain(answers.answers(), partitions.compare(), growth.compare()):

@@ -47,6 +47,13 @@ def enough(logbook: Path, rounds: int = 9) -> Comparison:
     return compare("enough", lambda _: command, STATISTICS, baseline, target=2.0, rounds=rounds)
 
 
+def review(logbook: Path, rounds: int = 9) -> Comparison:
+    """The newest month of that vehicle: months at reference conditions, the open test, changes, money, CO2."""
+    command = energytrack("--logbook", str(logbook), "review")
+    baseline = [sys.executable, "-c", STATISTICS]
+    return compare("review", lambda _: command, STATISTICS, baseline, target=2.0, rounds=rounds)
+
+
 def rehearse(folder: Path) -> str:
     """500 logs like one of 100 entries, each looked at after every entry, on all cores."""
     logbook = write_logbook(folder, entries=REHEARSED, looks=REHEARSED // 2)

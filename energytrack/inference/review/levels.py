@@ -12,22 +12,24 @@ Intervals of ratios by Fieller (1954), degrees of freedom by Satterthwaite (1946
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
+from numpy.typing import NDArray
 
 from energytrack.consumption.conditions import SEASON
 from energytrack.consumption.terms import ELECTRIC, condition_of
 from energytrack.errors import InferenceError
 from energytrack.inference.bounds import mixture_quantile
-from energytrack.inference.derivatives import local
 from energytrack.inference.model import Model
-from energytrack.inference.noise import Array
+from energytrack.inference.noise import Array, Scatter, products
 from energytrack.inference.reml import Fit
 from energytrack.inference.shift import LEVEL, ratio_interval
 
 FEWEST = 6  # segments before the conditions can be taken out
 FEWEST_OUTSIDE = 3  # segments' worth of distance outside the months asked about
+_STEP = 0.02  # of central differences, in log standard deviation
 
 
 @dataclass(frozen=True)
@@ -91,21 +93,48 @@ class Months:
         outside = 1 - np.sum(shares, axis=0)
         if any(not share.any() for share in shares) or outside.sum() < FEWEST_OUTSIDE:
             return None
-        relative = model.observed.distance_km / model.scale.distance_km
-        problem = replace(
-            model.problem,
-            columns=np.column_stack([model.problem.columns, *(relative * share for share in shares)]),
-            precision=np.append(model.problem.precision, np.zeros(len(months))),
-        )
+        own = self._columns(months)
+        precision = np.append(model.problem.precision, np.zeros(len(months)))
+        normal = self._cross[np.ix_(own, own)] + np.diag(precision)
         try:
-            here = local(problem, model.fit.theta, _ANY)
+            covariance: Array = np.asarray(np.linalg.inv(normal), dtype=np.float64)
+            np.linalg.cholesky(normal)
         except np.linalg.LinAlgError:
             return None
-        foreseen = np.zeros(problem.columns.shape[1])  # taken off the energies beforehand
-        foreseen[model.term_columns] = model.terms.prior_mean
-        point = here.point
-        coefficients = point.coefficients + foreseen
-        return Fit(model.fit.theta, model.fit.theta_covariance, coefficients, point.covariance, here.gradient)
+        changes = self._cross_gradient[:, own[:, None], own]
+        gradient = -covariance @ changes @ covariance
+        coefficients = covariance @ self._cross[own, -1]
+        coefficients[model.term_columns] += model.terms.prior_mean  # taken off the energies beforehand
+        return Fit(model.fit.theta, model.fit.theta_covariance, coefficients, covariance, gradient)
+
+    def _columns(self, months: Sequence[str]) -> NDArray[np.intp]:
+        """Of the cross-products: the regression's own, and those of these months."""
+        own, names = self.model.problem.columns.shape[1], list(self.shares)
+        return np.array([*range(own), *(own + names.index(month) for month in months)], dtype=np.intp)
+
+    @cached_property
+    def _stacked(self) -> Array:
+        """The regression's own columns, one for each month, and the energies (n, p + k + 1)."""
+        problem = self.model.problem
+        relative = self.model.observed.distance_km / self.model.scale.distance_km
+        return np.column_stack([problem.columns, *(relative * share for share in self.shares.values()), problem.energy])
+
+    @cached_property
+    def _cross(self) -> Array:
+        """Products of all columns under the inverse covariance of the noise: one pass for all months."""
+        return self._products(self.model.fit.theta)
+
+    @cached_property
+    def _cross_gradient(self) -> Array:
+        """How those products change with the four log standard deviations (4, ., .), by central differences."""
+        theta = self.model.fit.theta
+        steps = _STEP * np.eye(len(theta))
+        return np.array([self._products(theta + d) - self._products(theta - d) for d in steps]) / (2 * _STEP)
+
+    def _products(self, theta: Array) -> Array:
+        scatter = Scatter(*np.exp(theta).tolist())
+        found: Array = products(self.model.problem.shape, scatter, self._stacked).cross
+        return found
 
     def _weights(self, months: Sequence[str], month: str) -> Array:
         """Of the coefficients (p,) that make a month's level at the reference conditions, with what was fitted then."""
@@ -119,9 +148,6 @@ class Months:
             weights[first + number] = driven @ column / driven.sum()
         weights[len(model.fit.coefficients) + months.index(month)] = 1.0
         return weights
-
-
-_ANY = np.eye(4)  # stands in for the curvature, which nothing here asks for
 
 
 def _variance(fit: Fit, direction: Array) -> tuple[float, float]:

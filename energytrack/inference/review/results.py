@@ -89,7 +89,7 @@ class Worth:
 
 
 @dataclass(frozen=True)
-class Tested:
+class UnderTest:
     """A modification and how its test stands at the end of the month."""
 
     name: str
@@ -148,7 +148,7 @@ class Review:
     carbon: tuple[Carbon, ...]
     price: Price | None
     price_note: str | None  # why there is none
-    modifications: tuple[Tested, ...]
+    modifications: tuple[UnderTest, ...]
     regimes: tuple[RegimeChange, ...]  # of the last 12 months
     set_aside: tuple[SetAside, ...]  # of this month
     quality: Quality

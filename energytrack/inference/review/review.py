@@ -35,7 +35,7 @@ from energytrack.inference.review.levels import FEWEST, FEWEST_OUTSIDE, Estimate
 from energytrack.inference.review.money import price_of, worth
 from energytrack.inference.review.month import Month, month_of, month_with
 from energytrack.inference.review.quality import quality_of
-from energytrack.inference.review.results import Difference, Driven, Level, Price, Review, Tested
+from energytrack.inference.review.results import Difference, Driven, Level, Price, Review, UnderTest
 from energytrack.inference.suspects import suspects
 from energytrack.logbook.records import Event, Modification, Vehicle
 
@@ -289,7 +289,7 @@ def _levels(log: _Log, asked: _Asked) -> tuple[Level, ...]:
     return tuple(level for level in every if level is not None)
 
 
-def _tested(asked: _Asked, name: str, price: Price | None) -> Tested:
+def _tested(asked: _Asked, name: str, price: Price | None) -> UnderTest:
     answer: Assessment = assess(
         **asked.tables,
         name=name,
@@ -297,7 +297,7 @@ def _tested(asked: _Asked, name: str, price: Price | None) -> Tested:
         confidence=asked.confidence,
         typed_in=(asked.typist.distance_unit, asked.typist.typed_unit),
     )
-    return Tested(
+    return UnderTest(
         name=name,
         verdict=answer.verdict,
         withheld=answer.withheld,
