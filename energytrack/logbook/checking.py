@@ -13,6 +13,7 @@ from pathlib import Path
 from energytrack.errors import EnergytrackError, EntryError
 from energytrack.logbook.carriers import for_kind
 from energytrack.logbook.checks import check_date, check_values
+from energytrack.logbook.file import connect
 from energytrack.logbook.order import driving_order, jumps
 from energytrack.logbook.records import Vehicle
 from energytrack.logbook.store import Store
@@ -50,7 +51,7 @@ def _damage(path: Path) -> Iterator[Fault]:
         yield Fault(f"there is no logbook {path}", "name a logbook file")
         return
     try:
-        with closing(sqlite3.connect(f"{path.absolute().as_uri()}?mode=rw", uri=True)) as connection:
+        with closing(connect(path)) as connection:
             for (said,) in connection.execute(f"PRAGMA integrity_check({MOST})").fetchall():
                 if said != "ok":
                     yield Fault(f"SQLite finds: {said}", _RESTORE)

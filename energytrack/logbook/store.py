@@ -28,8 +28,6 @@ _NO_REPEAT = (  # of a chain of corrections, those that changed what makes an en
 class Store(ChangingFile):
     """A logbook file, open for reading and writing. Every method raises LogbookError where the file fails it."""
 
-    writable = True
-
     # Reading
 
     def vehicles(self) -> list[Vehicle]:

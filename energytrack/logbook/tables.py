@@ -20,7 +20,7 @@ from energytrack.logbook.columns import Form, Reader
 from energytrack.logbook.csvfile import UnreadableTableError, open_csv
 from energytrack.logbook.matching import match_columns
 from energytrack.logbook.records import UNIT_OF_CARRIER, Entry, Event, Modification, Problem, Vehicle, Weather
-from energytrack.logbook.written import cell, cells_of, lines
+from energytrack.logbook.written import cell, cells_of, lines, new_file
 
 Record = TypeVar("Record")
 AS_WRITTEN_HERE = Form()
@@ -243,7 +243,7 @@ def write_weather(path: Path, weather: Sequence[Weather]) -> None:
 
 def _write(path: Path, header: Sequence[str], rows: Iterable[Sequence[str]]) -> None:
     try:
-        with path.open("x", encoding="utf-8", newline="") as file:
+        with new_file(path) as file:
             file.writelines(lines([header, *rows]))
     except FileExistsError:
         raise LogbookError(f"{path} exists already; move it away or name another place") from None
