@@ -90,7 +90,10 @@ def choose_logbook(
     context: typer.Context,
     logbook: Annotated[
         Path | None,
-        typer.Option(help=f"Logbook file, or folder of CSV tables. Otherwise {LOGBOOK_VARIABLE} names it."),
+        typer.Option(
+            help=f"Logbook file, or folder of CSV tables. Otherwise {LOGBOOK_VARIABLE} names it.",
+            readable=False,  # whoever opens it says what to do
+        ),
     ] = None,
 ) -> None:
     """Did a vehicle modification shift its consumption, by how much, and was the distance enough to say so?"""

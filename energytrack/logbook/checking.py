@@ -92,19 +92,26 @@ def _contents(store: Store) -> Iterator[Fault]:
 
 def _entries(store: Store, vehicle: Vehicle) -> Iterator[Fault]:
     """The rules a new entry meets, for all that stand."""
-    entries = store.entries(vehicle.name)
+    entries, today = store.entries(vehicle.name), _latest_day(store)
     for entry in entries:
         try:
             if math.isnan(entry.energy):
-                check_date(entry.date, dt.date.today())
+                check_date(entry.date, today)
             else:
-                check_values(entry, for_kind(vehicle, entry.kind), dt.date.today())
+                check_values(entry, for_kind(vehicle, entry.kind), today)
         except EntryError as refusal:
             yield _at(vehicle, entry.id or 0, str(refusal))
     rows = [(entry.id or 0, entry) for entry in entries]
     ordered, problems = driving_order(rows, again=True)
     for problem in [*problems, *jumps(ordered, [])]:
         yield _at(vehicle, problem.line or 0, problem.message)
+
+
+def _latest_day(store: Store) -> dt.date:
+    """Today, or the latest day of recording: a clock that was set back makes no entry one of the future."""
+    latest = store.query("SELECT max(recorded_at) FROM change")[0][0]
+    today = dt.date.today()
+    return max(today, dt.datetime.fromisoformat(latest).astimezone().date()) if latest else today
 
 
 def _at(vehicle: Vehicle, number: int, message: str) -> Fault:

@@ -72,8 +72,9 @@ class LogbookFile:
                 connection.close()
             return cls(path)
         except BaseException as error:
-            with suppress(OSError):
-                path.unlink()
+            for end in ("", "-wal", "-shm"):
+                with suppress(OSError):
+                    Path(f"{path}{end}").unlink()
             if isinstance(error, sqlite3.Error):
                 raise _refusal(path, error) from None
             raise
