@@ -29,7 +29,8 @@ for turn in range(each):
     entry = Entry("car", dt.date(2025, 5, 3) + dt.timedelta(place // 100), 2.0, 1000.0 + 20 * place, note=str(own))
     with store.transaction():
         check_place(entry, car, *store.neighbours(entry), store.twin(entry))
-        print(store.add_entry(entry, {}), flush=True)
+        number = store.add_entry(entry, {})
+    print(number, flush=True)
 """
 
 
@@ -46,30 +47,32 @@ def crowded(path: Path) -> Path:
     return path
 
 
+def started(words: list[str]) -> subprocess.Popen[str]:
+    return subprocess.Popen(words, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, env=environment())
+
+
 def test_sixteen_programs_write_two_hundred_entries_each(tmp_path: Path) -> None:
     path = crowded(tmp_path / "my.logbook")
     words = [sys.executable, "-c", WRITER, str(path)]
-    writers = [
-        subprocess.Popen([*words, str(own), str(WRITERS), str(EACH)], stdout=subprocess.PIPE, text=True, env=environment())
-        for own in range(WRITERS)
-    ]  # fmt: skip
+    writers = [started([*words, str(own), str(WRITERS), str(EACH)]) for own in range(WRITERS)]
     typed = [(22_000 + 300 * n, f"2025-08-{1 + n:02d}") for n in range(COMMANDS)]
     typists = []
     answers = []
     for km, day in typed:
         line = ("fillup", km, 25, "--vehicle", "van", "--date", day)
-        typists.append(subprocess.Popen(command(path, *line), stdout=subprocess.PIPE, text=True, env=environment()))
+        typists.append(started(command(path, *line)))
         if any(writer.poll() is None for writer in writers):
             answers.append(run(path, *(("enough", "--vehicle", "van") if len(answers) % 3 == 0 else ("entries",))))
     while any(writer.poll() is None for writer in writers):
         answers.append(run(path, "entries", "--vehicle", "car"))
     numbers = [int(line) for writer in writers for line in writer.communicate(timeout=120)[0].split()]
     assert [writer.returncode for writer in writers] == [0] * WRITERS
-    assert [typist.wait(120) for typist in typists] == [0] * COMMANDS
-    for typist in typists:
-        typist.communicate()
+    complaints = [typist.communicate(timeout=120)[1] for typist in typists]
+    assert [typist.returncode for typist in typists] == [0] * COMMANDS, complaints
 
-    assert [(answer.returncode, answer.stderr) for answer in answers] == [(0, "")] * len(answers)
+    assert [answer.returncode for answer in answers] == [0] * len(answers), [answer.stderr for answer in answers]
+    said = [line for answer in answers for line in answer.stderr.splitlines()]
+    assert [line for line in said if "; waiting up to" not in line] == [], "`enough` notes its look, and may wait for it"
     assert len(answers) > 2
     store = Store(path)
     entries = store.entries("car")
@@ -85,9 +88,7 @@ def test_sixteen_programs_write_two_hundred_entries_each(tmp_path: Path) -> None
 def test_of_programs_with_the_same_entry_one_is_right(tmp_path: Path) -> None:
     path = crowded(tmp_path / "my.logbook")
     line = command(path, "fillup", 30_000, 40, "--vehicle", "van", "--date", "2025-09-01")
-    racers = [
-        subprocess.Popen(line, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, env=environment()) for _ in range(8)
-    ]
+    racers = [started(line) for _ in range(8)]
     ended = [(*racer.communicate(timeout=60), racer.returncode) for racer in racers]
     assert sorted(status for *_, status in ended) == [0] + [1] * 7
     assert all("is logged already" in complaint for _, complaint, status in ended if status == 1)

@@ -59,7 +59,11 @@ def test_a_lock_that_goes_lets_the_entry_in(tmp_path: Path) -> None:
     path = new_logbook(tmp_path / "my.logbook")
     holder = hold(path, *LOCKS["writing"])
     process = subprocess.Popen(
-        command(path, "fillup", 20_000, 40), stderr=subprocess.PIPE, stdout=subprocess.PIPE, text=True, env=environment()
+        command(path, "fillup", 20_000, 40),
+        stderr=subprocess.PIPE,
+        stdout=subprocess.PIPE,
+        text=True,
+        env=environment(),
     )
     assert process.stderr is not None
     assert "waiting" in process.stderr.readline()

@@ -12,7 +12,9 @@ import pytest
 from energytrack.logbook import schema
 from tests.faults.commands import beside, new_logbook, refused, run
 
-COMMANDS = (("fillup", 20_000, 40), ("entries",), ("enough",), ("history",), ("undo",), ("export", "OUT"), ("backup", "OUT"))
+COMMANDS = (
+    ("fillup", 20_000, 40), ("entries",), ("enough",), ("history",), ("undo",), ("export", "OUT"), ("backup", "OUT"),
+)  # fmt: skip
 
 
 def empty(path: Path) -> None:

@@ -18,8 +18,10 @@ OLDER = range(1, len(schema.MIGRATIONS))
 ROWS = """
 INSERT INTO vehicle (name, carrier, unit, distance_unit, note, recorded_at)
     VALUES ('van', 'diesel', 'L', 'km', '', '2025-01-01T00:00:00+00:00');
-INSERT INTO entry (vehicle_id, date, odometer_km, energy, kind, full, missed, place, note, extra, typed, source, recorded_at)
-    VALUES (1, '2025-01-01', 10000.0, 40.0, 'fill-up', 1, 0, '', '', '{}', '{}', 'terminal', '2025-01-01T00:00:00+00:00');
+INSERT INTO entry (vehicle_id, date, odometer_km, energy, kind, full, missed, place, note, extra, typed, source,
+        recorded_at)
+    VALUES (1, '2025-01-01', 10000.0, 40.0, 'fill-up', 1, 0, '', '', '{}', '{}', 'terminal',
+        '2025-01-01T00:00:00+00:00');
 """
 
 
@@ -71,9 +73,11 @@ def test_a_name_that_is_taken_is_left_alone(path: Path, version: int) -> None:
 
 def test_several_programs_at_once_bring_it_up_to_date_once(path: Path) -> None:
     processes = [
-        subprocess.Popen(command(path, "entries"), stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, env=environment())
+        subprocess.Popen(
+            command(path, "entries"), stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, env=environment()
+        )
         for _ in range(4)
-    ]  # fmt: skip
+    ]
     ended = [(*process.communicate(timeout=60), process.returncode) for process in processes]
     assert [status for *_, status in ended] == [0] * 4, ended
     assert len([said for _, said, _ in ended if "brought up to date" in said]) == 1
