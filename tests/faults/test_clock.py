@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+import os
 from pathlib import Path
 
 import pytest
 
+from tests.documents import ROOT
 from tests.faults.commands import done, is_sound, new_logbook, odometers, refused, run
 
 SET_BACK = """
@@ -29,9 +31,7 @@ def clock(tmp_path: Path) -> str:
     folder = tmp_path / "clock"
     folder.mkdir()
     (folder / "sitecustomize.py").write_text(SET_BACK)
-    from tests.documents import ROOT
-
-    return f"{folder}:{ROOT}"
+    return f"{folder}{os.pathsep}{ROOT}"
 
 
 def at(clock: str, day: str) -> dict[str, str]:

@@ -72,7 +72,7 @@ def test_sixteen_programs_write_two_hundred_entries_each(tmp_path: Path) -> None
 
     assert [answer.returncode for answer in answers] == [0] * len(answers), [answer.stderr for answer in answers]
     said = [line for answer in answers for line in answer.stderr.splitlines()]
-    assert [line for line in said if "; waiting up to" not in line] == [], "`enough` notes its look, and may wait for it"
+    assert [line for line in said if "; waiting up to" not in line] == []  # `enough` notes its look, and may wait
     assert len(answers) > 2
     store = Store(path)
     entries = store.entries("car")
