@@ -24,6 +24,7 @@ from energytrack.logbook.records import Entry, Vehicle
 from energytrack.logbook.tables import open_table, typed_in
 
 BATCH = 10_000  # rows
+REMEMBERED = 20_000  # texts of a column
 Column = Sequence[Any]
 _KEPT = ("odometer_km", "distance_km", "energy", "level_percent", "cost", "currency", "temperature_c", "speed_kmh")
 _RANGES = ("date", "odometer_km", "distance_km", "energy", "level_percent", "cost", "temperature_c", "speed_kmh")
@@ -40,6 +41,7 @@ class PlainTable:
     def __init__(self, table: CsvFile, wanted: list[tuple[str, int, Reader]], form: Form) -> None:
         self._table, self._wanted, self._form = table, wanted, form
         self._last: dict[str, tuple[dt.date, float]] = {}  # vehicle -> where its newest row stands
+        self._seen: dict[str, dict[str, Any]] = {}  # column -> text -> what it means
         self._names: set[str] = set()  # of vehicles, as the file has them
 
     @classmethod
@@ -76,16 +78,26 @@ class PlainTable:
             raise NotPlainError from None
 
     def _read(self, rows: list[list[str]]) -> dict[str, Column]:
-        """Every column through its reader; each text is read once."""
+        """Every column through its reader; a text that was met lately is not read again."""
         if set(map(len, rows)) != {len(self._table.header)}:
             raise NotPlainError
         cells = list(zip(*rows, strict=True))
-        values: dict[str, Column] = {name: _column(cells[place], read) for name, place, read in self._wanted}
+        values: dict[str, Column] = {name: self._column(name, cells[place], read) for name, place, read in self._wanted}
         count = len(rows)
         if self._form.typed_units:
             values["typed"] = [json.dumps(typed_in(row, self._wanted, self._form.typed_units)) for row in rows]
         values["extra"] = _extra({name[1:]: values.pop(name) for name in list(values) if name[0] == "+"}, count)
         return self._filled(values, count)
+
+    def _column(self, name: str, texts: Sequence[str], read: Reader) -> list[Any]:
+        """Each value of a column; None for an empty cell."""
+        seen = self._seen.setdefault(name, {})
+        if len(seen) > REMEMBERED:
+            seen.clear()
+        for text in set(texts).difference(seen):
+            stripped = text.strip()
+            seen[text] = read(stripped) if stripped else None
+        return list(map(seen.__getitem__, texts))
 
     def _filled(self, values: dict[str, Column], count: int) -> dict[str, Column]:
         """What a row that does not say stands for, as for a table that is read whole."""
@@ -121,15 +133,6 @@ class PlainTable:
             elif name not in known:
                 raise NotPlainError
             last[name] = date, km
-
-
-def _column(texts: Sequence[str], read: Reader) -> list[Any]:
-    """Each value of a column; None for an empty cell."""
-    values: dict[str, Any] = {}
-    for text in set(texts):
-        stripped = text.strip()
-        values[text] = read(stripped) if stripped else None
-    return [values[text] for text in texts]
 
 
 def _default(column: Column, value: Any) -> Column:

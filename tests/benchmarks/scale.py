@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import csv
 import datetime as dt
+import json
 import os
 import random
 import sqlite3
@@ -103,9 +104,12 @@ def scale(rows: int = ROWS) -> Iterator[str]:
 def daily(large: Path, empty: Path, rows: int) -> Iterator[str]:
     """What is done every day, on the large logbook and on the empty one."""
 
+    listing = energytrack("--logbook", str(large), "entries", "--vehicle", "v0", "--last", "1", "--json")
+    last = json.loads(run(listing))["entries"][0]["odometer_km"]
+
     def entry(path: Path, turn: int) -> list[str]:
         words = ("--vehicle", "v0", "--date", "2024-09-01", "--temperature", "12")
-        return list(energytrack("--logbook", str(path), "fillup", f"{60_000 + 25 * turn}", "24.5", *words))
+        return list(energytrack("--logbook", str(path), "fillup", f"{last + 25 * (turn + 1):.0f}", "24.5", *words))
 
     turns = iter(range(10_000))
     run(entry(empty, next(turns)))
