@@ -1,6 +1,7 @@
 """A logbook of a million entries: import, then `fillup` and `entries` against an empty one.
 
-`python -m tests.benchmarks.scale [ROWS]`
+`python -m tests.benchmarks.scale [ROWS]`. Nothing heavy is imported here: the memory of a process counts from what the
+one that started it held.
 """
 
 from __future__ import annotations
@@ -18,8 +19,7 @@ import time
 from collections.abc import Iterator
 from pathlib import Path
 
-from tests.benchmarks.processes import HELLO
-from tests.benchmarks.timing import compare, energytrack, run, seconds_of
+from tests.benchmarks.timing import HELLO, compare, energytrack, run, seconds_of
 
 ROWS, SMALLER = 1_000_000, 10
 LEAST_ROWS_A_SECOND, MOST_RATIO, MOST_SECONDS = 50_000, 1.5, 0.3
