@@ -18,6 +18,7 @@ import typer.main
 from energytrack.cli.context import LOGBOOK_VARIABLE
 from energytrack.cli.options import NegativeNumbers
 from energytrack.errors import EnergytrackError
+from energytrack.logbook import file
 from energytrack.presentation.plain import plain_text
 
 COMMANDS = {  # name -> module of energytrack.cli, and the function or group of commands in it
@@ -91,7 +92,10 @@ def choose_logbook(
     context: typer.Context,
     logbook: Annotated[
         Path | None,
-        typer.Option(help=f"Logbook file, or folder of CSV tables. Otherwise {LOGBOOK_VARIABLE} names it."),
+        typer.Option(
+            help=f"Logbook file, or folder of CSV tables. Otherwise {LOGBOOK_VARIABLE} names it.",
+            readable=False,  # whoever opens it says what to do
+        ),
     ] = None,
 ) -> None:
     """Did a vehicle modification shift its consumption, by how much, and was the distance enough to say so?"""
@@ -104,6 +108,7 @@ def main() -> None:
     for stream in (sys.stdout, sys.stderr):
         if isinstance(stream, io.TextIOWrapper):
             stream.reconfigure(errors="replace")  # a terminal without some character shows ? for it
+    file.tell = _remark
     try:
         try:
             app(prog_name="energytrack")
@@ -113,7 +118,12 @@ def main() -> None:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         sys.exit(ExitStatus.REFUSED)
     except (EnergytrackError, OSError) as refusal:
-        print(f"energytrack: {plain_text(str(refusal))}", file=sys.stderr)
+        _remark(str(refusal))
         sys.exit(ExitStatus.REFUSED)
     except KeyboardInterrupt:
         sys.exit(128 + signal.SIGINT)
+
+
+def _remark(text: str) -> None:
+    """One line on stderr."""
+    print(f"energytrack: {plain_text(text)}", file=sys.stderr, flush=True)

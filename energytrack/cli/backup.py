@@ -8,7 +8,7 @@ from typing import Annotated
 import typer
 
 from energytrack.cli import options
-from energytrack.cli.context import say, say_json, writable
+from energytrack.cli.context import on_file, say, say_json
 
 
 def backup(
@@ -20,7 +20,7 @@ def backup(
     """Copy the logbook to a file. Others may write meanwhile."""
     from energytrack.logbook.backup import back_up
 
-    store = writable(context)
+    store = on_file(context)
     back_up(store, file, force=force)
     if json:
         say_json({"backup": str(file), "bytes": file.stat().st_size})

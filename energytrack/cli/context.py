@@ -50,12 +50,20 @@ def readable_as_of(context: typer.Context, day: str | None) -> Logbook:
     return logbook
 
 
-def writable(context: typer.Context) -> Store:
-    """The logbook to write to. Raises LogbookError for a folder of tables."""
+def on_file(context: typer.Context) -> Store:
+    """The logbook file. Raises LogbookError for a folder of tables."""
     logbook = readable(context)
     if not isinstance(logbook, Store):
         raise LogbookError(f"{logbook.path} is a folder of tables and is only read: name a logbook file to write to")
     return logbook
+
+
+def writable(context: typer.Context) -> Store:
+    """The logbook to write to. Raises LogbookError for a folder of tables, and for a file that is only read."""
+    store = on_file(context)
+    if not store.writable:
+        raise LogbookError(f"{store.path} cannot be written: check its permissions and those of its folder")
+    return store
 
 
 def the_vehicle(logbook: Logbook, name: str | None) -> Vehicle:

@@ -8,7 +8,7 @@ from typing import Annotated
 import typer
 
 from energytrack.cli import options
-from energytrack.cli.context import say, say_json, writable
+from energytrack.cli.context import on_file, say, say_json
 
 
 def export(
@@ -23,7 +23,7 @@ def export(
     """Write the logbook to a folder of CSV tables. History included, so that `import` brings back all of it."""
     from energytrack.logbook.exporting import export as write
 
-    files = write(writable(context), folder, without_places=without_places, force=force)
+    files = write(on_file(context), folder, without_places=without_places, force=force)
     if json:
         say_json({"folder": str(folder), "files": files})
     else:

@@ -38,10 +38,9 @@ CREATE TEMP VIEW {table} AS
 class EarlierStore(Store):
     """A logbook file read as it stood after change `upto`. Nothing can be written through it."""
 
-    writable = False
-
     def __init__(self, path: Path, upto: int) -> None:
         super().__init__(path)
+        self.writable = False
         views = [_CHAINED.format(table=table, upto=upto) for table in ("entry", "switch", "event")]
         views += [_WEATHER.format(upto=upto)]
         views += [_KEPT.format(table=table, upto=upto) for table in ("vehicle", "confirmation")]

@@ -2,15 +2,13 @@
 
 from __future__ import annotations
 
-import os
-import sqlite3
-import tempfile
-from contextlib import closing, suppress
+from contextlib import suppress
 from pathlib import Path
 
 from energytrack.errors import LogbookError
 from energytrack.logbook import schema
 from energytrack.logbook.checking import faults
+from energytrack.logbook.copying import copy_beside, give_name
 from energytrack.logbook.store import Store
 
 _WITH_IT = ("-wal", "-shm")  # what SQLite keeps beside a file in use
@@ -22,13 +20,13 @@ def back_up(store: Store, target: Path, *, force: bool = False) -> None:
     `force` replaces an earlier backup, and nothing but a logbook.
     """
     _check_target(store.path, target, force)
-    beside = _copy(store.path, target)
+    beside = copy_beside(store.path, target)
     try:
         if force:
             _let_go(target)
             beside.replace(target)
         else:
-            _name(beside, target)
+            give_name(beside, target)
     except FileExistsError:
         raise LogbookError(f"{target} exists already: name a new file, or replace it with --force") from None
     except OSError as error:
@@ -47,7 +45,7 @@ def repair(path: Path, backup: Path) -> Path:
         raise LogbookError(f"{path} has no fault: nothing to repair, and nothing was changed")
     if found := faults(backup):
         raise LogbookError(f"the backup {backup} has a fault itself ({found[0].what}): name another one")
-    beside = _copy(backup, path)
+    beside = copy_beside(backup, path)
     aside = _free_name(path)
     moved = [(path, aside)]
     moved += [(Path(f"{path}{end}"), Path(f"{aside}{end}")) for end in _WITH_IT if Path(f"{path}{end}").exists()]
@@ -78,46 +76,11 @@ def _check_target(path: Path, target: Path, force: bool) -> None:
         raise LogbookError(f"{target} is not a backup of a logbook: name another file")
 
 
-def _name(beside: Path, target: Path) -> None:
-    """Give the copy its name, which must still be free: a link fails where it is not, renaming would replace."""
-    try:
-        os.link(beside, target)
-    except FileExistsError:
-        raise
-    except OSError:  # a file system without links
-        if target.exists():
-            raise FileExistsError from None
-        beside.rename(target)
-
-
 def _is_logbook(path: Path) -> bool:
     """By the application id in the file's header (SQLite file format, offset 68)."""
     with path.open("rb") as file:
         header = file.read(72)
     return header[68:72] == schema.APPLICATION_ID.to_bytes(4, "big")
-
-
-def _copy(source: Path, target: Path) -> Path:
-    """A whole copy beside `target`, by SQLite's online backup; sound, or refused. Raises LogbookError."""
-    try:
-        number, name = tempfile.mkstemp(prefix=f".{target.name}-", dir=target.absolute().parent)  # mode 0600
-        os.close(number)
-    except OSError as error:
-        raise LogbookError(f"{target} cannot be written: {error.strerror}; name another place") from None
-    beside = Path(name)
-    try:
-        with closing(sqlite3.connect(source)) as original, closing(sqlite3.connect(beside)) as copy:
-            original.backup(copy)
-            sound = copy.execute("PRAGMA quick_check(1)").fetchone()[0]
-        if sound != "ok":
-            raise LogbookError(f"{source} is damaged ({sound}): energytrack check says more; nothing was written")
-    except sqlite3.Error as error:
-        beside.unlink(missing_ok=True)
-        raise LogbookError(f"{source} cannot be copied to {target}: {error}; nothing was written") from None
-    except BaseException:
-        beside.unlink(missing_ok=True)
-        raise
-    return beside
 
 
 def _let_go(target: Path) -> None:

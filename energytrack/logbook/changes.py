@@ -10,6 +10,8 @@ from energytrack.errors import UnknownNameError
 from energytrack.logbook import rows
 from energytrack.logbook.file import LogbookFile
 
+_CACHE_KIB = 32_768  # holds the ends of the indexes of many vehicles
+
 
 class ChangingFile(LogbookFile):
     """Every write belongs to a change: when, what was done, why. Numbers rise in the order of recording."""
@@ -56,6 +58,22 @@ class ChangingFile(LogbookFile):
         """Add the rows that an INSERT of ours makes from others; how many."""
         with self._guard():
             return max(0, self._db.execute(insert, values).rowcount)
+
+    @contextmanager
+    def only_appending(self, table: str) -> Iterator[None]:
+        """Inside the open transaction, many new rows: each takes a new number and supersedes none.
+
+        The guard against replacing rows has nothing to guard then, and costs more than the row; it is back before
+        anybody else sees the table.
+        """
+        name = f"{table}_not_replaced"
+        guard = self._rows("SELECT sql FROM sqlite_schema WHERE name = ?", name)[0][0]
+        with self._guard():
+            self._db.execute(f"PRAGMA cache_size = -{_CACHE_KIB}")
+            self._db.execute(f"DROP TRIGGER {name}")
+        yield
+        with self._guard():
+            self._db.execute(guard)
 
     def defer_references(self) -> None:
         """Let rows of the open transaction refer to others that are still to come."""

@@ -13,6 +13,7 @@ from pathlib import Path
 from energytrack.errors import EnergytrackError, EntryError
 from energytrack.logbook.carriers import for_kind
 from energytrack.logbook.checks import check_date, check_values
+from energytrack.logbook.file import connect
 from energytrack.logbook.order import driving_order, jumps
 from energytrack.logbook.records import Vehicle
 from energytrack.logbook.store import Store
@@ -50,7 +51,7 @@ def _damage(path: Path) -> Iterator[Fault]:
         yield Fault(f"there is no logbook {path}", "name a logbook file")
         return
     try:
-        with closing(sqlite3.connect(f"{path.absolute().as_uri()}?mode=rw", uri=True)) as connection:
+        with closing(connect(path)) as connection:
             for (said,) in connection.execute(f"PRAGMA integrity_check({MOST})").fetchall():
                 if said != "ok":
                     yield Fault(f"SQLite finds: {said}", _RESTORE)
@@ -91,19 +92,26 @@ def _contents(store: Store) -> Iterator[Fault]:
 
 def _entries(store: Store, vehicle: Vehicle) -> Iterator[Fault]:
     """The rules a new entry meets, for all that stand."""
-    entries = store.entries(vehicle.name)
+    entries, today = store.entries(vehicle.name), _latest_day(store)
     for entry in entries:
         try:
             if math.isnan(entry.energy):
-                check_date(entry.date, dt.date.today())
+                check_date(entry.date, today)
             else:
-                check_values(entry, for_kind(vehicle, entry.kind), dt.date.today())
+                check_values(entry, for_kind(vehicle, entry.kind), today)
         except EntryError as refusal:
             yield _at(vehicle, entry.id or 0, str(refusal))
     rows = [(entry.id or 0, entry) for entry in entries]
     ordered, problems = driving_order(rows, again=True)
     for problem in [*problems, *jumps(ordered, [])]:
         yield _at(vehicle, problem.line or 0, problem.message)
+
+
+def _latest_day(store: Store) -> dt.date:
+    """Today, or the latest day of recording: a clock that was set back makes no entry one of the future."""
+    latest = store.query("SELECT max(recorded_at) FROM change")[0][0]
+    today = dt.date.today()
+    return max(today, dt.datetime.fromisoformat(latest).astimezone().date()) if latest else today
 
 
 def _at(vehicle: Vehicle, number: int, message: str) -> Fault:

@@ -10,6 +10,7 @@ from energytrack.errors import EntryError
 from energytrack.logbook.columns import Form
 from energytrack.logbook.csvfile import open_csv
 from energytrack.logbook.records import Problem
+from energytrack.logbook.written import new_file
 
 _ADVICE = "nothing was imported; mend the file, or keep the good rows with --skip-bad rejected.csv"
 
@@ -39,7 +40,7 @@ def write_rejected(target: Path, path: Path, form: Form, problems: Sequence[Prob
             reasons[problem.line] = "; ".join(filter(None, (reasons.get(problem.line), problem.message)))
     table = open_csv(path, delimiter=form.delimiter, encoding=form.encoding)
     try:
-        with target.open("x", encoding="utf-8", newline="") as file:
+        with new_file(target) as file:
             writer = csv.writer(file, delimiter=table.delimiter, lineterminator="\n")
             writer.writerow([*table.header, "reason"])
             writer.writerows([*cells, reasons[line]] for line, cells in table.rows() if line in reasons)

@@ -7,6 +7,7 @@ import json
 import math
 import sqlite3
 from collections.abc import Mapping, Sequence
+from itertools import repeat
 from types import MappingProxyType
 from typing import Any
 
@@ -104,6 +105,16 @@ def insert_all(connection: sqlite3.Connection, table: str, values: Sequence[Mapp
     if values:
         stamped = _stamped(values)
         connection.executemany(_statement(table, stamped[0]), stamped)
+
+
+def insert_columns(
+    connection: sqlite3.Connection, table: str, columns: Mapping[str, Sequence[Any]], constants: Mapping[str, Any]
+) -> int:
+    """Append rows given as columns of equal length, with what is the same in all of them; how many."""
+    same = {**constants, "recorded_at": moment_of(dt.datetime.now(dt.UTC))}
+    names = [*columns, *same]
+    statement = f"INSERT INTO {table} ({', '.join(names)}) VALUES ({', '.join('?' * len(names))})"
+    return connection.executemany(statement, zip(*columns.values(), *map(repeat, same.values()), strict=False)).rowcount
 
 
 def moment_of(time: dt.datetime) -> str:

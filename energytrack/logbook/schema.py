@@ -9,7 +9,7 @@ number gives the order of recording, whatever the clock said.
 from __future__ import annotations
 
 import sqlite3
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 
 from energytrack.errors import LogbookError
 
@@ -280,10 +280,15 @@ def version_of(connection: sqlite3.Connection) -> int:
     return version
 
 
-def migrate(connection: sqlite3.Connection, steps: tuple[str, ...] | None = None) -> None:
+def migrate(
+    connection: sqlite3.Connection,
+    steps: tuple[str, ...] | None = None,
+    before: Callable[[int], object] | None = None,
+) -> None:
     """Bring the tables to the newest version, wholly or not at all.
 
-    Raises LogbookError where the file was written by a newer version of this program.
+    `before` is called with the version of older tables, once nobody else can write and nothing is changed yet. Raises
+    LogbookError where the file was written by a newer version of this program.
     """
     steps = MIGRATIONS if steps is None else steps
     version = version_of(connection)
@@ -293,21 +298,27 @@ def migrate(connection: sqlite3.Connection, steps: tuple[str, ...] | None = None
             "install the newer energytrack"
         )
     if version < len(steps):
-        _apply(connection, steps)
+        _apply(connection, steps, before)
 
 
-def _apply(connection: sqlite3.Connection, steps: tuple[str, ...]) -> None:
+def _apply(
+    connection: sqlite3.Connection, steps: tuple[str, ...], before: Callable[[int], object] | None
+) -> None:
     """All missing steps in one transaction; the version is read again under the lock, another process may be first."""
-    connection.execute("BEGIN EXCLUSIVE")
+    connection.execute("BEGIN IMMEDIATE")
     try:
-        for step in steps[version_of(connection) :]:
+        version = version_of(connection)
+        if before is not None and version < len(steps):
+            before(version)
+        for step in steps[version:]:
             for statement in _statements(step):
                 connection.execute(statement)
         connection.execute(f"PRAGMA application_id = {APPLICATION_ID}")
         connection.execute(f"PRAGMA user_version = {len(steps)}")
         connection.execute("COMMIT")
     except BaseException:
-        connection.execute("ROLLBACK")
+        if connection.in_transaction:
+            connection.execute("ROLLBACK")
         raise
 
 

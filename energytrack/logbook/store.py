@@ -5,7 +5,7 @@ from __future__ import annotations
 import datetime as dt
 import json
 from collections import Counter
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
 from energytrack.errors import LogbookError, UnknownNameError
@@ -27,8 +27,6 @@ _NO_REPEAT = (  # of a chain of corrections, those that changed what makes an en
 
 class Store(ChangingFile):
     """A logbook file, open for reading and writing. Every method raises LogbookError where the file fails it."""
-
-    writable = True
 
     # Reading
 
@@ -176,6 +174,24 @@ class Store(ChangingFile):
             kept = [{"entry_id": first + n, "change_id": change} for n, sure in enumerate(confirmed) if sure]
             rows.insert_all(self._db, "confirmation", kept)
         return len(new)
+
+    def add_in_order(self, batches: Iterable[Mapping[str, Sequence[Any]]], source: str) -> int:
+        """Append the entries of batches, columns of equal length by name; how many. None may be logged already.
+
+        `vehicle` names the vehicle; the other columns are those of the file.
+        """
+        added, numbers = 0, {vehicle: number for number, vehicle in self._rows("SELECT id, name FROM vehicle")}
+        with self.transaction(), self._guard(), self.only_appending("entry"):
+            for batch in batches:
+                columns = dict(batch)
+                columns["vehicle_id"] = [numbers[name] for name in columns.pop("vehicle")]
+                constants = {"source": source, "change_id": self.change("imported")}
+                added += rows.insert_columns(self._db, "entry", columns, constants)
+        return added
+
+    def has_entries(self, vehicle_name: str) -> bool:
+        """Was anything ever logged of this vehicle?"""
+        return bool(self._rows("SELECT 1 FROM entry WHERE vehicle_id = ? LIMIT 1", self._number(vehicle_name)))
 
     def confirm(self, number: int) -> None:
         """Keep a standing entry that looks odd; once is enough. Raises UnknownNameError where there is none."""

@@ -17,10 +17,10 @@ from energytrack.logbook.carriers import kind_of
 from energytrack.logbook.cells import CellError
 from energytrack.logbook.checks import check_known
 from energytrack.logbook.columns import Form, Reader
-from energytrack.logbook.csvfile import UnreadableTableError, open_csv
+from energytrack.logbook.csvfile import CsvFile, UnreadableTableError, open_csv
 from energytrack.logbook.matching import match_columns
 from energytrack.logbook.records import UNIT_OF_CARRIER, Entry, Event, Modification, Problem, Vehicle, Weather
-from energytrack.logbook.written import cell, cells_of, lines
+from energytrack.logbook.written import cell, cells_of, lines, new_file
 
 Record = TypeVar("Record")
 AS_WRITTEN_HERE = Form()
@@ -151,19 +151,29 @@ def read_rows(
     """Every row through `readers` and `build`; all problems at once, none as an exception."""
     reading: Reading[Record] = Reading(str(path))
     try:
-        table = open_csv(path, delimiter=form.delimiter, encoding=form.encoding)
-        if table.encoding not in ("utf-8-sig", form.encoding):
-            reading.notes.append(f"{path.name} is not UTF-8; read as {table.encoding}")
-        wanted = match_columns(table, form, readers, required, reading.notes)
+        table, wanted = open_table(path, form, readers, required, reading.notes)
         width = len(table.header)
         for line, cells in table.rows():
             _read_row(reading, line, cells, width, wanted, build)
             if form.typed_units:
-                reading.typed[line] = _typed(cells, wanted, form.typed_units)
+                reading.typed[line] = typed_in(cells, wanted, form.typed_units)
     except UnreadableTableError as error:
         reading.problems.append(error.problem)
         reading.whole = False
     return reading
+
+
+def open_table(
+    path: Path, form: Form, readers: dict[str, Reader], required: tuple[str, ...], notes: list[str]
+) -> tuple[CsvFile, list[tuple[str, int, Reader]]]:
+    """The file, and its columns that are read: ours, the place in a row and the reader.
+
+    What is left out or guessed is told in `notes`. Raises UnreadableTableError.
+    """
+    table = open_csv(path, delimiter=form.delimiter, encoding=form.encoding)
+    if table.encoding not in ("utf-8-sig", form.encoding):
+        notes.append(f"{path.name} is not UTF-8; read as {table.encoding}")
+    return table, match_columns(table, form, readers, required, notes)
 
 
 def _read_row(
@@ -197,7 +207,8 @@ def _read_row(
         reading.refused[line] = values.get("vehicle")
 
 
-def _typed(cells: list[str], wanted: list[tuple[str, int, Reader]], units: Mapping[str, str]) -> dict[str, str]:
+def typed_in(cells: list[str], wanted: list[tuple[str, int, Reader]], units: Mapping[str, str]) -> dict[str, str]:
+    """Column -> what stands there with its unit, for those in other units than ours."""
     found = {name: cells[place].strip() for name, place, _ in wanted if name in units and place < len(cells)}
     return {name: f"{text} {units[name]}" for name, text in found.items() if text}
 
@@ -243,7 +254,7 @@ def write_weather(path: Path, weather: Sequence[Weather]) -> None:
 
 def _write(path: Path, header: Sequence[str], rows: Iterable[Sequence[str]]) -> None:
     try:
-        with path.open("x", encoding="utf-8", newline="") as file:
+        with new_file(path) as file:
             file.writelines(lines([header, *rows]))
     except FileExistsError:
         raise LogbookError(f"{path} exists already; move it away or name another place") from None

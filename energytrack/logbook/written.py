@@ -4,11 +4,19 @@ from __future__ import annotations
 
 import datetime as dt
 import math
+import os
 from collections.abc import Iterable, Iterator, Sequence
+from pathlib import Path
+from typing import TextIO
 
 from energytrack.logbook.formulas import neutralised
 
 _QUOTED = (",", '"', "\n", "\r")
+
+
+def new_file(path: Path) -> TextIO:
+    """A new file that only its owner can read. Raises OSError, where something has its name FileExistsError."""
+    return open(path, "x", encoding="utf-8", newline="", opener=lambda name, flags: os.open(name, flags, 0o600))
 
 
 def cells_of(record: object, names: Iterable[str]) -> list[str]:

@@ -10,18 +10,10 @@ from pathlib import Path
 
 import numpy as np
 
-from tests.benchmarks.timing import Comparison, compare, energytrack, run, seconds_of
+from tests.benchmarks.timing import HELLO, Comparison, compare, energytrack, run, seconds_of
 from tests.simulation import simulate
 from tests.uses import STEADY_COMMUTE
 
-HELLO = """
-import typer
-app = typer.Typer(add_completion=False, rich_markup_mode=None)
-@app.command()
-def hello(name: str) -> None:
-    print("hello", name)
-app()
-"""
 STATISTICS = "import statsmodels.regression.linear_model"
 ENTRIES, LOOKS = 250, 60
 REHEARSED, RUNS, MOST_SECONDS = 100, 500, 120.0

@@ -13,6 +13,14 @@ from dataclasses import dataclass
 from tests.documents import ROOT
 
 Command = Sequence[str]
+HELLO = """
+import typer
+app = typer.Typer(add_completion=False, rich_markup_mode=None)
+@app.command()
+def hello(name: str) -> None:
+    print("hello", name)
+app()
+"""
 
 
 @dataclass(frozen=True)

@@ -240,7 +240,7 @@ def test_settings_of_the_file(store: Store, path: Path) -> None:
     assert setting("journal_mode") == "wal"
     assert setting("synchronous") == 2  # FULL
     assert setting("foreign_keys") == 1
-    assert setting("busy_timeout") == 5_000
+    assert setting("busy_timeout") == 10_000
     assert setting("user_version") == len(schema.MIGRATIONS)
     strict = raw(path, "SELECT name, strict FROM pragma_table_list WHERE schema = 'main' AND type = 'table'")
     assert {name: flag for name, flag in strict if not str(name).startswith("sqlite_")} == dict.fromkeys(
