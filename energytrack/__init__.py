@@ -21,6 +21,8 @@ _HOMES = {
     "plan_from": "energytrack.inference.designs",
     "Stated": "energytrack.inference.stated",
     "TwoCarriers": "energytrack.consumption.two_carriers",
+    "assess_fleet": "energytrack.inference.fleet.assess_fleet",
+    "fleet_logs": "energytrack.inference.fleet.logs",
 }
 
 

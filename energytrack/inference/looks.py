@@ -76,7 +76,7 @@ def take_looks(
     watch = rules.watch(question.rule, question.alpha)
     states: list[State] = []
     for count in counts if every else reversed(counts):
-        seen = _kept(observed.head(count), question) if odd else observed.head(count)
+        seen = kept_so_far(observed.head(count), question) if odd else observed.head(count)
         if seen is None:
             continue
         states.append(take_look(seen, question, states[-1].model.fit.theta if states else None, watch))
@@ -85,7 +85,7 @@ def take_looks(
     return states
 
 
-def _kept(observed: Observations, question: Question) -> Observations | None:
+def kept_so_far(observed: Observations, question: Question) -> Observations | None:
     """What is not odd in it; None where the newest segment is, or too little is left to compare."""
     sorted_out = set_aside(observed, question.covariates)
     left = sorted_out.kept
