@@ -58,15 +58,21 @@ def assess_fleet(
     energy: dict[str, float] = defaultdict(float)
     for each in vehicles:
         energy[each.unit] += each.energy
+    pooled = pooled_shifts(vehicles, confidence=confidence, power=power)
     return FleetAssessment(
         month=asked.month.name,
         confidence=confidence,
         false_discovery_rate=false_discovery_rate,
-        vehicles=vehicles,
-        pooled=pooled_shifts(vehicles, confidence=confidence, power=power),
+        vehicles=tuple(map(_without_roads, vehicles)),
+        pooled=pooled,
         distance_km=sum(each.distance_km for each in vehicles),
         energy={unit: amount for unit, amount in sorted(energy.items()) if amount},
     )
+
+
+def _without_roads(review: VehicleReview) -> VehicleReview:
+    """Roads were for pooling: they are no part of the answer."""
+    return replace(review, answers=tuple(replace(answer, ahead=()) for answer in review.answers))
 
 
 def _month(fleet: Sequence[VehicleLog], written: str | None) -> Month:

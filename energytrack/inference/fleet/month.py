@@ -17,6 +17,9 @@ class Month:
     first: int
     last: int
 
+    def holds(self, day: dt.date) -> bool:
+        return self.first <= day.toordinal() <= self.last
+
 
 def month_of(written: str) -> Month:
     """A month written YYYY-MM. Raises InferenceError for anything else."""

@@ -60,6 +60,8 @@ def _review(log: VehicleLog, asked: Asked) -> VehicleReview:
         return VehicleReview(log.vehicle.name, segmented.unit, message=f"nothing can be measured: {lacking}")
     share = shares_of(observed, asked.month)
     deviation, why_none, odd = deviation_of(observed, asked.month)
+    if deviation is None and not any(asked.month.holds(entry.date) for entry in log.entries):
+        why_none = "no entries in the month"
     return VehicleReview(
         vehicle=log.vehicle.name,
         unit=segmented.unit,
