@@ -53,7 +53,11 @@ def take_look(observed: Observations, question: Question, start: Array | None, w
 
 def judged(model: Model, question: Question, watch: rules.Watch) -> State:
     """The test as a fitted model has it."""
-    shift = shift_of(model.fit)
+    return held_against(model, shift_of(model.fit), question, watch)
+
+
+def held_against(model: Model, shift: Shift, question: Question, watch: rules.Watch) -> State:
+    """A shift of a fitted model against the bound of the rule at work."""
     priced = shift.standard_error * bounds.price(shift.freedom, question.alpha)
     share = 1 / priced**2 / question.information
     known = watch(share)

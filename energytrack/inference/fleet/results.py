@@ -9,7 +9,7 @@ from collections.abc import Mapping
 from dataclasses import asdict, dataclass
 from typing import Any
 
-from energytrack.inference.results import Range, Verdict, plain
+from energytrack.inference.results import Look, Range, Verdict, plain
 
 
 @dataclass(frozen=True)
@@ -129,6 +129,41 @@ class FleetAssessment:
     @property
     def attention(self) -> tuple[VehicleReview, ...]:
         return tuple(each for each in self.vehicles if each.attention)
+
+    def to_dict(self) -> dict[str, Any]:
+        return {name: plain(value) for name, value in asdict(self).items()}
+
+
+@dataclass(frozen=True)
+class Alone:
+    """The same without controls."""
+
+    shift_percent: float
+    standard_error_percent: float
+    information_fraction: float
+
+
+@dataclass(frozen=True)
+class ControlledShift:
+    """A modification's shift beside control vehicles of the same run."""
+
+    vehicle: str
+    modification: str
+    controls: tuple[str, ...]
+    verdict: Verdict
+    shift_percent: float | None
+    interval_percent: Range | None  # look-proof
+    standard_error_percent: float | None
+    degrees_of_freedom: float | None
+    confidence: float
+    target_percent: float
+    information_fraction: float | None
+    distance_modified_km: float
+    distance_to_go_km: float | None  # None: out of reach of what can be compared at once
+    common_share: float | None  # of the drift's variance, 0 to 1; None: no control has a record yet
+    common_share_sd: float | None
+    alone: Alone | None
+    looks: tuple[Look, ...]
 
     def to_dict(self) -> dict[str, Any]:
         return {name: plain(value) for name, value in asdict(self).items()}
