@@ -43,6 +43,10 @@ def render(found: FleetAssessment, vehicles: Mapping[str, Vehicle], width: int =
             f" called, with at most {rate} false calls expected among them."
         )
         lines += [Text(), *map(Text, wrap(note, width))]
+        doubted = [f"{plain_text(each.vehicle)} ({each.odd_segments})" for each in rows if each.odd_segments]
+        if doubted:
+            second = f"entries that stand out from their neighbours, worth a second look: {', '.join(doubted)}"
+            lines += [*map(Text, bullets([second], "! ", width))]
     others = [each for each in found.vehicles if each.deviation is None]
     if others:
         said = [f"{plain_text(each.vehicle)}: {plain_text(each.message or each.why_none)}" for each in others]

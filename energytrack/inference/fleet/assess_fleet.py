@@ -45,7 +45,8 @@ def assess_fleet(
     of range; UnknownNameError for a modification no vehicle has.
     """
     asked = Asked(_month(fleet, month), name, _ratio(target_percent), 0.03, confidence, power)
-    Question(name or "", asked.target or asked.usual_target, 1 - confidence, power)  # refuses what is out of range
+    usual = asked.usual_target if asked.target is None else asked.target
+    Question(name or "", usual, 1 - confidence, power)  # refuses what is out of range
     if not 0 < false_discovery_rate < 1:
         asked_rate = f"{false_discovery_rate:g}"
         raise InferenceError(f"the false discovery rate must lie between 0 and 1, not {asked_rate}: try 0.05")

@@ -3,9 +3,13 @@
 The month enters the regression as a part that was fitted for just that month. Its coefficient by generalised least
 squares is the month's consumption less what the rest of the log predicts for it (the deletion residual), and its
 standard error counts trips, levels and both drifts. Whatever else was fitted or driven in is allowed for.
+
+What is odd is set aside in the record, and kept in the month: a month that stands out is what is looked for.
 """
 
 from __future__ import annotations
+
+from dataclasses import replace
 
 import numpy as np
 
@@ -42,20 +46,18 @@ def until(observed: Observations, month: Month) -> Observations:
 
 
 def deviation_of(observed: Observations, month: Month) -> tuple[Deviation | None, str, int]:
-    """The month against the record; why there is none, where there is none; how many of its segments are set aside."""
+    """The month against the record; why there is none, where there is none; how many of its segments are odd."""
     known = until(observed, month)
-    kept = set_aside(known).kept
+    inside = shares_of(known, month) > 0
+    odd = sum(bool(inside[each.segment]) for each in set_aside(known).odd)
+    kept = set_aside(replace(known, confirmed=known.confirmed | inside)).kept
     shares = shares_of(kept, month)
-    odd = int((shares_of(known, month) > 0).sum() - (shares > 0).sum())
-    reason = _missing(kept, shares, odd)
+    reason = _missing(kept, shares)
     if reason:
         return None, reason, odd
-    inside = kept.head(int(np.flatnonzero(shares > 0)[-1]) + 1)  # fit_model wants what is asked about to be in the log
-    shares = shares[: len(inside)]
-    model = fit_model(averaged(inside.adding(_ITSELF, shares)), _ITSELF)
+    model = fit_model(averaged(kept.adding(_ITSELF, shares)), _ITSELF)
     shift = shift_of(model.fit)
-    driven = inside.distance_km * shares
-    measured = float((inside.energy * shares).sum() / driven.sum())
+    measured = float(kept.energy @ shares / (kept.distance_km @ shares))
     base = shift.base * model.scale.consumption
     p_value = min(1.0, 2 * bounds.mixture_tail(abs(shift.z), shift.freedom))
     return (
@@ -73,13 +75,12 @@ def deviation_of(observed: Observations, month: Month) -> tuple[Deviation | None
     )
 
 
-def _missing(kept: Observations, shares: Array, odd: int) -> str:
+def _missing(kept: Observations, shares: Array) -> str:
     if not (shares > 0).any():
-        return "its entries stand out from their neighbours" if odd else "nothing closed between known levels"
+        return "nothing closed between known levels"
     if (shares == 0).sum() < FEWEST_BASELINE:
         return f"its own record has fewer than {FEWEST_BASELINE} segments outside the month"
-    if len(kept.names) and (shares == 0).any():
-        for name, column in zip(kept.names, kept.fitted.T, strict=True):
-            if np.ptp(column) > 0 and abs(np.corrcoef(column, shares)[0, 1]) > _CONFOUNDED:
-                return f"the month and {name} cannot be told apart"
+    for name, column in zip(kept.names, kept.fitted.T, strict=True):
+        if np.ptp(column) > 0 and abs(np.corrcoef(column, shares)[0, 1]) > _CONFOUNDED:
+            return f"the month and {name} cannot be told apart"
     return ""

@@ -65,7 +65,7 @@ class VehicleReview:
     why_none: str = ""  # no deviation: what is missing
     adjusted_p: float | None = None  # Benjamini and Hochberg (1995), over the vehicles of the fleet
     attention: bool = False  # adjusted_p is at most the false discovery rate asked for
-    set_aside: int = 0  # segments of the month that stand out from their neighbours and do not count
+    odd_segments: int = 0  # of the month, that stand out from their neighbours: a slip of the pen, or what happened
     answers: tuple[BriefAnswer, ...] = ()
     message: str = ""
 

@@ -69,7 +69,7 @@ def _review(log: VehicleLog, asked: Asked) -> VehicleReview:
         energy=float(observed.energy @ share),
         deviation=deviation,
         why_none=why_none,
-        set_aside=odd,
+        odd_segments=odd,
         answers=tuple(
             brief(observed, segmented, log.modifications, question) for question in _questions(log, asked)
         ),
@@ -78,16 +78,16 @@ def _review(log: VehicleLog, asked: Asked) -> VehicleReview:
 
 def _questions(log: VehicleLog, asked: Asked) -> list[Question]:
     """One for each modification, at the target last logged with it."""
-    targets: dict[str, float | None] = {}
+    targets: dict[str, float] = {}
     reversible: dict[str, bool] = {}
     for row in log.modifications:
-        own = None if row.target_percent is None else row.target_percent / 100
-        targets[row.name] = targets.get(row.name) if own is None else own
+        before = targets.get(row.name, asked.usual_target)
+        targets[row.name] = before if row.target_percent is None else row.target_percent / 100
         reversible[row.name] = reversible.get(row.name, True) and row.reversible
     return [
         Question(
             name,
-            asked.target or target or asked.usual_target,
+            target if asked.target is None else asked.target,
             1 - asked.confidence,
             asked.power,
             reversible=reversible[name],
