@@ -36,14 +36,14 @@ def fleet(count: int, *, entries: int = 100, seed: int = 0, uses: Sequence[Use] 
     ]
 
 
-def pair(use: Use, share: float, seed: int) -> tuple[VehicleLog, VehicleLog]:
-    """A vehicle with the part and one of the same run without it; their drifts share `share` of the variance."""
+def run(use: Use, share: float, seed: int, controls: int = 1) -> tuple[VehicleLog, list[VehicleLog]]:
+    """A vehicle with the part and others of the same run without it; their drifts share `share` of the variance."""
     rng = np.random.default_rng(seed)
     days = 4 * use.fillings * max(use.days_per_fill)
     common = CommonDrift.drawn(share, FIRST, days, rng)
-    control = replace(use, switches=(), shift_percent=0.0)
-    test, beside = (simulate(each, rng, start=FIRST, common=common) for each in (use, control))
-    return as_log(test, "test"), as_log(beside, "control")
+    without = replace(use, switches=(), shift_percent=0.0)
+    test = as_log(simulate(use, rng, start=FIRST, common=common), "test")
+    return test, [as_log(simulate(without, rng, start=FIRST, common=common), f"control-{k}") for k in range(controls)]
 
 
 def write(store: Store, logs: Sequence[VehicleLog]) -> None:

@@ -67,6 +67,7 @@ def simulated(uses: Uses, most: int | None) -> list[Part]:
             lambda found: [power.block(found, uses, long_logs), forecast.block(found, uses, long_logs)],
             lambda found: [*power.promises(found, uses), *forecast.promises(found, uses)],
         ),
+        Part(controls.compare, controls.jobs(runs), lambda found: [controls.block(found, runs)]),
         Part(
             undeclared.reports,
             jobs(uses, searched, undeclared.FIRST_SEED),

@@ -104,41 +104,53 @@ def _checked(test: VehicleLog, controls: Sequence[VehicleLog], name: str) -> lis
 
 
 @dataclass(frozen=True)
-class _Last:
-    """The newest look: every vehicle's model, and what they say together."""
+class Beside:
+    """A look at a vehicle beside its controls: every vehicle's model, and what they say together."""
 
     models: list[Model]
     estimate: Estimate
 
 
+Guesses = dict[int, Array]  # of the noise, by place: the last look's
+
+
+def look_beside(
+    observed: Observations, beside: Sequence[Observations], question: Question, count: int, guesses: Guesses
+) -> Beside | None:
+    """The first `count` segments, beside the controls as they stood on that day; None where the newest one is odd."""
+    kept = kept_so_far(observed.head(count), question)
+    if kept is None:
+        return None
+    models = [fit_model(averaged(kept), question.modification, start=guesses.get(0))]
+    guesses[0] = models[0].fit.theta
+    for place, other in enumerate(beside, start=1):
+        known = other.head(int(np.searchsorted(other.end_day, kept.end_day[-1], side="right")))
+        if len(known) >= FEWEST_BASELINE:
+            models.append(fit_model(averaged(set_aside(known).kept), None, start=guesses.get(place)))
+            guesses[place] = models[-1].fit.theta
+    return Beside(models, Joint([part_of(each) for each in models]).estimate())
+
+
 def _looks(
     observed: Observations, beside: Sequence[Observations], question: Question
-) -> tuple[list[State], State | None, _Last | None]:
-    """Every look with the controls as they stood on its day; the newest one without them."""
+) -> tuple[list[State], State | None, Beside | None]:
+    """Every look with the controls; the newest one without them."""
     watch, alone_watch = (rules.watch(question.rule, question.alpha) for _ in range(2))
     states: list[State] = []
     alone, last = None, None
-    thetas: list[Array | None] = [None] * (1 + len(beside))
+    guesses: Guesses = {}
     for count in look_points(observed, question.modification):
-        kept = kept_so_far(observed.head(count), question)
-        if kept is None:
+        seen = look_beside(observed, beside, question, count, guesses)
+        if seen is None:
             continue
-        model = fit_model(averaged(kept), question.modification, start=thetas[0])
-        thetas[0] = model.fit.theta
-        models = [model]
-        for place, other in enumerate(beside, start=1):
-            known = other.head(int(np.searchsorted(other.end_day, kept.end_day[-1], side="right")))
-            if len(known) >= FEWEST_BASELINE:
-                models.append(fit_model(averaged(set_aside(known).kept), None, start=thetas[place]))
-                thetas[place] = models[-1].fit.theta
-        last = _Last(models, Joint([part_of(each) for each in models]).estimate())
-        states.append(held_against(model, last.estimate.shift, question, watch))
+        last, model = seen, seen.models[0]
+        states.append(held_against(model, seen.estimate.shift, question, watch))
         alone = held_against(model, shift_of(model.fit), question, alone_watch)
     return states, alone, last
 
 
 def _answer(
-    blank: ControlledShift, states: list[State], alone: State | None, last: _Last, question: Question
+    blank: ControlledShift, states: list[State], alone: State | None, last: Beside, question: Question
 ) -> ControlledShift:
     now, found = states[-1], finding(states, question.target)
     answer = replace(
@@ -162,7 +174,7 @@ def _answer(
     return replace(answer, verdict=verdict, distance_to_go_km=to_go)
 
 
-def _distance_to_go(last: _Last, question: Question) -> float | None:
+def _distance_to_go(last: Beside, question: Question) -> float | None:
     """How far the vehicle still has to drive while its controls drive on as they do; None within no reasonable size."""
     never = partial(np.zeros_like, dtype=np.float64)
     roads = [road(last.models[0], always_fitted, 0), *(road(model, never, 0) for model in last.models[1:])]
