@@ -9,6 +9,7 @@ from typing import Any
 
 from tests.evidence import (
     against_oracle,
+    controls,
     coverage,
     false_alarms,
     followed,
@@ -42,6 +43,7 @@ class Part:
 def simulated(uses: Uses, most: int | None) -> list[Part]:
     """Logs drawn from a known truth, at most so many of each kind where `most` is given."""
     logs, long_logs, searched = (min(usual, most or usual) for usual in (LOGS, LONG_LOGS, SEARCHED_LOGS))
+    runs = min(controls.LOGS, most or controls.LOGS)
     drifting, commutes = coverage.drifting_uses(), undeclared.drifting_uses()
     return [
         Part(
