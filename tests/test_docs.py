@@ -15,6 +15,7 @@ import typer
 from energytrack.cli.app import LOGBOOK_VARIABLE, ExitStatus, app
 from energytrack.inference import rehearsal_results as rehearsed
 from energytrack.inference import results
+from energytrack.inference.fleet import results as fleet
 from energytrack.inference.regimes import results as regimes
 from energytrack.logbook import columns
 from tests.documents import DOCUMENTS, ROOT, WIDTH, FailedCommandError, commands_of, console_lines, replay
@@ -36,6 +37,8 @@ RESULTS = (
     *(rehearsed.Rehearsal, rehearsed.Scenario, rehearsed.Rate, rehearsed.Settled, rehearsed.Placebo),
     *(regimes.RegimeReport, regimes.Break, regimes.Match, regimes.Regime, regimes.BreakTest, regimes.Criterion),
     regimes.Point,
+    *(fleet.FleetAssessment, fleet.VehicleReview, fleet.Deviation, fleet.BriefAnswer, fleet.PooledShift),
+    *(fleet.Contribution, fleet.Heterogeneity, fleet.ControlledShift, fleet.Alone),
 )
 
 

@@ -15,6 +15,7 @@ LIGHT = [
     "inference.results",
     "inference.rehearsal_results",
     "inference.regimes.results",
+    *(f"inference.fleet.{name}" for name in ("results", "logs", "month")),
     *(f"consumption.{name}" for name in ("positions", "segments", "shares", "slips", "meaning", "terms")),
     *("consumption.two_carriers", "consumption.energy_content"),
 ]

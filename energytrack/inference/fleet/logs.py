@@ -5,9 +5,10 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from pathlib import Path
 from typing import Any, NamedTuple
 
-from energytrack.logbook.opening import Logbook
+from energytrack.logbook.opening import Logbook, open_logbook
 from energytrack.logbook.records import Entry, Event, Modification, Vehicle, Weather
 
 
@@ -35,8 +36,9 @@ class Packed(NamedTuple):
 _NOTHING = Entry("", dt.date.min, 0.0).extra
 
 
-def fleet_logs(logbook: Logbook, vehicles: Sequence[Vehicle] | None = None) -> list[VehicleLog]:
-    """The logs of these vehicles, or of all."""
+def fleet_logs(logbook: Logbook | str | Path, vehicles: Sequence[Vehicle] | None = None) -> list[VehicleLog]:
+    """The logs of these vehicles, or of all. logbook: an open one, or the path of one. Raises LogbookError."""
+    logbook = open_logbook(logbook) if isinstance(logbook, (str, Path)) else logbook
     weather = tuple(logbook.weather())
     return [
         VehicleLog(
