@@ -152,7 +152,7 @@ def _pooled(found: PooledShift, fleet: FleetAssessment, vehicles: Mapping[str, V
     ]
     if found.next_vehicle_percent is not None:
         rows.append(("  the next vehicle", figures.percent_range(found.next_vehicle_percent, error)))
-    rows.append((f"  target {figures.target(found.target_percent)}", _to_go(found, unit)))
+    rows.append((f"  target {found.target_percent:g} %", _to_go(found, unit)))
     best = [each for each in found.vehicles if each.gain_percent][:_MOST_NAMED]
     if best and not found.resolved:
         said = [f"{plain_text(each.vehicle)} {join(f'+{each.gain_percent:.1g} %')}" for each in best]
