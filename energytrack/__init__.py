@@ -1,7 +1,7 @@
 """Did a vehicle modification shift energy use, by how much, and is the distance covered enough to say so?
 
 The Python interface: open_logbook, assess, plan, plan_from Stated figures, compare, respond, rehearse, find_regimes,
-review, TwoCarriers.
+review, assess_fleet, assess_with_controls, fleet_logs, TwoCarriers.
 Each is loaded when it is first used, so that importing the package costs nothing.
 """
 
@@ -22,6 +22,9 @@ _HOMES = {
     "plan_from": "energytrack.inference.designs",
     "Stated": "energytrack.inference.stated",
     "TwoCarriers": "energytrack.consumption.two_carriers",
+    "assess_fleet": "energytrack.inference.fleet.assess_fleet",
+    "assess_with_controls": "energytrack.inference.fleet.controls",
+    "fleet_logs": "energytrack.inference.fleet.logs",
 }
 
 

@@ -50,8 +50,34 @@ class SimulatedLog:
     truth: Truth
 
 
-def simulate(kind: Use, rng: np.random.Generator, *, start: dt.date | None = None) -> SimulatedLog:
-    """Draw a logbook. start: the first driving day; None draws one, so that seasons differ from log to log."""
+@dataclass(frozen=True)
+class CommonDrift:
+    """Drift that several vehicles of one run share: `share` of the variance of each one's own."""
+
+    share: float
+    first: dt.date
+    weeks: Floats  # of standard deviation 1, day by day from `first`
+    seasons: Floats
+
+    @classmethod
+    def drawn(cls, share: float, first: dt.date, days: int, rng: np.random.Generator) -> CommonDrift:
+        dates = np.datetime64(first, "D") + np.arange(days)
+        paths = [ornstein_uhlenbeck(dates, half_life, 1.0, rng) for half_life in (HALF_LIFE_WEEKS, HALF_LIFE_SEASONS)]
+        return cls(share, first, *paths)
+
+    def on(self, dates: Days) -> tuple[Floats, Floats]:
+        """Both drifts on these days, at the common part's own standard deviation."""
+        day = (dates - np.datetime64(self.first, "D")).astype(np.int64)
+        return np.sqrt(self.share) * self.weeks[day], np.sqrt(self.share) * self.seasons[day]
+
+
+def simulate(
+    kind: Use, rng: np.random.Generator, *, start: dt.date | None = None, common: CommonDrift | None = None
+) -> SimulatedLog:
+    """Draw a logbook. start: the first driving day; None draws one, so that seasons differ from log to log.
+
+    common: drift this vehicle shares with others of its run.
+    """
     first = start or dt.date(2023, 1, 2) + dt.timedelta(days=int(rng.integers(365)))
     lengths = rng.integers(kind.days_per_fill[0], kind.days_per_fill[1] + 1, kind.fillings)
     tank = np.repeat(np.arange(kind.fillings), lengths)
@@ -63,7 +89,7 @@ def simulate(kind: Use, rng: np.random.Generator, *, start: dt.date | None = Non
     odometer = 20_000.0 + np.cumsum(km)
     switches = [int(share * len(tank)) for share in kind.switches]
     fitted = np.searchsorted(switches, np.arange(len(tank)), side="right") % 2
-    used = np.add.reduceat(_energy_of_days(kind, dates, km, temperature, speed, fitted, rng), starts)
+    used = np.add.reduceat(_energy_of_days(kind, dates, km, temperature, speed, fitted, rng, common), starts)
 
     ends = starts + lengths - 1
     distance = np.add.reduceat(km, starts)
@@ -162,6 +188,7 @@ def _energy_of_days(
     speed: Floats,
     fitted: npt.NDArray[np.int64],
     rng: np.random.Generator,
+    common: CommonDrift | None = None,
 ) -> Floats:
     ratio: Floats = speed / kind.speed_kmh
     conditions = (
@@ -172,6 +199,10 @@ def _energy_of_days(
     )
     weeks = ornstein_uhlenbeck(dates, HALF_LIFE_WEEKS, kind.drift_weeks_percent / 100, rng)
     seasons = ornstein_uhlenbeck(dates, HALF_LIFE_SEASONS, kind.drift_seasons_percent / 100, rng)
+    if common is not None:
+        shared_weeks, shared_seasons = common.on(dates)
+        weeks = np.sqrt(1 - common.share) * weeks + kind.drift_weeks_percent / 100 * shared_weeks
+        seasons = np.sqrt(1 - common.share) * seasons + kind.drift_seasons_percent / 100 * shared_seasons
     relative = 1 + conditions - np.average(conditions, weights=km) + weeks + seasons + kind.shift_percent / 100 * fitted
     trips = kind.trip_percent / 100 * np.sqrt(TRIP_KM * km) * rng.standard_normal(len(km))
     return np.asarray(kind.b0 / 100 * (km * np.maximum(relative, 0.3) + trips))

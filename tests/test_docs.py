@@ -15,6 +15,7 @@ import typer
 from energytrack.cli.app import LOGBOOK_VARIABLE, ExitStatus, app
 from energytrack.inference import rehearsal_results as rehearsed
 from energytrack.inference import results
+from energytrack.inference.fleet import results as fleet
 from energytrack.inference.regimes import results as regimes
 from energytrack.inference.review import results as reviewed
 from energytrack.logbook import columns
@@ -39,6 +40,8 @@ RESULTS = (
     regimes.Point,
     *(reviewed.Review, reviewed.Driven, reviewed.Level, reviewed.Difference, reviewed.Carbon, reviewed.Price),
     *(reviewed.UnderTest, reviewed.Worth, reviewed.RegimeChange, reviewed.Quality),
+    *(fleet.FleetAssessment, fleet.VehicleReview, fleet.Deviation, fleet.BriefAnswer, fleet.PooledShift),
+    *(fleet.Contribution, fleet.Heterogeneity, fleet.ControlledShift, fleet.Alone),
 )
 
 

@@ -17,6 +17,7 @@ LIGHT = [
     "inference.regimes.results",
     *(f"inference.watch.{name}" for name in ("monitor", "kept", "echo")),
     *("inference.review.results", "inference.review.month"),
+    *(f"inference.fleet.{name}" for name in ("results", "logs", "month")),
     *(f"consumption.{name}" for name in ("positions", "segments", "shares", "slips", "meaning", "terms")),
     *("consumption.two_carriers", "consumption.energy_content"),
 ]

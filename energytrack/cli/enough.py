@@ -13,6 +13,7 @@ from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.app import ExitStatus
 from energytrack.cli.context import readable_as_of, say, say_json
+from energytrack.cli.controlled import controlled
 from energytrack.cli.watch import keep_watch
 from energytrack.errors import EnergytrackError, LogbookError
 from energytrack.logbook.store import Store
@@ -53,6 +54,9 @@ def enough(
     energy_content: Annotated[
         str | None, typer.Option(metavar="FUEL=KWH", help="kWh in a L or kg of the fuel, of a plug-in hybrid.")
     ] = None,
+    control: Annotated[
+        list[str] | None, typer.Option(metavar="VEHICLE", help="A vehicle of the same run without it; repeatable.")
+    ] = None,
     picture: Annotated[bool, typer.Option("--picture", help="Draw how the range narrowed with distance.")] = False,
     as_of: options.AsOf = None,
     json: options.Json = False,
@@ -62,6 +66,18 @@ def enough(
     rule = _rule(looks, open_ended)
     logbook = readable_as_of(context, as_of)
     vehicles = asking.vehicles_asked(logbook, vehicle)
+    if control:
+        if compare or covariate or rule != "every-look" or keep_all or energy_content or picture or as_of or exit_code:
+            raise typer.BadParameter("--control takes no option but --vehicle, --target, --confidence, --power, --json")
+        controlled(
+            *(logbook, vehicles, name),
+            controls=control,
+            target=target,
+            confidence=confidence,
+            power=power,
+            as_json=json,
+        )
+        return
     if compare and (name is not None or rule != "every-look" or picture or exit_code):
         raise typer.BadParameter("--compare takes no modification, --looks, --open-ended, --picture or --exit-code")
     if compare:

@@ -77,16 +77,21 @@ def mixture_quantile(tail: float, freedom: float) -> float:
 
     2 / freedom is the variance of a log variance as Satterthwaite (1946) matches it.
     """
-    half = sqrt(2 / freedom) / 2
     known = -float(ndtri(tail))
 
     def excess(c: float) -> float:
-        return float(_WEIGHTS @ ndtr(-c * np.exp(-half * _NODES))) - tail
+        return mixture_tail(c, freedom) - tail
 
     upper = known
     while excess(upper) > 0:
         upper *= 1.5
     return float(brentq(excess, known / 2, upper, xtol=1e-10))
+
+
+def mixture_tail(c: float, freedom: float) -> float:
+    """P(Z > c) for the Z of mixture_quantile."""
+    half = sqrt(2 / freedom) / 2
+    return float(_WEIGHTS @ ndtr(-c * np.exp(-half * _NODES)))
 
 
 @lru_cache

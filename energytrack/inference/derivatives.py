@@ -72,7 +72,7 @@ def _inverse(matrix: Array) -> tuple[Array, float]:
         raise np.linalg.LinAlgError("the matrix is not positive definite")
     half, _ = lapack.dpotri(factor, lower=1)
     whole: Array = half + half.T  # above its diagonal there is nothing
-    whole[np.diag_indices_from(whole)] /= 2
+    np.einsum("ii->i", whole)[:] /= 2  # its diagonal, as a view
     return whole, 2 * float(np.log(np.diag(factor)).sum())
 
 

@@ -53,7 +53,11 @@ def take_look(observed: Observations, question: Question, start: Array | None, w
 
 def judged(model: Model, question: Question, watch: rules.Watch) -> State:
     """The test as a fitted model has it."""
-    shift = shift_of(model.fit)
+    return held_against(model, shift_of(model.fit), question, watch)
+
+
+def held_against(model: Model, shift: Shift, question: Question, watch: rules.Watch) -> State:
+    """A shift of a fitted model against the bound of the rule at work."""
     priced = shift.standard_error * bounds.price(shift.freedom, question.alpha)
     share = 1 / priced**2 / question.information
     known = watch(share)
@@ -76,7 +80,7 @@ def take_looks(
     watch = rules.watch(question.rule, question.alpha)
     states: list[State] = []
     for count in counts if every else reversed(counts):
-        seen = _kept(observed.head(count), question) if odd else observed.head(count)
+        seen = kept_so_far(observed.head(count), question) if odd else observed.head(count)
         if seen is None:
             continue
         states.append(take_look(seen, question, states[-1].model.fit.theta if states else None, watch))
@@ -85,7 +89,7 @@ def take_looks(
     return states
 
 
-def _kept(observed: Observations, question: Question) -> Observations | None:
+def kept_so_far(observed: Observations, question: Question) -> Observations | None:
     """What is not odd in it; None where the newest segment is, or too little is left to compare."""
     sorted_out = set_aside(observed, question.covariates)
     left = sorted_out.kept

@@ -6,7 +6,7 @@ import tempfile
 from itertools import chain
 from pathlib import Path
 
-from tests.benchmarks import answers, growth, partitions, processes
+from tests.benchmarks import answers, fleets, growth, partitions, processes
 
 
 def benchmarks() -> None:
@@ -18,7 +18,7 @@ def benchmarks() -> None:
         print(processes.review(logbook), flush=True)
         print(processes.fillup(logbook), flush=True)
         print(processes.rehearse(Path(folder) / "rehearsed"), flush=True)
-    for line in chain(answers.answers(), partitions.compare(), growth.compare()):
+    for line in chain(answers.answers(), partitions.compare(), growth.compare(), fleets.fleets()):
         print(line, flush=True)
 
 

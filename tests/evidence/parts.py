@@ -9,6 +9,7 @@ from typing import Any
 
 from tests.evidence import (
     against_oracle,
+    controls,
     coverage,
     false_alarms,
     followed,
@@ -43,6 +44,7 @@ class Part:
 def simulated(uses: Uses, most: int | None) -> list[Part]:
     """Logs drawn from a known truth, at most so many of each kind where `most` is given."""
     logs, long_logs, searched = (min(usual, most or usual) for usual in (LOGS, LONG_LOGS, SEARCHED_LOGS))
+    runs = min(controls.LOGS, most or controls.LOGS)
     drifting, commutes = coverage.drifting_uses(), undeclared.drifting_uses()
     return [
         Part(
@@ -68,6 +70,7 @@ def simulated(uses: Uses, most: int | None) -> list[Part]:
             lambda found: [power.block(found, uses, long_logs), forecast.block(found, uses, long_logs)],
             lambda found: [*power.promises(found, uses), *forecast.promises(found, uses)],
         ),
+        Part(controls.compare, controls.jobs(runs), lambda found: [controls.block(found, runs)]),
         Part(
             undeclared.reports,
             jobs(uses, searched, undeclared.FIRST_SEED),

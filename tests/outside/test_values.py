@@ -11,7 +11,7 @@ from tests.outside.values import reference, references, table
 
 
 def test_records_name_their_source_and_package() -> None:
-    assert len(references()) == 52
+    assert len(references()) == 55
     assert all(record.source and record.computed_with and record.tolerance > 0 for record in references().values())
 
 

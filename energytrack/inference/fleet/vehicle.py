@@ -1,0 +1,97 @@
+"""One vehicle's part of a fleet review, as a worker does it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from energytrack.consumption.observations import observe
+from energytrack.consumption.two_carriers import close_vehicle
+from energytrack.errors import EnergytrackError
+from energytrack.inference.fleet.brief import brief
+from energytrack.inference.fleet.deviation import deviation_of, shares_of
+from energytrack.inference.fleet.logs import Packed, VehicleLog, unpack
+from energytrack.inference.fleet.month import Month
+from energytrack.inference.fleet.results import VehicleReview
+from energytrack.inference.question import Question
+
+_FAULTS = (EnergytrackError, np.linalg.LinAlgError, ArithmeticError, ValueError)
+
+
+@dataclass(frozen=True)
+class Asked:
+    """What is asked of every vehicle. `name`: one modification only. `target`: a ratio; None: as logged, or usual."""
+
+    month: Month
+    name: str | None
+    target: float | None
+    usual_target: float
+    confidence: float
+    power: float
+
+
+@dataclass(frozen=True)
+class Chunk:
+    """Vehicles that one job reviews, so that its overhead is shared."""
+
+    logs: tuple[Packed, ...]
+    asked: Asked
+
+
+def review_chunk(chunk: Chunk) -> list[VehicleReview]:
+    """The vehicles of a chunk, in order. One that cannot be answered is a value with its message."""
+    return [review(unpack(packed), chunk.asked) for packed in chunk.logs]
+
+
+def review(log: VehicleLog, asked: Asked) -> VehicleReview:
+    """One vehicle's month against its own record, and its modifications."""
+    try:
+        return _review(log, asked)
+    except _FAULTS as fault:
+        return VehicleReview(log.vehicle.name, log.vehicle.unit, message=str(fault) or type(fault).__name__)
+
+
+def _review(log: VehicleLog, asked: Asked) -> VehicleReview:
+    segmented = close_vehicle(log.vehicle, log.entries, log.events)
+    observed = observe(segmented, log.modifications, (), log.weather)
+    if not len(observed):
+        lacking = "no two entries tell the level they left" if segmented.lacks_levels else "fewer than two known levels"
+        return VehicleReview(log.vehicle.name, segmented.unit, message=f"nothing can be measured: {lacking}")
+    share = shares_of(observed, asked.month)
+    deviation, why_none, odd = deviation_of(observed, asked.month)
+    if deviation is None and not any(asked.month.holds(entry.date) for entry in log.entries):
+        why_none = "no entries in the month"
+    return VehicleReview(
+        vehicle=log.vehicle.name,
+        unit=segmented.unit,
+        distance_km=float(observed.distance_km @ share),
+        energy=float(observed.energy @ share),
+        deviation=deviation,
+        why_none=why_none,
+        odd_segments=odd,
+        answers=tuple(
+            brief(observed, segmented, log.modifications, question) for question in _questions(log, asked)
+        ),
+    )
+
+
+def _questions(log: VehicleLog, asked: Asked) -> list[Question]:
+    """One for each modification, at the target last logged with it."""
+    targets: dict[str, float] = {}
+    reversible: dict[str, bool] = {}
+    for row in log.modifications:
+        before = targets.get(row.name, asked.usual_target)
+        targets[row.name] = before if row.target_percent is None else row.target_percent / 100
+        reversible[row.name] = reversible.get(row.name, True) and row.reversible
+    return [
+        Question(
+            name,
+            target if asked.target is None else asked.target,
+            1 - asked.confidence,
+            asked.power,
+            reversible=reversible[name],
+        )
+        for name, target in targets.items()
+        if asked.name in (None, name)
+    ]
