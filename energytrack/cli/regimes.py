@@ -31,6 +31,12 @@ def regimes(
         Path | None, typer.Option(metavar="FILE.svg|.png", help="Draw one vehicle's answer to a file as well.")
     ] = None,
     force: Annotated[bool, typer.Option("--force", help="Replace the file of an earlier figure.")] = False,
+    watch: Annotated[
+        bool, typer.Option("--watch", help="Say instead where the watch stands that goes on with every entry.")
+    ] = False,
+    false_alarm_every: Annotated[
+        float, typer.Option(metavar="KM", help="Of the watch: average distance between false alarms.")
+    ] = 50_000.0,
     json: options.Json = False,
 ) -> None:
     """Find lasting changes of consumption. Where, when, how large, and whether something logged agrees.
@@ -39,6 +45,11 @@ def regimes(
     """
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
+    if watch:
+        from energytrack.cli.watch import watch as told
+
+        told(logbook, vehicles, false_alarm_every_km=false_alarm_every, as_json=json)
+        return
     if figure is not None:
         _check_figure(figure, vehicles, force)
     answers, refusals = _found(logbook, vehicles, slopes, max_breaks, confidence)

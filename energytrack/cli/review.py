@@ -26,6 +26,9 @@ def review(
         str | None, typer.Option(metavar="YYYY-MM", help="The month; that of the newest entry if left out.")
     ] = None,
     vehicle: Annotated[str | None, typer.Option(help="The vehicle; each in turn if left out.")] = None,
+    fleet: Annotated[
+        bool, typer.Option("--fleet", help="All vehicles as one table, those to look at first, parts pooled.")
+    ] = False,
     grid_factor: Annotated[
         str | None, typer.Option(metavar="GRAMS", help="CO2 in g per kWh of the grid charged from.")
     ] = None,
@@ -45,6 +48,11 @@ def review(
     """
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
+    if fleet:
+        from energytrack.cli.fleet import fleet as reviewed_together
+
+        reviewed_together(logbook, vehicles, month=month, as_json=json)
+        return
     factors, costs = _factors(grid_factor, co2), _named_amounts(part_cost, "--part-cost")
     _check_parts(costs, logbook, vehicles)
     found, refusals = asking.answered(
