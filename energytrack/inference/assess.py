@@ -90,7 +90,7 @@ def assess(
     rows = modifications_from_frame(modifications, vehicle or None)
     logged = Logged(rows, () if events is None else events_from_frame(events, vehicle or None))
     notes = (*coincidences(logged.events, rows, name), *notes)
-    observed = from_first_level(observed, segmented, rows, name)
+    observed, first = from_first_level(observed, segmented, rows, name)
     partners = never_apart(observed, name)
     if partners:
         observed, notes = observed.leaving_out(partners), (refusal(name, partners), *notes)
@@ -106,6 +106,7 @@ def assess(
         return _answer(blank, question, logged, states) if states else _before_the_first_look(blank, kept, question)
 
     answer = with_known_change(decided(found is not None), rows)
+    answer = answer if answer.level is None else replace(answer, level=answer.level + first)
     if found is not None and found.odd:
         whole = decided(odd=False)
         typist = Vehicle(vehicle, "", unit, capacity, typed_in[0], typed_unit=typed_in[1])
@@ -136,7 +137,7 @@ def assess(
 
 def _answer(blank: Assessment, question: Question, logged: Logged, states: list[State]) -> Assessment:
     now, found = states[-1], finding(states, question.target)
-    shift, theta = now.shift, question.drift
+    shift, theta, newest = now.shift, question.drift, now.newest
     answer = replace(
         blank,
         shift_percent=100 * shift.ratio,
@@ -150,7 +151,9 @@ def _answer(blank: Assessment, question: Question, logged: Logged, states: list[
         looks=tuple(shown(state) for state in states),
         expectation=expectation_of(now.model),
         together=together(now.model, question, {row.name for row in logged.modifications}),
-        warnings=(*blank.warnings, *caveats(now.model)),
+        warnings=(*blank.warnings, *caveats(now.model, averaged_levels=now.newest is None)),
+        level=newest.level if newest is not None and newest.others else None,
+        level_since_km=newest.since_km if newest is not None and newest.others else None,
         undeclared=undeclared(now.model, question, logged),
     )
     if found is not None and found[0] == "shifted":

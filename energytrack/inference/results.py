@@ -251,6 +251,8 @@ class Assessment:
     undeclared: tuple[Break, ...] = ()  # changes of consumption beside the modifications that nothing logged explains
     withheld: bool = False  # a shift was found, but one of those lies inside the test
     agreeing: Break | None = None  # the change that a search blind to modifications finds at this one
+    level: float | None = None  # of several: the one the answer is for; None: all of them, on average
+    level_since_km: float | None = None  # odometer value at which it was first driven
 
     @property
     def is_open(self) -> bool:

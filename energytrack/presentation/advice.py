@@ -32,7 +32,7 @@ def next_steps(a: Assessment, unit: str) -> list[str]:
 
 
 def _after_shift(a: Assessment, unit: str) -> list[str]:
-    if contradicted(a) and a.response is not None and len(a.response.levels) > _WITH_ONE_LEVEL:
+    if contradicted(a) and a.level is None and a.response is not None and len(a.response.levels) > _WITH_ONE_LEVEL:
         return ["It was settled on the levels driven by then: read them one by one, under `by level`."]
     if contradicted(a):
         off = ["Take it off for a while: a true shift goes away with it and comes back with it."]

@@ -26,7 +26,7 @@ def sentence(a: Assessment, unit: str = "km") -> str:
         "closed-unclear": _unclear,
     }[a.verdict]
     said = withheld_sentence(a, named(a), so_far(a), unit) if a.withheld else say(a, unit)
-    more = (_on_average(a), agreeing_sentence(a, unit), known_sentence(a), follow_up(a))
+    more = (_at_level(a, unit), agreeing_sentence(a, unit), known_sentence(a), follow_up(a))
     return " ".join(filter(None, (said, *more)))
 
 
@@ -38,8 +38,8 @@ def named(a: Assessment) -> str:
     return f"{', '.join(others)} and {last} together"
 
 
-def _on_average(a: Assessment) -> str:
-    """Of a part driven at several levels: what the answer is the average of, and which of them uses least."""
+def _at_level(a: Assessment, unit: str) -> str:
+    """Of a part driven at several levels: which the answer is for, or the average of, and which of them uses least."""
     if a.response is None:
         return ""
     reference = a.response.reference_level
@@ -47,14 +47,16 @@ def _on_average(a: Assessment) -> str:
     driven = [effect for effect in a.response.levels if effect.level != reference]
     if len(driven) < 2:
         return f"That is level {driven[0].level:g}{against}." if driven and against else ""
-    *lower, highest = (f"{effect.level:g}" for effect in driven)
     best = min(driven, key=lambda effect: effect.shift_percent)
-    span = figures.bounded(best.interval_percent)
-    within = "" if span is None else f", look-proof range {figures.percent_range(span)}"
-    return (
-        f"That is the average over the levels driven ({', '.join(lower)} and {highest}){against}; of these, by the "
-        f"fitted curve, level {best.level:g} uses least: {figures.percent(best.shift_percent, signed=True)}{within}."
-    )
+    shift = figures.percent(best.shift_percent, signed=True)  # its range would not allow for having picked it
+    least = f"by the fitted curve, level {best.level:g} uses least: {shift}."
+    *lower, highest = (f"{effect.level:g}" for effect in driven)
+    levels = f"{', '.join(lower)} and {highest}"
+    if a.level is None or a.level_since_km is None:
+        return f"That is the average over the levels driven ({levels}){against}; of these, {least}"
+    since = figures.driven(a.level_since_km, unit)
+    which = f"That is at level {a.level:g}, driven since {since}{against}"
+    return f"{which}; of all driven ({levels}; see by level), {least}"
 
 
 def contradicted(a: Assessment) -> bool:
