@@ -87,8 +87,15 @@ def so_far(a: Assessment) -> str:
     shift = figures.percent(a.shift_percent, a.standard_error_percent, signed=True)
     span = figures.bounded(a.interval_percent)
     if span is None:
-        return f"{shift}, look-proof range still wide open"
-    return f"{shift}, look-proof range {figures.percent_range(span, a.standard_error_percent)}"
+        return f"{shift}, {_range_name(a)} still wide open"
+    return f"{shift}, {_range_name(a)} {figures.percent_range(span, a.standard_error_percent)}"
+
+
+def _range_name(a: Assessment) -> str:
+    """Look-proof is the range up to the look that closed the test; what is driven later is follow-up."""
+    closing = bool(a.looks) and settling_look(a) == a.looks[-1]
+    was_open = all(look.information_fraction < 1 for look in a.looks[:-1])
+    return "look-proof range" if a.is_open or (closing and was_open) else "range"
 
 
 def remedy(r: Remedy, unit: str) -> str:
@@ -124,7 +131,7 @@ def _shifted(a: Assessment, unit: str) -> str:
     within = ""
     if span is not None:
         low, high = sorted(abs(end) for end in span)
-        within = f" (look-proof range {figures.percent_range((low, high), error, signed=False)})"
+        within = f" ({_range_name(a)} {figures.percent_range((low, high), error, signed=False)})"
     settled = f", settled{at}" if at else ""
     return f"Yes: {name} {verb} consumption by {figures.percent(abs(shift), error)}{within}{settled}."
 
