@@ -113,7 +113,7 @@ def remedy(r: Remedy, unit: str) -> str:
     if r.distance_km < 1:
         asked = join(f"energytrack enough --target {r.target_percent:g}")
         return f"{what}{goal}, for which the distance is driven already ({asked}); a target chosen late counts for less"
-    return f"{what}, about {figures.distance(r.distance_km, unit)} more{goal}"
+    return f"{what}, about {figures.foretold(r.distance_km, None, unit)} more{goal}"
 
 
 def _shifted(a: Assessment, unit: str) -> str:
@@ -174,7 +174,8 @@ def _not_yet(a: Assessment, unit: str) -> str:
     elif a.distance_to_go_km is None:
         go = f"how much further with {named(a)} cannot be foreseen yet"
     else:
-        go = f"about {figures.distance(a.distance_to_go_km, unit)} more with {named(a)}"
+        far = figures.foretold(a.distance_to_go_km, a.distance_to_go_interval_km, unit)
+        go = f"about {far} more with {named(a)}"
         go += "" if a.days_to_go is None else f", about {figures.days(a.days_to_go)} of your driving"
     now = "Nothing measured with it so far" if a.shift_percent is None else f"So far {so_far(a)}"
     return f"Not yet: {go}, at the target of {figures.target(a.target_percent)}. {now}."

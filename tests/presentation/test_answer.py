@@ -39,7 +39,7 @@ def test_a_rise_is_said_as_raised() -> None:
 
 def test_not_yet_says_how_far_and_how_long() -> None:
     assert said(NOT_YET) == (
-        "Not yet: about 1,860 km more with side skirts, about 12 days of your driving, at the target of 3 %. "
+        "Not yet: about 1,900 km more with side skirts, about 12 days of your driving, at the target of 3 %. "
         "So far -2.1 %, look-proof range -4.9 to +0.7 %."
     )
 
@@ -57,8 +57,16 @@ def test_a_range_is_look_proof_up_to_the_look_that_closed_the_test() -> None:
 
 def test_miles_for_who_counts_miles() -> None:
     # 1,861 km = 1,156.4 mi, 51,230 km = 31,832.8 mi at 1.609344 km a mile (NIST SP 811)
-    assert "about 1,160 mi more" in said(NOT_YET, "mi")
+    assert "about 1,200 mi more" in said(NOT_YET, "mi")
     assert "at 31,833 mi" in said(SHIFTED, "mi")
+
+
+def test_a_distance_ahead_has_a_third_digit_only_where_its_range_is_narrow() -> None:
+    """1,861 km: within 30 % either way three digits, else two."""
+    ranges = {(1500.0, 2500.0): "1,860", (1120.0, 3390.0): "1,900", (1500.0, None): "1,900"}
+    for interval, shown in ranges.items():
+        assert f"about {shown} km more" in said(replace(NOT_YET, distance_to_go_interval_km=interval))
+    assert "about 1,900 km more" in said(replace(NOT_YET, distance_to_go_interval_km=None))
 
 
 def test_two_decimals_only_where_the_error_allows() -> None:
@@ -128,10 +136,10 @@ def test_a_shift_ruled_out_whose_range_has_grown_past_the_target() -> None:
 
 
 def test_out_of_reach_says_what_would_do_and_keeps_the_target_where_it_can() -> None:
-    assert "Within reach: take it off and on every 2 fill-ups, about 5,420 km more for 3 %." in said(OUT_OF_REACH)
+    assert "Within reach: take it off and on every 2 fill-ups, about 5,400 km more for 3 %." in said(OUT_OF_REACH)
     larger = (Remedy("larger-target", "5 %", 5.0, 3140.0),)
     only_larger = replace(OUT_OF_REACH, remedies=larger)
-    assert "Within reach: be content with a target of 5 %, about 3,140 km more." in said(only_larger)
+    assert "Within reach: be content with a target of 5 %, about 3,100 km more." in said(only_larger)
     assert "Within reach" not in said(replace(OUT_OF_REACH, remedies=()))
 
 
