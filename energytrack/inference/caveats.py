@@ -18,14 +18,14 @@ _WORTH_SAYING = 1.0  # percent of consumption moved by it
 _NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
 
 
-def caveats(model: Model, *, averaged_levels: bool) -> tuple[str, ...]:
-    """Warnings about an answer, most weighty first. averaged_levels: it is for all levels, not for the newest."""
+def caveats(model: Model, *, on: bool, averaged: bool) -> tuple[str, ...]:
+    """Warnings about an answer, most weighty first. on: fitted now; averaged: for all levels, not for the newest."""
     return (
         *_took_turns(model),
-        *_not_fitted_now(model),
+        *_not_fitted_now(model, on),
         *_charging_changed(model),
         *_little_overlap(model),
-        *_several_levels(model, averaged_levels),
+        *_several_levels(model, averaged),
         *_filled_in(model),
         *_no_weather(model),
     )
@@ -48,8 +48,8 @@ def _took_turns(model: Model) -> list[str]:
     ]
 
 
-def _not_fitted_now(model: Model) -> list[str]:
-    if model.modification is None or _shares(model, model.modification)[-1] != 0:
+def _not_fitted_now(model: Model, on: bool) -> list[str]:
+    if on or model.modification is None:
         return []
     return [f"{model.modification} is not fitted now: any distance still to go counts from when it is fitted again"]
 
