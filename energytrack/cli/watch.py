@@ -110,7 +110,7 @@ def lines(vehicle: Vehicle, one: Watch | None) -> list[str]:
     parts.append(f"  false alarms: about one every {every}, if the fit holds")
     for shift, far in one.delays:
         told = "hidden by drift" if far is None else (
-            f"told after about {distance_text(far, vehicle)}, {max(1, round(far / one.recent_km))} segments, on average"
+            f"told after about {distance_text(_two_digits(far), vehicle)}, {max(1, round(far / one.recent_km))} segments, on average"
         )  # fmt: skip
         parts.append(f"  +{shift:g} %: {told}")
     return parts
@@ -121,3 +121,8 @@ def _keep(logbook: Logbook, vehicle: Vehicle, one: Watch | None) -> None:
 
     if isinstance(logbook, Store) and logbook.writable:
         logbook.keep_watch(vehicle.name, None if one is None else as_json(one))
+
+
+def _two_digits(km: float) -> float:
+    """An average delay deserves no more."""
+    return float(f"{km:.2g}")

@@ -1,7 +1,8 @@
 """The road ahead: the log continued by the vehicle's own habit, and the information that would bring.
 
-Future segments are drawn from the recent ones (distance, days, speed); their temperature comes from the vehicle's
-yearly pattern at their dates. No consumption is needed: information depends on the design and the noise alone.
+Future segments are drawn from the recent ones (distance, days, speed), those since the part was fitted once there are
+enough; their temperature comes from the vehicle's yearly pattern at their dates. No consumption is needed:
+information depends on the design and the noise alone.
 """
 
 from __future__ import annotations
@@ -11,6 +12,7 @@ from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
+from numpy.typing import NDArray
 
 from energytrack.consumption.conditions import Conditions
 from energytrack.inference.graded import level_terms
@@ -19,6 +21,7 @@ from energytrack.inference.model import Model, stack
 from energytrack.inference.noise import Array, Scatter, Structure, structure
 
 RECENT = 40  # segments that make up the habit
+ENOUGH_SINCE = 8  # segments since the last switch, from which on they alone make it up
 HORIZON_DAYS, HORIZON_KM = 3 * 365.25, 100_000.0  # whichever comes first: nobody plans a test beyond
 _MOST_SEGMENTS = 2_000
 _STEP = 0.005  # in log standard deviation, for the freedom's derivative
@@ -224,7 +227,7 @@ class _Habit:
 def _habit(model: Model, seed: int, wait_days: float) -> _Habit:
     rng = np.random.default_rng(seed)
     observed = model.observed
-    recent = np.arange(max(0, len(observed.distance_km) - RECENT), len(observed.distance_km))
+    recent = _recent(model)
     days_of = np.diff(observed.end_day, prepend=observed.end_day[0] - _mean_days(observed.end_day))[recent]
     mean_km = float(observed.distance_km[recent].mean())
     mean_days = max(float(days_of.mean()), _SHORTEST_DAYS)
@@ -241,6 +244,17 @@ def _habit(model: Model, seed: int, wait_days: float) -> _Habit:
     ahead = Conditions(day, values, still, {}, {})
     linked = bool(wait_days <= days_of.max())
     return _Habit(observed.distance_km[drawn], ends, start, observed.end_weight[drawn], ahead, linked)
+
+
+def _recent(model: Model) -> NDArray[np.intp]:
+    """Places of the segments that make up the habit: a part is often fitted when the driving changes too."""
+    count = len(model.observed)
+    since = 0
+    if model.modification is not None:
+        fitted = model.observed.fitted[:, model.observed.names.index(model.modification)]
+        since = int(np.flatnonzero(np.diff(fitted, prepend=fitted[0])).max(initial=0))
+    first = max(0, count - RECENT)
+    return np.arange(max(first, since) if count - since >= ENOUGH_SINCE else first, count)
 
 
 def _mean_days(end_day: Array) -> float:

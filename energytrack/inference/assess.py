@@ -31,7 +31,7 @@ from energytrack.inference.results import Assessment, Rule, Verdict, WithAll
 from energytrack.inference.several import never_apart, refusal, together
 from energytrack.inference.suspects import suspects
 from energytrack.inference.undeclared import Logged, agreeing, inside, undeclared, with_events
-from energytrack.logbook.records import Vehicle
+from energytrack.logbook.records import Modification, Vehicle
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -90,7 +90,8 @@ def assess(
     rows = modifications_from_frame(modifications, vehicle or None)
     logged = Logged(rows, () if events is None else events_from_frame(events, vehicle or None))
     notes = (*coincidences(logged.events, rows, name), *notes)
-    observed = from_first_level(observed, segmented, rows, name)
+    observed, first = from_first_level(observed, segmented, rows, name)
+    on = _fitted_now(rows, name, first)
     partners = never_apart(observed, name)
     if partners:
         observed, notes = observed.leaving_out(partners), (refusal(name, partners), *notes)
@@ -101,11 +102,12 @@ def assess(
     def decided(odd: bool) -> Assessment:
         kept = found.kept if odd and found is not None else observed
         blank = _blank(vehicle, kept, question, notes)
-        blank = replace(blank, never_apart=partners, levels_known=not segmented.lacks_levels)
+        blank = replace(blank, never_apart=partners, levels_known=not segmented.lacks_levels, fitted_now=on)
         states = take_looks(observed, question, every=every_look, taken=looks_taken, odd=odd)
         return _answer(blank, question, logged, states) if states else _before_the_first_look(blank, kept, question)
 
     answer = with_known_change(decided(found is not None), rows)
+    answer = answer if answer.level is None else replace(answer, level=answer.level + first)
     if found is not None and found.odd:
         whole = decided(odd=False)
         typist = Vehicle(vehicle, "", unit, capacity, typed_in[0], typed_unit=typed_in[1])
@@ -136,7 +138,7 @@ def assess(
 
 def _answer(blank: Assessment, question: Question, logged: Logged, states: list[State]) -> Assessment:
     now, found = states[-1], finding(states, question.target)
-    shift, theta = now.shift, question.drift
+    shift, theta, newest = now.shift, question.drift, now.newest
     answer = replace(
         blank,
         shift_percent=100 * shift.ratio,
@@ -150,7 +152,9 @@ def _answer(blank: Assessment, question: Question, logged: Logged, states: list[
         looks=tuple(shown(state) for state in states),
         expectation=expectation_of(now.model),
         together=together(now.model, question, {row.name for row in logged.modifications}),
-        warnings=(*blank.warnings, *caveats(now.model)),
+        warnings=(*blank.warnings, *caveats(now.model, on=blank.fitted_now, averaged=now.newest is None)),
+        level=newest.level if newest is not None and newest.others else None,
+        level_since_km=newest.since_km if newest is not None and newest.others else None,
         undeclared=undeclared(now.model, question, logged),
     )
     if found is not None and found[0] == "shifted":
@@ -254,6 +258,12 @@ def _blank(vehicle: str, observed: Observations, question: Question, notes: tupl
 def _driven_with(observed: Observations, modification: str) -> float:
     """Distance driven with the modification fitted, at whatever level (km)."""
     return float(observed.distance_km @ observed.fitted[:, observed.names.index(modification)])
+
+
+def _fitted_now(rows: Sequence[Modification], name: str, first: float) -> bool:
+    """On at the end of the log, at another level than that of the baseline."""
+    still_on = [row for row in rows if row.name == name and row.removed_date is None and row.removed_km is None]
+    return any((1.0 if row.level is None else row.level) != first for row in still_on)
 
 
 def _reversible(modifications: pd.DataFrame, name: str) -> bool:

@@ -18,13 +18,17 @@ _WORTH_SAYING = 1.0  # percent of consumption moved by it
 _NAMES = {TEMPERATURE: ("temperatures", "°C"), SPEED: ("mean speeds", "km/h")}
 
 
-def caveats(model: Model) -> tuple[str, ...]:
-    """Warnings about an answer, most weighty first."""
-    found = (
-        *(_took_turns, _not_fitted_now, _charging_changed),
-        *(_little_overlap, _several_levels, _filled_in, _no_weather),
+def caveats(model: Model, *, on: bool, averaged: bool) -> tuple[str, ...]:
+    """Warnings about an answer, most weighty first. on: fitted now; averaged: for all levels, not for the newest."""
+    return (
+        *_took_turns(model),
+        *_not_fitted_now(model, on),
+        *_charging_changed(model),
+        *_little_overlap(model),
+        *_several_levels(model, averaged),
+        *_filled_in(model),
+        *_no_weather(model),
     )
-    return tuple(caveat for find in found for caveat in find(model))
 
 
 def _shares(model: Model, name: str) -> Array:
@@ -44,8 +48,8 @@ def _took_turns(model: Model) -> list[str]:
     ]
 
 
-def _not_fitted_now(model: Model) -> list[str]:
-    if model.modification is None or _shares(model, model.modification)[-1] != 0:
+def _not_fitted_now(model: Model, on: bool) -> list[str]:
+    if on or model.modification is None:
         return []
     return [f"{model.modification} is not fitted now: any distance still to go counts from when it is fitted again"]
 
@@ -109,9 +113,11 @@ def _span(values: Array) -> str:
     return f"{low}" if low == high else f"{low} to {high}"
 
 
-def _several_levels(model: Model) -> list[str]:
+def _several_levels(model: Model, averaged: bool) -> list[str]:
     if model.modification is None or level_terms(model.modification)[0] not in model.others:
         return []
+    if not averaged:
+        return ["the answer is for the newest level alone, with looks and an error rate of its own"]
     return [
         "the shift is the average over the levels driven so far, by the distance at each; an earlier look saw only the "
         "levels driven by then"

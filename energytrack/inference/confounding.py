@@ -15,7 +15,7 @@ import numpy as np
 from energytrack.consumption.conditions import SEASON, Conditions
 from energytrack.consumption.terms import ELECTRIC, condition_of
 from energytrack.inference.ahead import Road, always_fitted, reach, road
-from energytrack.inference.graded import together_named
+from energytrack.inference.graded import level_terms, together_named
 from energytrack.inference.model import Model, stack
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
@@ -88,7 +88,10 @@ def _groups(model: Model) -> dict[str, list[int]]:
     first = model.term_columns.start
     for offset, name in enumerate(model.terms.names):
         groups.setdefault(condition_of(name), []).append(first + offset)
+    own = () if model.modification is None else level_terms(model.modification)
     for offset, name in enumerate(model.others):
+        if name in own:  # what was driven at another level is no confounder of this one
+            continue
         groups.setdefault(together_named(name), []).append(model.term_columns.stop + offset)
     return groups
 

@@ -1,14 +1,16 @@
-"""Graded parts in a regression: the shift of one is its average over the levels driven so far.
+"""Graded parts in a regression: the shift of one is that of its newest level, or its average over mixed levels.
 
 A part at several levels enters as the share of the distance it was fitted, at whatever level. Beside it stand how far
-the level was from its mean so far and, with three levels or more, the square of that less its own mean. Both average
-zero over the distance driven with the part, so whatever the response to the level is, the share's coefficient is the
-average effect, and a level of none need not be a level of 0. In a segment of two levels their mean is squared.
+the level was from a centre and, with three levels or more, the square of that. Where each level was driven in one
+block, the centre is the newest level: both are zero there, so the share's coefficient is the effect at that level.
+Where levels were mixed, the centre is their mean by distance, and the square is taken less its own mean: both average
+zero over the distance driven with the part, so the share's coefficient is the average effect. A level of none need not
+be a level of 0. In a segment of two levels their mean is squared.
 """
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -18,6 +20,35 @@ from energytrack.inference.noise import Array
 _SQUARED = ", squared"
 _FOR_A_BEND = 3  # distinct levels
 _DIGITS = 9
+_TO_COUNT = 2  # segments from which on a level counts: one alone may be the mean of two levels that met in mid-tank
+
+
+@dataclass(frozen=True)
+class Newest:
+    """The level a part was set to last."""
+
+    level: float
+    since_km: float  # position on the log's own scale
+    others: bool  # were driven before it
+
+
+def newest_level(observed: Observations, name: str) -> Newest | None:
+    """What is asked of a part: its effect at the newest level. None: its average over the levels, as they were mixed.
+
+    Levels are mixed where one came back after another, whatever was driven without the part in between.
+    """
+    column = observed.names.index(name)
+    driven = np.flatnonzero(observed.fitted[:, column] > 0)
+    levels = np.round(_level(observed, column)[driven], _DIGITS)
+    different = np.unique(levels)
+    if different.size > 1:
+        counting = [level for level in different if np.count_nonzero(levels == level) >= _TO_COUNT]
+        kept = np.isin(levels, counting)
+        driven, levels = driven[kept], levels[kept]
+    if not levels.size or np.count_nonzero(np.diff(levels)) + 1 > np.unique(levels).size:
+        return None
+    first = driven[np.argmax(levels == levels[-1])]
+    return Newest(float(levels[-1]), float(observed.start_km[first]), different.size > 1)
 
 
 def averaged(observed: Observations) -> Observations:
@@ -56,16 +87,19 @@ def _levels(observed: Observations, column: int) -> Array:
 
 
 def _columns(observed: Observations, column: int) -> list[Array]:
-    """Deviation (n,) of the level from its mean by distance, and with enough levels its square; times the share."""
-    fitted, (mean, spread) = observed.fitted[:, column], centre(observed, observed.names[column])
-    apart = _level(observed, column) - mean
+    """Deviation (n,) of the level from its centre, and with enough levels its square; times the share."""
+    fitted, (middle, spread) = observed.fitted[:, column], centre(observed, observed.names[column])
+    apart = _level(observed, column) - middle
     if _levels(observed, column).size < _FOR_A_BEND:
         return [fitted * apart]
     return [fitted * apart, fitted * (apart**2 - spread)]
 
 
 def centre(observed: Observations, name: str) -> tuple[float, float]:
-    """Mean of the level by distance driven with the part, and the mean square of the deviation from it."""
+    """The newest level and 0; of mixed levels their mean by distance and the mean square of the deviation from it."""
+    newest = newest_level(observed, name)
+    if newest is not None:
+        return newest.level, 0.0
     column = observed.names.index(name)
     driven, level = observed.distance_km * observed.fitted[:, column], _level(observed, column)
     mean = float(driven @ level / driven.sum())

@@ -4,14 +4,14 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside
 from energytrack.inference import bounds, rules
-from energytrack.inference.graded import averaged
+from energytrack.inference.graded import Newest, averaged, newest_level
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.noise import Array
 from energytrack.inference.question import Question
@@ -35,6 +35,7 @@ class State:
     has_end: bool  # complete information closes the test
     bound: float | None
     interval: tuple[float, float] | None
+    newest: Newest | None = None  # level asked about; None: the average over mixed levels
 
     @property
     def crossed(self) -> bool:
@@ -48,7 +49,7 @@ class State:
 def take_look(observed: Observations, question: Question, start: Array | None, watch: rules.Watch) -> State:
     """Fit what is known so far and hold the shift against the bound of the rule at work."""
     model = fit_model(averaged(observed), question.modification, covariates=question.covariates, start=start)
-    return judged(model, question, watch)
+    return replace(judged(model, question, watch), newest=newest_level(observed, question.modification))
 
 
 def judged(model: Model, question: Question, watch: rules.Watch) -> State:
@@ -73,6 +74,7 @@ def take_looks(
     taken: how far the log had come (km) at the looks taken before, where looks are counted.
     odd: what stands out is set aside, at each look by the segments up to it. A look is only taken where its newest
     segment is kept: one that stands out is held back until the next one agrees with it.
+    A new level of a graded part begins a new question, with looks of its own: only its looks are returned.
     """
     counts = look_points(observed, question.modification)
     if question.rule == "counted":
@@ -83,10 +85,17 @@ def take_looks(
         seen = kept_so_far(observed.head(count), question) if odd else observed.head(count)
         if seen is None:
             continue
-        states.append(take_look(seen, question, states[-1].model.fit.theta if states else None, watch))
+        start = states[-1].model.fit.theta if states else None
+        if states and _level(newest_level(seen, question.modification)) != _level(states[-1].newest):
+            states, watch = [], rules.watch(question.rule, question.alpha)
+        states.append(take_look(seen, question, start, watch))
         if not every:
             break
     return states
+
+
+def _level(newest: Newest | None) -> float | None:
+    return None if newest is None else newest.level
 
 
 def kept_so_far(observed: Observations, question: Question) -> Observations | None:
@@ -109,6 +118,13 @@ def look_points(observed: Observations, modification: str) -> list[int]:
         step *= _SPARSER
         position += step
     return points if points[-1] == counts[-1] else [*points, counts[-1]]
+
+
+def looks_now(observed: Observations, modification: str) -> int:
+    """How many of those looks are at the question asked now: all but those at earlier levels of a graded part."""
+    now = _level(newest_level(observed, modification))
+    asked = [_level(newest_level(observed.head(count), modification)) for count in look_points(observed, modification)]
+    return next((k for k, level in enumerate(reversed(asked)) if level != now), len(asked))
 
 
 def _ready(observed: Observations, modification: str) -> list[int]:

@@ -21,7 +21,7 @@ from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference import placebo
 from energytrack.inference.describe import noise_of
 from energytrack.inference.jobs import Progress, run_all
-from energytrack.inference.looks import FEWEST_BASELINE, look_points
+from energytrack.inference.looks import FEWEST_BASELINE, look_points, looks_now
 from energytrack.inference.question import Question
 from energytrack.inference.rates import rate, settled
 from energytrack.inference.rehearsal_results import Placebo, Rehearsal, Scenario
@@ -83,7 +83,7 @@ def rehearse(
     meant = _meant(observed, name)
     if meant is not None and modifications is not None:
         rows = modifications_from_frame(modifications, vehicle or None)
-        observed = from_first_level(observed, segmented, rows, meant)
+        observed, _ = from_first_level(observed, segmented, rows, meant)
     usual = set_aside(observed, question.covariates).kept  # odd entries are no part of the noise to be drawn
     stage, named = _stage(usual, question, meant)
     pretended = placebo.places(observed, question)
@@ -104,7 +104,7 @@ def rehearse(
         segments_baseline=int((stage.fitted == 0).sum()),
         segments_modified=int((stage.fitted > 0).sum()),
         distance_modified_km=float(stage.driven[-1]),
-        looks=len(look_points(stage.observed, stage.question.modification)),
+        looks=looks_now(stage.observed, stage.question.modification),
         noise=noise_of(stage.model),
         no_shift=_scenario([first for first, _ in outcomes], 0.0),
         target_shift=_scenario([second for _, second in outcomes], -100 * question.target),

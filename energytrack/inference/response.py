@@ -94,17 +94,20 @@ def respond(
 
 def from_first_level(
     observed: Observations, segmented: SegmentedLog, rows: Sequence[Modification], name: str
-) -> Observations:
-    """Where something like a tyre pressure always has a level, the first one driven takes the place of a baseline."""
+) -> tuple[Observations, float]:
+    """Where something like a tyre pressure always has a level, the first one driven takes the place of a baseline.
+
+    With the level that levels are then counted from: 0 where not fitted is the baseline.
+    """
     column = observed.names.index(name)
     levels = observed.shares[:, column]
     if not len(levels) or observed.fitted[:, column].min() < 1 or np.ptp(levels) == 0:
-        return observed
+        return observed, 0.0
     own = [replace(row, level=1.0 if row.level is None else row.level) for row in rows if row.name == name]
     first = min((row.level or 0.0 for row in own), key=lambda level: abs(level - levels[0]))
     counted = [replace(row, level=(row.level or 0.0) - first) for row in own]
     column_of, fitted = (np.array(measure(segmented, counted)) for measure in (shares, fitted_shares))
-    return observed.leaving_out([name]).adding(name, column_of, fitted)
+    return observed.leaving_out([name]).adding(name, column_of, fitted), first
 
 
 def _counted(observed: Observations, name: str, column: Array) -> Observations:

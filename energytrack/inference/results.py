@@ -251,6 +251,9 @@ class Assessment:
     undeclared: tuple[Break, ...] = ()  # changes of consumption beside the modifications that nothing logged explains
     withheld: bool = False  # a shift was found, but one of those lies inside the test
     agreeing: Break | None = None  # the change that a search blind to modifications finds at this one
+    level: float | None = None  # of several: the one the answer is for; None: all of them, on average
+    level_since_km: float | None = None  # odometer value at which it was first driven
+    fitted_now: bool = True  # and not at the level that others are counted from
 
     @property
     def is_open(self) -> bool:

@@ -32,14 +32,14 @@ def next_steps(a: Assessment, unit: str) -> list[str]:
 
 
 def _after_shift(a: Assessment, unit: str) -> list[str]:
-    if contradicted(a) and a.response is not None and len(a.response.levels) > _WITH_ONE_LEVEL:
+    if contradicted(a) and a.level is None and a.response is not None and len(a.response.levels) > _WITH_ONE_LEVEL:
         return ["It was settled on the levels driven by then: read them one by one, under `by level`."]
     if contradicted(a):
         off = ["Take it off for a while: a true shift goes away with it and comes back with it."]
-        return ["Look for what else changed since: tyres, load, route, brakes.", *(off if a.reversible else [])]
+        return ["Look for what else changed since: tyres, load, route, brakes.", *(off if a.reversible and a.fitted_now else [])]
     steps = ["Keep logging: every further entry sharpens the figure."]
     if (a.shift_percent or 0.0) > 0 and a.known_change is None:
-        or_off = ", or take it off and watch consumption fall back" if a.reversible else ""
+        or_off = ", or take it off and watch consumption fall back" if a.reversible and a.fitted_now else ""
         steps.append(f"It costs energy: check the fitting{or_off}.")
     return steps
 
@@ -57,7 +57,8 @@ def _sharper_question(a: Assessment, unit: str) -> list[str]:
 
 
 def _drive_on(a: Assessment, unit: str) -> list[str]:
-    steps = ["Drive on as usual with it fitted, log every entry, and ask again whenever you like."]
+    first = "Drive on as usual with it fitted" if a.fitted_now else "Fit it again and log that, drive on as usual"
+    steps = [f"{first}, log every entry, and ask again whenever you like."]
     alternate = next((r for r in a.remedies if r.what == "alternate" and r.distance_km is not None), None)
     if alternate is not None and (a.distance_to_go_km is None or (alternate.distance_km or 0) < a.distance_to_go_km):
         steps.append(f"Shorter: {remedy(alternate, unit)}.")

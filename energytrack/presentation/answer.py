@@ -26,7 +26,7 @@ def sentence(a: Assessment, unit: str = "km") -> str:
         "closed-unclear": _unclear,
     }[a.verdict]
     said = withheld_sentence(a, named(a), so_far(a), unit) if a.withheld else say(a, unit)
-    more = (_on_average(a), agreeing_sentence(a, unit), known_sentence(a), follow_up(a))
+    more = (_at_level(a, unit), agreeing_sentence(a, unit), known_sentence(a), follow_up(a))
     return " ".join(filter(None, (said, *more)))
 
 
@@ -38,8 +38,8 @@ def named(a: Assessment) -> str:
     return f"{', '.join(others)} and {last} together"
 
 
-def _on_average(a: Assessment) -> str:
-    """Of a part driven at several levels: what the answer is the average of, and which of them uses least."""
+def _at_level(a: Assessment, unit: str) -> str:
+    """Of a part driven at several levels: which the answer is for, or the average of, and which of them uses least."""
     if a.response is None:
         return ""
     reference = a.response.reference_level
@@ -47,14 +47,16 @@ def _on_average(a: Assessment) -> str:
     driven = [effect for effect in a.response.levels if effect.level != reference]
     if len(driven) < 2:
         return f"That is level {driven[0].level:g}{against}." if driven and against else ""
-    *lower, highest = (f"{effect.level:g}" for effect in driven)
     best = min(driven, key=lambda effect: effect.shift_percent)
-    span = figures.bounded(best.interval_percent)
-    within = "" if span is None else f", look-proof range {figures.percent_range(span)}"
-    return (
-        f"That is the average over the levels driven ({', '.join(lower)} and {highest}){against}; of these, by the "
-        f"fitted curve, level {best.level:g} uses least: {figures.percent(best.shift_percent, signed=True)}{within}."
-    )
+    shift = figures.percent(best.shift_percent, signed=True)  # its range would not allow for having picked it
+    least = f"by the fitted curve, level {best.level:g} uses least: {shift}."
+    *lower, highest = (f"{effect.level:g}" for effect in driven)
+    levels = f"{', '.join(lower)} and {highest}"
+    if a.level is None or a.level_since_km is None:
+        return f"That is the average over the levels driven ({levels}){against}; of these, {least}"
+    since = figures.driven(a.level_since_km, unit)
+    which = f"That is at level {a.level:g}, driven since {since}{against}"
+    return f"{which}; of all driven ({levels}; see by level), {least}"
 
 
 def contradicted(a: Assessment) -> bool:
@@ -85,8 +87,15 @@ def so_far(a: Assessment) -> str:
     shift = figures.percent(a.shift_percent, a.standard_error_percent, signed=True)
     span = figures.bounded(a.interval_percent)
     if span is None:
-        return f"{shift}, look-proof range still wide open"
-    return f"{shift}, look-proof range {figures.percent_range(span, a.standard_error_percent)}"
+        return f"{shift}, {_range_name(a)} still wide open"
+    return f"{shift}, {_range_name(a)} {figures.percent_range(span, a.standard_error_percent)}"
+
+
+def _range_name(a: Assessment) -> str:
+    """Look-proof is the range up to the look that closed the test; what is driven later is follow-up."""
+    closing = bool(a.looks) and settling_look(a) == a.looks[-1]
+    was_open = all(look.information_fraction < 1 for look in a.looks[:-1])
+    return "look-proof range" if a.is_open or (closing and was_open) else "range"
 
 
 def remedy(r: Remedy, unit: str) -> str:
@@ -104,7 +113,7 @@ def remedy(r: Remedy, unit: str) -> str:
     if r.distance_km < 1:
         asked = join(f"energytrack enough --target {r.target_percent:g}")
         return f"{what}{goal}, for which the distance is driven already ({asked}); a target chosen late counts for less"
-    return f"{what}, about {figures.distance(r.distance_km, unit)} more{goal}"
+    return f"{what}, about {figures.foretold(r.distance_km, None, unit)} more{goal}"
 
 
 def _shifted(a: Assessment, unit: str) -> str:
@@ -122,7 +131,7 @@ def _shifted(a: Assessment, unit: str) -> str:
     within = ""
     if span is not None:
         low, high = sorted(abs(end) for end in span)
-        within = f" (look-proof range {figures.percent_range((low, high), error, signed=False)})"
+        within = f" ({_range_name(a)} {figures.percent_range((low, high), error, signed=False)})"
     settled = f", settled{at}" if at else ""
     return f"Yes: {name} {verb} consumption by {figures.percent(abs(shift), error)}{within}{settled}."
 
@@ -165,7 +174,8 @@ def _not_yet(a: Assessment, unit: str) -> str:
     elif a.distance_to_go_km is None:
         go = f"how much further with {named(a)} cannot be foreseen yet"
     else:
-        go = f"about {figures.distance(a.distance_to_go_km, unit)} more with {named(a)}"
+        far = figures.foretold(a.distance_to_go_km, a.distance_to_go_interval_km, unit)
+        go = f"about {far} more with {named(a)}"
         go += "" if a.days_to_go is None else f", about {figures.days(a.days_to_go)} of your driving"
     now = "Nothing measured with it so far" if a.shift_percent is None else f"So far {so_far(a)}"
     return f"Not yet: {go}, at the target of {figures.target(a.target_percent)}. {now}."

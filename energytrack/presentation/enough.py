@@ -76,12 +76,13 @@ def _distances(a: Assessment, unit: str) -> list[Row]:
     ]
     if a.distance_needed_km is not None:
         label = "needed" if a.is_open else "answered after"
-        rows.append((label, f"{figures.distance(a.distance_needed_km, unit)} with it fitted"))
+        needed = _foretold(a, a.distance_needed_km, unit) if a.is_open else figures.distance(a.distance_needed_km, unit)
+        rows.append((label, f"{needed} with it fitted"))
     if a.distance_to_go_km and a.verdict == "not-yet":
         rows.append(("still to go", _to_go(a, unit)))
     ahead = a.distance_expected_km is not None and a.distance_expected_km > _AHEAD * a.distance_modified_km
     if ahead and a.distance_expected_km is not None and a.verdict == "not-yet":
-        sooner, target = figures.distance(a.distance_expected_km, unit), figures.target(a.target_percent)
+        sooner, target = _foretold(a, a.distance_expected_km, unit), figures.target(a.target_percent)
         rows.append(("sooner, perhaps", f"{sooner} with it fitted, if the shift is truly {target}"))
     return rows
 
@@ -92,10 +93,18 @@ def _covered(km: float, segments: int, unit: str) -> str:
 
 def _to_go(a: Assessment, unit: str) -> str:
     assert a.distance_to_go_km is not None
-    said = figures.distance(a.distance_to_go_km, unit)
+    said = _foretold(a, a.distance_to_go_km, unit)
     if a.distance_to_go_interval_km is not None:
         said += f" (80 % range {figures.distance_range(*a.distance_to_go_interval_km, unit)})"
     return said if a.days_to_go is None else f"{said}, about {figures.days(a.days_to_go)}"
+
+
+def _foretold(a: Assessment, km: float, unit: str) -> str:
+    """A distance that ends where the test does, or may: its range is as wide as that of the distance still to go."""
+    if a.distance_to_go_km is None or a.distance_to_go_interval_km is None:
+        return figures.foretold(km, None, unit)
+    driven, (low, high) = km - a.distance_to_go_km, a.distance_to_go_interval_km
+    return figures.foretold(km, (driven + low, None if high is None else driven + high), unit)
 
 
 def _shift(a: Assessment) -> list[Row]:

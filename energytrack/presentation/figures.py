@@ -8,6 +8,7 @@ from energytrack.inference.results import Range
 from energytrack.logbook.quantities import DISTANCE
 from energytrack.presentation.text import join
 
+_WIDE = 0.3  # of a distance: half the width of its range, from which on a third digit would say nothing
 OPEN_PERCENT = 100.0  # a range this wide is called open
 
 
@@ -33,6 +34,12 @@ def distance(km: float, unit: str, digits: int = 3) -> str:
     """A distance that was computed: three significant digits from 1,000 on, two below."""
     shown = in_unit(km, unit)
     return join(f"{significant(shown, digits if shown >= 1000 else 2)} {unit}")
+
+
+def foretold(km: float, interval: tuple[float, float | None] | None, unit: str) -> str:
+    """A distance that lies ahead: two significant digits where its range is wide, unknown or without an end."""
+    sure = interval is not None and interval[1] is not None and interval[1] - interval[0] <= 2 * _WIDE * km
+    return distance(km, unit, 3 if sure else 2)
 
 
 def driven(km: float, unit: str) -> str:

@@ -24,7 +24,8 @@ def known_step(a: Assessment) -> str | None:
     """What a known change asks for next; None where there is nothing to do."""
     if a.known_change == "seen":
         removed = join("energytrack mod removed")
-        return f"It has shown what it was for: if it is still on, take it off when parked and log that ({removed})."
+        off = f"It has shown what it was for: take it off when parked and log that ({removed})."
+        return off if a.fitted_now else None
     if a.known_change == "seen-otherwise":
         return "Find out why: check the log around it for slips, and what else changed then (tyres, load, route)."
     if a.known_change == "not-seen-yet" and not a.is_open:

@@ -62,14 +62,15 @@ def _difference(one: Design, other: Design, unit: str) -> str:
     saved = (one.distance_km or 0.0) - (other.distance_km or 0.0)
     if abs(saved) < 0.02 * (one.distance_km or 0.0):
         return "no difference to speak of"
-    return f"{figures.distance(abs(saved), unit, digits=2)} {'less' if saved > 0 else 'more'}"
+    return f"about {figures.distance(abs(saved), unit, digits=1)} {'less' if saved > 0 else 'more'}"
 
 
 def _takes(design: Design | None, unit: str) -> str:
     assert design is not None
     assert design.distance_km is not None
+    far = figures.foretold(design.distance_km, design.distance_interval_km, unit)
     time = "" if design.days is None else f" ({figures.days(design.days)})"
-    return f"{ways.phrase(design)} takes about {figures.distance(design.distance_km, unit)}{time}"
+    return f"{ways.phrase(design)} takes about {far}{time}"
 
 
 def periods(modifications: Iterable[Modification], unit: str) -> list[str]:
@@ -138,7 +139,7 @@ def _distances(p: Plan, unit: str) -> Table:
         reached = d.distance_km is not None
         table.add_row(
             ways.name(d),
-            figures.distance(d.distance_km, unit) if d.distance_km is not None else "out of reach",
+            "out of reach" if d.distance_km is None else figures.foretold(d.distance_km, d.distance_interval_km, unit),
             _range(d, unit) if reached else "-",
             figures.days(d.days).split("\u00a0")[0] if d.days is not None else "-",
             f"{d.swaps:,}" if d.swaps is not None and reached else "-",
@@ -180,10 +181,8 @@ def _about_the_baseline(p: Plan) -> list[str]:
     if longer is None:
         never = "A longer baseline alone does not bring one switch within reach: such scatter is too large for it."
         return [never] if p.stated and one is None else []
-    before, so_far, then = (
-        figures.distance(km, "km") for km in (longer.baseline_km, p.distance_baseline_km, longer.distance_km)
-    )
-    then += f" ({join(f'--baseline {longer.baseline_km:.0f}')})"
+    before, so_far = (figures.distance(km, "km") for km in (longer.baseline_km, p.distance_baseline_km))
+    then = f"{figures.foretold(longer.distance_km, None, 'km')} ({join(f'--baseline {longer.baseline_km:.0f}')})"
     return [f"A longer baseline helps: after {before} without it, not {so_far}, one switch takes about {then}."]
 
 

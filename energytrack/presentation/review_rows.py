@@ -39,7 +39,7 @@ def _test(each: UnderTest, vehicle: Vehicle) -> str:
     if each.withheld:
         said += ", held back by a change nobody logged"
     if each.is_open and each.distance_to_go_km:
-        said += f", about {figures.distance(each.distance_to_go_km, vehicle.distance_unit)} to go"
+        said += f", about {figures.foretold(each.distance_to_go_km, None, vehicle.distance_unit)} to go"
         said += "" if each.days_to_go is None else f" ({figures.days(each.days_to_go)})"
     if each.shift_percent is not None:
         span = figures.bounded(each.interval_percent)

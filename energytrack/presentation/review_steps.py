@@ -66,7 +66,7 @@ def _tests(found: Review, vehicle: Vehicle) -> list[str]:
 def _test(each: UnderTest, found: Review, vehicle: Vehicle) -> str:
     name, whose = plain_text(each.name), f"--vehicle {shlex.quote(plain_text(found.vehicle))}"
     if each.verdict == "not-yet" and each.distance_to_go_km:
-        far = figures.distance(each.distance_to_go_km, vehicle.distance_unit)
+        far = figures.foretold(each.distance_to_go_km, None, vehicle.distance_unit)
         return f"Keep {name} as it is and drive on as usual, about {far} more."
     if each.verdict == "out-of-reach":
         asked = join(f"energytrack plan {whose} --target {each.target_percent:g}")

@@ -43,6 +43,25 @@ def test_what_will_be_learnt_of_the_noise_grows_up_to_what_is_unknown_now(use: U
         assert np.linalg.eigvalsh(less).min() > -1e-9
 
 
+@pytest.mark.parametrize(("keep", "since_it_was_fitted"), [(4, False), (20, True)])
+def test_what_lies_ahead_is_the_habit_since_the_part_was_fitted(keep: int, since_it_was_fitted: bool) -> None:
+    """Once there are eight segments of it: the driving often changes with the part."""
+    model = fitted_model(STEADY_COMMUTE, 2, keep=keep)
+    ahead = road(model, always_fitted, 0)
+    drawn = set(np.round(ahead.distance[ahead.past :] * ahead.kilometre, 6))
+    with_it = set(np.round(model.observed.distance_km[model.observed.fitted[:, 0] > 0], 6))
+    assert (drawn <= with_it) == since_it_was_fitted
+
+
+def test_a_plan_draws_on_the_last_segments_whatever_was_fitted_in_them() -> None:
+    log = simulate(replace(STEADY_COMMUTE, switches=(0.8,)), np.random.default_rng(2))
+    observed, _ = observe_frames(log.entries, log.modifications, capacity=50.0)
+    ahead = road(fit_model(observed, None), always_fitted, 0)
+    drawn = set(np.round(ahead.distance[ahead.past :] * ahead.kilometre, 6))
+    assert drawn <= set(np.round(observed.distance_km[-40:], 6))
+    assert not drawn <= set(np.round(observed.distance_km[observed.fitted[:, 0] > 0], 6))
+
+
 def test_nothing_is_reached_before_the_part_is_driven_with() -> None:
     ahead = road(fitted_model(STEADY_COMMUTE, 1, keep=0), off_first(10), 0)
     theta = np.log([0.05, 0.02, 0.01, 0.01])

@@ -194,7 +194,7 @@ def test_a_tenth_of_a_tank_is_a_tenth_of_a_tank() -> None:
     assert not any("level" in warning for warning in answer.warnings)
 
 
-def test_a_graded_part_is_stated_at_its_highest_level_and_counts_every_km() -> None:
+def test_a_graded_part_is_stated_at_its_newest_level_and_counts_every_km() -> None:
     log = drawn(DELIVERY_VAN, shift_percent=-6.0)
     km = log.modifications["fitted_km"].iloc[0]
     half = km + 2_000
@@ -204,7 +204,8 @@ def test_a_graded_part_is_stated_at_its_highest_level_and_counts_every_km() -> N
     graded = et.assess(log.entries, rows, "part", capacity=75.0, every_look=False)
     plain = asked(log, every_look=False)
     assert graded.distance_modified_km == pytest.approx(plain.distance_modified_km)
-    assert any("average over the levels" in warning for warning in graded.warnings)
+    assert graded.level == 2.0
+    assert any("newest level alone" in warning for warning in graded.warnings)
 
 
 def test_answers_are_pure_and_speak_json() -> None:

@@ -12,6 +12,7 @@ import energytrack as et
 from energytrack.errors import ConsumptionError
 from energytrack.inference.known import known_change
 from energytrack.inference.results import KnownChange, Range, Verdict
+from energytrack.presentation.advice import next_steps
 from tests.presentation.samples import NOT_YET
 from tests.simulation import simulate
 from tests.uses import DELIVERY_VAN
@@ -50,6 +51,27 @@ def test_a_known_change_of_the_table_is_seen_in_a_log() -> None:
     assert answer.known_change == "seen"
     assert answer.known_change_logged
     assert answer.to_dict()["known_percent"] == [6.0, 12.0]
+
+
+def test_what_is_off_already_is_not_to_be_taken_off() -> None:
+    known = {"known_low_percent": 6.0, "known_high_percent": 12.0}
+    on = asked(9.0, **known)
+    assert on.fitted_now
+    assert any("take it off when parked" in step for step in next_steps(on, "km"))
+    last = simulate(DELIVERY_VAN, np.random.default_rng(4)).entries["odometer_km"].iloc[-1]
+    off = asked(9.0, **known, removed_km=last)  # right at the last entry
+    assert (off.known_change, off.fitted_now) == ("seen", False)
+    assert any("not fitted now" in warning for warning in off.warnings)
+    assert not any("take it off" in step for step in next_steps(off, "km"))
+
+
+def test_a_pressure_back_at_its_first_level_counts_as_off() -> None:
+    log = simulate(replace(DELIVERY_VAN, shift_percent=0.0, fillings=40), np.random.default_rng(4))
+    ends = log.entries["odometer_km"].iloc[[0, 15, 30]].tolist()
+    levels = {"name": "pressure", "fitted_km": ends, "removed_km": [*ends[1:], np.nan], "level": [2.4, 2.7, 2.4]}
+    for rows, on in ((pd.DataFrame(levels), False), (pd.DataFrame(levels).assign(level=[2.4, 2.4, 2.7]), True)):
+        answer = et.assess(log.entries, rows, "pressure", capacity=75.0, every_look=False)
+        assert answer.fitted_now == on
 
 
 def test_the_other_way_round_is_not_as_expected() -> None:

@@ -67,4 +67,4 @@ def test_first_sentence_states_the_range() -> None:
     said = sentence(answer).replace("\u00a0", " ")
     low, high = (f"{-end:.1f}" for end in answer.interval_percent)
     assert said.startswith("Yes: furnace lowered consumption by ")
-    assert f"(look-proof range {high} to {low} %)" in said
+    assert f"range {high} to {low} %)" in said

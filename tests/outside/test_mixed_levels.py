@@ -88,12 +88,10 @@ def test_insulation_as_a_graded_part() -> None:
     graded = fitted([(begin, change, 50.0), (change, np.nan, 100.0)])
     oracle = least_squares(found, "use ~ temp + half + whole")
     answer = et.assess(as_entries(found), graded, "insulation", target_percent=10.0, unit="kWh")
-    weeks = found.groupby("share")["weeks"].sum()
-    average = np.average([oracle["half"], oracle["whole"]], weights=[weeks[0.5], weeks[1.0]])
-    assert answer.verdict == "shifted"
-    assert answer.shift_percent == pytest.approx(average, abs=2.0)
+    assert (answer.verdict, answer.level) == ("shifted", 100.0)
+    assert answer.shift_percent == pytest.approx(oracle["whole"], abs=2.0)
     low, high = answer.interval_percent
-    assert low < average < high < 0
+    assert low < oracle["whole"] < high < 0
     by_level = {effect.level: effect for effect in answer.response.levels}
     for level, name in ((50.0, "half"), (100.0, "whole")):
         low, high = by_level[level].interval_percent

@@ -83,7 +83,12 @@ SHIFTED = replace(
 RAISED = replace(SHIFTED, modification="roof rack", shift_percent=4.1, interval_percent=(1.7, 6.5), looks=())
 
 CONTRADICTED = replace(
-    SHIFTED, shift_percent=-0.9, interval_percent=(-3.0, 1.2), standard_error_percent=0.94, information_fraction=1.0
+    SHIFTED,
+    shift_percent=-0.9,
+    interval_percent=(-3.0, 1.2),
+    standard_error_percent=0.94,
+    information_fraction=1.0,
+    looks=(*SHIFTED.looks, Look(53_940.0, "2026-05-18", 1.0, -0.9, (-3.0, 1.2), 2.24)),
 )
 
 NO_SHIFT = replace(

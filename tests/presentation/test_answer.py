@@ -4,9 +4,19 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from energytrack.inference.results import Assessment, Remedy
+from energytrack.inference.results import Assessment, Look, Remedy
 from energytrack.presentation.answer import sentence
-from tests.presentation.samples import CONTRADICTED, NO_BASELINE, NO_SHIFT, NOT_YET, OUT_OF_REACH, RAISED, SHIFTED
+from tests.presentation.samples import (
+    CONTRADICTED,
+    LOOKS,
+    NO_BASELINE,
+    NO_SHIFT,
+    NOT_YET,
+    OUT_OF_REACH,
+    RAISED,
+    SHIFTED,
+    UNCLEAR,
+)
 
 
 def said(a: Assessment, unit: str = "km") -> str:
@@ -22,22 +32,41 @@ def test_a_saving_is_said_as_lowered() -> None:
 
 def test_a_rise_is_said_as_raised() -> None:
     assert said(RAISED) == (
-        "Yes: roof rack raised consumption by 4.1 % (look-proof range 1.7 to 6.5 %), "
+        "Yes: roof rack raised consumption by 4.1 % (range 1.7 to 6.5 %), "
         "settled on 2026-04-06 at 51,230 km."
     )
 
 
 def test_not_yet_says_how_far_and_how_long() -> None:
     assert said(NOT_YET) == (
-        "Not yet: about 1,860 km more with side skirts, about 12 days of your driving, at the target of 3 %. "
+        "Not yet: about 1,900 km more with side skirts, about 12 days of your driving, at the target of 3 %. "
         "So far -2.1 %, look-proof range -4.9 to +0.7 %."
     )
 
 
+def test_a_range_is_look_proof_up_to_the_look_that_closed_the_test() -> None:
+    at_closing = replace(NO_SHIFT, looks=(*LOOKS, Look(55_110.0, "2026-06-30", 1.0, -0.4, (-2.7, 1.9), 2.24)))
+    assert "Measured -0.4 %, look-proof range -2.7 to +1.9 %" in said(at_closing)
+    later = (*at_closing.looks, Look(55_600.0, "2026-07-07", 1.0, -0.4, (-2.7, 1.9), 2.24))
+    assert "Measured -0.4 %, range -2.7 to +1.9 %" in said(replace(at_closing, looks=later))
+    ruled_out_later = replace(at_closing, looks=later, settled_at_km=55_600.0)
+    assert "Measured -0.4 %, range" in said(ruled_out_later)
+    assert "Measured -0.4 %, range" in said(replace(UNCLEAR, shift_percent=-0.4, looks=later))
+    assert "lowered consumption by 5.8 % (range 3.4 to 8.2 %)" in said(replace(SHIFTED, looks=later))
+
+
 def test_miles_for_who_counts_miles() -> None:
     # 1,861 km = 1,156.4 mi, 51,230 km = 31,832.8 mi at 1.609344 km a mile (NIST SP 811)
-    assert "about 1,160 mi more" in said(NOT_YET, "mi")
+    assert "about 1,200 mi more" in said(NOT_YET, "mi")
     assert "at 31,833 mi" in said(SHIFTED, "mi")
+
+
+def test_a_distance_ahead_has_a_third_digit_only_where_its_range_is_narrow() -> None:
+    """1,861 km: within 30 % either way three digits, else two."""
+    ranges = {(1500.0, 2500.0): "1,860", (1120.0, 3390.0): "1,900", (1500.0, None): "1,900"}
+    for interval, shown in ranges.items():
+        assert f"about {shown} km more" in said(replace(NOT_YET, distance_to_go_interval_km=interval))
+    assert "about 1,900 km more" in said(replace(NOT_YET, distance_to_go_interval_km=None))
 
 
 def test_two_decimals_only_where_the_error_allows() -> None:
@@ -54,7 +83,7 @@ def test_a_settled_shift_that_later_driving_contradicts() -> None:
     assert said(CONTRADICTED) == (
         "Doubtful: a shift of -5.8 % from side skirts was settled on 2026-04-06 at 51,230 km, "
         "but with what was driven since its "
-        "range reaches zero again: now -0.9 %, look-proof range -3.0 to +1.2 %."
+        "range reaches zero again: now -0.9 %, range -3.0 to +1.2 %."
     )
     turned = replace(SHIFTED, shift_percent=4.0, interval_percent=(1.0, 7.0))
     assert "with what was driven since it points the other way: now +4.0 %" in said(turned)
@@ -65,7 +94,7 @@ def test_a_shift_ruled_out_that_later_driving_shows() -> None:
     assert said(a) == (
         "Doubtful: a shift of 3 % from side skirts was ruled out on 2026-06-30 at 55,110 km, "
         "but what was driven since shows one: "
-        "now -4.4 %, look-proof range -5.6 to -3.2 %."
+        "now -4.4 %, range -5.6 to -3.2 %."
     )
 
 
@@ -101,16 +130,16 @@ def test_a_shift_ruled_out_whose_range_has_grown_past_the_target() -> None:
     a = replace(NO_SHIFT, shift_percent=0.9, interval_percent=(-1.5, 3.3))
     assert said(a) == (
         "No: a shift of 3 % from side skirts was ruled out on 2026-06-30 at 55,110 km. "
-        "Measured now +0.9 %, look-proof range "
+        "Measured now +0.9 %, range "
         "-1.5 to +3.3 %, which reaches past the target again."
     )
 
 
 def test_out_of_reach_says_what_would_do_and_keeps_the_target_where_it_can() -> None:
-    assert "Within reach: take it off and on every 2 fill-ups, about 5,420 km more for 3 %." in said(OUT_OF_REACH)
+    assert "Within reach: take it off and on every 2 fill-ups, about 5,400 km more for 3 %." in said(OUT_OF_REACH)
     larger = (Remedy("larger-target", "5 %", 5.0, 3140.0),)
     only_larger = replace(OUT_OF_REACH, remedies=larger)
-    assert "Within reach: be content with a target of 5 %, about 3,140 km more." in said(only_larger)
+    assert "Within reach: be content with a target of 5 %, about 3,100 km more." in said(only_larger)
     assert "Within reach" not in said(replace(OUT_OF_REACH, remedies=()))
 
 
