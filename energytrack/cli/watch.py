@@ -110,7 +110,8 @@ def lines(vehicle: Vehicle, one: Watch | None) -> list[str]:
     parts.append(f"  false alarms: about one every {every}, if the fit holds")
     for shift, far in one.delays:
         told = "hidden by drift" if far is None else (
-            f"told after about {distance_text(_two_digits(far), vehicle)}, {max(1, round(far / one.recent_km))} segments, on average"
+            f"told after about {distance_text(_two_digits(far), vehicle)}, "
+            f"{max(1, round(far / one.recent_km))} segments, on average"
         )  # fmt: skip
         parts.append(f"  +{shift:g} %: {told}")
     return parts

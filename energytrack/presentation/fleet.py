@@ -128,7 +128,7 @@ def _alone(found: FleetAssessment) -> list[str]:
 
 
 def _brief(answer: BriefAnswer) -> str:
-    said = _VERDICTS[answer.verdict]
+    said = "withheld, see enough" if answer.withheld else _VERDICTS[answer.verdict]
     if answer.shift_percent is not None:
         said += f", {figures.percent(answer.shift_percent, answer.standard_error_percent, signed=True)}"
     if answer.distance_to_go_km:

@@ -19,19 +19,17 @@ from energytrack.inference.model import fit_model
 from energytrack.inference.question import Question
 from energytrack.inference.response import from_first_level
 from energytrack.inference.several import never_apart
-from energytrack.logbook.records import Modification
+from energytrack.inference.undeclared import Logged, inside, undeclared, with_events
 
 _MILESTONES = 24  # of a road that is sent back from a worker
 
 
-def brief(
-    observed: Observations, segmented: SegmentedLog, rows: tuple[Modification, ...], question: Question
-) -> BriefAnswer:
-    """The answer for one modification of an observed log; `rows` are all of the vehicle's fitting periods."""
+def brief(observed: Observations, segmented: SegmentedLog, logged: Logged, question: Question) -> BriefAnswer:
+    """The answer for one modification of an observed log; `logged` is all that was declared of the vehicle."""
     name = question.modification
-    observed = from_first_level(observed, segmented, rows, name)
+    observed, _ = from_first_level(observed, segmented, logged.modifications, name)
     partners = never_apart(observed, name)
-    observed = observed.leaving_out(partners)
+    observed, _ = with_events(observed.leaving_out(partners), segmented, question, logged)
     states = deciding_looks(observed, question)
     kept = set_aside(observed, question.covariates).kept
     fitted = kept.fitted[:, kept.names.index(name)]
@@ -50,14 +48,14 @@ def brief(
         never_apart=partners,
     )
     if states:
-        return _answer(blank, states, question)
+        return _answer(blank, states, question, logged)
     if fitted.any() or len(fitted) < FEWEST_BASELINE:
         return blank
     model = fit_model(averaged(kept), None, covariates=question.covariates)
     return _open(replace(blank, information_fraction=0.0), course(model, always_fitted, question), question)
 
 
-def _answer(blank: BriefAnswer, states: list[State], question: Question) -> BriefAnswer:
+def _answer(blank: BriefAnswer, states: list[State], question: Question, logged: Logged) -> BriefAnswer:
     now, found = states[-1], finding(states, question.target)
     road = course(now.model, always_fitted, question)
     answer = replace(
@@ -71,6 +69,8 @@ def _answer(blank: BriefAnswer, states: list[State], question: Question) -> Brie
     )
     if found is None:
         return _open(answer, road, question)
+    if found[0] == "shifted" and inside(undeclared(now.model, question, logged), found[1]):
+        return replace(answer, verdict="not-yet", withheld=True)
     return replace(answer, verdict=found[0], distance_to_go_km=0.0, days_to_go=0.0)
 
 

@@ -16,6 +16,7 @@ import numpy as np
 
 from energytrack.consumption.observations import Observations
 from energytrack.inference import bounds, rules
+from energytrack.inference.graded import newest_level
 from energytrack.inference.looks import State, kept_so_far, look_points, take_look, take_looks
 from energytrack.inference.question import Question
 
@@ -31,6 +32,8 @@ _FAR = 1.25  # targets that a range reaches, beyond which the next few do not li
 
 def deciding_looks(observed: Observations, question: Question) -> list[State]:
     """States in driving order, the last one as of today: `looks.finding` decides as it does with every look."""
+    if newest_level(observed, question.modification) is not None:  # each level a question with looks of its own
+        return take_looks(observed, question, every=True)
     return _Looks(observed, question).decide() or take_looks(observed, question, every=True)
 
 

@@ -38,6 +38,7 @@ class BriefAnswer:
     days_to_go: float | None
     never_apart: tuple[str, ...] = ()  # this answer is for these as well
     ahead: tuple[Milestone, ...] = ()  # the first one is now
+    withheld: bool = False  # a shift was found, but a change that nothing logged explains lies inside the test
 
 
 @dataclass(frozen=True)

@@ -15,6 +15,7 @@ from energytrack.inference.fleet.logs import Packed, VehicleLog, unpack
 from energytrack.inference.fleet.month import Month
 from energytrack.inference.fleet.results import VehicleReview
 from energytrack.inference.question import Question
+from energytrack.inference.undeclared import Logged
 
 _FAULTS = (EnergytrackError, np.linalg.LinAlgError, ArithmeticError, ValueError)
 
@@ -62,6 +63,7 @@ def _review(log: VehicleLog, asked: Asked) -> VehicleReview:
     deviation, why_none, odd = deviation_of(observed, asked.month)
     if deviation is None and not any(asked.month.holds(entry.date) for entry in log.entries):
         why_none = "no entries in the month"
+    logged = Logged(log.modifications, log.events)
     return VehicleReview(
         vehicle=log.vehicle.name,
         unit=segmented.unit,
@@ -71,7 +73,7 @@ def _review(log: VehicleLog, asked: Asked) -> VehicleReview:
         why_none=why_none,
         odd_segments=odd,
         answers=tuple(
-            brief(observed, segmented, log.modifications, question) for question in _questions(log, asked)
+            brief(observed, segmented, logged, question) for question in _questions(log, asked)
         ),
     )
 
