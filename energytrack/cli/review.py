@@ -44,9 +44,9 @@ def review(
     """
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
-    factors, costs = _factors(grid_factor, co2), _named_amounts(part_cost, "--part-cost")
+    stated, costs = factors(grid_factor, co2), named_amounts(part_cost, "--part-cost")
     found, refusals = asking.answered(
-        vehicles, lambda each: (each, _review(logbook, each, month, factors, costs, one=len(vehicles) == 1))
+        vehicles, lambda each: (each, _review(logbook, each, month, stated, costs, one=len(vehicles) == 1))
     )
     _print_json([one for _, one in found]) if json else _print(found)
     asking.leave(refusals)
@@ -75,15 +75,16 @@ def _review(
     )
 
 
-def _factors(grid: str | None, typed: list[str] | None) -> dict[str, float]:
-    """kg of CO2 per unit of each carrier stated."""
-    factors = _named_amounts(typed, "--co2")
+def factors(grid: str | None, typed: list[str] | None) -> dict[str, float]:
+    """kg of CO2 per unit of each carrier stated. Raises EntryError."""
+    found = named_amounts(typed, "--co2")
     if grid is not None:
-        factors["electricity"] = parse_number(grid, "grid factor") / 1000
-    return factors
+        found["electricity"] = parse_number(grid, "grid factor") / 1000
+    return found
 
 
-def _named_amounts(typed: list[str] | None, option: str) -> dict[str, float]:
+def named_amounts(typed: list[str] | None, option: str) -> dict[str, float]:
+    """NAME=NUMBER as typed, by name. Raises EntryError."""
     found = {}
     for each in typed or ():
         name, mark, value = each.rpartition("=")
