@@ -23,7 +23,7 @@ if TYPE_CHECKING:
 # colour-blind safe (Okabe and Ito, 2008)
 BLUE, ORANGE, GREEN, BLACK = "#0072B2", "#D55E00", "#009E73", "#000000"
 _DOTS_PER_INCH = 150
-NARROW = 5.4  # inches: letters stay readable where a page is shown on a phone
+NARROW = 4.6  # inches: letters stay readable where a page is shown on a phone
 _STYLE: dict[Any, Any] = {
     "font.family": "sans-serif",
     "font.sans-serif": ["DejaVu Sans"],  # comes with matplotlib

@@ -22,7 +22,7 @@ _FEW = 12  # looks up to which each range is drawn by itself as well
 
 def draw(a: Assessment, driven_km: Sequence[float], unit: str) -> Drawing:
     """The drawing of at least one look; `driven_km`: with the modification at each, `unit`: km or mi."""
-    return Drawing(lambda axes: _draw(axes, a, driven_km, unit), alternative(a, driven_km, unit), 3.9, NARROW)
+    return Drawing(lambda axes: _draw(axes, a, driven_km, unit), alternative(a, driven_km, unit), 3.6, NARROW)
 
 
 def alternative(a: Assessment, driven_km: Sequence[float], unit: str) -> str:

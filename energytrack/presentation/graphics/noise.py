@@ -12,7 +12,7 @@ from energytrack.presentation.text import HARD_SPACE
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
-_ROOM = 135.0  # percent on the axis, so that a label fits behind the longest bar
+_ROOM = 150.0  # percent on the axis, so that a label fits behind the longest bar
 
 
 def draw(sources: Sequence[Source]) -> Drawing:
@@ -30,8 +30,9 @@ def _draw(axes: Axes, shown: Sequence[tuple[Source, float]]) -> None:
     axes.set_yticks(place, [each.label for each, _ in shown])
     axes.tick_params(axis="y", length=0)
     axes.set_xlim(0, _ROOM)
-    axes.set_xticks([0, 25, 50, 75, 100])
-    axes.set_xlabel("share of the variance of one segment, %")
+    axes.set_xticks([0, 50, 100])
+    axes.spines["bottom"].set_bounds(0, 100)
+    axes.set_xlabel("share of the variance, %")
 
 
 def _said(source: Source, share: float) -> str:

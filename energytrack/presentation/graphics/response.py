@@ -23,7 +23,7 @@ NAMES = {"temperature_c": "temperature", "speed_kmh": "speed"}
 
 def draw(curve: Curve, vehicle: Vehicle) -> Drawing:
     """The drawing of a curve; `vehicle`: whose units are shown."""
-    return Drawing(lambda axes: _draw(axes, curve, vehicle), alternative(curve, vehicle), 3.9, NARROW)
+    return Drawing(lambda axes: _draw(axes, curve, vehicle), alternative(curve, vehicle), 3.6, NARROW)
 
 
 def alternative(curve: Curve, vehicle: Vehicle) -> str:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from energytrack.consumption.terms import ELECTRIC
 from energytrack.inference.report.results import Curve, MonthReport, Tried
 from energytrack.inference.review.results import Difference, Review
 from energytrack.logbook.quantities import consumption, consumption_text, consumption_unit, rounded
@@ -21,6 +22,7 @@ from energytrack.presentation.review_steps import next_steps
 from energytrack.presentation.scatter import Source, sources_of
 from energytrack.presentation.text import join
 
+_TEMPERATURE, _SPEED = "temperature_c", "speed_kmh"
 _AGAINST = {"month-before": "month before", "year-ago": "a year ago", "baseline": "baseline"}
 
 
@@ -45,9 +47,10 @@ def chapter_of(found: MonthReport, vehicle: Vehicle, name: str) -> Chapter:
 def _month(found: Review, vehicle: Vehicle) -> Section:
     head, *rows = month_rows(found, vehicle)
     sure = figures.target(100 * found.confidence)
+    rows = [tuple(_joined(cell) for cell in row) for row in rows]
     tables = [Table("The month, the one before it, and the same month a year ago", head, tuple(rows), figures=True)]
     if found.differences:
-        heads = ("against", "difference", f"{sure} range", "told apart", "as measured", "the other's level")
+        heads = ("against", "difference", f"{sure} range", "told apart", "as measured")
         caption = f"{found.month} against others, at reference conditions; below zero less is used"
         rows = [_difference(each, vehicle) for each in found.differences]
         tables.append(Table(caption, heads, tuple(rows), figures=True))
@@ -56,20 +59,33 @@ def _month(found: Review, vehicle: Vehicle) -> Section:
         rows = [(each.month, *_level(each.consumption, each.interval, vehicle)) for each in found.levels]
         caption = f"Consumption at reference conditions, month by month, in {unit}"
         tables.append(Table(caption, ("month", "level", f"{sure} range"), tuple(rows), figures=True))
-    return Section("The month", tables=tuple(tables))
+    return Section("The month", _reference(found, vehicle), tables=tuple(tables))
 
 
 def _difference(each: Difference, vehicle: Vehicle) -> tuple[str, ...]:
     span = figures.bounded(each.interval_percent)
-    what = _AGAINST[each.against] if each.against == "baseline" else f"{_AGAINST[each.against]}, {each.what}"
+    reference = f", {_joined(consumption_text(each.reference, vehicle))}" if each.against == "baseline" else ""
     return (
-        what,
+        _AGAINST[each.against] + reference,
         figures.percent(each.percent, signed=True),
         "wide open" if span is None else figures.percent_range(span),
         "yes" if span is not None and not span[0] <= 0 <= span[1] else "no",
         "-" if each.measured_percent is None else figures.percent(each.measured_percent, signed=True),
-        join(consumption_text(each.reference, vehicle)),
     )
+
+
+def _joined(cell: str) -> str:
+    """A distance that a price or consumption is for stays on one line."""
+    return cell.replace("100 km", join("100 km"))
+
+
+def _reference(found: Review, vehicle: Vehicle) -> tuple[str, ...]:
+    """What the reference conditions are, in words."""
+    values, unit = found.reference_conditions, vehicle.distance_unit
+    said = [join(f"{values[name]:.0f} °C") for name in (_TEMPERATURE,) if name in values]
+    said += [join(f"{figures.in_unit(values[name], unit):.0f} {unit}/h") for name in (_SPEED,) if name in values]
+    said += ["driving on fuel alone"] if ELECTRIC in values else []
+    return (f"Reference conditions, the means over this log: {', '.join(said)}.",) if said else ()
 
 
 def _level(value: float, span: tuple[float, float] | None, vehicle: Vehicle) -> tuple[str, str]:

@@ -6,16 +6,22 @@ import re
 import xml.etree.ElementTree as ET
 
 from energytrack.presentation.graphics import canvas
-from energytrack.presentation.graphics.canvas import Drawing
+from energytrack.presentation.graphics.canvas import BLUE, GREEN, ORANGE, Drawing
 
 _REFERENCE = re.compile(r"url\(#([^)]+)\)")
 _SIZES = ("width", "height")  # in points: the page decides
+_OF_THE_PAGE = {
+    "stroke: #000000": "stroke: currentColor",
+    "fill: #ffffff": "fill: none",
+    **{colour.lower(): f"var(--{name})" for name, colour in (("blue", BLUE), ("orange", ORANGE), ("green", GREEN))},
+}
 
 
 def embedded(drawing: Drawing, name: str) -> str:
     """The element, its text escaped. No id of it is on the page twice, where no two drawings have one `name`.
 
-    Black follows the page's own colour of text, and white is left out, so that it can be read on a dark page too.
+    Black becomes the page's colour of text, white is left out, and the page says which blue, orange and green can be
+    told from its paper, light or dark.
     """
     root = ET.fromstring(canvas.svg(drawing))
     for parent in root.iter():
@@ -52,5 +58,6 @@ def _own(key: str, value: str, name: str) -> str:
     if key == "href":
         return f"#{name}-{value[1:]}"
     if key == "style":
-        value = value.replace("stroke: #000000", "stroke: currentColor").replace("fill: #ffffff", "fill: none")
+        for drawn, shown in _OF_THE_PAGE.items():
+            value = value.replace(drawn, shown)
     return _REFERENCE.sub(rf"url(#{name}-\1)", value) if key in ("style", "clip-path") else value

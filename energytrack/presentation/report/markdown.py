@@ -9,7 +9,8 @@ from urllib.parse import quote
 from energytrack.presentation.report.page import Page, Picture, Section, Table
 from energytrack.presentation.text import HARD_SPACE
 
-_MEANT = re.compile(r"([\\`*_{}\[\]<>#|~&$]|^(?:[-+]|\d+[.)])(?=\s|$))")
+_MEANT = re.compile(r"([\\`*_{}\[\]<>#|~&$]|^[-+=](?=\s|$))")
+_NUMBERED = re.compile(r"^(\d+)([.)])(?=\s|$)")
 
 
 def markdown(page: Page, folder: str) -> str:
@@ -25,7 +26,7 @@ def markdown(page: Page, folder: str) -> str:
 
 def escaped(text: str) -> str:
     """Text on one line of which nothing is taken for markup."""
-    return _MEANT.sub(r"\\\1", text.replace(HARD_SPACE, " "))
+    return _NUMBERED.sub(r"\1\\\2", _MEANT.sub(r"\\\1", text.replace(HARD_SPACE, " ")))
 
 
 def _section(section: Section, mark: str, folder: str) -> Iterator[str]:

@@ -15,8 +15,7 @@ from energytrack.presentation.report.chapter import chapter_of
 from energytrack.presentation.report.page import Page, Section
 
 _READ = (
-    "Reference conditions are the mean temperature and speed over the log: consumption is brought to them, so that a "
-    "cold month is not blamed on the driver or the part.",
+    "Consumption is brought to reference conditions, so that a cold month is not blamed on the driver or the part.",
     "A look-proof range holds however often the test is looked at, and whenever it is ended.",
     "Every figure is by the log up to the end of the month; the entry that closes the last segment counts whole.",
 )
