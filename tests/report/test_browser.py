@@ -20,7 +20,8 @@ MEASURE = """
 <script>
 addEventListener("load", () => {
   const page = document.documentElement, pictures = [...document.querySelectorAll("svg")];
-  const inside = (a, b) => a.left >= b.left - 1 && a.right <= b.right + 1 && a.top >= b.top - 1 && a.bottom <= b.bottom + 1;
+  const inside = (a, b) => a.left >= b.left - 1 && a.right <= b.right + 1
+    && a.top >= b.top - 1 && a.bottom <= b.bottom + 1;
   const meet = (a, b) => Math.min(a.right, b.right) - Math.max(a.left, b.left) > 1
     && Math.min(a.bottom, b.bottom) - Math.max(a.top, b.top) > 2;
   const found = {width: page.clientWidth, scroll: page.scrollWidth, wide: [], cut: [], over: [], words: 0, small: 99};
@@ -44,8 +45,8 @@ FRAME = """<!DOCTYPE html><title>frame</title><body style="margin:0"><pre id="fo
 
 
 def browse(folder: Path, page: Path, *options: str) -> str:
-    flags = ["--headless", "--no-sandbox", "--disable-gpu", "--hide-scrollbars", f"--user-data-dir={folder / 'profile'}"]
-    command = [str(BROWSER), *flags, *options, page.as_uri()]
+    flags = ["--headless", "--no-sandbox", "--disable-gpu", "--hide-scrollbars"]
+    command = [str(BROWSER), *flags, f"--user-data-dir={folder / 'profile'}", *options, page.as_uri()]
     return subprocess.run(command, capture_output=True, text=True, timeout=300, check=True, cwd=folder).stdout
 
 

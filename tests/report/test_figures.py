@@ -28,15 +28,15 @@ def driven(count: int) -> list[float]:
     return [430.0 * (k + 1) for k in range(count)]
 
 
-def tested(answer: object) -> Drawing:
+def looked(answer: object) -> Drawing:
     return funnel.draw(answer, driven(len(answer.looks)), "km")  # type: ignore[attr-defined, arg-type]
 
 
 ALL: dict[str, Callable[[], Drawing]] = {
-    "not yet": lambda: tested(NOT_YET),
-    "one look": lambda: tested(replace(NOT_YET, looks=NOT_YET.looks[:1])),
-    "shifted": lambda: tested(SHIFTED),
-    "out of reach": lambda: tested(OUT_OF_REACH),
+    "not yet": lambda: looked(NOT_YET),
+    "one look": lambda: looked(replace(NOT_YET, looks=NOT_YET.looks[:1])),
+    "shifted": lambda: looked(SHIFTED),
+    "out of reach": lambda: looked(OUT_OF_REACH),
     "in miles": lambda: funnel.draw(SHIFTED, driven(len(SHIFTED.looks)), "mi"),
     "cold": lambda: response.draw(COLD, VAN),
     "cold, miles per gallon": lambda: response.draw(COLD, MILES),
@@ -83,7 +83,7 @@ def test_the_target_is_always_in_sight_and_ranges_without_end_fill_the_drawing()
 
 
 def test_words_for_those_who_do_not_see_it() -> None:
-    assert tested(NOT_YET).alternative == (
+    assert looked(NOT_YET).alternative == (
         "Shift of consumption with side skirts against distance driven with it, 5 looks over 2,150 km. At the last: "
         "-2.1 %, look-proof range -4.9 to +0.7 %. Target 3 %."
     )

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import itertools
 import re
 import xml.etree.ElementTree as ET
 from collections import Counter
@@ -48,7 +49,7 @@ def test_language_title_and_headings_in_order(root: ET.Element) -> None:
     levels = [int(local(each)[1]) for each in root.iter() if re.fullmatch("h[1-6]", local(each))]
     assert levels[0] == 1
     assert levels.count(1) == 1
-    assert all(after <= before + 1 for before, after in zip(levels, levels[1:], strict=False))
+    assert all(after <= before + 1 for before, after in itertools.pairwise(levels))
 
 
 def test_tables_have_captions_and_every_heading_its_scope(root: ET.Element) -> None:

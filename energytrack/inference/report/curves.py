@@ -32,14 +32,14 @@ def _curve(model: Model, condition: Condition, confidence: float) -> Curve:
     logged = model.observed.conditions[condition]
     known = ~np.isnan(logged)
     residual = model.scale.consumption * partial_residuals(model, condition)
-    dots = zip(logged[known].tolist(), residual[known].tolist(), model.observed.distance_km[known].tolist(), strict=True)
+    dots = np.column_stack([logged, residual, model.observed.distance_km])[known]
     values = np.linspace(logged[known].min(), logged[known].max(), _STEPS)
     weights = _weights(model, condition, values)
     level, reach = weights @ model.fit.coefficients, _reach(model, weights, confidence)
     ends = model.scale.consumption * np.column_stack([level, level - reach, level + reach])
     return Curve(
         condition=condition,
-        dots=tuple(Dot(*dot) for dot in dots),
+        dots=tuple(Dot(*dot) for dot in dots.tolist()),
         steps=tuple(Step(value, *row) for value, row in zip(values.tolist(), ends.tolist(), strict=True)),
         confidence=confidence,
         filled_in=int((~known).sum()),

@@ -56,7 +56,7 @@ def month_report(
     own = {name: asked[name] for name in ("capacity", "unit", "weather", "two_carriers") if name in asked}
     kept = entries_until(observe_log(entries, None, events=events, **own)[2], month)
     rows = fitted_until([] if modifications is None else modifications_from_frame(modifications, vehicle), kept, month)
-    tables = {
+    tables: dict[str, Any] = {
         "entries": entries_to_frame(kept),
         "modifications": records_to_frame(rows, MODIFICATION_COLUMNS),
         "events": events,

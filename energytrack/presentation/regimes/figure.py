@@ -95,9 +95,9 @@ def _marks(axes: Axes, marks: Sequence[Mark], unit: str, spelled_out: bool) -> N
         row = next((k for k, km in enumerate(last) if at - km > _APART * (right - left)), len(last) % _ROWS)
         last[row : row + 1] = [at]
         what = each.mark.what if len(each.mark.what) <= _LONGEST else each.mark.what[: _LONGEST - 1] + "…"
-        label = f"{what}, {figures.driven(each.mark.km, unit)}".replace(HARD_SPACE, " ")
+        label = f"{what}, {figures.driven(each.mark.km, unit)}".replace(HARD_SPACE, " ").replace("$", r"\$")
         axes.plot(
             at, 1.03 + row * _ROW, marker=f"${each.letter}$", color=GREEN, markersize=8, linestyle="none",
-            transform=axes.get_xaxis_transform(), clip_on=False, label=label.replace("$", r"\$") if spelled_out else None,
+            transform=axes.get_xaxis_transform(), clip_on=False, label=label if spelled_out else None,
         )  # fmt: skip
     axes.set_xlim(left, right)

@@ -45,7 +45,7 @@ def _local(tag: str) -> str:
 
 
 def _references(root: ET.Element) -> list[str]:
-    found = []
+    found: list[str] = []
     for element in root.iter():
         for key, value in element.attrib.items():
             found += [value[1:]] if _local(key) == "href" else _REFERENCE.findall(value)
