@@ -87,8 +87,9 @@ def test_wheel_holds_every_module_and_runs(tmp_path: Path) -> None:
     unpacked = tmp_path / "unpacked"
     with zipfile.ZipFile(next(tmp_path.glob("energytrack-*.whl"))) as wheel:
         wheel.extractall(unpacked)
-    modules = {path.relative_to(ROOT) for path in tracked() if path.is_relative_to(ROOT / "energytrack")}
-    assert {path.relative_to(unpacked) for path in (unpacked / "energytrack").rglob("*.py")} == modules
+    files = {path.relative_to(ROOT) for path in tracked() if path.is_relative_to(ROOT / "energytrack")}
+    assert {path.relative_to(unpacked) for path in (unpacked / "energytrack").rglob("*") if path.is_file()} == files
+    assert [path for path in files if path.suffix != ".py"], "a page's template and style"
     assert not (unpacked / "tests").exists()
     done = subprocess.run(
         [sys.executable, "-m", "energytrack", "--help"], cwd=unpacked, capture_output=True, text=True, check=False

@@ -44,6 +44,7 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
     "regimes": ("regimes", "regimes"),
     "rehearse": ("rehearse", "rehearse"),
     "review": ("review", "review"),
+    "report": ("report", "report"),
 }
 
 

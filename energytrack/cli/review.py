@@ -53,10 +53,10 @@ def review(
 
         reviewed_together(logbook, vehicles, month=month, as_json=json)
         return
-    factors, costs = _factors(grid_factor, co2), _named_amounts(part_cost, "--part-cost")
-    _check_parts(costs, logbook, vehicles)
+    stated, costs = factors(grid_factor, co2), named_amounts(part_cost, "--part-cost")
+    check_parts(costs, logbook, vehicles)
     found, refusals = asking.answered(
-        vehicles, lambda each: (each, _review(logbook, each, month, factors, costs))
+        vehicles, lambda each: (each, _review(logbook, each, month, stated, costs))
     )
     _print_json([one for _, one in found]) if json else _print(found)
     asking.leave(refusals)
@@ -66,7 +66,7 @@ def _review(
     logbook: Logbook,
     vehicle: Vehicle,
     month: str | None,
-    factors: Mapping[str, float],
+    stated: Mapping[str, float],
     costs: Mapping[str, float],
 ) -> Review:
     from energytrack.inference.review.review import review as reviewed
@@ -76,35 +76,37 @@ def _review(
         **asking.tables(logbook, vehicle),
         month=month,
         carrier=vehicle.carrier,
-        co2_kg_per_unit={**_own_factors(vehicle), **factors},
+        co2_kg_per_unit={**own_factors(vehicle), **stated},
         part_costs={name: cost for name, cost in costs.items() if name in own},
         typed_in=(vehicle.distance_unit, vehicle.typed_unit),
         today=dt.date.today(),
     )
 
 
-def _check_parts(costs: Mapping[str, float], logbook: Logbook, vehicles: list[Vehicle]) -> None:
+def check_parts(costs: Mapping[str, float], logbook: Logbook, vehicles: list[Vehicle]) -> None:
+    """Raises UnknownNameError for a modification that none of the vehicles has."""
     names = {row.name for each in vehicles for row in logbook.modifications(each.name)}
     unknown = next((name for name in costs if name not in names), None)
     if unknown is not None:
         raise UnknownNameError(f"no modification named {unknown!r}; logged: {', '.join(sorted(names)) or 'none'}")
 
 
-def _own_factors(vehicle: Vehicle) -> dict[str, float]:
+def own_factors(vehicle: Vehicle) -> dict[str, float]:
     """kg of CO2 per unit of each carrier, as the logbook states them for this vehicle."""
     stated = {vehicle.carrier: vehicle.co2_kg, vehicle.second_carrier: vehicle.second_co2_kg}
     return {carrier: kg for carrier, kg in stated.items() if carrier is not None and kg is not None}
 
 
-def _factors(grid: str | None, typed: list[str] | None) -> dict[str, float]:
-    """kg of CO2 per unit of each carrier stated."""
-    factors = _named_amounts(typed, "--co2")
+def factors(grid: str | None, typed: list[str] | None) -> dict[str, float]:
+    """kg of CO2 per unit of each carrier stated. Raises EntryError."""
+    found = named_amounts(typed, "--co2")
     if grid is not None:
-        factors["electricity"] = parse_number(grid, "grid factor") / 1000
-    return factors
+        found["electricity"] = parse_number(grid, "grid factor") / 1000
+    return found
 
 
-def _named_amounts(typed: list[str] | None, option: str) -> dict[str, float]:
+def named_amounts(typed: list[str] | None, option: str) -> dict[str, float]:
+    """NAME=NUMBER as typed, by name. Raises EntryError."""
     found = {}
     for each in typed or ():
         name, mark, value = each.rpartition("=")

@@ -87,17 +87,22 @@ def _headed(heading: str, body: list[str], width: int) -> list[str]:
 
 def _table(found: Review, vehicle: Vehicle, width: int) -> list[str]:
     """Months side by side, or one below the other where the columns do not fit."""
-    every = [each for each in (found.this, found.month_before, found.year_ago) if each is not None]
-    columns = [_column(each, found, vehicle) for each in every]
-    rows: list[Row] = [tuple(cells) for cells in zip(_LABELS, *columns, strict=True)]
-    rows = [row for row in rows if any(cell not in ("", "-") for cell in row[1:])]
-    lines = aligned(rows, right=range(1, len(every) + 1))
+    rows = month_rows(found, vehicle)
+    lines = aligned(rows, right=range(1, len(rows[0])))
     if max(map(cells_wide, lines)) <= width:
         return lines
     folded: list[str] = []
-    for number in range(len(every)):
-        folded += labelled([(row[0] or "month", row[number + 1]) for row in rows], width)
+    for number in range(1, len(rows[0])):
+        folded += labelled([(row[0] or "month", row[number]) for row in rows], width)
     return folded
+
+
+def month_rows(found: Review, vehicle: Vehicle) -> list[Row]:
+    """The names of the months, and a row for each figure that one of them has."""
+    every = [each for each in (found.this, found.month_before, found.year_ago) if each is not None]
+    columns = [_column(each, found, vehicle) for each in every]
+    rows: list[Row] = [tuple(cells) for cells in zip(_LABELS, *columns, strict=True)]
+    return [row for row in rows if any(cell not in ("", "-") for cell in row[1:])]
 
 
 _LABELS = (

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from math import sqrt
 
 from energytrack.consumption.terms import ELECTRIC
-from energytrack.inference.results import Assessment
+from energytrack.inference.results import Assessment, Noise
 from energytrack.presentation.text import join
 
 
@@ -27,15 +27,18 @@ def charges_only(a: Assessment) -> bool:
 
 def sources(a: Assessment) -> list[Source]:
     """Trip to trip, filling, drift over weeks, drift over seasons; [] where the noise is unknown."""
-    noise = a.noise
-    if noise is None:
-        return []
-    electric = charges_only(a)
-    filling = _filling_percent(a)
-    detail = f"{join(f'{noise.level_error:.2g} {a.unit}')} a {'charge' if electric else 'filling'}"
+    return [] if a.noise is None else sources_of(a.noise, _segment_energy(a), a.unit, charges_only=charges_only(a))
+
+
+def sources_of(noise: Noise, segment_energy: float | None, unit: str, *, charges_only: bool) -> list[Source]:
+    """The same of any noise; `segment_energy`: of an average segment, in `unit`."""
+    detail = f"{join(f'{noise.level_error:.2g} {unit}')} a {'charge' if charges_only else 'filling'}"
+    filling = None  # two levels bound a segment, so its error is sqrt(2) times that of one
+    if segment_energy is not None and segment_energy > 0:
+        filling = 100 * sqrt(2) * noise.level_error / segment_energy
     found = [
         ("from trip to trip", noise.trip_percent, ""),
-        ("charge level" if electric else "filling", filling, detail),
+        ("charge level" if charges_only else "filling", filling, detail),
         ("drift over weeks", noise.drift_weeks_percent, ""),
         ("drift over seasons", noise.drift_seasons_percent, ""),
     ]
@@ -47,14 +50,11 @@ def sources(a: Assessment) -> list[Source]:
     ]
 
 
-def _filling_percent(a: Assessment) -> float | None:
-    """Two levels bound a segment, so its error is sqrt(2) times that of one."""
+def _segment_energy(a: Assessment) -> float | None:
     segments = a.segments_baseline + a.segments_modified
-    if a.noise is None or a.expectation is None or not segments:
+    if a.expectation is None or not segments:
         return None
-    length = (a.distance_baseline_km + a.distance_modified_km) / segments
-    energy = a.expectation.consumption * length
-    return 100 * sqrt(2) * a.noise.level_error / energy if energy > 0 else None
+    return a.expectation.consumption * (a.distance_baseline_km + a.distance_modified_km) / segments
 
 
 def rows(a: Assessment) -> list[tuple[str, str]]:

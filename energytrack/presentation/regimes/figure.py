@@ -28,13 +28,19 @@ _HEIGHT, _LINE = 4.2, 0.2  # inches, without the legend and of a line in it
 _APART = 0.02  # of the axes' width
 
 
-def draw(report: RegimeReport, vehicle: Vehicle, marks: Sequence[Mark] = ()) -> Drawing:
-    """The drawing of a report; `vehicle`: whose units are shown. Raises ReportError where there is nothing to draw."""
+def draw(
+    report: RegimeReport, vehicle: Vehicle, marks: Sequence[Mark] = (), *, width: float = 8.0, spelled_out: bool = True
+) -> Drawing:
+    """The drawing of a report; `vehicle`: whose units are shown; `spelled_out`: with a key to the letters of the marks.
+
+    Raises ReportError where there is nothing to draw.
+    """
     if not report.points:
         raise ReportError(f"nothing to draw for {plain_text(report.vehicle)}: {plain_text(report.note or 'no points')}")
-    legend = 3 + 2 * bool(report.breaks) + len(lettered(marks))
+    legend = 3 + 2 * bool(report.breaks) + (len(lettered(marks)) if spelled_out else 0)
     height = _HEIGHT + _LINE * ceil(legend / 2)
-    return Drawing(lambda axes: _draw(axes, report, vehicle, marks), alternative(report, vehicle), height)
+    said = alternative(report, vehicle)
+    return Drawing(lambda axes: _draw(axes, report, vehicle, marks, spelled_out), said, height, width)
 
 
 def alternative(report: RegimeReport, vehicle: Vehicle) -> str:
@@ -50,7 +56,7 @@ def _level(regime: Regime, vehicle: Vehicle) -> str:
     return f"{figure} from {start} to {end}"
 
 
-def _draw(axes: Axes, report: RegimeReport, vehicle: Vehicle, marks: Sequence[Mark]) -> None:
+def _draw(axes: Axes, report: RegimeReport, vehicle: Vehicle, marks: Sequence[Mark], spelled_out: bool) -> None:
     unit = vehicle.distance_unit
     _segments(axes, report, vehicle)
     for number, regime in enumerate(report.regimes):
@@ -65,7 +71,7 @@ def _draw(axes: Axes, report: RegimeReport, vehicle: Vehicle, marks: Sequence[Ma
         at = figures.in_unit(found.odometer_km, unit)
         axes.axvline(at, color=BLACK, linestyle="--", linewidth=1, label=None if number else "change")
         axes.axvspan(low, high, color=BLACK, alpha=0.08, linewidth=0, label=None if number else "where it may lie")
-    _marks(axes, marks, unit)
+    _marks(axes, marks, unit, spelled_out)
     axes.set_xlabel(f"odometer, {unit}")
     axes.set_ylabel(f"consumption at reference conditions, {consumption_unit(vehicle).label}")
     axes.xaxis.set_major_formatter(lambda value, _: f"{value:,.0f}")
@@ -80,8 +86,8 @@ def _segments(axes: Axes, report: RegimeReport, vehicle: Vehicle) -> None:
     axes.plot(place, [consumption(dot.consumption, vehicle) for dot in dots], ".", color=BLUE, alpha=0.7, label=label)
 
 
-def _marks(axes: Axes, marks: Sequence[Mark], unit: str) -> None:
-    """Letters above the drawing, spelled out in the legend."""
+def _marks(axes: Axes, marks: Sequence[Mark], unit: str, spelled_out: bool) -> None:
+    """Letters above the drawing, spelled out in the legend unless a key stands elsewhere."""
     left, right = axes.get_xlim()
     last: list[float] = []  # place of the last letter in each row
     for each in lettered(marks):
@@ -89,9 +95,9 @@ def _marks(axes: Axes, marks: Sequence[Mark], unit: str) -> None:
         row = next((k for k, km in enumerate(last) if at - km > _APART * (right - left)), len(last) % _ROWS)
         last[row : row + 1] = [at]
         what = each.mark.what if len(each.mark.what) <= _LONGEST else each.mark.what[: _LONGEST - 1] + "…"
-        label = f"{what}, {figures.driven(each.mark.km, unit)}".replace(HARD_SPACE, " ")
+        label = f"{what}, {figures.driven(each.mark.km, unit)}".replace(HARD_SPACE, " ").replace("$", r"\$")
         axes.plot(
             at, 1.03 + row * _ROW, marker=f"${each.letter}$", color=GREEN, markersize=8, linestyle="none",
-            transform=axes.get_xaxis_transform(), clip_on=False, label=label.replace("$", r"\$"),
+            transform=axes.get_xaxis_transform(), clip_on=False, label=label if spelled_out else None,
         )  # fmt: skip
     axes.set_xlim(left, right)
