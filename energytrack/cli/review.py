@@ -48,6 +48,8 @@ def review(
     """
     logbook = readable(context)
     vehicles = asking.vehicles_asked(logbook, vehicle)
+    if fleet and (vehicle is not None or grid_factor is not None or co2 or part_cost):
+        raise typer.BadParameter("--fleet takes no --vehicle, --grid-factor, --co2 or --part-cost")
     if fleet:
         from energytrack.cli.fleet import fleet as reviewed_together
 

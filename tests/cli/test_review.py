@@ -112,6 +112,18 @@ def test_currencies_are_not_added_up_and_the_entries_are_named(tmp_path: Path) -
     assert "130" not in said
 
 
+@pytest.mark.parametrize("option", ["--vehicle", "--grid-factor", "--co2", "--part-cost"])
+def test_a_fleet_takes_no_options_of_one_vehicle(option: str) -> None:
+    done = run(DEMO, "review", "--fleet", option, "van")
+    assert (done.returncode, done.stdout) == (2, "")
+    assert "--fleet takes no" in done.stderr
+
+
+def test_a_fleet_is_one_table() -> None:
+    told = json.loads(run(DEMO, "review", "--fleet", "--month", "2026-10", "--json").stdout)
+    assert {each["vehicle"] for each in told["vehicles"]} == {"van", "car", "electric"}
+
+
 def test_a_factor_kept_in_the_logbook_counts_unless_another_is_stated(tmp_path: Path) -> None:
     book = tmp_path / "a.logbook"
     write(
