@@ -122,3 +122,24 @@ def test_a_torn_write_ahead_log_leaves_the_entries_up_to_some_moment(tmp_path: P
         lengths.add(len(found))
     assert len(lengths) > 3, "the places should have made a difference"
     assert len(odometers(path)) >= len(logged) - 2, "nothing is lost where nothing is torn"
+
+
+def test_an_import_that_is_killed_brought_in_nothing_or_all(tmp_path: Path) -> None:
+    rows = 8_000
+    table = tmp_path / "log.csv"
+    first = dt.date(2020, 1, 1)
+    lines = (f"{first + dt.timedelta(n // 10)},{100 * n},{40 + n % 9},note {n}" for n in range(rows))
+    table.write_text("\n".join(["date,odometer_km,energy,note", *lines]) + "\n")
+    whole = new_logbook(tmp_path / "whole.logbook", 0)
+    start = time.monotonic()
+    done(whole, "import", table)
+    usual = time.monotonic() - start
+    draw = random.Random(9)
+    for turn in range(max(RUNS // 8, 4)):
+        path = new_logbook(tmp_path / f"{turn}.logbook", 0)
+        process = subprocess.Popen(command(path, "import", table), stdout=subprocess.PIPE, env=environment())
+        time.sleep(draw.uniform(0.2, 1.1) * usual)
+        process.kill()
+        said, _ = process.communicate()
+        assert len(odometers(path)) in ((rows,) if said else (0, rows))
+        assert is_sound(path)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import ctypes
+import datetime as dt
 import os
 import sys
 from collections.abc import Callable
@@ -10,6 +11,8 @@ from pathlib import Path
 
 import pytest
 
+from energytrack.logbook.records import Entry
+from energytrack.logbook.store import Store
 from tests.faults.commands import new_logbook, odometers, refused, run
 
 pytestmark = pytest.mark.skipif(os.name != "posix", reason="permissions of POSIX")
@@ -84,3 +87,18 @@ def test_a_file_that_cannot_be_read(tmp_path: Path, give_up: Callable[[], None] 
     path.chmod(0)
     for words in (("entries",), ("fillup", 20_000, 40), ("backup", tmp_path / "copy")):
         refused(run(path, *words, before=give_up), "check its permissions")
+
+
+def test_what_another_program_just_wrote_is_read_too(tmp_path: Path, give_up: Callable[[], None] | None) -> None:
+    """It stands in the write-ahead log beside the file for as long as that program has the logbook open."""
+    (tmp_path / "kept").mkdir()
+    path = new_logbook(tmp_path / "kept" / "my.logbook", 2)
+    store = Store(path)
+    store.add_entry(Entry("van", dt.date(2025, 3, 1), 40.0, 11_500.0), {})
+    path.parent.chmod(0o500)
+    try:
+        ended = run(path, "entries", before=give_up)
+        assert "11,500 km" in ended.stdout, ended.stderr
+    finally:
+        path.parent.chmod(0o700)
+        store.close()
