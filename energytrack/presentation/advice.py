@@ -35,8 +35,9 @@ def _after_shift(a: Assessment, unit: str) -> list[str]:
     if contradicted(a) and a.level is None and a.response is not None and len(a.response.levels) > _WITH_ONE_LEVEL:
         return ["It was settled on the levels driven by then: read them one by one, under `by level`."]
     if contradicted(a):
-        off = ["Take it off for a while: a true shift goes away with it and comes back with it."]
-        return ["Look for what else changed since: tyres, load, route, brakes.", *(off if a.reversible and a.fitted_now else [])]
+        steps = ["Look for what else changed since: tyres, load, route, brakes."]
+        off = "Take it off for a while: a true shift goes away with it and comes back with it."
+        return [*steps, off] if a.reversible and a.fitted_now else steps
     steps = ["Keep logging: every further entry sharpens the figure."]
     if (a.shift_percent or 0.0) > 0 and a.known_change is None:
         or_off = ", or take it off and watch consumption fall back" if a.reversible and a.fitted_now else ""
