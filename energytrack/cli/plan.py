@@ -68,7 +68,7 @@ def _from_logbook(context: typer.Context, vehicle: str | None, asked: dict[str, 
     if context.obj is None:
         raise LogbookError(
             "no logbook named, and no noise stated: put --logbook PATH before the command, "
-            "or state the noise, such as --trip-noise 5 --drift 1"
+            "or state the noise, such as --trip-noise 2 --drift 0.5"
         )
     logbook = readable(context)
     by_name = {each.name: each for each in asking.vehicles_asked(logbook, vehicle)}

@@ -36,9 +36,8 @@ def _after_shift(a: Assessment, unit: str) -> list[str]:
         return ["It was settled on the levels driven by then: read them one by one, under `by level`."]
     if contradicted(a):
         steps = ["Look for what else changed since: tyres, load, route, brakes."]
-        if a.reversible and a.fitted_now:
-            steps.append("Take it off for a while: a true shift goes away with it and comes back with it.")
-        return steps
+        off = "Take it off for a while: a true shift goes away with it and comes back with it."
+        return [*steps, off] if a.reversible and a.fitted_now else steps
     steps = ["Keep logging: every further entry sharpens the figure."]
     if (a.shift_percent or 0.0) > 0 and a.known_change is None:
         or_off = ", or take it off and watch consumption fall back" if a.reversible and a.fitted_now else ""

@@ -12,6 +12,9 @@ import pytest
 import energytrack as et
 from energytrack.errors import InferenceError
 from energytrack.inference import bounds
+from energytrack.inference.ahead import always_fitted
+from energytrack.inference.distance import course
+from energytrack.inference.question import Question
 from energytrack.inference.results import Design, Plan
 from energytrack.inference.stated import Stated, stated_model
 from energytrack.inference.ways import months_after
@@ -32,6 +35,14 @@ def test_four_weeks_of_160_km_a_day_are_a_usable_baseline() -> None:
     assert FOUR_WEEKS.fills >= 5
     reached = [design.distance_km for design in et.plan_from(FOUR_WEEKS, 5.0) if design.distance_km is not None]
     assert min(reached) < 10_000
+
+
+@pytest.mark.parametrize("month", range(1, 13))
+def test_the_example_of_the_readme_is_within_reach_of_one_switch(month: int) -> None:
+    """In whatever month somebody tries it: a steady commute with five months of baseline."""
+    steady = Stated(2.0, 0.5, baseline_km=12_000, date=dt.date(2026, month, 1))
+    question = Question("", 0.03, 0.05, 0.80)
+    assert course(stated_model(steady), always_fitted, question).reach(1 / question.information) is not None
 
 
 def test_a_comparison_over_a_few_km_cannot_be_told_from_noise() -> None:
