@@ -9,11 +9,11 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
+from energytrack.cli import month as asked_with
 from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.cautions import CAUTIONS
 from energytrack.cli.context import readable, say, say_json, the_date
-from energytrack.cli.review import check_parts, factors, named_amounts, own_factors
 from energytrack.errors import ReportError
 
 if TYPE_CHECKING:
@@ -68,10 +68,10 @@ def report(
         check_folder(folder)
     _need(form)
     logbook, today = readable(context), the_date(date)
-    stated, costs = factors(grid_factor, co2), named_amounts(part_cost, "--part-cost")
+    factors, costs = asked_with.factors(grid_factor, co2), asked_with.named_amounts(part_cost, "--part-cost")
     vehicles = asking.vehicles_asked(logbook, vehicle)
-    check_parts(costs, logbook, vehicles)
-    found, refusals = _found(logbook, vehicles, month, stated, costs, today)
+    asked_with.check_parts(costs, logbook, vehicles)
+    found, refusals = _found(logbook, vehicles, month, factors, costs, today)
     if found:
         drawn = _write(found, today, target, form, folder, force)
         _told(target, folder, drawn, json=json)
@@ -103,7 +103,7 @@ def _found(
     logbook: Logbook,
     vehicles: list[Vehicle],
     month: str | None,
-    stated: Mapping[str, float],
+    factors: Mapping[str, float],
     costs: Mapping[str, float],
     today: dt.date,
 ) -> tuple[list[_Found], list[str]]:
@@ -116,16 +116,8 @@ def _found(
         tell(0, len(by_name))
 
         def answer(name: str) -> _Found:
-            one, own = by_name[name], {row.name for row in logbook.modifications(name)}
-            made = month_report(
-                **asking.tables(logbook, one),
-                month=month,
-                carrier=one.carrier,
-                co2_kg_per_unit={**own_factors(one), **stated},
-                part_costs={part: cost for part, cost in costs.items() if part in own},
-                typed_in=(one.distance_unit, one.typed_unit),
-                today=today,
-            )
+            one = by_name[name]
+            made = month_report(**asked_with.asked(logbook, one, month, factors, costs, today))
             tell(next(done), len(by_name))
             return one, made
 

@@ -8,11 +8,10 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
+from energytrack.cli import month as asked_with
 from energytrack.cli import options
 from energytrack.cli import questions as asking
 from energytrack.cli.context import readable, say_json
-from energytrack.errors import EntryError, UnknownNameError
-from energytrack.logbook.quantities import parse_number
 
 if TYPE_CHECKING:
     from energytrack.inference.review.results import Review
@@ -55,70 +54,23 @@ def review(
 
         reviewed_together(logbook, vehicles, month=month, as_json=json)
         return
-    stated, costs = factors(grid_factor, co2), named_amounts(part_cost, "--part-cost")
-    check_parts(costs, logbook, vehicles)
-    found, refusals = asking.answered(
-        vehicles, lambda each: (each, _review(logbook, each, month, stated, costs))
-    )
+    factors, costs = asked_with.factors(grid_factor, co2), asked_with.named_amounts(part_cost, "--part-cost")
+    asked_with.check_parts(costs, logbook, vehicles)
+    found, refusals = asking.answered(vehicles, lambda each: _reviewed(logbook, each, month, factors, costs))
     _print_json([one for _, one in found]) if json else _print(found)
     asking.leave(refusals)
 
 
-def _review(
+def _reviewed(
     logbook: Logbook,
     vehicle: Vehicle,
     month: str | None,
-    stated: Mapping[str, float],
+    factors: Mapping[str, float],
     costs: Mapping[str, float],
-) -> Review:
+) -> tuple[Vehicle, Review]:
     from energytrack.inference.review.review import review as reviewed
 
-    own = {row.name for row in logbook.modifications(vehicle.name)}
-    return reviewed(
-        **asking.tables(logbook, vehicle),
-        month=month,
-        carrier=vehicle.carrier,
-        co2_kg_per_unit={**own_factors(vehicle), **stated},
-        part_costs={name: cost for name, cost in costs.items() if name in own},
-        typed_in=(vehicle.distance_unit, vehicle.typed_unit),
-        today=dt.date.today(),
-    )
-
-
-def check_parts(costs: Mapping[str, float], logbook: Logbook, vehicles: list[Vehicle]) -> None:
-    """Raises UnknownNameError for a modification that none of the vehicles has."""
-    names = {row.name for each in vehicles for row in logbook.modifications(each.name)}
-    unknown = next((name for name in costs if name not in names), None)
-    if unknown is not None:
-        raise UnknownNameError(f"no modification named {unknown!r}; logged: {', '.join(sorted(names)) or 'none'}")
-
-
-def own_factors(vehicle: Vehicle) -> dict[str, float]:
-    """kg of CO2 per unit of each carrier, as the logbook states them for this vehicle."""
-    stated = {vehicle.carrier: vehicle.co2_kg, vehicle.second_carrier: vehicle.second_co2_kg}
-    return {carrier: kg for carrier, kg in stated.items() if carrier is not None and kg is not None}
-
-
-def factors(grid: str | None, typed: list[str] | None) -> dict[str, float]:
-    """kg of CO2 per unit of each carrier stated. Raises EntryError."""
-    found = named_amounts(typed, "--co2")
-    if grid is not None:
-        found["electricity"] = parse_number(grid, "grid factor") / 1000
-    return found
-
-
-def named_amounts(typed: list[str] | None, option: str) -> dict[str, float]:
-    """NAME=NUMBER as typed, by name. Raises EntryError."""
-    found = {}
-    for each in typed or ():
-        name, mark, value = each.rpartition("=")
-        if not mark or not name.strip():
-            raise EntryError(f"{option} {each!r} is not written as NAME=NUMBER, such as {_EXAMPLES[option]}")
-        found[name.strip()] = parse_number(value, f"{option} of {name.strip()}")
-    return found
-
-
-_EXAMPLES = {"--co2": "diesel=2.62", "--part-cost": '"side skirts=350"'}
+    return vehicle, reviewed(**asked_with.asked(logbook, vehicle, month, factors, costs, dt.date.today()))
 
 
 def _print_json(found: list[Review]) -> None:

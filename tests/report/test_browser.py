@@ -22,7 +22,7 @@ addEventListener("load", () => {
   const page = document.documentElement, pictures = [...document.querySelectorAll("svg")];
   const inside = (a, b) => a.left >= b.left - 1 && a.right <= b.right + 1
     && a.top >= b.top - 1 && a.bottom <= b.bottom + 1;
-  const meet = (a, b) => Math.min(a.right, b.right) - Math.max(a.left, b.left) > 1
+  const meet = (a, b) => Math.min(a.right, b.right) - Math.max(a.left, b.left) > -3
     && Math.min(a.bottom, b.bottom) - Math.max(a.top, b.top) > 2;
   const found = {width: page.clientWidth, scroll: page.scrollWidth, wide: [], cut: [], over: [], words: 0, small: 99};
   for (const each of document.querySelectorAll(".wide"))

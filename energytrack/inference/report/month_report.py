@@ -23,11 +23,11 @@ from energytrack.inference.describe import covariates_of, noise_of
 from energytrack.inference.graded import averaged
 from energytrack.inference.model import Model, fit_model
 from energytrack.inference.regimes.find import find_regimes
+from energytrack.inference.regimes.places import FEWEST
 from energytrack.inference.report.curves import curves_of
 from energytrack.inference.report.results import MonthReport, Scatter, Tried
 from energytrack.inference.results import Assessment
 from energytrack.inference.review.cut import entries_until, fitted_until
-from energytrack.inference.review.levels import FEWEST
 from energytrack.inference.review.month import Month, month_of
 from energytrack.inference.review.review import review
 from energytrack.logbook.records import Event
@@ -35,6 +35,7 @@ from energytrack.logbook.records import Event
 if TYPE_CHECKING:
     import pandas as pd
 
+_TABLES = ("capacity", "unit", "weather", "two_carriers")
 _SAME_PLACE_KM = 0.5  # no odometer shows less
 
 
@@ -53,7 +54,7 @@ def month_report(
     """
     reviewed = review(entries, modifications, events=events, confidence=confidence, typed_in=typed_in, **asked)
     month, vehicle = month_of(reviewed.month), reviewed.vehicle or None
-    own: dict[str, Any] = {k: asked[k] for k in ("capacity", "unit", "weather", "two_carriers") if k in asked}
+    own: dict[str, Any] = {name: asked[name] for name in _TABLES if name in asked}
     kept = entries_until(observe_log(entries, None, events=events, **own)[2], month)
     rows = fitted_until([] if modifications is None else modifications_from_frame(modifications, vehicle), kept, month)
     tables: dict[str, Any] = {

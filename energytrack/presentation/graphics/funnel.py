@@ -17,6 +17,7 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
 _TARGETS_SHOWN = 4  # at most so many times the target to either side, unless the shift itself lies further
+_TICKS = 5  # intervals at most, so that long distances stay apart
 _FEW = 12  # looks up to which each range is drawn by itself as well
 
 
@@ -53,6 +54,7 @@ def _draw(axes: Axes, a: Assessment, driven_km: Sequence[float], unit: str) -> N
     axes.set_xlim(left=0.0)
     axes.set_xlabel(f"distance driven with it, {unit}")
     axes.set_ylabel("shift of consumption, %")
+    axes.locator_params(axis="x", nbins=_TICKS)
     axes.xaxis.set_major_formatter(lambda value, _: f"{value:,.0f}")
     axes.yaxis.set_major_formatter(lambda value, _: f"{value:+g}" if value else "0")
     axes.figure.legend(loc="outside lower center", ncols=2, frameon=False, fontsize="small")

@@ -25,6 +25,7 @@ _MOST_DOTS = 300
 _LONGEST = 40  # characters of a name in the legend
 _ROW, _ROWS = 0.045, 4  # of the axes' height: letters that would stand on each other go one row up
 _HEIGHT, _LINE = 4.2, 0.2  # inches, without the legend and of a line in it
+_TICKS_PER_INCH = 1.1  # at most, so that long odometer values stay apart
 _APART = 0.02  # of the axes' width
 
 
@@ -40,7 +41,8 @@ def draw(
     legend = 3 + 2 * bool(report.breaks) + (len(lettered(marks)) if spelled_out else 0)
     height = _HEIGHT + _LINE * ceil(legend / 2)
     said = alternative(report, vehicle)
-    return Drawing(lambda axes: _draw(axes, report, vehicle, marks, spelled_out), said, height, width)
+    ticks = int(_TICKS_PER_INCH * width)
+    return Drawing(lambda axes: _draw(axes, report, vehicle, marks, ticks, spelled_out), said, height, width)
 
 
 def alternative(report: RegimeReport, vehicle: Vehicle) -> str:
@@ -56,7 +58,9 @@ def _level(regime: Regime, vehicle: Vehicle) -> str:
     return f"{figure} from {start} to {end}"
 
 
-def _draw(axes: Axes, report: RegimeReport, vehicle: Vehicle, marks: Sequence[Mark], spelled_out: bool) -> None:
+def _draw(
+    axes: Axes, report: RegimeReport, vehicle: Vehicle, marks: Sequence[Mark], ticks: int, spelled_out: bool
+) -> None:
     unit = vehicle.distance_unit
     _segments(axes, report, vehicle)
     for number, regime in enumerate(report.regimes):
@@ -74,6 +78,7 @@ def _draw(axes: Axes, report: RegimeReport, vehicle: Vehicle, marks: Sequence[Ma
     _marks(axes, marks, unit, spelled_out)
     axes.set_xlabel(f"odometer, {unit}")
     axes.set_ylabel(f"consumption at reference conditions, {consumption_unit(vehicle).label}")
+    axes.locator_params(axis="x", nbins=ticks)
     axes.xaxis.set_major_formatter(lambda value, _: f"{value:,.0f}")
     axes.figure.legend(loc="outside lower center", ncols=2, frameon=False, fontsize="small")
 
