@@ -62,7 +62,8 @@ def _difference(one: Design, other: Design, unit: str) -> str:
     saved = (one.distance_km or 0.0) - (other.distance_km or 0.0)
     if abs(saved) < 0.02 * (one.distance_km or 0.0):
         return "no difference to speak of"
-    return f"about {figures.distance(abs(saved), unit, digits=1)} {'less' if saved > 0 else 'more'}"
+    said = join(f"{figures.significant(figures.in_unit(abs(saved), unit), 1)} {unit}")
+    return f"about {said} {'less' if saved > 0 else 'more'}"
 
 
 def _takes(design: Design | None, unit: str) -> str:

@@ -373,7 +373,7 @@ def test_a_known_change_is_logged_and_answered(tmp_path: Path) -> None:
     assert "It costs energy" not in said
     listed = json.loads(run(path, "mod", "list", "--json").stdout)["modifications"]
     assert (listed[0]["known"], listed[0]["reversible"]) == ([5.0, 12.0], True)
-    assert run(path, "mod", "list").stdout.splitlines()[-1].endswith("+5 to +12 %")
+    assert run(path, "mod", "list").stdout.splitlines()[-1].endswith("+5 to +12 % expected")
 
 
 @pytest.mark.parametrize("known", ["9:4", "-4:9", "0:5", "4", "4:", "four:nine", "5:900", "nan:9"])
