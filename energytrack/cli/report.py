@@ -54,9 +54,10 @@ def report(
     date: options.Date = None,
     json: options.Json = False,
 ) -> None:
-    """Write a month's report to a file: the review, figures, and the test of each modification.
+    """Write a month's report to a file.
 
-    One HTML file that needs nothing beside itself, or Markdown with its figures in a folder.
+    The review, the test of each modification, and figures, as one HTML file that needs nothing beside itself, or as
+    Markdown with its figures in a folder.
     """
     from energytrack.presentation.report.writing import check, check_folder
 
