@@ -74,7 +74,7 @@ def report(
     asked_with.check_parts(costs, logbook, vehicles)
     found, refusals = _found(logbook, vehicles, month, factors, costs, today)
     if found:
-        drawn = _write(found, today, target, form, folder, force)
+        drawn = _write(_page(logbook, found, month, today), target, form, folder, force)
         _told(target, folder, drawn, json=json)
     asking.leave(refusals)
 
@@ -125,14 +125,23 @@ def _found(
         return asking.answered(by_name, answer)
 
 
-def _write(
-    found: list[_Found], today: dt.date, target: Path, form: str, folder: Path | None, force: bool
-) -> list[Path]:
-    from energytrack.presentation.report.figures import write_figures
+def _page(logbook: Logbook, found: list[_Found], month: str | None, today: dt.date) -> Page:
+    """With all vehicles together first, where there are several."""
     from energytrack.presentation.report.report import page_of
+
+    if len(found) == 1:
+        return page_of(found, today, CAUTIONS)
+    from energytrack.inference.fleet.assess_fleet import assess_fleet
+    from energytrack.inference.fleet.logs import fleet_logs
+
+    together = assess_fleet(fleet_logs(logbook, [vehicle for vehicle, _ in found]), month=month)
+    return page_of(found, today, CAUTIONS, together)
+
+
+def _write(page: Page, target: Path, form: str, folder: Path | None, force: bool) -> list[Path]:
+    from energytrack.presentation.report.figures import write_figures
     from energytrack.presentation.report.writing import write
 
-    page = page_of(found, today, CAUTIONS)
     text = _text(page, form, target, folder)
     drawn = [] if folder is None else write_figures(page, folder, force=force)
     write(text, target, form, force=force)

@@ -175,7 +175,7 @@ def _noise(found: MonthReport, vehicle: Vehicle, name: str) -> Section:
     own = found.scatter
     sources = sources_of(own.noise, own.segment_energy, vehicle.unit, charges_only=own.charges_only)
     rows = tuple(_source(each) for each in sources)
-    heads = ("source", "sd, of a segment", "share of the variance", "")
+    heads = ("source", "sd, of a segment", "share of the variance", "detail")
     table = Table("Scatter of one segment, from one known level to the next", heads, rows, figures=True)
     if any(each.share is None for each in sources):
         return Section("Scatter", tables=(table,))
