@@ -84,8 +84,9 @@ def _reference(found: Review, vehicle: Vehicle) -> tuple[str, ...]:
     values, unit = found.reference_conditions, vehicle.distance_unit
     said = [join(f"{values[name]:.0f} °C") for name in (_TEMPERATURE,) if name in values]
     said += [join(f"{figures.in_unit(values[name], unit):.0f} {unit}/h") for name in (_SPEED,) if name in values]
-    said += ["driving on fuel alone"] if ELECTRIC in values else []
-    return (f"Reference conditions, the means over this log: {', '.join(said)}.",) if said else ()
+    means = [f"{' and '.join(said)}, the means over this log"] if said else []
+    fuel = ["driving on fuel alone"] if ELECTRIC in values else []
+    return (f"Reference conditions: {'; '.join([*means, *fuel])}.",) if means or fuel else ()
 
 
 def _level(value: float, span: tuple[float, float] | None, vehicle: Vehicle) -> tuple[str, str]:
