@@ -54,9 +54,10 @@ def report(
     date: options.Date = None,
     json: options.Json = False,
 ) -> None:
-    """Write a month's report to a file: the review, figures, and the test of each modification.
+    """Write a month's report to a file.
 
-    One HTML file that needs nothing beside itself, or Markdown with its figures in a folder.
+    The review, the test of each modification, and figures, as one HTML file that needs nothing beside itself, or as
+    Markdown with its figures in a folder.
     """
     from energytrack.presentation.report.writing import check, check_folder
 
@@ -73,7 +74,7 @@ def report(
     asked_with.check_parts(costs, logbook, vehicles)
     found, refusals = _found(logbook, vehicles, month, factors, costs, today)
     if found:
-        drawn = _write(found, today, target, form, folder, force)
+        drawn = _write(_page(logbook, found, month, today), target, form, folder, force)
         _told(target, folder, drawn, json=json)
     asking.leave(refusals)
 
@@ -124,14 +125,23 @@ def _found(
         return asking.answered(by_name, answer)
 
 
-def _write(
-    found: list[_Found], today: dt.date, target: Path, form: str, folder: Path | None, force: bool
-) -> list[Path]:
-    from energytrack.presentation.report.figures import write_figures
+def _page(logbook: Logbook, found: list[_Found], month: str | None, today: dt.date) -> Page:
+    """With all vehicles together first, where there are several."""
     from energytrack.presentation.report.report import page_of
+
+    if len(found) == 1:
+        return page_of(found, today, CAUTIONS)
+    from energytrack.inference.fleet.assess_fleet import assess_fleet
+    from energytrack.inference.fleet.logs import fleet_logs
+
+    together = assess_fleet(fleet_logs(logbook, [vehicle for vehicle, _ in found]), month=month)
+    return page_of(found, today, CAUTIONS, together)
+
+
+def _write(page: Page, target: Path, form: str, folder: Path | None, force: bool) -> list[Path]:
+    from energytrack.presentation.report.figures import write_figures
     from energytrack.presentation.report.writing import write
 
-    page = page_of(found, today, CAUTIONS)
     text = _text(page, form, target, folder)
     drawn = [] if folder is None else write_figures(page, folder, force=force)
     write(text, target, form, force=force)

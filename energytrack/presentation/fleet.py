@@ -32,8 +32,8 @@ _VERDICTS: dict[Verdict, str] = {
 
 def render(found: FleetAssessment, vehicles: Mapping[str, Vehicle], width: int = 80) -> list[Text]:
     """The whole review. vehicles: by name, for their units."""
-    lines = [Text(line, style="bold") for line in wrap(_first(found), width)]
-    lines += [Text(line) for line in wrap(_attention(found), width)]
+    lines = [Text(line, style="bold") for line in wrap(first(found), width)]
+    lines += [Text(line) for line in wrap(attention(found), width)]
     rows = [each for each in found.vehicles if each.deviation is not None]
     if rows:
         lines += [Text(), *_table(rows, vehicles, width)]
@@ -47,25 +47,32 @@ def render(found: FleetAssessment, vehicles: Mapping[str, Vehicle], width: int =
         if doubted:
             second = f"entries that stand out from their neighbours, worth a second look: {', '.join(doubted)}"
             lines += [*map(Text, bullets([second], "! ", width))]
-    others = [each for each in found.vehicles if each.deviation is None]
-    if others:
-        said = [f"{plain_text(each.vehicle)}: {plain_text(each.message or each.why_none)}" for each in others]
+    said = not_held(found)
+    if said:
         lines += [Text(), Text("not held against their record"), *map(Text, bullets(said, "  ", width))]
-    alone = _alone(found)
+    alone = alone_of(found)
     if alone:
         lines += [Text(), Text("fitted to one vehicle"), *map(Text, bullets(alone, "  ", width))]
     lines += [line for pooled in found.pooled for line in [Text(), *_pooled(pooled, found, vehicles, width)]]
     return lines
 
 
-def _first(found: FleetAssessment) -> str:
+def not_held(found: FleetAssessment) -> list[str]:
+    """Vehicles that are not held against their record, and why."""
+    others = [each for each in found.vehicles if each.deviation is None]
+    return [f"{plain_text(each.vehicle)}: {plain_text(each.message or each.why_none)}" for each in others]
+
+
+def first(found: FleetAssessment) -> str:
+    """The fleet's month in a sentence."""
     year, month = found.month.split("-")
     amounts = [join(f"{amount:,.0f} {unit}") for unit, amount in found.energy.items()]
     parts = [_count(len(found.vehicles), "vehicle"), join(f"{found.distance_km:,.0f} km"), *amounts]
     return f"{calendar.month_name[int(month)]} {year}: {', '.join(parts)}."
 
 
-def _attention(found: FleetAssessment) -> str:
+def attention(found: FleetAssessment) -> str:
+    """Which vehicles need it."""
     called = found.attention
     if not called:
         return "No vehicle stands further from its own record than chance explains."
@@ -83,7 +90,7 @@ def _attention(found: FleetAssessment) -> str:
 
 def _table(rows: Sequence[VehicleReview], vehicles: Mapping[str, Vehicle], width: int) -> list[Text]:
     """Columns; a name too wide for its own stands on a line above its row."""
-    cells = [_cells(each, vehicles[each.vehicle]) for each in rows]
+    cells = [cells_of(each, vehicles[each.vehicle]) for each in rows]
     bare = max(cells_wide(line) for line in aligned([_HEAD, *(("!", "", *row[2:]) for row in cells)], _RIGHT))
     room = width - bare + len("vehicle")
     fitted = [row if cells_wide(plain_text(row[1])) <= room else (row[0], "", *row[2:]) for row in cells]
@@ -98,7 +105,8 @@ def _table(rows: Sequence[VehicleReview], vehicles: Mapping[str, Vehicle], width
     return shown
 
 
-def _cells(each: VehicleReview, vehicle: Vehicle) -> tuple[str, ...]:
+def cells_of(each: VehicleReview, vehicle: Vehicle) -> tuple[str, ...]:
+    """A row: call, name, driven, used, expected, unit, difference, standard errors. It has a deviation."""
     off = each.deviation
     assert off is not None
     display = vehicle.display if each.unit == vehicle.unit else None  # in kWh for tank and battery together
@@ -116,7 +124,7 @@ def _cells(each: VehicleReview, vehicle: Vehicle) -> tuple[str, ...]:
     )
 
 
-def _alone(found: FleetAssessment) -> list[str]:
+def alone_of(found: FleetAssessment) -> list[str]:
     """Modifications that are not pooled, with their verdicts."""
     pooled = {each.modification for each in found.pooled}
     return [
@@ -137,7 +145,19 @@ def _brief(answer: BriefAnswer) -> str:
 
 
 def _pooled(found: PooledShift, fleet: FleetAssessment, vehicles: Mapping[str, Vehicle], width: int) -> list[Text]:
-    title = f"{plain_text(found.modification)}, pooled over {_count(len(found.vehicles), 'vehicle')}"
+    title, rows = pooled_title(found), pooled_rows(found, fleet, vehicles)
+    return [*(Text(line, style="bold") for line in wrap(title, width)), *map(Text, labelled(rows, width))]
+
+
+def pooled_title(found: PooledShift) -> str:
+    """Of its rows."""
+    return f"{plain_text(found.modification)}, pooled over {_count(len(found.vehicles), 'vehicle')}"
+
+
+def pooled_rows(
+    found: PooledShift, fleet: FleetAssessment, vehicles: Mapping[str, Vehicle]
+) -> list[tuple[str, str]]:
+    """What a pooled shift says, each with its label."""
     unit = _common_unit(found, vehicles)
     error, mixed = found.standard_error_percent, found.heterogeneity
     shift = figures.percent(found.shift_percent, error, signed=True)
@@ -158,7 +178,7 @@ def _pooled(found: PooledShift, fleet: FleetAssessment, vehicles: Mapping[str, V
         said = [f"{plain_text(each.vehicle)} {join(f'+{each.gain_percent:.1g} %')}" for each in best]
         rows.append(("  most per km", f"{', '.join(said)} of what is known, by their next {join('1,000 km')}"))
     rows.append(("  one by one", _one_by_one(found.modification, fleet)))
-    return [*(Text(line, style="bold") for line in wrap(title, width)), *map(Text, labelled(rows, width))]
+    return rows
 
 
 def _to_go(found: PooledShift, unit: str) -> str:

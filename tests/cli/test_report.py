@@ -63,6 +63,9 @@ def test_markdown_with_its_figures_in_a_folder(book: Path, tmp_path: Path) -> No
     for each in said["figures"]:
         assert Path(each).is_file()
         assert f"](month-figures/{Path(each).name})" in text
+    if sys.platform != "win32":
+        assert (tmp_path / "month-figures").stat().st_mode & 0o777 == 0o700
+        assert {Path(each).stat().st_mode & 0o777 for each in said["figures"]} == {0o600}
 
 
 def test_an_earlier_month_is_told_by_what_was_known_then(book: Path, tmp_path: Path) -> None:

@@ -9,6 +9,7 @@ from pathlib import Path
 
 from energytrack.cli.cautions import CAUTIONS
 from energytrack.cli.questions import tables
+from energytrack.inference.fleet.results import FleetAssessment
 from energytrack.inference.report.month_report import month_report
 from energytrack.inference.report.results import MonthReport
 from energytrack.logbook.opening import open_logbook
@@ -69,5 +70,7 @@ def reported(path: Path) -> list[tuple[Vehicle, MonthReport]]:
     ]
 
 
-def page(found: list[tuple[Vehicle, MonthReport]], day: dt.date = TODAY) -> Page:
-    return page_of(found, day, CAUTIONS)
+def page(
+    found: list[tuple[Vehicle, MonthReport]], day: dt.date = TODAY, fleet: FleetAssessment | None = None
+) -> Page:
+    return page_of(found, day, CAUTIONS, fleet)

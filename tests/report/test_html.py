@@ -11,6 +11,7 @@ from collections import Counter
 import html5lib
 import pytest
 
+from energytrack.inference.fleet.results import FleetAssessment
 from energytrack.inference.report.results import MonthReport
 from energytrack.logbook.records import Vehicle
 from energytrack.presentation.report.html import html
@@ -100,11 +101,24 @@ def test_names_are_shown_as_they_were_typed(text: str, root: ET.Element) -> None
     assert "&lt;script&gt;alert(1)&lt;/script&gt;" in text
 
 
-def test_the_same_bytes_every_time_and_only_the_stated_day_changes(found: Found, text: str) -> None:
-    assert html(logs.page(found)) == text
-    later = html(logs.page(found, dt.date(2026, 2, 3)))
+def test_the_same_bytes_every_time_and_only_the_stated_day_changes(
+    found: Found, fleet: FleetAssessment, text: str
+) -> None:
+    assert html(logs.page(found, fleet=fleet)) == text
+    later = html(logs.page(found, dt.date(2026, 2, 3), fleet))
     changed = [(a, b) for a, b in zip(text.splitlines(), later.splitlines(), strict=True) if a != b]
     assert [re.findall(r"\d{4}-\d\d-\d\d", b) for _, b in changed] == [["2026-02-03"]]
+
+
+def test_several_vehicles_stand_together_first(root: ET.Element, fleet: FleetAssessment) -> None:
+    articles = every(root, "article")
+    assert articles[0].get("id") == "all-vehicles"
+    assert len(articles) == 3
+    (table,) = every(articles[0], "table")
+    names = [words(each) for each in every(table, "th") if each.get("scope") == "row"]
+    assert names == [each.vehicle for each in fleet.vehicles]
+    assert {*names} == {logs.VAN, logs.OTHER}
+    assert [link.get("href") for link in every(root, "a")] == [f"#{each.get('id')}" for each in articles]
 
 
 def test_it_says_what_the_review_says(root: ET.Element, found: Found) -> None:

@@ -6,6 +6,7 @@ Nothing of a user's own matplotlib settings is used, and no window is opened.
 from __future__ import annotations
 
 import io
+import logging
 import re
 import warnings
 from collections.abc import Callable, Iterator
@@ -48,6 +49,7 @@ class Drawing:
 
 def need_matplotlib() -> None:
     """Raises ReportError where matplotlib is not installed."""
+    logging.getLogger("matplotlib").setLevel(logging.ERROR)  # it tells of its font cache on standard error
     try:
         import matplotlib  # noqa: F401
     except ImportError:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from pathlib import Path
 
 from energytrack.errors import ReportError
@@ -26,12 +27,16 @@ def write(drawing: canvas.Drawing, path: Path, *, force: bool = False) -> None:
     check(path, force=force)
     data = canvas.png(drawing) if path.suffix.lower() == ".png" else (_PROLOGUE + canvas.svg(drawing)).encode()
     try:
-        with path.open("wb" if force else "xb") as file:
+        with open(path, "wb" if force else "xb", opener=_for_its_owner) as file:
             file.write(data)
     except FileExistsError:
         raise ReportError(_taken(path)) from None
     except OSError as failure:
         raise ReportError(f"cannot write {path}: {failure.strerror}; name another file") from failure
+
+
+def _for_its_owner(path: str, flags: int) -> int:
+    return os.open(path, flags, 0o600)
 
 
 def _taken(path: Path) -> str:

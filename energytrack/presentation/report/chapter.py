@@ -84,8 +84,9 @@ def _reference(found: Review, vehicle: Vehicle) -> tuple[str, ...]:
     values, unit = found.reference_conditions, vehicle.distance_unit
     said = [join(f"{values[name]:.0f} °C") for name in (_TEMPERATURE,) if name in values]
     said += [join(f"{figures.in_unit(values[name], unit):.0f} {unit}/h") for name in (_SPEED,) if name in values]
-    said += ["driving on fuel alone"] if ELECTRIC in values else []
-    return (f"Reference conditions, the means over this log: {', '.join(said)}.",) if said else ()
+    means = [f"{' and '.join(said)}, the means over this log"] if said else []
+    fuel = ["driving on fuel alone"] if ELECTRIC in values else []
+    return (f"Reference conditions: {'; '.join([*means, *fuel])}.",) if means or fuel else ()
 
 
 def _level(value: float, span: tuple[float, float] | None, vehicle: Vehicle) -> tuple[str, str]:
@@ -175,7 +176,7 @@ def _noise(found: MonthReport, vehicle: Vehicle, name: str) -> Section:
     own = found.scatter
     sources = sources_of(own.noise, own.segment_energy, vehicle.unit, charges_only=own.charges_only)
     rows = tuple(_source(each) for each in sources)
-    heads = ("source", "sd, of a segment", "share of the variance", "")
+    heads = ("source", "sd, of a segment", "share of the variance", "detail")
     table = Table("Scatter of one segment, from one known level to the next", heads, rows, figures=True)
     if any(each.share is None for each in sources):
         return Section("Scatter", tables=(table,))
