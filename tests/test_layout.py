@@ -16,8 +16,8 @@ LIGHT = [
     "inference.rehearsal_results",
     "inference.regimes.results",
     *(f"inference.watch.{name}" for name in ("monitor", "kept", "echo")),
-    *("inference.review.results", "inference.review.month"),
-    *(f"inference.fleet.{name}" for name in ("results", "logs", "month")),
+    *(f"inference.review.{name}" for name in ("results", "month", "cut", "driven")),
+    *(f"inference.fleet.{name}" for name in ("results", "logs")),
     *(f"consumption.{name}" for name in ("positions", "segments", "shares", "slips", "meaning", "terms")),
     *("consumption.two_carriers", "consumption.energy_content"),
 ]

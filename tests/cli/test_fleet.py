@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 import subprocess
 import sys
 
@@ -63,6 +64,17 @@ def test_json_is_the_same_answer(script: str, logbook: str) -> None:
     assert found["month"] == "2024-02"
     assert found["pooled"][0]["modification"] == "part"
     assert all(each["deviation"] is None or "z" in each["deviation"] for each in found["vehicles"])
+
+
+def test_a_month_reads_the_same_in_a_fleet_and_alone() -> None:
+    asked = ("-m", "energytrack", "--logbook", DEMO, "review", "--month", "2026-10")
+    together = python(*asked, "--fleet").stdout
+    for vehicle in ("van", "car", "electric"):
+        alone = re.match(rf"{vehicle} in 2026-10: ([\d,]+) km at ([\d.]+)", python(*asked, "--vehicle", vehicle).stdout)
+        row = re.search(rf"^  {vehicle} +([\d,]+) km +([\d.]+) ", together, re.MULTILINE)
+        assert alone is not None
+        assert row is not None
+        assert row.groups() == alone.groups()
 
 
 def enough(*words: str) -> subprocess.CompletedProcess[str]:

@@ -11,12 +11,12 @@ from itertools import chain
 from energytrack.errors import InferenceError, UnknownNameError
 from energytrack.inference.fleet.discovery import adjusted
 from energytrack.inference.fleet.logs import VehicleLog, pack
-from energytrack.inference.fleet.month import Month, month_of, month_with
 from energytrack.inference.fleet.pooled import pooled_shifts
 from energytrack.inference.fleet.results import FleetAssessment, VehicleReview
 from energytrack.inference.fleet.vehicle import Asked, Chunk, review_chunk
 from energytrack.inference.jobs import Progress, run_all
 from energytrack.inference.question import Question
+from energytrack.inference.review.month import Month, month_of, month_with
 
 _CHUNK = 8  # vehicles a job: about half a second, beside which its overhead is nothing
 
@@ -61,7 +61,7 @@ def assess_fleet(
         energy[each.unit] += each.energy
     pooled = pooled_shifts(vehicles, confidence=confidence, power=power)
     return FleetAssessment(
-        month=asked.month.name,
+        month=str(asked.month),
         confidence=confidence,
         false_discovery_rate=false_discovery_rate,
         vehicles=tuple(map(_without_roads, vehicles)),

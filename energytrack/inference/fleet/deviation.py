@@ -16,7 +16,6 @@ import numpy as np
 from energytrack.consumption.observations import Observations
 from energytrack.consumption.oddities import set_aside
 from energytrack.inference import bounds
-from energytrack.inference.fleet.month import Month
 from energytrack.inference.fleet.results import Deviation
 from energytrack.inference.graded import averaged
 from energytrack.inference.looks import FEWEST_BASELINE
@@ -28,36 +27,20 @@ _ITSELF = "the month itself"
 _CONFOUNDED = 0.98  # correlation of the month with a modification's shares
 
 
-def shares_of(observed: Observations, month: Month) -> Array:
-    """Share of the days of each segment (n,) that lie in the month; of one within a day, whether that day does."""
-    end = observed.end_day
-    start = 2 * observed.mid_day - end
-    inside = np.minimum(end, month.last) - np.maximum(start, month.first - 1)
-    whole = end - start
-    at_once = ((end >= month.first) & (end <= month.last)).astype(np.float64)
-    shares: Array = np.where(whole > 0, np.clip(inside / np.maximum(whole, 1e-9), 0.0, 1.0), at_once)
-    return shares
+def deviation_of(known: Observations, shares: Array) -> tuple[Deviation | None, str, int]:
+    """The month against the record; why there is none, where there is none; how many of its segments are odd.
 
-
-def until(observed: Observations, month: Month) -> Observations:
-    """The log up to the end of the month: no segment that began after it."""
-    began = 2 * observed.mid_day - observed.end_day
-    return observed.head(int((began <= month.last).sum()))
-
-
-def deviation_of(observed: Observations, month: Month) -> tuple[Deviation | None, str, int]:
-    """The month against the record; why there is none, where there is none; how many of its segments are odd."""
-    known = until(observed, month)
-    inside = shares_of(known, month) > 0
+    known: the log up to the end of the month. shares (n,): of each segment's distance, driven in the month.
+    """
+    inside = shares > 0
     odd = sum(bool(inside[each.segment]) for each in set_aside(known).odd)
-    kept = set_aside(replace(known, confirmed=known.confirmed | inside)).kept
-    shares = shares_of(kept, month)
-    reason = _missing(kept, shares)
+    kept = set_aside(replace(known.adding(_ITSELF, shares), confirmed=known.confirmed | inside)).kept
+    reason = _missing(kept)
     if reason:
         return None, reason, odd
-    model = fit_model(averaged(kept.adding(_ITSELF, shares)), _ITSELF)
+    model = fit_model(averaged(kept), _ITSELF)
     shift = shift_of(model.fit)
-    measured = float(kept.energy @ shares / (kept.distance_km @ shares))
+    measured = float(known.energy @ shares / (known.distance_km @ shares))
     base = shift.base * model.scale.consumption
     p_value = min(1.0, 2 * bounds.mixture_tail(abs(shift.z), shift.freedom))
     return (
@@ -75,12 +58,14 @@ def deviation_of(observed: Observations, month: Month) -> tuple[Deviation | None
     )
 
 
-def _missing(kept: Observations, shares: Array) -> str:
+def _missing(kept: Observations) -> str:
+    *names, _ = kept.names
+    *columns, shares = kept.fitted.T
     if not (shares > 0).any():
         return "nothing closed between known levels"
     if (shares == 0).sum() < FEWEST_BASELINE:
         return f"its own record has fewer than {FEWEST_BASELINE} segments outside the month"
-    for name, column in zip(kept.names, kept.fitted.T, strict=True):
+    for name, column in zip(names, columns, strict=True):
         if np.ptp(column) > 0 and abs(np.corrcoef(column, shares)[0, 1]) > _CONFOUNDED:
             return f"the month and {name} cannot be told apart"
     return ""

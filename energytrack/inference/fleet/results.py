@@ -60,8 +60,8 @@ class VehicleReview:
 
     vehicle: str
     unit: str
-    distance_km: float = 0.0  # in the month, by the days of each segment
-    energy: float = 0.0
+    distance_km: float = 0.0  # driven in the month, of known consumption or not
+    energy: float = 0.0  # consumption as measured times that distance; 0 where nothing is measured
     deviation: Deviation | None = None
     why_none: str = ""  # no deviation: what is missing
     adjusted_p: float | None = None  # Benjamini and Hochberg (1995), over the vehicles of the fleet

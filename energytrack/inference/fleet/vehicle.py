@@ -2,19 +2,22 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
-from energytrack.consumption.observations import observe
-from energytrack.consumption.two_carriers import close_vehicle
+from energytrack.consumption.observations import Observations, observe
+from energytrack.consumption.segments import SegmentedLog
+from energytrack.consumption.two_carriers import close_vehicle, two_carriers_of
 from energytrack.errors import EnergytrackError
 from energytrack.inference.fleet.brief import brief
-from energytrack.inference.fleet.deviation import deviation_of, shares_of
+from energytrack.inference.fleet.deviation import deviation_of
 from energytrack.inference.fleet.logs import Packed, VehicleLog, unpack
-from energytrack.inference.fleet.month import Month
 from energytrack.inference.fleet.results import VehicleReview
 from energytrack.inference.question import Question
+from energytrack.inference.review.cut import entries_until, fitted_until
+from energytrack.inference.review.driven import account, driven, month_shares
+from energytrack.inference.review.month import Month
 from energytrack.inference.undeclared import Logged
 
 _FAULTS = (EnergytrackError, np.linalg.LinAlgError, ArithmeticError, ValueError)
@@ -54,28 +57,39 @@ def review(log: VehicleLog, asked: Asked) -> VehicleReview:
 
 
 def _review(log: VehicleLog, asked: Asked) -> VehicleReview:
-    segmented = close_vehicle(log.vehicle, log.entries, log.events)
-    observed = observe(segmented, log.modifications, (), log.weather)
+    segmented, observed = _measured(log)
+    until = _until(log, segmented, asked.month)
+    known, seen = (segmented, observed) if until is log else _measured(until)
+    month = driven(account(known), asked.month, two_carriers_of(log.vehicle))
+    row = VehicleReview(
+        log.vehicle.name, segmented.unit, distance_km=month.distance_km, energy=month.energy or 0.0
+    )
     if not len(observed):
         lacking = "no two entries tell the level they left" if segmented.lacks_levels else "fewer than two known levels"
-        return VehicleReview(log.vehicle.name, segmented.unit, message=f"nothing can be measured: {lacking}")
-    share = shares_of(observed, asked.month)
-    deviation, why_none, odd = deviation_of(observed, asked.month)
-    if deviation is None and not any(asked.month.holds(entry.date) for entry in log.entries):
-        why_none = "no entries in the month"
+        return replace(row, message=f"nothing can be measured: {lacking}")
+    deviation, why_none, odd = deviation_of(seen, np.array(month_shares(known, asked.month)))
     logged = Logged(log.modifications, log.events)
-    return VehicleReview(
-        vehicle=log.vehicle.name,
-        unit=segmented.unit,
-        distance_km=float(observed.distance_km @ share),
-        energy=float(observed.energy @ share),
+    return replace(
+        row,
         deviation=deviation,
-        why_none=why_none,
+        why_none=why_none if deviation or month.entries else "no entries in the month",
         odd_segments=odd,
-        answers=tuple(
-            brief(observed, segmented, logged, question) for question in _questions(log, asked)
-        ),
+        answers=tuple(brief(observed, segmented, logged, question) for question in _questions(log, asked)),
     )
+
+
+def _measured(log: VehicleLog) -> tuple[SegmentedLog, Observations]:
+    segmented = close_vehicle(log.vehicle, log.entries, log.events)
+    return segmented, observe(segmented, log.modifications, (), log.weather)
+
+
+def _until(log: VehicleLog, segmented: SegmentedLog, month: Month) -> VehicleLog:
+    """The log as far as the month is concerned; itself where that is all of it."""
+    entries = entries_until(segmented, month)
+    if len(entries) == len(log.entries):
+        return log
+    rows = fitted_until(log.modifications, entries, month)
+    return replace(log, entries=tuple(entries), modifications=tuple(rows))
 
 
 def _questions(log: VehicleLog, asked: Asked) -> list[Question]:

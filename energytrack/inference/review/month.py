@@ -8,6 +8,7 @@ from __future__ import annotations
 import datetime as dt
 import re
 from dataclasses import dataclass
+from functools import cached_property
 
 from energytrack.errors import InferenceError
 
@@ -22,12 +23,12 @@ class Month:
     def __str__(self) -> str:
         return f"{self.year:04d}-{self.number:02d}"
 
-    @property
+    @cached_property
     def first(self) -> int:
         """Date ordinal of its first day."""
         return dt.date(self.year, self.number, 1).toordinal()
 
-    @property
+    @cached_property
     def last(self) -> int:
         """Date ordinal of its last day."""
         return self.later(1).first - 1
@@ -45,6 +46,8 @@ class Month:
         """Share of the driving between entries of two days (ordinals) that falls into this month."""
         if start_day >= end_day:
             return 1.0 if self.holds(end_day) else 0.0
+        if end_day < self.first or start_day > self.last:
+            return 0.0
         start, end = start_day + 0.5, end_day + 0.5
         inside = min(end, self.last + 1.0) - max(start, float(self.first))
         return max(0.0, inside) / (end - start)

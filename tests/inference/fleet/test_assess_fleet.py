@@ -10,7 +10,7 @@ import pytest
 
 import energytrack as et
 from energytrack.errors import InferenceError, UnknownNameError
-from energytrack.inference.fleet.month import month_of
+from energytrack.inference.review.month import month_of
 from tests.fleets import fleet
 
 MONTH = "2024-03"
@@ -23,7 +23,8 @@ def logs():
     overlapping = (*broken.modifications, replace(broken.modifications[0], fitted_km=None))
     drawn[3] = replace(broken, modifications=overlapping)
     march = month_of(MONTH)
-    thirsty = [replace(e, energy=1.3 * e.energy if march.holds(e.date) else e.energy) for e in drawn[0].entries]
+    factors = [1.3 if march.holds(entry.date.toordinal()) else 1.0 for entry in drawn[0].entries]
+    thirsty = [replace(e, energy=k * e.energy) for e, k in zip(drawn[0].entries, factors, strict=True)]
     drawn[0] = replace(drawn[0], entries=tuple(thirsty))
     return drawn
 

@@ -9,8 +9,8 @@ import pytest
 from energytrack.consumption.frames import FramedLogbook
 from energytrack.inference.assess import assess
 from energytrack.inference.fleet.logs import fleet_logs, pack, unpack
-from energytrack.inference.fleet.month import month_of
 from energytrack.inference.fleet.vehicle import Asked, review
+from energytrack.inference.review.month import month_of
 from energytrack.logbook.opening import open_logbook
 from tests.documents import ROOT
 from tests.fleets import fleet, write
