@@ -21,7 +21,7 @@ def write_figures(page: Page, folder: Path, *, force: bool = False) -> list[Path
     """
     paths = [folder / f"{picture.name}.svg" for picture in pictures_of(page)]
     try:
-        folder.mkdir(exist_ok=True)
+        folder.mkdir(mode=0o700, exist_ok=True)
     except OSError as failure:
         raise ReportError(f"cannot make the folder {folder}: {failure.strerror}; name another") from None
     for path in paths:
