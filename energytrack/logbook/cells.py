@@ -8,10 +8,9 @@ import unicodedata
 from collections.abc import Callable
 from functools import lru_cache
 
-from energytrack.errors import EntryError
-from energytrack.logbook.checks import check_text
+from energytrack.logbook.checks import LONGEST_TEXT
 from energytrack.logbook.formulas import restored
-from energytrack.logbook.quantities import LARGEST, SMALLEST, in_short
+from energytrack.logbook.quantities import LARGEST, in_short
 
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]{1,3})?")
 _ISO = re.compile(r"([0-9]{4})-([0-9]{2})-([0-9]{2})(?:[T ][0-9]{2}:[0-9]{2}\S*)?")
@@ -27,10 +26,8 @@ class CellError(ValueError):
 def text_of(text: str) -> str:
     """Free text without control characters and line breaks, and without the mark that made it inert."""
     text = restored(text)
-    try:
-        check_text(text, "text")
-    except EntryError as error:
-        raise CellError(str(error)) from None
+    if len(text) > LONGEST_TEXT:
+        raise CellError(f"has {len(text):,} characters; shorten it to {LONGEST_TEXT:,}")
     if text.isprintable():
         return text
     return "".join(" " if unicodedata.category(c) in ("Cc", "Zl", "Zp") else c for c in text).strip()
@@ -51,7 +48,7 @@ def number(text: str) -> float:
     if _NUMBER.fullmatch(text) is None:
         raise CellError(_number_advice(text))
     value = float(text)
-    if value and not SMALLEST <= abs(value) <= LARGEST:
+    if abs(value) > LARGEST:
         raise CellError(f"{in_short(text)} is beyond anything measured on a vehicle; correct it")
     return value
 

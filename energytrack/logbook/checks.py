@@ -17,6 +17,7 @@ LARGEST_AMOUNT = 20_000.0  # L, kg or kWh: beyond the tanks and batteries of roa
 COLDEST_C, HOTTEST_C = -90.0, 60.0  # beyond any outside temperature met on Earth
 FASTEST_KMH = 500.0
 EARLIEST_YEAR = 1900
+LATEST_YEAR = 2999  # of a day to plan from: the months after it are days of the calendar too
 LARGEST_KNOWN_PERCENT = 100.0
 LARGEST_TARGET_PERCENT = 50.0
 LONGEST_NAME = 60  # keeps lists and answers readable
@@ -28,7 +29,9 @@ def parse_date(text: str) -> dt.date:
     day = text.strip()
     with suppress(ValueError):
         if len(day) == 10 and day[4::3] == "--":  # fromisoformat takes other forms of ISO 8601 too
-            return dt.date.fromisoformat(day)
+            found = dt.date.fromisoformat(day)
+            if found.year <= LATEST_YEAR:
+                return found
     wrong = f"date {in_short(text)} is not a day of the calendar"
     raise EntryError(f"{wrong} written as year-month-day, such as 2026-05-03")
 

@@ -9,7 +9,7 @@ from typing import Any
 from energytrack.errors import EntryError
 from energytrack.logbook.cells import CellError, date_reader, number_reader, text_of, yes_or_no
 from energytrack.logbook.checks import LARGEST_TARGET_PERCENT
-from energytrack.logbook.quantities import CONSUMPTION, DISTANCE, ENERGY, celsius, in_short
+from energytrack.logbook.quantities import CONSUMPTION, DISTANCE, ENERGY, SMALLEST, celsius, in_short
 from energytrack.logbook.records import CARRIERS, KINDS, UNITS
 
 Reader = Callable[[str], Any]
@@ -151,6 +151,8 @@ def _positive(number: Reader, what: str) -> Reader:
         value: float = number(text)
         if value <= 0:
             raise CellError(f"{in_short(text)}: {what} is more than 0; leave the cell empty if it is unknown")
+        if value < SMALLEST:
+            raise CellError(f"{in_short(text)} is beyond anything measured on a vehicle; correct it")
         return value
 
     return read

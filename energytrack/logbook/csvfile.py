@@ -14,6 +14,7 @@ from energytrack.logbook.records import Problem
 
 DELIMITERS = (",", ";", "\t")
 COLUMN_LIMIT = 1000
+HEADER_LIMIT = 1000  # lines; a file of nothing but empty ones is not read to its end
 LINE_LIMIT = 1_000_000  # characters, of a line and of a row; a cell is bounded by the csv module at 131,072
 _PACKED = {  # how files begin that hold others, by their formats' descriptions
     b"\x1f\x8b": "gzip",
@@ -126,13 +127,16 @@ def _rows(path: Path, encoding: str, delimiter: str) -> Iterator[tuple[int, list
         with path.open(encoding=encoding, newline="") as file:
             lines = BoundedLines(file, path)
             reader = csv.reader(lines, delimiter=delimiter, strict=True)
-            start = 1
+            start, has_header = 1, False
             try:
                 for row in reader:
                     if len(row) > COLUMN_LIMIT:
                         raise refused(start, f"{len(row)} columns are too many; keep at most {COLUMN_LIMIT}")
                     if any(row):
+                        has_header = True
                         yield start, row
+                    elif not has_header and start >= HEADER_LIMIT:
+                        raise refused(1, f"has no header in its first {HEADER_LIMIT:,} lines; name the columns there")
                     start = reader.line_num + 1
                     lines.left = LINE_LIMIT
             except csv.Error as error:
@@ -149,25 +153,22 @@ class BoundedLines:
 
     def __init__(self, file: TextIO, path: Path) -> None:
         self.left = LINE_LIMIT  # characters of this row; who reads rows of several lines sets it after each
-        self._file, self._path, self._number = file, path, 0
+        self._file, self._path = file, path
 
-    def __iter__(self) -> BoundedLines:
-        return self
+    def __iter__(self) -> Iterator[str]:
+        number = 0
+        while line := self._file.readline(self.left + 1):
+            number += 1
+            self.left -= len(line)
+            if self.left < 0:
+                raise self._refused(f"a row of more than {LINE_LIMIT:,} characters is no table row", number)
+            if "\0" in line:
+                advice = "contains a NUL byte: a binary file, or UTF-16; save it as CSV in UTF-8"
+                raise self._refused(advice, number)
+            yield line
 
-    def __next__(self) -> str:
-        line = self._file.readline(self.left + 1)
-        if not line:
-            raise StopIteration
-        self._number += 1
-        self.left -= len(line)
-        if self.left < 0:
-            raise self._refused(f"a row of more than {LINE_LIMIT:,} characters is no table row")
-        if "\0" in line:
-            raise self._refused("contains a NUL byte: a binary file, or UTF-16; save it as CSV in UTF-8")
-        return line
-
-    def _refused(self, message: str) -> UnreadableTableError:
-        return UnreadableTableError(Problem(message, str(self._path), self._number))
+    def _refused(self, message: str, number: int) -> UnreadableTableError:
+        return UnreadableTableError(Problem(message, str(self._path), number))
 
 
 def _meaning(error: str) -> str:

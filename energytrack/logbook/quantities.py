@@ -59,7 +59,7 @@ CONSUMPTION = MappingProxyType(
     }
 )
 
-SMALLEST, LARGEST = 1e-15, 1e15  # of a number that is not 0: squares, sums and logarithms stay finite
+SMALLEST, LARGEST = 1e-15, 1e15  # of a typed number that is not 0: squares, sums and quotients stay finite
 _NUMERIC = frozenset("0123456789+-.eE")  # float() also takes nan, inf, 1_000 and the digits of other scripts
 _DECIMAL_COMMA = r"[+-]?[0-9]+,[0-9]+"
 _GROUPED = r"[+-]?[0-9]{1,3}(?:[ ,.'_\u00a0\u202f][0-9]{3})+(?:[.,][0-9]+)?"

@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import contextlib
-import hashlib
 import io
+import sqlite3
 import sys
 import unicodedata
 from dataclasses import dataclass
@@ -68,9 +68,7 @@ def is_told(ended: Ended) -> bool:
     return ended.status == 1 and bool(lines) and all(line.startswith("energytrack: ") for line in lines)
 
 
-def digest(path: Path) -> str:
-    """Of a file's content, or of a folder's files with their names."""
-    if path.is_file():
-        return hashlib.sha256(path.read_bytes()).hexdigest()
-    held = sorted(each for each in path.rglob("*") if each.is_file() or each.is_symlink())
-    return hashlib.sha256("".join(f"{each}{digest(each)}" for each in held).encode()).hexdigest()
+def held(path: Path) -> str:
+    """What a logbook file holds, as SQL."""
+    with contextlib.closing(sqlite3.connect(path)) as connection:
+        return "\n".join(connection.iterdump())
