@@ -59,13 +59,13 @@ def obeyed(text: str) -> set[str]:
 
 
 def is_told(ended: Ended) -> bool:
-    """Done, not yet, or refused: one line of what is wrong, beside remarks of progress."""
+    """Done, not yet, or refused: one line of what is wrong, after one for each bad row of a table."""
     if ended.status in (0, 10):
         return True
     if ended.status == 2:  # of usage: by the parser of arguments, with a line of usage before it
         return "Error: " in ended.err or "Usage: " in ended.err
     lines = ended.err.splitlines()
-    return ended.status == 1 and bool(lines) and all(line.startswith("energytrack: ") for line in lines)
+    return ended.status == 1 and bool(lines) and lines[-1].startswith("energytrack: ")
 
 
 def held(path: Path) -> str:
