@@ -18,7 +18,7 @@ from energytrack.consumption.slips import named
 from energytrack.errors import EntryError
 from energytrack.logbook import revisions
 from energytrack.logbook.carriers import for_kind
-from energytrack.logbook.checks import check_date, check_measure, check_place, check_values, parse_date
+from energytrack.logbook.checks import check_date, check_measure, check_place, check_text, check_values, parse_date
 from energytrack.logbook.history import change_of
 from energytrack.logbook.records import Entry, Vehicle
 from energytrack.logbook.store import Store
@@ -74,6 +74,7 @@ def amend(
         cost, currency, False, False, place or "", note or "", extra or [],
     )  # fmt: skip
     flags = {"full": full, "missed": missed, "place": place, "note": note}
+    check_text(why, "reason")
     store = writable(context)
     chosen = the_vehicle(store, vehicle)
     with store.transaction():
@@ -95,6 +96,7 @@ def strike(
     json: options.Json = False,
 ) -> None:
     """Let an entry count no more. It stays in the history, and answers that change are told."""
+    check_text(why, "reason")
     store = writable(context)
     chosen = the_vehicle(store, vehicle)
     with store.transaction():

@@ -6,6 +6,8 @@ import io
 import os
 import signal
 import sys
+from collections.abc import Iterator
+from contextlib import contextmanager
 from enum import IntEnum
 from importlib import import_module
 from pathlib import Path
@@ -19,7 +21,7 @@ from energytrack.cli.context import LOGBOOK_VARIABLE
 from energytrack.cli.options import NegativeNumbers
 from energytrack.errors import EnergytrackError
 from energytrack.logbook import file
-from energytrack.presentation.plain import plain_text
+from energytrack.presentation.plain import in_a_line
 
 COMMANDS = {  # name -> module of energytrack.cli, and the function or group of commands in it
     "new": ("new", "new"),
@@ -48,8 +50,31 @@ COMMANDS = {  # name -> module of energytrack.cli, and the function or group of 
 }
 
 
+_USAGE_ERROR: type[Exception] = typer.BadParameter.__bases__[0]  # of the parser typer carries, or of its own package
+
+
+@contextmanager
+def _safely_told() -> Iterator[None]:
+    """What the parser of arguments says of a wrong one repeats it: on one line, with nothing a terminal obeys."""
+    try:
+        yield
+    except _USAGE_ERROR as error:
+        told: Any = error
+        said = in_a_line(told.format_message())
+        told.format_message = lambda: said
+        raise
+
+
 class LazyCommands(typer.core.TyperGroup):
     """Imports and builds only the command that is run: building all of them takes longer than `fillup` does."""
+
+    def make_context(self, *words: Any, **more: Any) -> Any:
+        with _safely_told():
+            return super().make_context(*words, **more)
+
+    def invoke(self, ctx: Any) -> Any:
+        with _safely_told():
+            return super().invoke(ctx)
 
     def list_commands(self, ctx: Any) -> list[str]:
         return list(COMMANDS)
@@ -119,12 +144,18 @@ def main() -> None:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         sys.exit(ExitStatus.REFUSED)
     except (EnergytrackError, OSError) as refusal:
-        _remark(str(refusal))
+        _remark(_said(refusal))
         sys.exit(ExitStatus.REFUSED)
     except KeyboardInterrupt:
         sys.exit(128 + signal.SIGINT)
 
 
+def _said(refusal: Exception) -> str:
+    if isinstance(refusal, OSError) and refusal.filename is not None:
+        return f"{refusal.filename} cannot be used: {refusal.strerror}; name another"
+    return str(refusal)
+
+
 def _remark(text: str) -> None:
     """One line on stderr."""
-    print(f"energytrack: {plain_text(text)}", file=sys.stderr, flush=True)
+    print(f"energytrack: {in_a_line(text)}", file=sys.stderr, flush=True)

@@ -19,7 +19,7 @@ from energytrack.cli.context import (
     writable,
 )
 from energytrack.errors import EntryError
-from energytrack.logbook.checks import check_date, check_odometer, check_reading
+from energytrack.logbook.checks import check_date, check_odometer, check_reading, check_text
 from energytrack.logbook.quantities import distance_text, parse_number
 from energytrack.logbook.records import Entry, Event, Vehicle
 from energytrack.logbook.store import Store
@@ -59,6 +59,8 @@ def event(
 
 def _check(happened: Event, vehicle: Vehicle, store: Store) -> None:
     check_date(happened.date, dt.date.today())
+    check_text(happened.what, "text")
+    check_text(happened.note, "note")
     if not happened.what.strip():
         raise EntryError("say what happened, such as 'winter tyres'")
     if happened.odometer_km is not None:

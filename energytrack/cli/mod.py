@@ -30,6 +30,7 @@ from energytrack.logbook.checks import (
     check_name,
     check_odometer,
     check_reading,
+    check_text,
     parse_date,
 )
 from energytrack.logbook.quantities import distance_text, parse_number
@@ -72,6 +73,7 @@ def fitted(
         day, km = _place(store, chosen, odometer, odometer_unit, date)
         graded = None if level is None else parse_number(level, "level")
         check_name(name, "modification")
+        check_text(note, "note")
         expected = _known(known)
         store.fit(chosen.name, name, day, km, _target(target), graded, note, expected, not not_reversible)
     _echo(chosen, "fitted", name, day, km, json, _declared(graded, expected))

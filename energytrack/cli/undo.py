@@ -10,6 +10,7 @@ from energytrack.cli import options, told
 from energytrack.cli.context import say, say_json, writable
 from energytrack.cli.reanswer import answer_lines, reanswered
 from energytrack.logbook import revisions
+from energytrack.logbook.checks import check_text
 from energytrack.logbook.history import change_of
 
 
@@ -20,6 +21,7 @@ def undo(
 ) -> None:
     """Take back the last change. Again: the one before. All stay in the history."""
     store = writable(context)
+    check_text(why, "reason")
     number = revisions.undo(store, why)
     done = change_of(store, number)
     touched = {revision.vehicle for revision in done.revisions}

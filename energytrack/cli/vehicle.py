@@ -11,7 +11,7 @@ from energytrack.cli import options
 from energytrack.cli.context import distance_unit, readable, say, say_json, writable
 from energytrack.errors import EntryError
 from energytrack.logbook.carriers import for_kind, in_total, kind_of
-from energytrack.logbook.checks import check_name
+from energytrack.logbook.checks import check_name, check_text
 from energytrack.logbook.quantities import (
     CONSUMPTION,
     ENERGY,
@@ -94,6 +94,7 @@ def described(
 ) -> Vehicle:
     """A vehicle from what was typed, with what is usual where nothing was. Raises EntryError."""
     check_name(name, "vehicle")
+    check_text(note, "note")
     if carrier not in CARRIERS:
         raise EntryError(f"unknown carrier {carrier!r}: use one of {', '.join(CARRIERS)}")
     typed_unit = unit or UNIT_OF_CARRIER[carrier]

@@ -8,6 +8,7 @@ from energytrack.errors import InferenceError
 from energytrack.inference import rules
 from energytrack.inference.results import Rule
 from energytrack.logbook.checks import LARGEST_TARGET_PERCENT
+from energytrack.logbook.quantities import SMALLEST
 
 
 @dataclass(frozen=True)
@@ -24,7 +25,7 @@ class Question:
     wait_days: float = 0.0  # from the log's last day until driving goes on
 
     def __post_init__(self) -> None:
-        if not 0 < 100 * self.target <= LARGEST_TARGET_PERCENT:
+        if not SMALLEST < 100 * self.target <= LARGEST_TARGET_PERCENT:
             asked = f"{100 * self.target:g}"
             raise InferenceError(f"the target must lie above 0 and at most at 50 percent, not {asked}: try 3")
         rules.check_rule(self.rule)

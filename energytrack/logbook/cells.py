@@ -8,9 +8,10 @@ import unicodedata
 from collections.abc import Callable
 from functools import lru_cache
 
+from energytrack.logbook.checks import LONGEST_TEXT
 from energytrack.logbook.formulas import restored
+from energytrack.logbook.quantities import LARGEST, in_short
 
-LARGEST = 1e15
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]{1,3})?")
 _ISO = re.compile(r"([0-9]{4})-([0-9]{2})-([0-9]{2})(?:[T ][0-9]{2}:[0-9]{2}\S*)?")
 _PARTS = re.compile(r"([0-9]{1,2})([./-])([0-9]{1,2})\2([0-9]{4})(?:[T ][0-9]{1,2}:[0-9]{2}\S*)?")
@@ -22,14 +23,11 @@ class CellError(ValueError):
     """What is wrong with the text of a cell and what to write instead."""
 
 
-def shown(text: str) -> str:
-    """The text as a message may show it: short, one line, nothing a terminal would obey."""
-    return repr(text if len(text) <= 40 else text[:40] + "...")
-
-
 def text_of(text: str) -> str:
     """Free text without control characters and line breaks, and without the mark that made it inert."""
     text = restored(text)
+    if len(text) > LONGEST_TEXT:
+        raise CellError(f"has {len(text):,} characters; shorten it to {LONGEST_TEXT:,}")
     if text.isprintable():
         return text
     return "".join(" " if unicodedata.category(c) in ("Cc", "Zl", "Zp") else c for c in text).strip()
@@ -42,7 +40,7 @@ def yes_or_no(text: str) -> bool:
         return True
     if word in _NO:
         return False
-    raise CellError(f"{shown(text)} is neither yes nor no; write yes or no")
+    raise CellError(f"{in_short(text)} is neither yes nor no; write yes or no")
 
 
 def number(text: str) -> float:
@@ -51,16 +49,16 @@ def number(text: str) -> float:
         raise CellError(_number_advice(text))
     value = float(text)
     if abs(value) > LARGEST:
-        raise CellError(f"{shown(text)} is beyond anything measured on a vehicle; correct it")
+        raise CellError(f"{in_short(text)} is beyond anything measured on a vehicle; correct it")
     return value
 
 
 def _number_advice(text: str) -> str:
     if re.fullmatch(r"[+-]?[0-9]+,[0-9]+", text):
-        return f"{shown(text)} has a comma; write {text.replace(',', '.')}, or import with --decimal-comma"
+        return f"{in_short(text)} has a comma; write {text.replace(',', '.')}, or import with --decimal-comma"
     if re.fullmatch(r"[+-]?[0-9]{1,3}([, '.\u00a0\u202f][0-9]{3})+([.,][0-9]*)?", text):
-        return f"{shown(text)} has thousands separators; write the plain number, or name the mark with --thousands"
-    return f"{shown(text)} is not a number; write digits with a decimal point and no unit, such as 41.32"
+        return f"{in_short(text)} has thousands separators; write the plain number, or name the mark with --thousands"
+    return f"{in_short(text)} is not a number; write digits with a decimal point and no unit, such as 41.32"
 
 
 def number_reader(decimal_comma: bool = False, thousands: str | None = None) -> Callable[[str], float]:
@@ -77,7 +75,7 @@ def number_reader(decimal_comma: bool = False, thousands: str | None = None) -> 
     def read(text: str) -> float:
         if form.fullmatch(text) is None:
             stated = f"decimal mark {mark!r}" + (f", thousands mark {thousands!r}" if thousands else "")
-            raise CellError(f"{shown(text)} is not a number as stated for this file ({stated})")
+            raise CellError(f"{in_short(text)} is not a number as stated for this file ({stated})")
         plain = drop.sub("", text) if drop else text
         return number(plain.replace(",", ".") if decimal_comma else plain)
 
@@ -95,12 +93,12 @@ def date_reader(day_first: bool = False, date_format: str | None = None) -> Call
             try:
                 return dt.datetime.strptime(text, date_format).date()
             except (ValueError, re.error):
-                raise CellError(f"{shown(text)} is not a date of the form {date_format}") from None
+                raise CellError(f"{in_short(text)} is not a date of the form {date_format}") from None
         if iso := _ISO.fullmatch(text):
             return _date(text, int(iso[1]), int(iso[2]), int(iso[3]))
         if parts := _PARTS.fullmatch(text):
             return _date(text, int(parts[4]), *_month_and_day(text, int(parts[1]), int(parts[3]), day_first))
-        raise CellError(f"{shown(text)} is not a date; write it as 2026-05-03, or import with --date-format")
+        raise CellError(f"{in_short(text)} is not a date; write it as 2026-05-03, or import with --date-format")
 
     return read
 
@@ -110,7 +108,7 @@ def _month_and_day(text: str, first: int, second: int, day_first: bool) -> tuple
         return second, first
     if first <= 12 and second <= 12 and first != second:
         raise CellError(
-            f"{shown(text)} can be read two ways; import with --day-first, or with --date-format %m/%d/%Y"
+            f"{in_short(text)} can be read two ways; import with --day-first, or with --date-format %m/%d/%Y"
         )
     return (first, second) if first <= 12 else (second, first)
 
@@ -120,7 +118,7 @@ def _date(text: str, year: int, month: int, day: int) -> dt.date:
         return dt.date(year, month, day)
     except ValueError:
         read = f"year {year}, month {month}, day {day}"
-        raise CellError(f"{shown(text)} is not a day of the calendar (read as {read})") from None
+        raise CellError(f"{in_short(text)} is not a day of the calendar (read as {read})") from None
 
 
 def _check_format(date_format: str) -> None:
@@ -131,4 +129,5 @@ def _check_format(date_format: str) -> None:
     except (ValueError, re.error):
         fits = False
     if not fits:
-        raise CellError(f"{shown(date_format)} does not describe a date; write one like %d.%m.%Y, %m/%d/%y or %Y%m%d")
+        wrong = f"{in_short(date_format)} does not describe a date"
+        raise CellError(f"{wrong}; write one like %d.%m.%Y, %m/%d/%y or %Y%m%d")

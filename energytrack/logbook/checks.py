@@ -7,7 +7,7 @@ import math
 from contextlib import suppress
 
 from energytrack.errors import EntryError
-from energytrack.logbook.quantities import distance_text, energy_text, speed_text
+from energytrack.logbook.quantities import distance_text, energy_text, in_short, speed_text
 from energytrack.logbook.records import Entry, Vehicle
 
 FARTHEST_DAY_KM = 2000.0  # what drivers taking turns can do in a day
@@ -17,9 +17,11 @@ LARGEST_AMOUNT = 20_000.0  # L, kg or kWh: beyond the tanks and batteries of roa
 COLDEST_C, HOTTEST_C = -90.0, 60.0  # beyond any outside temperature met on Earth
 FASTEST_KMH = 500.0
 EARLIEST_YEAR = 1900
+LATEST_YEAR = 2999  # of a day to plan from: the months after it are days of the calendar too
 LARGEST_KNOWN_PERCENT = 100.0
 LARGEST_TARGET_PERCENT = 50.0
 LONGEST_NAME = 60  # keeps lists and answers readable
+LONGEST_TEXT = 10_000  # characters: a few pages
 
 
 def parse_date(text: str) -> dt.date:
@@ -27,8 +29,11 @@ def parse_date(text: str) -> dt.date:
     day = text.strip()
     with suppress(ValueError):
         if len(day) == 10 and day[4::3] == "--":  # fromisoformat takes other forms of ISO 8601 too
-            return dt.date.fromisoformat(day)
-    raise EntryError(f"date {text!r} is not a day of the calendar written as year-month-day, such as 2026-05-03")
+            found = dt.date.fromisoformat(day)
+            if found.year <= LATEST_YEAR:
+                return found
+    wrong = f"date {in_short(text)} is not a day of the calendar"
+    raise EntryError(f"{wrong} written as year-month-day, such as 2026-05-03")
 
 
 def check_name(name: str, what: str) -> None:
@@ -37,6 +42,12 @@ def check_name(name: str, what: str) -> None:
         raise EntryError(f"a {what} needs a name of printable characters")
     if len(name) > LONGEST_NAME:
         raise EntryError(f"the name of a {what} has at most {LONGEST_NAME} characters, not {len(name)}: shorten it")
+
+
+def check_text(text: str, what: str) -> None:
+    """Refuse a note no list can show. Raises EntryError."""
+    if len(text) > LONGEST_TEXT:
+        raise EntryError(f"a {what} has at most {LONGEST_TEXT:,} characters, not {len(text):,}: shorten it")
 
 
 def check_date(date: dt.date, today: dt.date) -> None:
@@ -88,6 +99,8 @@ def check_known(low: float, high: float) -> None:
 def check_values(entry: Entry, vehicle: Vehicle, today: dt.date) -> None:
     """What can be said of an entry alone. Raises EntryError."""
     check_date(entry.date, today)
+    check_text(entry.place, "place")
+    check_text(entry.note, "note")
     if entry.odometer_km is not None:
         check_odometer(entry.odometer_km, vehicle)
     if entry.distance_km is not None:

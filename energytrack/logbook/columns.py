@@ -7,9 +7,9 @@ from dataclasses import dataclass, field
 from typing import Any
 
 from energytrack.errors import EntryError
-from energytrack.logbook.cells import CellError, date_reader, number_reader, shown, text_of, yes_or_no
+from energytrack.logbook.cells import CellError, date_reader, number_reader, text_of, yes_or_no
 from energytrack.logbook.checks import LARGEST_TARGET_PERCENT
-from energytrack.logbook.quantities import CONSUMPTION, DISTANCE, ENERGY, celsius
+from energytrack.logbook.quantities import CONSUMPTION, DISTANCE, ENERGY, SMALLEST, celsius, in_short
 from energytrack.logbook.records import CARRIERS, KINDS, UNITS
 
 Reader = Callable[[str], Any]
@@ -150,7 +150,9 @@ def _positive(number: Reader, what: str) -> Reader:
     def read(text: str) -> float:
         value: float = number(text)
         if value <= 0:
-            raise CellError(f"{shown(text)}: {what} is more than 0; leave the cell empty if it is unknown")
+            raise CellError(f"{in_short(text)}: {what} is more than 0; leave the cell empty if it is unknown")
+        if value < SMALLEST:
+            raise CellError(f"{in_short(text)} is beyond anything measured on a vehicle; correct it")
         return value
 
     return read
@@ -160,7 +162,7 @@ def _target(positive: Reader) -> Reader:
     def read(text: str) -> float:
         value: float = positive(text)
         if value > LARGEST_TARGET_PERCENT:
-            raise CellError(f"{shown(text)}: a target is at most {LARGEST_TARGET_PERCENT:g} %; write 3 for 3 %")
+            raise CellError(f"{in_short(text)}: a target is at most {LARGEST_TARGET_PERCENT:g} %; write 3 for 3 %")
         return value
 
     return read
@@ -170,7 +172,7 @@ def _at_least_zero(number: Reader, what: str) -> Reader:
     def read(text: str) -> float:
         value: float = number(text)
         if value < 0:
-            raise CellError(f"{shown(text)}: {what} is not below 0; leave the cell empty if it is unknown")
+            raise CellError(f"{in_short(text)}: {what} is not below 0; leave the cell empty if it is unknown")
         return value
 
     return read
@@ -180,7 +182,7 @@ def _within(number: Reader, low: float, high: float, why: str) -> Reader:
     def read(text: str) -> float:
         value: float = number(text)
         if not low <= value <= high:
-            raise CellError(f"{shown(text)} is outside {low:g} to {high:g}: {why}")
+            raise CellError(f"{in_short(text)} is outside {low:g} to {high:g}: {why}")
         return value
 
     return read
@@ -193,7 +195,7 @@ def _temperature(form: Form, number: Reader) -> Reader:
         value: float = celsius(number(text)) if form.fahrenheit else number(text)
         if not -90 <= value <= 60:
             remedy = "correct it" if form.fahrenheit else "correct it, or import with --temperature-unit F"
-            raise CellError(f"{shown(text)} is no outside temperature; {remedy}")
+            raise CellError(f"{in_short(text)} is no outside temperature; {remedy}")
         return value
 
     return read
@@ -203,6 +205,6 @@ def _one_of(words: tuple[str, ...]) -> Reader:
     def read(text: str) -> str:
         if text in words:
             return text
-        raise CellError(f"{shown(text)} is not one of: {', '.join(words)}")
+        raise CellError(f"{in_short(text)} is not one of: {', '.join(words)}")
 
     return read

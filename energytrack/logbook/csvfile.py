@@ -14,7 +14,17 @@ from energytrack.logbook.records import Problem
 
 DELIMITERS = (",", ";", "\t")
 COLUMN_LIMIT = 1000
-LINE_LIMIT = 1_000_000  # characters; a cell is bounded by the csv module at 131,072
+HEADER_LIMIT = 1000  # lines; a file of nothing but empty ones is not read to its end
+LINE_LIMIT = 1_000_000  # characters, of a line and of a row; a cell is bounded by the csv module at 131,072
+_PACKED = {  # how files begin that hold others, by their formats' descriptions
+    b"\x1f\x8b": "gzip",
+    b"PK\x03\x04": "zip, or a spreadsheet's own format",
+    b"BZh": "bzip2",
+    b"\xfd7zXZ\x00": "xz",
+    b"7z\xbc\xaf": "7z",
+    b"\x28\xb5\x2f\xfd": "zstd",
+    b"\xd0\xcf\x11\xe0": "a spreadsheet's own format",
+}
 
 
 class UnreadableTableError(EntryError):
@@ -46,6 +56,7 @@ def open_csv(path: Path, *, delimiter: str | None = None, encoding: str | None =
     if not path.is_file():
         reason = "is not a plain file" if path.exists() else "does not exist; give the path of a CSV file"
         raise UnreadableTableError(Problem(reason, str(path)))
+    _refuse_packed(path)
     encoding = _named(path, encoding) if encoding else _detected(path)
     if delimiter is None:
         delimiter = max(DELIMITERS, key=lambda mark: _width(path, encoding, mark))
@@ -56,6 +67,18 @@ def open_csv(path: Path, *, delimiter: str | None = None, encoding: str | None =
     if first is None:
         raise UnreadableTableError(Problem("is empty; the first line must name the columns", str(path)))
     return CsvFile(path, encoding, delimiter, tuple(restored(cell.strip()) for cell in first[1]))
+
+
+def _refuse_packed(path: Path) -> None:
+    """Nothing is ever unpacked: a small file may hold any amount."""
+    try:
+        with path.open("rb") as file:
+            begins = file.read(8)
+    except OSError as error:
+        raise UnreadableTableError(Problem(f"cannot be read: {error.strerror}", str(path))) from None
+    for mark, what in _PACKED.items():
+        if begins.startswith(mark):
+            raise UnreadableTableError(Problem(f"is packed ({what}); unpack it, or save it as CSV", str(path)))
 
 
 def _named(path: Path, encoding: str) -> str:
@@ -102,15 +125,20 @@ def _rows(path: Path, encoding: str, delimiter: str) -> Iterator[tuple[int, list
 
     try:
         with path.open(encoding=encoding, newline="") as file:
-            reader = csv.reader(_bounded(file, path), delimiter=delimiter, strict=True)
-            start = 1
+            lines = BoundedLines(file, path)
+            reader = csv.reader(lines, delimiter=delimiter, strict=True)
+            start, has_header = 1, False
             try:
                 for row in reader:
                     if len(row) > COLUMN_LIMIT:
                         raise refused(start, f"{len(row)} columns are too many; keep at most {COLUMN_LIMIT}")
                     if any(row):
+                        has_header = True
                         yield start, row
+                    elif not has_header and start >= HEADER_LIMIT:
+                        raise refused(1, f"has no header in its first {HEADER_LIMIT:,} lines; name the columns there")
                     start = reader.line_num + 1
+                    lines.left = LINE_LIMIT
             except csv.Error as error:
                 raise refused(start, _meaning(str(error))) from None
     except OSError as error:
@@ -120,19 +148,27 @@ def _rows(path: Path, encoding: str, delimiter: str) -> Iterator[tuple[int, list
         raise UnreadableTableError(Problem(advice, str(path))) from None
 
 
-def _bounded(file: TextIO, path: Path) -> Iterator[str]:
-    """The lines of the file; one that is endless or binary ends the reading before it fills the memory."""
-    number = 0
-    while line := file.readline(LINE_LIMIT + 1):
-        number += 1
-        if len(line) > LINE_LIMIT:
-            raise UnreadableTableError(
-                Problem(f"a line of more than {LINE_LIMIT:,} characters is no table row", str(path), number)
-            )
-        if "\0" in line:
-            advice = "contains a NUL byte: a binary file, or UTF-16; save it as CSV in UTF-8"
-            raise UnreadableTableError(Problem(advice, str(path), number))
-        yield line
+class BoundedLines:
+    """The lines of a file; a row that is endless, or a binary file, ends the reading before it fills the memory."""
+
+    def __init__(self, file: TextIO, path: Path) -> None:
+        self.left = LINE_LIMIT  # characters of this row; who reads rows of several lines sets it after each
+        self._file, self._path = file, path
+
+    def __iter__(self) -> Iterator[str]:
+        number = 0
+        while line := self._file.readline(self.left + 1):
+            number += 1
+            self.left -= len(line)
+            if self.left < 0:
+                raise self._refused(f"a row of more than {LINE_LIMIT:,} characters is no table row", number)
+            if "\0" in line:
+                advice = "contains a NUL byte: a binary file, or UTF-16; save it as CSV in UTF-8"
+                raise self._refused(advice, number)
+            yield line
+
+    def _refused(self, message: str, number: int) -> UnreadableTableError:
+        return UnreadableTableError(Problem(message, str(self._path), number))
 
 
 def _meaning(error: str) -> str:

@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
-from energytrack.logbook.cells import CellError, number_reader, shown
+from energytrack.logbook.cells import CellError, number_reader
 from energytrack.logbook.columns import Form, Reader
 from energytrack.logbook.csvfile import CsvFile, UnreadableTableError
+from energytrack.logbook.quantities import in_short
 from energytrack.logbook.records import Problem
 
 
@@ -23,7 +24,7 @@ def match_columns(
     for ours, theirs in form.columns.items():
         place = by_name.get(theirs, by_name.get(theirs.casefold()))
         if place is None:
-            raise _refused(table, f"has no column {shown(theirs)}; it has {_titles(table)}")
+            raise _refused(table, f"has no column {in_short(theirs)}; it has {_titles(table)}")
         matched[ours] = place
     entries = "energy" in readers
     lacking = [name for name in required if name not in matched]
@@ -53,7 +54,7 @@ def _places(table: CsvFile) -> dict[str, int]:
     places: dict[str, int] = {}
     for place, title in enumerate(table.header):
         if title in places:
-            raise _refused(table, f"names the column {shown(title)} twice; give each its own name")
+            raise _refused(table, f"names the column {in_short(title)} twice; give each its own name")
         if title:
             places[title] = place
     return places
@@ -71,14 +72,14 @@ def _numeric(table: CsvFile, others: dict[str, int], number: Reader, notes: list
                     number(text)
                 except CellError:
                     del left[title]
-                    notes.append(f"column {title} left out: {shown(text)} in line {line} is not a number")
+                    notes.append(f"column {title} left out: {in_short(text)} in line {line} is not a number")
         if not left:
             break
     return {title: place for title, place in left.items() if title in filled}
 
 
 def _titles(table: CsvFile) -> str:
-    titles = [shown(title) for title in table.header if title]
+    titles = [in_short(title) for title in table.header if title]
     return ", ".join(titles[:20]) + (f" and {len(titles) - 20} more" if len(titles) > 20 else "") or "no named column"
 
 

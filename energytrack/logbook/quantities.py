@@ -59,6 +59,7 @@ CONSUMPTION = MappingProxyType(
     }
 )
 
+SMALLEST, LARGEST = 1e-15, 1e15  # of a typed number that is not 0: squares, sums and quotients stay finite
 _NUMERIC = frozenset("0123456789+-.eE")  # float() also takes nan, inf, 1_000 and the digits of other scripts
 _DECIMAL_COMMA = r"[+-]?[0-9]+,[0-9]+"
 _GROUPED = r"[+-]?[0-9]{1,3}(?:[ ,.'_\u00a0\u202f][0-9]{3})+(?:[.,][0-9]+)?"
@@ -71,15 +72,22 @@ def parse_number(text: str, what: str) -> float:
     with suppress(ValueError):
         value = float(text) if _NUMERIC.issuperset(text) else math.nan
     if math.isfinite(value):
+        if value and not SMALLEST <= abs(value) <= LARGEST:
+            raise EntryError(f"{what} {in_short(text)} is beyond anything measured on a vehicle: correct it")
         return value
     if re.fullmatch(_DECIMAL_COMMA, text) and re.fullmatch(_GROUPED, text):
         whole, decimal = text.replace(",", ""), text.replace(",", ".")
-        raise EntryError(f"{what} {text!r} can be read two ways: write {whole}, or {decimal} if that is meant")
+        raise EntryError(f"{what} {in_short(text)} can be read two ways: write {whole}, or {decimal} if that is meant")
     if re.fullmatch(_DECIMAL_COMMA, text):
         raise EntryError(f"{what} has a decimal comma: write {text.replace(',', '.')}, not {text}")
     if re.fullmatch(_GROUPED, text):
-        raise EntryError(f"{what} {text!r} has thousands separators: write digits and a decimal point only")
-    raise EntryError(f"{what} {text!r} is not a number: write digits with a decimal point, such as 41.32")
+        raise EntryError(f"{what} {in_short(text)} has thousands separators: write digits and a decimal point only")
+    raise EntryError(f"{what} {in_short(text)} is not a number: write digits with a decimal point, such as 41.32")
+
+
+def in_short(text: str) -> str:
+    """The text as a message may show it: short, one line, nothing a terminal would obey."""
+    return repr(text if len(text) <= 40 else text[:40] + "...")
 
 
 def parse_temperature(text: str) -> float:

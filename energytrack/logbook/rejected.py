@@ -3,15 +3,18 @@
 from __future__ import annotations
 
 import csv
+import re
 from collections.abc import Sequence
 from pathlib import Path
 
 from energytrack.errors import EntryError
 from energytrack.logbook.columns import Form
 from energytrack.logbook.csvfile import open_csv
+from energytrack.logbook.formulas import neutralised, restored
 from energytrack.logbook.records import Problem
 from energytrack.logbook.written import new_file
 
+_NUMBER = re.compile(r"[+-]?[0-9.,]+")
 _ADVICE = "nothing was imported; mend the file, or keep the good rows with --skip-bad rejected.csv"
 
 
@@ -29,6 +32,11 @@ class BadRowsError(EntryError):
             super().__init__(f"{file}: {len(lines)} bad rows, in lines {shown}; {advice}")
 
 
+def _inert(cell: str) -> str:
+    """Numbers stay as they are, -5 among them; whatever else a spreadsheet would run is made text, and read back."""
+    return cell if _NUMBER.fullmatch(cell) else neutralised(restored(cell))
+
+
 def write_rejected(target: Path, path: Path, form: Form, problems: Sequence[Problem]) -> None:
     """Copy the bad rows of `path` to the new file `target`, with their header and the column `reason`.
 
@@ -42,8 +50,8 @@ def write_rejected(target: Path, path: Path, form: Form, problems: Sequence[Prob
     try:
         with new_file(target) as file:
             writer = csv.writer(file, delimiter=table.delimiter, lineterminator="\n")
-            writer.writerow([*table.header, "reason"])
-            writer.writerows([*cells, reasons[line]] for line, cells in table.rows() if line in reasons)
+            writer.writerow([*map(_inert, table.header), "reason"])
+            writer.writerows([*map(_inert, cells), reasons[line]] for line, cells in table.rows() if line in reasons)
     except FileExistsError:
         raise EntryError(f"{target} exists already; name a new file for the rejected rows") from None
     except OSError as error:

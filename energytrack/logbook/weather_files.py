@@ -17,10 +17,10 @@ from itertools import pairwise
 from pathlib import Path
 from typing import Any
 
-from energytrack.logbook.cells import CellError, date_reader, shown
+from energytrack.logbook.cells import CellError, date_reader
 from energytrack.logbook.columns import Form, weather_readers
-from energytrack.logbook.csvfile import UnreadableTableError, open_csv
-from energytrack.logbook.quantities import celsius
+from energytrack.logbook.csvfile import LINE_LIMIT, BoundedLines, UnreadableTableError, open_csv
+from energytrack.logbook.quantities import celsius, in_short
 from energytrack.logbook.records import Problem, Weather
 from energytrack.logbook.tables import Reading, read_rows, without_repeats
 
@@ -131,7 +131,9 @@ def _from_ghcn(gather: Gather, path: Path, form: Form, days: _Days) -> None:
 
 def _fixed_width(path: Path, form: Form, days: _Days) -> None:
     with path.open(encoding="ascii", errors="replace") as file:
-        for number, line in enumerate(file, 1):
+        lines = BoundedLines(file, path)
+        for number, line in enumerate(lines, 1):
+            lines.left = LINE_LIMIT
             text = line.rstrip("\r\n")
             if not text.strip():
                 continue
@@ -242,18 +244,18 @@ def _day(text: str) -> dt.date:
             raise ValueError
         return dt.date(int(text[:4]), int(text[4:6]), int(text[6:]))
     except ValueError:
-        raise CellError(f"{shown(text)} is no day; it is written as 20260503") from None
+        raise CellError(f"{in_short(text)} is no day; it is written as 20260503") from None
 
 
 def _tenths(text: str) -> float:
     if not re.fullmatch(r"[+-]?\d{1,5}", text):
-        raise CellError(f"{shown(text)} is no temperature in tenths of a degree")
+        raise CellError(f"{in_short(text)} is no temperature in tenths of a degree")
     return int(text) / 10
 
 
 def _degrees(text: str, form: Form) -> float:
     if not re.fullmatch(r"[+-]?\d{1,3}(\.\d*)?", text):
-        raise CellError(f"{shown(text)} is no temperature in degrees")
+        raise CellError(f"{in_short(text)} is no temperature in degrees")
     return celsius(float(text)) if form.fahrenheit else float(text)
 
 

@@ -191,7 +191,7 @@ def test_without_an_answer_nothing_heavy_is_loaded(logbook: Path) -> None:
 
 def test_export_import_backup_and_check(logbook: Path, tmp_path: Path) -> None:
     run(logbook, "amend", 48_500, "--note", "=2+3", "--why", "-")
-    assert "15 files" in run(logbook, "export", tmp_path / "out")
+    assert "16 files" in run(logbook, "export", tmp_path / "out")
     assert "not empty" in run(logbook, "export", tmp_path / "out", status=1)
     again = tmp_path / "again.logbook"
     run(again, "new")

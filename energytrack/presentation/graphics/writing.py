@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-import os
 from pathlib import Path
 
 from energytrack.errors import ReportError
 from energytrack.presentation.graphics import canvas
+from energytrack.presentation.placing import place, refuse_link, taken
 
 _PROLOGUE = '<?xml version="1.0" encoding="utf-8"?>\n'
 
@@ -15,6 +15,7 @@ def check(path: Path, *, force: bool = False) -> None:
     """Raises ReportError where `write` could not draw to this file."""
     if path.suffix.lower() not in (".svg", ".png"):
         raise ReportError(f"cannot draw to {path}: name a file that ends in .svg or .png")
+    refuse_link(path)
     if path.is_dir() or (path.exists() and not force):
         raise ReportError(_taken(path))
     if not path.parent.is_dir():
@@ -26,20 +27,10 @@ def write(drawing: canvas.Drawing, path: Path, *, force: bool = False) -> None:
     """Draw to a new file, or over an earlier one with `force`. Raises ReportError."""
     check(path, force=force)
     data = canvas.png(drawing) if path.suffix.lower() == ".png" else (_PROLOGUE + canvas.svg(drawing)).encode()
-    try:
-        with open(path, "wb" if force else "xb", opener=_for_its_owner) as file:
-            file.write(data)
-    except FileExistsError:
-        raise ReportError(_taken(path)) from None
-    except OSError as failure:
-        raise ReportError(f"cannot write {path}: {failure.strerror}; name another file") from failure
-
-
-def _for_its_owner(path: str, flags: int) -> int:
-    return os.open(path, flags, 0o600)
+    place(data, path, force=force)
 
 
 def _taken(path: Path) -> str:
     if path.is_dir():
         return f"cannot write {path}: it is a folder; name a file"
-    return f"{path} is there already: name another file, or replace it with --force"
+    return taken(path)
