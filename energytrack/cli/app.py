@@ -19,6 +19,7 @@ import typer.main
 
 from energytrack.cli.context import LOGBOOK_VARIABLE
 from energytrack.cli.options import NegativeNumbers
+from energytrack.cli.threads import one_thread
 from energytrack.errors import EnergytrackError
 from energytrack.logbook import file
 from energytrack.presentation.plain import in_a_line
@@ -135,6 +136,7 @@ def main() -> None:
         if isinstance(stream, io.TextIOWrapper):
             stream.reconfigure(errors="replace")  # a terminal without some character shows ? for it
     file.tell = _remark
+    one_thread()
     try:
         try:
             app(prog_name="energytrack")

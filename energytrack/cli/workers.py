@@ -12,13 +12,10 @@ from contextlib import contextmanager
 
 from energytrack.errors import EnergytrackError
 
-_THREADS = ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS", "VECLIB_MAXIMUM_THREADS")
-
 
 @contextmanager
 def workers() -> Iterator[Executor]:
-    """An executor over all cores. To be entered before numpy is imported, so that it too keeps to one thread."""
-    os.environ.update(dict.fromkeys(_THREADS, "1"))  # small matrices: threads would only fight the processes
+    """An executor over all cores, each worker with the one thread that `app.main` has set."""
     count = _cores()
     pool = ProcessPoolExecutor(count, multiprocessing.get_context("spawn"), _ignore_interrupts)
     heard = signal.signal(signal.SIGINT, signal.SIG_IGN)  # inherited, so that a starting worker stays silent too
